@@ -1,0 +1,115 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/**
+ * @file estimate.h  From a tally to models with parameters, intervals, goodness and choice.
+ * Reentrant; no input or output; the same input gives the same digits.
+ */
+#ifndef ROUTEFADE_ESTIMATE_H
+#define ROUTEFADE_ESTIMATE_H
+
+#include <stdbool.h>
+#include <stddef.h>
+
+#include "routefade/model.h"
+#include "routefade/status.h"
+#include "routefade/tally.h"
+
+#ifdef __cplusplus
+extern "C" {
+#endif
+
+/**
+ * What `weight` readings say: their level lies in (low_db, high_db]. Either end may be
+ * infinite (censored). low_db == high_db is a reading without quantisation: its likelihood
+ * is the density of the level per dB.
+ */
+struct rfade_bin {
+    double low_db;
+    double high_db;
+    double weight; /**< > 0 */
+};
+
+struct rfade_fit {
+    enum rfade_model_id model;
+    double mean_power_db; /**< mean power; for lognormal the mean of the dB values */
+    double mean_power_low_db;
+    double mean_power_high_db;
+    double parameter; /**< k, m or sigma_db; NaN for a model without parameter */
+    double parameter_low;
+    double parameter_high;
+    double log_likelihood;    /**< at weights as given in the bins */
+    double aic;               /**< under correlation: see estimate.c */
+    double weight;            /**< Akaike weight among the models fitted */
+    double goodness_p;        /**< NaN where it can't be judged */
+    double information[2][2]; /**< observed information about (mean_power_db, parameter) */
+    double covariance[2][2];  /**< of the estimates, correlation counted */
+    double parameter_design_effect; /**< variance over that of independent readings */
+    bool at_lower_boundary;         /**< K at 0: one-sided interval */
+    bool at_upper_boundary; /**< no fading that the step can resolve: one-sided interval */
+};
+
+struct rfade_estimate_settings {
+    double confidence;                 /**< of the two-sided intervals, for instance 0.95 */
+    const struct rfade_blocks *blocks; /**< NULL: readings are independent */
+    double narrowing;    /**< share of the power variance that dividing by the local mean took
+                              away, [0, 1); the parameters are corrected for it; 0: none */
+    bool with_lognormal; /**< lognormal as a candidate */
+};
+
+struct rfade_estimate {
+    double count;           /**< sum of weights */
+    double effective_count; /**< of the mean, for orientation */
+    double moment_k;        /**< Greenstein, Michelson and Erceg 1999; NaN if there is none */
+    double moment_m;        /**< Nakagami 1960 */
+    double mean_power_db;   /**< of the readings (bin centres), dB of the mean power */
+    double mean_of_db;      /**< mean of the dB values */
+    struct rfade_fit fits[RFADE_MODEL_COUNT];
+    size_t fit_count;
+    size_t preferred; /**< index into fits */
+};
+
+/**
+ * Fits every model to the bins and compares them.
+ * @return RFADE_OK | RFADE_DOMAIN | RFADE_NO_DATA | RFADE_NO_CONVERGENCE | RFADE_NO_MEMORY
+ */
+RFADE_API enum rfade_status rfade_estimate_bins(const struct rfade_bin *bins, size_t bin_count,
+                                                const struct rfade_estimate_settings *settings,
+                                                struct rfade_estimate *result);
+
+/** Maximum likelihood fit of one model, with intervals; goodness and weight stay NaN. */
+RFADE_API enum rfade_status rfade_fit_bins(const struct rfade_model *model,
+                                           const struct rfade_bin *bins, size_t bin_count,
+                                           const struct rfade_estimate_settings *settings,
+                                           struct rfade_fit *fit);
+
+/**
+ * The bins of a tally, in key order; weights scaled so that they sum to the number of
+ * readings. free() the array.
+ */
+RFADE_API enum rfade_status rfade_bins_from_tally(struct rfade_tally *tally,
+                                                  struct rfade_bin **bins, size_t *bin_count);
+
+/** How a plain column of levels was quantised and clipped. */
+struct rfade_column_settings {
+    double step_db;     /**< NaN: find it in the data; 0: none */
+    double floor_dbm;   /**< NaN: none */
+    double ceiling_dbm; /**< NaN: none */
+    bool independent;   /**< else blocks of consecutive readings measure the correlation */
+    double confidence;
+};
+
+struct rfade_column_estimate {
+    struct rfade_estimate estimate; /**< levels in dBm */
+    double step_db;                 /**< given or found */
+    size_t below_floor;
+    size_t above_ceiling;
+};
+
+/** Fits a column of levels in dBm, in the order they were read. No NaN or infinity. */
+RFADE_API enum rfade_status rfade_estimate_column(const double *levels_dbm, size_t count,
+                                                  const struct rfade_column_settings *settings,
+                                                  struct rfade_column_estimate *result);
+
+#ifdef __cplusplus
+}
+#endif
+#endif

@@ -1,0 +1,32 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "common/error.h"
+
+#include <stdarg.h>
+#include <stdio.h>
+
+#include "common/text.h"
+
+enum rfade_status rfade_error_set(struct rfade_error *error, enum rfade_status status,
+                                  const char *remedy, const char *what_format, ...)
+{
+    if (!error)
+        return status;
+    *error = (struct rfade_error){.status = status};
+    va_list arguments;
+    va_start(arguments, what_format);
+    (void)vsnprintf(error->what, sizeof error->what, what_format, arguments);
+    va_end(arguments);
+    (void)snprintf(error->remedy, sizeof error->remedy, "%s", remedy ? remedy : "");
+    rfade_text_printable(error->what);
+    rfade_text_printable(error->remedy);
+    return status;
+}
+
+void rfade_error_at(struct rfade_error *error, const char *file, size_t line)
+{
+    if (!error)
+        return;
+    (void)snprintf(error->file, sizeof error->file, "%s", file ? file : "");
+    rfade_text_printable(error->file);
+    error->line = line;
+}
