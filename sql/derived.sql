@@ -23,12 +23,13 @@ CREATE TABLE traversal (
     traversal_id INTEGER PRIMARY KEY,
     trace_id INTEGER NOT NULL REFERENCES trace ON DELETE CASCADE,
     segment_id INTEGER NOT NULL REFERENCES segment ON DELETE CASCADE,
-    pass INTEGER NOT NULL,           -- of the trace along the route, from 1
+    pass INTEGER NOT NULL,           -- of the vehicle along the route, from 1
     start_us INTEGER NOT NULL,
     end_us INTEGER NOT NULL,
     reading_count INTEGER NOT NULL,
     travel_m REAL NOT NULL,
     fading_tally BLOB NOT NULL,
+    level_uncertainty_db REAL NOT NULL, -- of the vehicle's calibration
     level_tally BLOB NOT NULL,
     local_mean_tally BLOB NOT NULL,
     blocks BLOB NOT NULL,
@@ -48,28 +49,40 @@ CREATE TABLE fading (
         ('resolved', 'inseparable', 'undersampled', 'averaged', 'held', 'stationary')),
     pass_count INTEGER NOT NULL,
     reading_count INTEGER NOT NULL,
-    effective_count REAL,
-    mean_power_dbm REAL,
-    local_mean_dbm REAL,          -- mean over the track of the local mean in dBm
-    local_sigma_db REAL,
+    travel_m REAL NOT NULL,             -- over all passes
+    wavelength_m REAL NOT NULL,
+    effective_count REAL,               -- of the mean power
+    mean_power_dbm REAL,                -- dB of the mean power over the travel
+    local_mean_dbm REAL,                -- mean over the travel of the local mean in dBm
+    local_sigma_db REAL,                -- its standard deviation, the window's noise taken off
     local_sigma_low_db REAL,
     local_sigma_high_db REAL,
+    window_noise_db REAL,               -- standard deviation of that noise
+    level_uncertainty_db REAL,          -- standard error of the mean level
     level_tally BLOB NOT NULL,
     local_mean_tally BLOB NOT NULL,
     UNIQUE (segment_id, channel_id, campaign_id)
 ) STRICT;
 
+-- Models fitted to the fast fading of one row of `fading`; none where it was not resolved.
 CREATE TABLE fit (
     fading_id INTEGER NOT NULL REFERENCES fading ON DELETE CASCADE,
     model TEXT NOT NULL CHECK (model IN ('rayleigh', 'rice', 'nakagami', 'lognormal')),
     preferred INTEGER NOT NULL CHECK (preferred IN (0, 1)),
-    parameter REAL,
+    offset_db REAL NOT NULL,            -- mean power of the fast fading about the local mean
+    parameter REAL,                     -- k, m or sigma_db
     parameter_low REAL,
     parameter_high REAL,
-    parameter_variance REAL,
     log_likelihood REAL NOT NULL,
     aic REAL NOT NULL,
     weight REAL,
     goodness_p REAL,
     PRIMARY KEY (fading_id, model)
 ) STRICT, WITHOUT ROWID;
+
+-- The generation of the survey, and the settings, that the results stand for.
+CREATE TABLE analysed (
+    only INTEGER PRIMARY KEY CHECK (only = 1),
+    generation INTEGER NOT NULL,
+    settings BLOB NOT NULL
+) STRICT;

@@ -120,11 +120,9 @@ CREATE TABLE segment (
     CHECK (to_m > from_m)
 ) STRICT;
 
--- Counts every change of what results are made from; `fit` has nothing to do while its own
--- mark equals it.
+-- Counts every change of what results are made from.
 CREATE TABLE generation (
     only INTEGER PRIMARY KEY CHECK (only = 1),
-    current INTEGER NOT NULL,
-    fitted INTEGER NOT NULL
+    current INTEGER NOT NULL
 ) STRICT;
-INSERT INTO generation VALUES (1, 1, 0);
+INSERT INTO generation VALUES (1, 1);

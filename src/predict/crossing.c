@@ -1,0 +1,46 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/*
+ * The rate of level crossings is the density of the amplitude times the mean of its positive
+ * slope [Rice, S. O., "Statistical properties of a sine wave plus random noise", Bell System
+ * Technical Journal 27 (1948), section 5]. With isotropic scatter the slope is normal and
+ * independent of the amplitude; its standard deviation over a wavelength of travel, for unit
+ * mean power, is pi/sqrt(1 + K) (Rice, direct ray across the road) or pi/sqrt(m) (Nakagami:
+ * Yacoub, Bautista and Guedes, IEEE Trans. Vehicular Technology 48 (1999)).
+ */
+#include <math.h>
+
+#include "routefade/stretch.h"
+
+/* 1 + K or m: the steadier the signal, the slower its amplitude moves. */
+static double steadiness(const struct rfade_model *model, double parameter)
+{
+    switch (model->id) {
+    case RFADE_RAYLEIGH:
+        return 1.0;
+    case RFADE_RICE:
+        return 1.0 + parameter;
+    case RFADE_NAKAGAMI:
+        return parameter;
+    default:
+        return NAN;
+    }
+}
+
+enum rfade_status rfade_crossings_per_wavelength(const struct rfade_model *model,
+                                                 double parameter, double x_db,
+                                                 double *crossings)
+{
+    *crossings = NAN;
+    double steady = steadiness(model, parameter);
+    if (isnan(steady))
+        return RFADE_DOMAIN;
+    struct rfade_log_gradient density;
+    enum rfade_status status = model->log_density(parameter, x_db, &density);
+    if (status != RFADE_OK)
+        return status;
+    /* Density of the amplitude from that of the level: dx_db = 20/ln(10) dr/r. */
+    double ln_amplitude = x_db * (M_LN10 / 20.0);
+    *crossings =
+        exp(density.value + log(20.0 / M_LN10) - ln_amplitude) * sqrt(M_PI / (2.0 * steady));
+    return RFADE_OK;
+}
