@@ -43,12 +43,16 @@ struct rfade_tally; /* opaque */
 RFADE_API enum rfade_status rfade_tally_create(struct rfade_tally **tally);
 RFADE_API void rfade_tally_destroy(struct rfade_tally *tally); /* NULL is harmless */
 
-/** Adds (or, with negative numbers, takes away). RFADE_OVERFLOW leaves the tally as it was. */
+/**
+ * Adds (or, with negative numbers, takes away). RFADE_OVERFLOW and RFADE_DOMAIN (a key with a
+ * negative step or class, an unknown kind, or a censored one with a step) leave the tally as
+ * it was.
+ */
 RFADE_API enum rfade_status rfade_tally_add(struct rfade_tally *tally,
                                             const struct rfade_tally_key *key, int64_t weight,
                                             int64_t readings);
 
-/** Adds sign (1 or -1) times `other`. */
+/** Adds sign (1 or -1) times `other`. RFADE_OVERFLOW leaves the tally as it was. */
 RFADE_API enum rfade_status rfade_tally_merge(struct rfade_tally *tally,
                                               const struct rfade_tally *other, int sign);
 
@@ -59,13 +63,18 @@ RFADE_API int64_t rfade_tally_readings(const struct rfade_tally *tally);
  * Cells in key order (step, kind, centre, class), zero cells left out.
  * @param[out] cells borrowed: valid until the tally is next changed or destroyed.
  */
-RFADE_API enum rfade_status rfade_tally_cells(struct rfade_tally *tally,
+RFADE_API enum rfade_status rfade_tally_cells(const struct rfade_tally *tally,
                                               const struct rfade_tally_cell **cells,
                                               size_t *count);
 
-/** A compact byte form (documented in tally.c), independent of the machine's byte order. */
-RFADE_API enum rfade_status rfade_tally_encode(struct rfade_tally *tally, uint8_t **bytes,
-                                               size_t *size); /* free() it */
+/**
+ * A compact byte form (documented in tally_codec.c), independent of the machine's byte order;
+ * equal tallies give equal bytes. free() it.
+ */
+RFADE_API enum rfade_status rfade_tally_encode(const struct rfade_tally *tally, uint8_t **bytes,
+                                               size_t *size);
+
+/** RFADE_INPUT for any bytes that encoding doesn't give; *tally is NULL on failure. */
 RFADE_API enum rfade_status rfade_tally_decode(const uint8_t *bytes, size_t size,
                                                struct rfade_tally **tally);
 
@@ -80,7 +89,10 @@ enum { RFADE_COARSE_BINS = 24 };
 /** Upper edges of all but the last coarse bin, dB about the local mean, ascending. */
 RFADE_API extern const double rfade_coarse_edges_db[RFADE_COARSE_BINS - 1];
 
-/** The coarse bin that holds a level (dB about the local mean). */
+/**
+ * The coarse bin that holds a level (dB about the local mean): bin i is (edge[i-1], edge[i]].
+ * A censored reading is counted where its reported level, or its bound, lies.
+ */
 RFADE_API int rfade_coarse_bin(double level_db);
 
 struct rfade_blocks {
@@ -97,14 +109,24 @@ RFADE_API enum rfade_status rfade_blocks_merge(struct rfade_blocks *blocks,
                                                const struct rfade_blocks *other, int sign);
 
 /**
- * Adds consecutive blocks of travel of one traversal.
- * @param weights  [block_count][RFADE_COARSE_BINS], in order of travel
+ * Adds consecutive blocks of travel of one traversal; `square` is left alone (it needs the
+ * single readings: rfade_blocks_add_reading). RFADE_OVERFLOW leaves `blocks` as it was.
+ * @param weights  [block_count][RFADE_COARSE_BINS], in order of travel; a block without any
+ *                 reading stays in its place with weights of 0
  */
 RFADE_API enum rfade_status rfade_blocks_add(struct rfade_blocks *blocks,
                                              const int64_t (*weights)[RFADE_COARSE_BINS],
                                              size_t block_count);
+
+/** Adds the square of one reading's weight to its coarse bin. */
+RFADE_API enum rfade_status rfade_blocks_add_reading(struct rfade_blocks *blocks, int bin,
+                                                     int64_t weight);
+
+/** As for a tally; documented in blocks_codec.c. */
 RFADE_API enum rfade_status rfade_blocks_encode(const struct rfade_blocks *blocks,
                                                 uint8_t **bytes, size_t *size);
+
+/** RFADE_INPUT, and blocks all 0, for any bytes that encoding doesn't give. */
 RFADE_API enum rfade_status rfade_blocks_decode(const uint8_t *bytes, size_t size,
                                                 struct rfade_blocks *blocks);
 
