@@ -3,6 +3,7 @@
 
 #include <stdarg.h>
 #include <stdio.h>
+#include <string.h>
 
 #include "common/text.h"
 
@@ -29,4 +30,18 @@ void rfade_error_at(struct rfade_error *error, const char *file, size_t line)
     (void)snprintf(error->file, sizeof error->file, "%s", file ? file : "");
     rfade_text_printable(error->file);
     error->line = line;
+}
+
+enum rfade_status rfade_error_system(struct rfade_error *error, const char *file,
+                                     int errno_value, const char *remedy, const char *what)
+{
+    char reason[128] = "";
+    if (errno_value == 0)
+        (void)rfade_error_set(error, RFADE_STORAGE, remedy, "%s", what);
+    else if (strerror_r(errno_value, reason, sizeof reason) != 0)
+        (void)rfade_error_set(error, RFADE_STORAGE, remedy, "%s: error %d", what, errno_value);
+    else
+        (void)rfade_error_set(error, RFADE_STORAGE, remedy, "%s: %s", what, reason);
+    rfade_error_at(error, file, 0);
+    return RFADE_STORAGE;
 }

@@ -26,6 +26,13 @@ enum rfade_status rfade_error_set(struct rfade_error *error, enum rfade_status s
                                   const char *remedy, const char *what_format, ...)
     __attribute__((format(printf, 4, 5)));
 
+/**
+ * A file that the system refused: "what: reason of errno", RFADE_STORAGE, with `file` named.
+ * errno_value 0 gives no reason.
+ */
+enum rfade_status rfade_error_system(struct rfade_error *error, const char *file,
+                                     int errno_value, const char *remedy, const char *what);
+
 /** Names the file and line of an error that is already filled. */
 void rfade_error_at(struct rfade_error *error, const char *file, size_t line);
 

@@ -1,0 +1,95 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "output/number.h"
+
+#include <math.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+
+enum { MAX_DECIMALS = 12, FIRST_EXACT_DIGITS = 15, ALWAYS_EXACT_DIGITS = 17 };
+
+int rfade_number_exact_digits(double value)
+{
+    for (int digits = FIRST_EXACT_DIGITS; digits < ALWAYS_EXACT_DIGITS; digits++) {
+        char text[RFADE_NUMBER_SIZE];
+        (void)snprintf(text, sizeof text, "%.*g", digits, value);
+        if (strtod(text, NULL) == value)
+            return digits;
+    }
+    return ALWAYS_EXACT_DIGITS;
+}
+
+/* Writes what is not a finite number. */
+static bool write_special(double value, const char *missing, char text[RFADE_NUMBER_SIZE])
+{
+    if (isfinite(value))
+        return false;
+    const char *word = missing;
+    if (isinf(value))
+        word = value > 0 ? "inf" : "-inf";
+    (void)snprintf(text, RFADE_NUMBER_SIZE, "%s", word);
+    return true;
+}
+
+void rfade_number_exact(double value, char text[RFADE_NUMBER_SIZE])
+{
+    if (write_special(value, "", text))
+        return;
+    (void)snprintf(text, RFADE_NUMBER_SIZE, "%.*g", rfade_number_exact_digits(value), value);
+}
+
+int rfade_number_place(double estimate, double low, double high, int fallback)
+{
+    double half = (high - low) / 2;
+    if (!isfinite(half))
+        half = isfinite(high) ? high - estimate : estimate - low;
+    if (!isfinite(half) || half <= 0)
+        return fallback;
+    double place = floor(log10(half)) - 1;
+    return place < -300 ? fallback : (int)place;
+}
+
+/* "-0.00" is no number for people. */
+static void drop_sign_of_zero(char *text)
+{
+    if (text[0] == '-' && strspn(text + 1, "0.") == strlen(text + 1))
+        memmove(text, text + 1, strlen(text));
+}
+
+void rfade_number_rounded(double value, int place, char text[RFADE_NUMBER_SIZE])
+{
+    if (write_special(value, "-", text))
+        return;
+    if (fabs(value) >= 1e15) { /* more digits than a double holds */
+        (void)snprintf(text, RFADE_NUMBER_SIZE, "%.6g", value);
+        return;
+    }
+    int decimals = place < 0 ? -place : 0;
+    if (place > 0) {
+        double unit = pow(10, place);
+        value = round(value / unit) * unit;
+    }
+    (void)snprintf(text, RFADE_NUMBER_SIZE, "%.*f",
+                   decimals < MAX_DECIMALS ? decimals : MAX_DECIMALS, value);
+    drop_sign_of_zero(text);
+}
+
+void rfade_probability_rounded(double value, int place, char text[RFADE_NUMBER_SIZE])
+{
+    if (value == 0) {
+        (void)snprintf(text, RFADE_NUMBER_SIZE, "0");
+        return;
+    }
+    if (!isfinite(value) || value >= 1e-3 || value < 0) {
+        int shown = place;
+        if (value > 0 && value < 1 && floor(log10(value)) < shown)
+            shown = (int)floor(log10(value));
+        rfade_number_rounded(value, shown, text);
+        return;
+    }
+    int digits = (int)floor(log10(value)) - place;
+    if (digits < 0)
+        digits = 0;
+    (void)snprintf(text, RFADE_NUMBER_SIZE, "%.*e",
+                   digits < MAX_DECIMALS ? digits : MAX_DECIMALS, value);
+}

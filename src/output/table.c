@@ -1,0 +1,182 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/*
+ * A table for people: columns aligned, numbers to the right and rounded to what their
+ * interval supports. Widths are found on the first rows and only grow, so that any number
+ * of rows needs the memory of one page. Width is counted in characters, not bytes.
+ */
+#include <inttypes.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "output/format.h"
+#include "output/number.h"
+
+enum { PAGE_ROWS = 2000, DEFAULT_PROBABILITY_DIGITS = 3 };
+
+struct table {
+    char **cells; /* PAGE_ROWS x column_count, owned */
+    size_t rows;
+    size_t *widths;
+    bool header_written;
+};
+
+/* Characters of valid UTF-8: bytes that don't continue one. */
+static size_t width_of(const char *text)
+{
+    size_t width = 0;
+    for (; *text; text++)
+        width += ((unsigned char)*text & 0xC0) != 0x80;
+    return width;
+}
+
+static void write_cell(FILE *stream, const char *text, size_t width, bool right, bool last)
+{
+    size_t used = width_of(text);
+    int padding = used < width ? (int)(width - used) : 0;
+    if (right)
+        (void)fprintf(stream, "%*s%s", padding, "", text);
+    else if (last)
+        (void)fputs(text, stream);
+    else
+        (void)fprintf(stream, "%s%*s", text, padding, "");
+}
+
+static void write_line(const struct rfade_rows *rows, char *const *cells)
+{
+    const struct table *table = rows->state;
+    for (size_t i = 0; i < rows->column_count; i++) {
+        const char *text = cells ? cells[i] : rows->columns[i].name;
+        if (i)
+            (void)fputs("  ", rows->stream);
+        write_cell(rows->stream, text, table->widths[i],
+                   rows->columns[i].kind != RFADE_COLUMN_TEXT, i + 1 == rows->column_count);
+    }
+    (void)fputc('\n', rows->stream);
+}
+
+static void write_page(struct rfade_rows *rows)
+{
+    struct table *table = rows->state;
+    if (!table->header_written)
+        write_line(rows, NULL);
+    table->header_written = true;
+    for (size_t r = 0; r < table->rows; r++) {
+        char **cells = table->cells + r * rows->column_count;
+        write_line(rows, cells);
+        for (size_t i = 0; i < rows->column_count; i++) {
+            free(cells[i]);
+            cells[i] = NULL;
+        }
+    }
+    table->rows = 0;
+}
+
+/* The column whose interval governs this one's rounding; itself if none does. */
+static size_t governing_column(const struct rfade_rows *rows, size_t column)
+{
+    for (size_t back = 0; back <= 2 && back <= column; back++)
+        if (rows->columns[column - back].interval_follows)
+            return column - back;
+    return column;
+}
+
+static double number_at(const struct rfade_rows *rows, size_t column)
+{
+    bool there = rows->values[column].type == RFADE_VALUE_NUMBER;
+    return there ? rows->values[column].number : NAN;
+}
+
+/* Decimal place of the last digit shown of a number. */
+static int place_of(const struct rfade_rows *rows, size_t column)
+{
+    size_t governing = governing_column(rows, column);
+    const struct rfade_column *description = &rows->columns[governing];
+    double value = number_at(rows, governing);
+    int fallback = -description->decimals;
+    if (description->kind == RFADE_COLUMN_PROBABILITY) {
+        int digits = description->decimals ? description->decimals : DEFAULT_PROBABILITY_DIGITS;
+        fallback = (value > 0 && value <= 1 ? (int)floor(log10(value)) : 0) - digits + 1;
+    }
+    if (!description->interval_follows || governing + 2 >= rows->column_count)
+        return fallback;
+    return rfade_number_place(value, number_at(rows, governing + 1),
+                              number_at(rows, governing + 2), fallback);
+}
+
+static char *cell_text(const struct rfade_rows *rows, size_t column)
+{
+    const struct rfade_value *value = &rows->values[column];
+    char number[RFADE_NUMBER_SIZE] = "-";
+    switch (value->type) {
+    case RFADE_VALUE_TEXT:
+        return strdup(value->text);
+    case RFADE_VALUE_INTEGER:
+        (void)snprintf(number, sizeof number, "%" PRId64, value->integer);
+        break;
+    case RFADE_VALUE_NUMBER:
+        if (rows->columns[column].kind == RFADE_COLUMN_PROBABILITY)
+            rfade_probability_rounded(value->number, place_of(rows, column), number);
+        else
+            rfade_number_rounded(value->number, place_of(rows, column), number);
+        break;
+    case RFADE_VALUE_MISSING:
+        break;
+    }
+    return strdup(number);
+}
+
+static enum rfade_status begin(struct rfade_rows *rows)
+{
+    struct table *table = calloc(1, sizeof *table);
+    rows->state = table;
+    if (!table)
+        return RFADE_NO_MEMORY;
+    table->cells = calloc(PAGE_ROWS * (rows->column_count + 1), sizeof *table->cells);
+    table->widths = calloc(rows->column_count + 1, sizeof *table->widths);
+    if (!table->cells || !table->widths)
+        return RFADE_NO_MEMORY;
+    for (size_t i = 0; i < rows->column_count; i++)
+        table->widths[i] = width_of(rows->columns[i].name);
+    return RFADE_OK;
+}
+
+static enum rfade_status row(struct rfade_rows *rows)
+{
+    struct table *table = rows->state;
+    char **cells = table->cells + table->rows * rows->column_count;
+    for (size_t i = 0; i < rows->column_count; i++) {
+        free(cells[i]);
+        cells[i] = cell_text(rows, i);
+        if (!cells[i])
+            return RFADE_NO_MEMORY;
+        size_t width = width_of(cells[i]);
+        if (width > table->widths[i])
+            table->widths[i] = width;
+    }
+    table->rows++;
+    if (table->rows == PAGE_ROWS)
+        write_page(rows);
+    return RFADE_OK;
+}
+
+static enum rfade_status end(struct rfade_rows *rows)
+{
+    write_page(rows);
+    return RFADE_OK;
+}
+
+static void destroy(struct rfade_rows *rows)
+{
+    struct table *table = rows->state;
+    if (!table)
+        return;
+    if (table->cells)
+        for (size_t i = 0; i < PAGE_ROWS * rows->column_count; i++)
+            free(table->cells[i]);
+    free(table->cells);
+    free(table->widths);
+    free(table);
+    rows->state = NULL;
+}
+
+const struct rfade_rows_format rfade_rows_table = {"table", begin, row, end, destroy};
