@@ -5,8 +5,6 @@
 #include "cli/command.h"
 
 static const struct rfade_command *const commands[] = {
-    &rfade_command_estimate,
-    &rfade_command_predict,
     &rfade_command_simulate,
 };
 

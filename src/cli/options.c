@@ -10,6 +10,9 @@
 
 #include "common/text.h"
 
+/* What getopt_long returns for the option number 0: above every character. */
+enum { FIRST_OPTION = 1000 };
+
 struct parse {
     const struct rfade_option_group *groups;
     size_t group_count;
@@ -229,20 +232,22 @@ static struct option *library_table(const struct parse *parse)
     for (size_t i = 0; i < count; i++) {
         const struct rfade_option *option = option_at(parse, i, NULL);
         table[i].name = option->name;
+        table[i].val = FIRST_OPTION + (int)i; /* alike ones would not be called ambiguous */
         table[i].has_arg = option->type == RFADE_OPTION_FLAG ? no_argument : required_argument;
     }
     return table;
 }
 
 /* Handles what one call of getopt_long returned. */
-static enum rfade_status take_option(const struct parse *parse, int found, int index,
-                                     char *const *argv, struct rfade_texts *arguments)
+static enum rfade_status take_option(const struct parse *parse, int found, char *const *argv,
+                                     struct rfade_texts *arguments)
 {
     void *target = NULL;
     if (found == 1) /* an argument that is no option */
         return add_text(parse, arguments, optarg);
-    if (found == 0) {
-        const struct rfade_option *option = option_at(parse, (size_t)index, &target);
+    if (found >= FIRST_OPTION) {
+        size_t index = (size_t)(found - FIRST_OPTION);
+        const struct rfade_option *option = option_at(parse, index, &target);
         return read_value(parse, option, target, optarg);
     }
     const char *given = argv[optind - 1];
@@ -270,12 +275,11 @@ enum rfade_status rfade_options_parse(int argc, char *const *argv,
     /* "-": arguments come in order, whatever POSIXLY_CORRECT says; ":": a missing value is
      * told from an unknown name. */
     while (status == RFADE_OK) {
-        int index = 0;
         /* NOLINTNEXTLINE(concurrency-mt-unsafe): before any thread is started */
-        int found = getopt_long(argc, argv, "-:", table, &index);
+        int found = getopt_long(argc, argv, "-:", table, NULL);
         if (found == -1)
             break;
-        status = take_option(&parse, found, index, argv, arguments);
+        status = take_option(&parse, found, argv, arguments);
     }
     for (int i = optind; status == RFADE_OK && i < argc; i++) /* what follows "--" */
         status = add_text(&parse, arguments, argv[i]);

@@ -39,8 +39,10 @@ static enum rfade_status write_failed(const char *stream_name, int reason,
 enum rfade_status rfade_stream_flush(FILE *stream, const char *stream_name,
                                      struct rfade_error *error)
 {
+    if (ferror(stream)) /* whoever wrote stopped there: errno is still that write's */
+        return write_failed(stream_name, errno, error);
     errno = 0;
-    if (fflush(stream) != 0 || ferror(stream))
+    if (fflush(stream) != 0)
         return write_failed(stream_name, errno, error);
     return RFADE_OK;
 }
