@@ -2,6 +2,8 @@
 /**
  * @file model.h  The fading models as one table of functions.
  *
+ * Domains: K in [0, 1e5]; m in [0.5, 1e4] by Nakagami's definition, and the functions also
+ * take the gamma law it continues into down to fit_min; sigma_db in [0.001, 100].
  * A model describes the power y of a fading signal relative to its mean power. Its
  * argument is the level in dB about the mean power, x_db = 10 log10(y), except for
  * RFADE_LOGNORMAL, whose location is the mean of the dB values (its median); see there.
@@ -10,6 +12,7 @@
 #ifndef ROUTEFADE_MODEL_H
 #define ROUTEFADE_MODEL_H
 
+#include "routefade/special.h"
 #include "routefade/status.h"
 
 #ifdef __cplusplus
@@ -24,13 +27,8 @@ enum rfade_model_id {
 };
 enum { RFADE_MODEL_COUNT = 4 };
 
-/** Both tails of a distribution, each computed on its own small side. */
-struct rfade_tails {
-    double lower;     /**< P(level <= x) */
-    double upper;     /**< P(level > x) */
-    double log_lower; /**< ln of lower, finite where lower underflows */
-    double log_upper; /**< ln of upper */
-};
+/** Levels about the mean that the functions take: beyond, powers leave the range of doubles. */
+#define RFADE_LEVEL_LIMIT_DB 3000.0
 
 /** ln of a probability or density, with its derivatives. */
 struct rfade_log_gradient {
@@ -45,17 +43,23 @@ struct rfade_model {
     const char *parameter_name; /**< "k", "m", "sigma_db"; NULL if there is none */
     double parameter_min;       /**< inclusive domain of the parameter */
     double parameter_max;
+    double fit_min; /**< least parameter that the functions take: below parameter_min for m */
 
-    /** Both tails at x_db in [-400, 400] or +-infinity. Relative accuracy 1e-12 per tail. */
+    /**
+     * Both tails at x_db within RFADE_LEVEL_LIMIT_DB or +-infinity. Relative accuracy 1e-12 per
+     * tail. Here and below RFADE_DOMAIN leaves NaN.
+     */
     enum rfade_status (*tails)(double parameter, double x_db, struct rfade_tails *result);
 
-    /** ln of the density per dB at x_db, and derivatives. */
+    /** ln of the density per dB at x_db (finite), and derivatives. Relative accuracy 1e-12. */
     enum rfade_status (*log_density)(double parameter, double x_db,
                                      struct rfade_log_gradient *result);
 
     /**
-     * ln P(low_db < level <= high_db) and derivatives; either end may be infinite. Never
-     * computed by differencing two numbers near 1: accurate however small or narrow.
+     * ln P(low_db < level <= high_db) and derivatives; low_db < high_db, either end may be
+     * infinite. Never computed by differencing two numbers near 1: the probability is right
+     * to 1e-12 relative however small or narrow (a narrow interval by Gauss-Legendre
+     * quadrature of the density, a wide one by the tails on its small side).
      */
     enum rfade_status (*log_interval)(double parameter, double low_db, double high_db,
                                       struct rfade_log_gradient *result);

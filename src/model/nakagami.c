@@ -1,0 +1,157 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/*
+ * Nakagami-m fading: power y over its mean has the gamma density
+ *     m^m y^(m-1) exp(-m y) / Gamma(m)
+ * (M. Nakagami, "The m-distribution", in Statistical Methods in Radio Wave Propagation,
+ * 1960). In s = ln y, with phi(s) = exp(s) - 1 - s, it is
+ *     exp(-m phi(s)) sqrt(m / (2 pi)) / Gamma*(m)
+ * and its logarithm has the slope ln m - psi(m) - phi(s) in m and -m (y - 1) in s.
+ */
+#include <gsl/gsl_math.h>
+#include <stddef.h>
+
+#include "model/model.h"
+#include "special/gamma_tails.h"
+#include "special/gauss_legendre.h"
+#include "special/tails.h"
+
+static const double m_min = 0.5;
+static const double m_fit_min = 0.1;
+static const double m_max = 1e4;
+
+static bool parameter_valid(double m)
+{
+    return m >= m_fit_min && m <= m_max;
+}
+
+/* ln of the density per dB where phi = 0. */
+static double log_density_at_mean(double m)
+{
+    return log(RFADE_LN_PER_DB * sqrt(m / (2.0 * M_PI))) - rfade_log_gamma_star(m);
+}
+
+static enum rfade_status tails(double m, double x_db, struct rfade_tails *result)
+{
+    if (!parameter_valid(m) || !rfade_level_valid(x_db)) {
+        *result = rfade_tails_nan();
+        return RFADE_DOMAIN;
+    }
+    *result = rfade_gamma_tails_at(m, rfade_log_ratio(x_db), NULL);
+    return RFADE_OK;
+}
+
+static enum rfade_status log_density(double m, double x_db, struct rfade_log_gradient *result)
+{
+    *result = rfade_log_gradient_nan();
+    if (!parameter_valid(m) || !rfade_level_valid(x_db) || isinf(x_db)) {
+        return RFADE_DOMAIN;
+    }
+    const double log_y = rfade_log_ratio(x_db);
+    const double phi = rfade_exp_excess(log_y);
+    double log_minus_psi = NAN;
+    (void)rfade_log_minus_psi(m, &log_minus_psi, NULL);
+    result->value = log_density_at_mean(m) - m * phi;
+    result->d_mean_db = RFADE_LN_PER_DB * m * expm1(log_y);
+    result->d_parameter = log_minus_psi - phi;
+    return RFADE_OK;
+}
+
+/* Relative to the interval's middle the density is exp(-m h(t)), h = y expm1(t) - t. */
+static struct rfade_log_gradient narrow_interval(double m, double middle_db, double width_db,
+                                                 const struct rfade_gauss_rule *rule)
+{
+    const double half_width = 0.5 * RFADE_LN_PER_DB * width_db;
+    const double log_y = rfade_log_ratio(middle_db);
+    const double y = exp(log_y);
+    const double phi = rfade_exp_excess(log_y);
+    double sum = 0.0;
+    double sum_power = 0.0;
+    double sum_h = 0.0;
+    for (int i = 0; i < rule->half_count; i++) {
+        for (int side = -1; side <= 1; side += 2) {
+            const double t = side * half_width * rule->node[i];
+            const double power = y * expm1(t);
+            const double term = rule->weight[i] * exp(-m * (power - t));
+            sum += term;
+            sum_power += term * power;
+            sum_h += term * (power - t);
+        }
+    }
+    double log_minus_psi = NAN;
+    (void)rfade_log_minus_psi(m, &log_minus_psi, NULL);
+    return (struct rfade_log_gradient){
+        log_density_at_mean(m) - m * phi + log(0.5 * width_db * sum),
+        RFADE_LN_PER_DB * m * (expm1(log_y) + sum_power / sum),
+        log_minus_psi - phi - sum_h / sum,
+    };
+}
+
+static struct rfade_interval_end interval_end(double m, double x_db)
+{
+    if (isinf(x_db)) {
+        return rfade_interval_end_at_infinity(x_db > 0.0);
+    }
+    const double log_y = rfade_log_ratio(x_db);
+    struct rfade_gamma_gradient gradient;
+    struct rfade_interval_end end;
+    end.tails = rfade_gamma_tails_at(m, log_y, &gradient);
+    end.log_density = log_density_at_mean(m) - m * rfade_exp_excess(log_y);
+    end.d_log_lower = gradient.d_log_lower;
+    end.d_log_upper = gradient.d_log_upper;
+    return end;
+}
+
+static enum rfade_status log_interval(double m, double low_db, double high_db,
+                                      struct rfade_log_gradient *result)
+{
+    *result = rfade_log_gradient_nan();
+    if (!parameter_valid(m) || !rfade_interval_valid(low_db, high_db)) {
+        return RFADE_DOMAIN;
+    }
+    const double width_db = high_db - low_db;
+    if (width_db <= RFADE_NARROW_DB) {
+        const double slope = m * fmax(fabs(expm1(rfade_log_ratio(low_db))),
+                                      fabs(expm1(rfade_log_ratio(high_db))));
+        const struct rfade_gauss_rule *rule =
+            rfade_gauss_rule_for(0.5 * RFADE_LN_PER_DB * width_db * (1.0 + slope));
+        if (rule != NULL) {
+            *result = narrow_interval(m, 0.5 * (low_db + high_db), width_db, rule);
+            return RFADE_OK;
+        }
+    }
+    const struct rfade_interval_end low = interval_end(m, low_db);
+    const struct rfade_interval_end high = interval_end(m, high_db);
+    *result = rfade_interval_from_ends(&low, &high);
+    return RFADE_OK;
+}
+
+static enum rfade_status quantile(double m, double lower, double upper, double *x_db)
+{
+    return rfade_quantile_by_newton(&rfade_model_nakagami, m, lower, upper, x_db);
+}
+
+/* m is the inverse normalised variance by definition (Nakagami 1960). */
+static double from_normalised_variance(double normalised_variance)
+{
+    return fmin(fmax(1.0 / normalised_variance, m_min), m_max);
+}
+
+static double normalised_variance(double m)
+{
+    return 1.0 / m;
+}
+
+const struct rfade_model rfade_model_nakagami = {
+    .id = RFADE_NAKAGAMI,
+    .name = "nakagami",
+    .parameter_name = "m",
+    .parameter_min = m_min,
+    .parameter_max = m_max,
+    .fit_min = m_fit_min,
+    .tails = tails,
+    .log_density = log_density,
+    .log_interval = log_interval,
+    .quantile = quantile,
+    .from_normalised_variance = from_normalised_variance,
+    .normalised_variance = normalised_variance,
+};

@@ -1,0 +1,246 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/*
+ * Rice fading: a steady component K times as strong as the scattered power (S. O. Rice,
+ * "Mathematical analysis of random noise", Bell System Technical Journal 24, 1945, 3.10).
+ * With a = sqrt(2K), b = sqrt(2(1+K) y), z = a b, offset = b - a and r = I1(z)/I0(z):
+ *     P(y <= x) = 1 - Q1(a, b)
+ *     density per neper of power = b^2/2 exp(-offset^2/2) exp(-z) I0(z)
+ *     d ln density / d ln y = 1 - b/2 (offset + a (1 - r))
+ *     dQ1/dK = exp(-offset^2/2) exp(-z) I0(z) (r b/a - y)
+ * b - a is taken from K (y - 1) + y, so that nothing is lost near y = 1 at large K.
+ */
+#include <stddef.h>
+
+#include "model/model.h"
+#include "special/bessel.h"
+#include "special/gauss_legendre.h"
+#include "special/marcum.h"
+#include "special/tails.h"
+
+static const double k_max = 1e5;
+
+/* Where the forms for small K hand over to those for large K; both are good around it. */
+static const double large_k = 0.5;
+
+struct point {
+    double y;
+    double b;
+    double offset; /* b - a */
+};
+
+static bool parameter_valid(double k)
+{
+    return k >= 0.0 && k <= k_max;
+}
+
+static struct point point_at(double k, double a, double x_db)
+{
+    const double log_y = rfade_log_ratio(x_db);
+    struct point point;
+    point.y = exp(log_y);
+    point.b = sqrt(2.0 * (1.0 + k) * point.y);
+    point.offset = 2.0 * fma(k, expm1(log_y), point.y) / (a + point.b);
+    return point;
+}
+
+/* sqrt(y) - 1 from b - a: B = sqrt(2(1+K)), B - a = 2/(B + a). */
+static double amplitude_excess(double k, double a, const struct point *point)
+{
+    const double scale = sqrt(2.0 * (1.0 + k));
+    return (point->offset - 2.0 / (scale + a)) / scale;
+}
+
+/* d ln density / dK = -K/(1+K) - y + (1+2K) y (2r/z), arranged so that nothing cancels. */
+static double parameter_slope(double k, double a, const struct point *point,
+                              const struct rfade_bessel_pair *bessel)
+{
+    if (k < large_k) {
+        return point->y * (2.0 * k - (1.0 + 2.0 * k) * bessel->half_excess) - k / (1.0 + k);
+    }
+    const double excess = amplitude_excess(k, a, point);
+    const double amplitude = 1.0 + excess;
+    const double s = sqrt(k * (1.0 + k));
+    const double s_excess = 1.0 / (s * (1.0 + 2.0 * k + 2.0 * s)); /* (1+2K)/s - 2 */
+    return 1.0 / (1.0 + k) - excess * excess +
+           amplitude * (s_excess - (2.0 + s_excess) * bessel->complement);
+}
+
+/* r b/a - y, likewise: dQ1/dK over exp(-offset^2/2) exp(-z) I0(z). */
+static double tail_slope(double k, double a, const struct point *point,
+                         const struct rfade_bessel_pair *bessel)
+{
+    if (k < large_k) {
+        return point->y * (k - (1.0 + k) * bessel->half_excess);
+    }
+    const double excess = amplitude_excess(k, a, point);
+    const double scale = sqrt(1.0 + 1.0 / k);
+    const double scale_excess = 1.0 / (k * (scale + 1.0));
+    return (1.0 + excess) * (scale_excess - excess - scale * bessel->complement);
+}
+
+static double level_slope(double a, double b, double offset,
+                          const struct rfade_bessel_pair *bessel)
+{
+    return 1.0 - 0.5 * b * (offset + a * bessel->complement);
+}
+
+/* ln of the density per dB without its Bessel factor. */
+static double log_density_base(const struct point *point)
+{
+    return log(0.5 * RFADE_LN_PER_DB) + 2.0 * log(point->b) -
+           0.5 * point->offset * point->offset;
+}
+
+static enum rfade_status tails(double k, double x_db, struct rfade_tails *result)
+{
+    *result = rfade_tails_nan();
+    if (!parameter_valid(k) || !rfade_level_valid(x_db)) {
+        return RFADE_DOMAIN;
+    }
+    if (k == 0.0 || isinf(x_db)) {
+        return rfade_model_rayleigh.tails(0.0, x_db, result);
+    }
+    const double a = sqrt(2.0 * k);
+    const struct point point = point_at(k, a, x_db);
+    *result = rfade_marcum_tails_at(a, point.b, point.offset);
+    return RFADE_OK;
+}
+
+static enum rfade_status log_density(double k, double x_db, struct rfade_log_gradient *result)
+{
+    *result = rfade_log_gradient_nan();
+    if (!parameter_valid(k) || !rfade_level_valid(x_db) || isinf(x_db)) {
+        return RFADE_DOMAIN;
+    }
+    const double a = sqrt(2.0 * k);
+    const struct point point = point_at(k, a, x_db);
+    const struct rfade_bessel_pair bessel = rfade_bessel_pair(a * point.b);
+    result->value = log_density_base(&point) + log(bessel.i0_scaled);
+    result->d_mean_db = -RFADE_LN_PER_DB * level_slope(a, point.b, point.offset, &bessel);
+    result->d_parameter = parameter_slope(k, a, &point, &bessel);
+    return RFADE_OK;
+}
+
+/*
+ * Relative to the interval's middle, t nepers of power away, with u = b expm1(t/2) the way
+ * in amplitude: exp(t - u (offset + u/2)) exp(-z) I0(z).
+ */
+static struct rfade_log_gradient narrow_interval(double k, double a, const struct point *middle,
+                                                 double width_db,
+                                                 const struct rfade_gauss_rule *rule)
+{
+    const double half_width = 0.5 * RFADE_LN_PER_DB * width_db;
+    double sum = 0.0;
+    double sum_level = 0.0;
+    double sum_parameter = 0.0;
+    for (int i = 0; i < rule->half_count; i++) {
+        for (int side = -1; side <= 1; side += 2) {
+            const double t = side * half_width * rule->node[i];
+            const double step = expm1(0.5 * t);
+            const double u = middle->b * step;
+            const struct point node = {middle->y * (1.0 + step) * (1.0 + step), middle->b + u,
+                                       middle->offset + u};
+            const struct rfade_bessel_pair bessel = rfade_bessel_pair(a * node.b);
+            const double term =
+                rule->weight[i] * exp(t - u * (middle->offset + 0.5 * u)) * bessel.i0_scaled;
+            sum += term;
+            sum_level += term * level_slope(a, node.b, node.offset, &bessel);
+            sum_parameter += term * parameter_slope(k, a, &node, &bessel);
+        }
+    }
+    return (struct rfade_log_gradient){
+        log_density_base(middle) + log(0.5 * width_db * sum),
+        -RFADE_LN_PER_DB * sum_level / sum,
+        sum_parameter / sum,
+    };
+}
+
+static struct rfade_interval_end interval_end(double k, double a, double x_db)
+{
+    if (isinf(x_db)) {
+        return rfade_interval_end_at_infinity(x_db > 0.0);
+    }
+    const struct point point = point_at(k, a, x_db);
+    const struct rfade_bessel_pair bessel = rfade_bessel_pair(a * point.b);
+    struct rfade_interval_end end;
+    (void)tails(k, x_db, &end.tails);
+    end.log_density = log_density_base(&point) + log(bessel.i0_scaled);
+    const double slope = tail_slope(k, a, &point, &bessel) * bessel.i0_scaled;
+    const double exponent = -0.5 * point.offset * point.offset;
+    end.d_log_lower = -slope * exp(exponent - end.tails.log_lower);
+    end.d_log_upper = slope * exp(exponent - end.tails.log_upper);
+    return end;
+}
+
+/* How far ln density can move over half the interval: |slope| <= 2 + b |offset| / 2. */
+static double half_variation(double a, const struct point *middle, double width_db)
+{
+    const double half_width = 0.5 * RFADE_LN_PER_DB * width_db;
+    const double step = expm1(0.5 * half_width);
+    const double b_high = middle->b * (1.0 + step);
+    const double b_low = middle->b / (1.0 + step);
+    const double drift = fmax(b_high * fabs(b_high - a), b_low * fabs(b_low - a));
+    return half_width * (2.0 + 0.5 * drift);
+}
+
+static enum rfade_status log_interval(double k, double low_db, double high_db,
+                                      struct rfade_log_gradient *result)
+{
+    *result = rfade_log_gradient_nan();
+    if (!parameter_valid(k) || !rfade_interval_valid(low_db, high_db)) {
+        return RFADE_DOMAIN;
+    }
+    const double a = sqrt(2.0 * k);
+    const double width_db = high_db - low_db;
+    if (width_db <= RFADE_NARROW_DB) {
+        const struct point middle = point_at(k, a, 0.5 * (low_db + high_db));
+        const struct rfade_gauss_rule *rule =
+            rfade_gauss_rule_for(half_variation(a, &middle, width_db));
+        if (rule != NULL) {
+            *result = narrow_interval(k, a, &middle, width_db, rule);
+            return RFADE_OK;
+        }
+    }
+    const struct rfade_interval_end low = interval_end(k, a, low_db);
+    const struct rfade_interval_end high = interval_end(k, a, high_db);
+    *result = rfade_interval_from_ends(&low, &high);
+    return RFADE_OK;
+}
+
+static enum rfade_status quantile(double k, double lower, double upper, double *x_db)
+{
+    return rfade_quantile_by_newton(&rfade_model_rice, k, lower, upper, x_db);
+}
+
+/*
+ * v = (1+2K)/(1+K)^2, so 1 - v = (K/(1+K))^2 (Greenstein, Michelson and Erceg 1999, eq. 7,
+ * from the second and fourth moments of the amplitude); no K has v above 1.
+ */
+static double from_normalised_variance(double normalised_variance)
+{
+    if (!(normalised_variance > 0.0)) {
+        return k_max;
+    }
+    const double root = sqrt(fmax(1.0 - normalised_variance, 0.0));
+    return fmin(root * (1.0 + root) / normalised_variance, k_max);
+}
+
+static double normalised_variance(double k)
+{
+    return (1.0 + 2.0 * k) / ((1.0 + k) * (1.0 + k));
+}
+
+const struct rfade_model rfade_model_rice = {
+    .id = RFADE_RICE,
+    .name = "rice",
+    .parameter_name = "k",
+    .parameter_min = 0.0,
+    .parameter_max = k_max,
+    .fit_min = 0.0,
+    .tails = tails,
+    .log_density = log_density,
+    .log_interval = log_interval,
+    .quantile = quantile,
+    .from_normalised_variance = from_normalised_variance,
+    .normalised_variance = normalised_variance,
+};

@@ -1,0 +1,15 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/** @file bessel.h  What the Rice density and its slopes need of I0 and I1, in one go. */
+#ifndef ROUTEFADE_SPECIAL_BESSEL_H
+#define ROUTEFADE_SPECIAL_BESSEL_H
+
+struct rfade_bessel_pair {
+    double i0_scaled;   /**< exp(-z) I0(z), relative 1e-15 */
+    double complement;  /**< 1 - I1(z)/I0(z), relative 1e-15 (1 + z) up to 20, 1e-15 above */
+    double half_excess; /**< 1 - 2 I1(z)/(z I0(z)), likewise; exact in its limit at z = 0 */
+};
+
+/** For finite z >= 0; no checks. */
+struct rfade_bessel_pair rfade_bessel_pair(double z);
+
+#endif
