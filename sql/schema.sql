@@ -45,6 +45,9 @@ CREATE TABLE logger_file (
     line_count INTEGER NOT NULL CHECK (line_count >= 0),
     reading_count INTEGER NOT NULL CHECK (reading_count >= 0),
     fix_count INTEGER NOT NULL CHECK (fix_count >= 0),
+    -- Fixes of a vehicle and time that the file had given before: at another place (the first
+    -- is kept).
+    differing_fix_count INTEGER NOT NULL CHECK (differing_fix_count >= 0),
     refused_count INTEGER NOT NULL CHECK (refused_count >= 0)
 ) STRICT;
 
@@ -55,6 +58,7 @@ CREATE TABLE refused_line (
     reason TEXT NOT NULL,
     text BLOB NOT NULL CHECK (length(text) <= 200)
 ) STRICT;
+CREATE INDEX refused_line_by_file ON refused_line (logger_file_id);
 
 -- Positions, once a position. Clustered by vehicle and time, the way they are read.
 CREATE TABLE fix (
@@ -90,8 +94,15 @@ CREATE TABLE reading (
     reading_id INTEGER PRIMARY KEY,
     offset_us INTEGER NOT NULL, -- from the extent's start_us
     level_cdb INTEGER,
-    snr_cdb INTEGER
+    snr_cdb INTEGER,
+    CHECK (level_cdb IS NOT NULL OR snr_cdb IS NOT NULL)
 ) STRICT;
+
+-- Readings belong to their extent, though only its range of ids says so.
+CREATE TRIGGER extent_deleted AFTER DELETE ON extent BEGIN
+    DELETE FROM reading WHERE reading_id BETWEEN old.first_reading_id
+        AND old.first_reading_id + old.reading_count - 1;
+END;
 
 CREATE TABLE route (
     route_id INTEGER PRIMARY KEY,
@@ -126,3 +137,11 @@ CREATE TABLE generation (
     current INTEGER NOT NULL
 ) STRICT;
 INSERT INTO generation VALUES (1, 1);
+
+-- The tables and views that derived.sql and views.sql made, and the SHA-256 of those files:
+-- where it differs from the program's, they are dropped and made again.
+CREATE TABLE derived_object (
+    name TEXT NOT NULL PRIMARY KEY,
+    type TEXT NOT NULL CHECK (type IN ('table', 'view')),
+    made_by_sha256 BLOB NOT NULL CHECK (length(made_by_sha256) = 32)
+) STRICT, WITHOUT ROWID;

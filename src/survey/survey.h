@@ -63,4 +63,10 @@ enum rfade_status rfade_survey_integer(struct rfade_survey *survey, int64_t *val
                                        struct rfade_error *error, const char *sql,
                                        const char *format, ...);
 
+/**
+ * Counts a change of what results are made from, inside the caller's transaction: `fit` then
+ * knows that it has work.
+ */
+enum rfade_status rfade_survey_changed(struct rfade_survey *survey, struct rfade_error *error);
+
 #endif

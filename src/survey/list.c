@@ -1,0 +1,172 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "survey/list.h"
+
+#include <stdio.h>
+#include <string.h>
+
+#include "survey/rows.h"
+
+static void read_campaign(sqlite3_stmt *statement, void *row)
+{
+    struct rfade_campaign *campaign = row;
+    campaign->campaign_id = sqlite3_column_int64(statement, 0);
+    rfade_name_copy(campaign->name, statement, 1);
+    campaign->reading_count = sqlite3_column_int64(statement, 2);
+    campaign->start_us = sqlite3_column_int64(statement, 3);
+    campaign->end_us = sqlite3_column_int64(statement, 4);
+}
+
+enum rfade_status rfade_survey_campaigns(struct rfade_survey *survey,
+                                         struct rfade_campaign **campaigns, size_t *count,
+                                         struct rfade_error *error)
+{
+    *campaigns = NULL;
+    *count = 0;
+    sqlite3_stmt *statement = NULL;
+    enum rfade_status status = rfade_survey_prepare(
+        survey, &statement, error,
+        "SELECT campaign_id, name, total(reading_count), min(start_us), max(end_us) "
+        "FROM campaign LEFT JOIN extent USING (campaign_id) GROUP BY campaign_id ORDER BY name",
+        "");
+    if (status != RFADE_OK)
+        return status;
+    void *rows = NULL;
+    status = rfade_rows_read(survey, statement, sizeof **campaigns, read_campaign, &rows, count,
+                             error);
+    *campaigns = rows;
+    return status;
+}
+
+static void read_logger_file(sqlite3_stmt *statement, void *row)
+{
+    struct rfade_logger_file *file = row;
+    *file = (struct rfade_logger_file){.logger_file_id = sqlite3_column_int64(statement, 0)};
+    const void *sha256 = sqlite3_column_blob(statement, 1);
+    if (sha256 && sqlite3_column_bytes(statement, 1) == (int)sizeof file->sha256)
+        memcpy(file->sha256, sha256, sizeof file->sha256);
+    const unsigned char *name = sqlite3_column_text(statement, 2);
+    (void)snprintf(file->name, sizeof file->name, "%s", name ? (const char *)name : "");
+    file->size_bytes = sqlite3_column_int64(statement, 3);
+    file->line_count = sqlite3_column_int64(statement, 4);
+    file->reading_count = sqlite3_column_int64(statement, 5);
+    file->fix_count = sqlite3_column_int64(statement, 6);
+    file->differing_fix_count = sqlite3_column_int64(statement, 7);
+    file->refused_count = sqlite3_column_int64(statement, 8);
+}
+
+#define SELECT_LOGGER_FILE                                                                     \
+    "SELECT logger_file_id, sha256, name, size_bytes, line_count, reading_count, fix_count, "  \
+    "differing_fix_count, refused_count FROM logger_file "
+
+enum rfade_status rfade_survey_logger_files(struct rfade_survey *survey,
+                                            struct rfade_logger_file **files, size_t *count,
+                                            struct rfade_error *error)
+{
+    *files = NULL;
+    *count = 0;
+    sqlite3_stmt *statement = NULL;
+    enum rfade_status status = rfade_survey_prepare(
+        survey, &statement, error, SELECT_LOGGER_FILE "ORDER BY name, sha256", "");
+    if (status != RFADE_OK)
+        return status;
+    void *rows = NULL;
+    status = rfade_rows_read(survey, statement, sizeof **files, read_logger_file, &rows, count,
+                             error);
+    *files = rows;
+    return status;
+}
+
+enum rfade_status rfade_survey_logger_file(struct rfade_survey *survey,
+                                           const unsigned char sha256[32],
+                                           struct rfade_logger_file *file, bool *found,
+                                           struct rfade_error *error)
+{
+    *file = (struct rfade_logger_file){0};
+    *found = false;
+    sqlite3_stmt *statement = NULL;
+    enum rfade_status status =
+        rfade_survey_prepare(survey, &statement, error, SELECT_LOGGER_FILE "WHERE sha256 = ?1",
+                             "b", (const void *)sha256, (size_t)32);
+    if (status == RFADE_OK)
+        status = rfade_survey_step(survey, statement, found, error);
+    if (status == RFADE_OK && *found)
+        read_logger_file(statement, file);
+    sqlite3_finalize(statement);
+    return status;
+}
+
+static void read_stream(sqlite3_stmt *statement, void *row)
+{
+    struct rfade_stream *stream = row;
+    stream->vehicle_id = sqlite3_column_int64(statement, 0);
+    stream->channel_id = sqlite3_column_int64(statement, 1);
+    stream->campaign_id = sqlite3_column_int64(statement, 2);
+    rfade_name_copy(stream->vehicle, statement, 3);
+    rfade_name_copy(stream->channel, statement, 4);
+    rfade_name_copy(stream->campaign, statement, 5);
+    stream->extent_count = sqlite3_column_int64(statement, 6);
+    stream->reading_count = sqlite3_column_int64(statement, 7);
+    stream->start_us = sqlite3_column_int64(statement, 8);
+    stream->end_us = sqlite3_column_int64(statement, 9);
+}
+
+enum rfade_status rfade_survey_streams(struct rfade_survey *survey,
+                                       struct rfade_stream **streams, size_t *count,
+                                       struct rfade_error *error)
+{
+    *streams = NULL;
+    *count = 0;
+    sqlite3_stmt *statement = NULL;
+    enum rfade_status status = rfade_survey_prepare(
+        survey, &statement, error,
+        "SELECT vehicle_id, channel_id, campaign_id, vehicle.name, channel.name, "
+        "campaign.name, "
+        "count(*), sum(reading_count), min(start_us), max(end_us) FROM extent "
+        "JOIN vehicle USING (vehicle_id) JOIN channel USING (channel_id) "
+        "JOIN campaign USING (campaign_id) GROUP BY vehicle_id, channel_id, campaign_id "
+        "ORDER BY vehicle.name, channel.name, campaign.name",
+        "");
+    if (status != RFADE_OK)
+        return status;
+    void *rows = NULL;
+    status =
+        rfade_rows_read(survey, statement, sizeof **streams, read_stream, &rows, count, error);
+    *streams = rows;
+    return status;
+}
+
+enum rfade_status rfade_survey_count(struct rfade_survey *survey,
+                                     struct rfade_survey_counts *counts,
+                                     struct rfade_error *error)
+{
+    *counts = (struct rfade_survey_counts){0};
+    sqlite3_stmt *statement = NULL;
+    bool row = false;
+    /* Readings are counted by their extents: the table itself can be gigabytes. */
+    enum rfade_status status = rfade_survey_prepare(
+        survey, &statement, error,
+        "SELECT (SELECT count(*) FROM logger_file), (SELECT count(*) FROM campaign), "
+        "(SELECT count(*) FROM vehicle), (SELECT count(*) FROM channel), "
+        "(SELECT count(*) FROM route), (SELECT count(*) FROM segment), "
+        "(SELECT count(*) FROM extent), (SELECT sum(reading_count) FROM extent), "
+        "(SELECT sum(fix_count) FROM logger_file), "
+        "(SELECT sum(refused_count) FROM logger_file), "
+        "(SELECT current FROM generation), (SELECT generation FROM analysed), "
+        "(SELECT page_count * page_size FROM pragma_page_count, pragma_page_size)",
+        "");
+    if (status == RFADE_OK)
+        status = rfade_survey_step(survey, statement, &row, error);
+    if (status == RFADE_OK && row) {
+        int64_t *const values[] = {
+            &counts->logger_files,  &counts->campaigns,  &counts->vehicles,
+            &counts->channels,      &counts->routes,     &counts->segments,
+            &counts->extents,       &counts->readings,   &counts->fixes,
+            &counts->refused_lines, &counts->generation, &counts->fitted_generation,
+            &counts->size_bytes,
+        };
+        for (size_t i = 0; i < sizeof values / sizeof values[0]; i++)
+            *values[i] = sqlite3_column_int64(statement, (int)i);
+    }
+    sqlite3_finalize(statement);
+    return status;
+}
