@@ -33,6 +33,16 @@ json_t *rfade_json_text(const char *text)
     return made;
 }
 
+json_t *rfade_json_join(json_t *object, json_t *part)
+{
+    bool joined = object && part && json_object_update(object, part) == 0;
+    json_decref(part);
+    if (joined)
+        return object;
+    json_decref(object);
+    return NULL;
+}
+
 static enum rfade_status write_scalar(FILE *stream, const json_t *value)
 {
     int digits = json_is_real(value) ? rfade_number_exact_digits(json_real_value(value)) : 0;

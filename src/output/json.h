@@ -14,6 +14,12 @@ json_t *rfade_json_number(double value);
 /** A text made printable; null for NULL. NULL: no memory. */
 json_t *rfade_json_text(const char *text);
 
+/**
+ * Adds the members of `part` to `object`; takes both over. NULL if either is NULL or there
+ * is no memory, so that calls can be chained and the end tested once.
+ */
+json_t *rfade_json_join(json_t *object, json_t *part);
+
 /** Writes one value on one line, without a line's end. RFADE_NO_MEMORY | RFADE_STORAGE */
 enum rfade_status rfade_json_write(FILE *stream, const json_t *value);
 
