@@ -1,0 +1,48 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/** @file program.h  Runs the built program and keeps what it printed. */
+#ifndef ROUTEFADE_TESTS_CLI_PROGRAM_H
+#define ROUTEFADE_TESTS_CLI_PROGRAM_H
+
+#include <stddef.h>
+
+/** One run: zero it first, program_clear it afterwards. */
+struct program {
+    const char *input;       /**< standard input; NULL: empty */
+    const char *output_path; /**< where standard output goes; NULL: kept; "-": closed */
+    int status;              /**< exit status; -1: ended by a signal */
+    char *output;            /**< standard output, if kept */
+    char *errors;            /**< standard error */
+};
+
+/** Runs the program with these arguments, NULL at the end; fails the test if it can't. */
+void program_run(struct program *program, const char *const *arguments);
+void program_clear(struct program *program);
+
+#define RUN(program, ...) program_run((program), (const char *const[]){__VA_ARGS__, NULL})
+
+/**
+ * The program refuses these arguments: this exit status, nothing on standard output, and
+ * exactly one line on standard error that begins with "routefade: " and holds `part`.
+ */
+void assert_refused(int status, const char *part, const char *const *arguments);
+
+/** As assert_refused, with an input. */
+void assert_input_refused(const char *input, int status, const char *part,
+                          const char *const *arguments);
+
+#define REFUSED(status, part, ...)                                                             \
+    assert_refused((status), (part), (const char *const[]){__VA_ARGS__, NULL})
+#define INPUT_REFUSED(input, status, part, ...)                                                \
+    assert_input_refused((input), (status), (part), (const char *const[]){__VA_ARGS__, NULL})
+
+/** A new empty folder; its path is valid until the next call. Remove it with folder_remove. */
+const char *folder_create(void);
+void folder_remove(const char *path);
+
+/** Writes a file of that name in the folder; the path is valid until the next call. */
+const char *file_create(const char *folder, const char *name, const char *text);
+
+/** The whole file as text; free() it. */
+char *file_text(const char *path);
+
+#endif

@@ -1,0 +1,121 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/* The program itself: help, version, unknown words, output that can't be written. */
+#include <setjmp.h>
+#include <stdarg.h>
+#include <stddef.h>
+#include <stdint.h>
+
+#include <cmocka.h>
+#include <string.h>
+
+#include "cli/command.h"
+#include "program.h"
+
+static void version_is_one_line(void **state)
+{
+    (void)state;
+    struct program program = {0};
+    RUN(&program, "--version");
+    assert_int_equal(program.status, 0);
+    assert_int_equal(strncmp(program.output, "routefade ", 10), 0);
+    assert_string_equal(program.errors, "");
+    program_clear(&program);
+}
+
+static void assert_cautions(const char *help)
+{
+    assert_non_null(strstr(help, "while driving"));
+    assert_non_null(strstr(help, "licence"));
+    assert_non_null(strstr(help, "exposure"));
+    assert_non_null(strstr(help, "no safety case"));
+    assert_non_null(strstr(help, "licensed engineer"));
+}
+
+static void help_names_every_command_and_the_cautions(void **state)
+{
+    (void)state;
+    struct program program = {0};
+    RUN(&program, "--help");
+    assert_int_equal(program.status, 0);
+    assert_string_equal(program.errors, "");
+    assert_cautions(program.output);
+    for (size_t i = 0; rfade_command_at(i); i++) {
+        assert_non_null(strstr(program.output, rfade_command_at(i)->name));
+        assert_non_null(strstr(program.output, rfade_command_at(i)->summary));
+    }
+    program_clear(&program);
+}
+
+static void help_of_each_command_names_its_options_and_the_cautions(void **state)
+{
+    (void)state;
+    struct program program = {0};
+    for (size_t i = 0; rfade_command_at(i); i++) {
+        const struct rfade_command *command = rfade_command_at(i);
+        RUN(&program, command->name, "--help");
+        assert_int_equal(program.status, 0);
+        assert_string_equal(program.errors, "");
+        assert_non_null(strstr(program.output, command->summary));
+        assert_cautions(program.output);
+        for (size_t k = 0; k < command->option_count; k++) {
+            assert_non_null(strstr(program.output, command->options[k].name));
+            assert_non_null(strstr(program.output, command->options[k].help));
+        }
+        assert_non_null(strstr(program.output, "--survey FILE"));
+        assert_non_null(strstr(program.output, "--format NAME"));
+        assert_non_null(strstr(program.output, "table, csv, json"));
+        assert_non_null(strstr(program.output, "--quiet"));
+    }
+    program_clear(&program);
+}
+
+static void wrong_usage_is_two(void **state)
+{
+    (void)state;
+    struct program program = {0};
+    program_run(&program, (const char *const[]){NULL});
+    assert_int_equal(program.status, 2);
+    assert_string_equal(program.errors,
+                        "routefade: no command was given; see 'routefade --help'\n");
+    program_clear(&program);
+    REFUSED(2, "unknown command 'simulat'; did you mean 'simulate'?", "simulat");
+    REFUSED(2, "unknown command 'paint'; see 'routefade --help'", "paint");
+    REFUSED(2, "unknown command ''", "");
+    REFUSED(2, "unknown option '--verison'", "--verison");
+    REFUSED(2, "unknown option '-h'", "-h");
+    REFUSED(2, "unknown option '--sped-kmh'; did you mean '--speed-kmh'?", "simulate",
+            "--sped-kmh", "5");
+    REFUSED(2, "option --format needs one of table, csv, json, not 'xml'", "simulate",
+            "--format", "xml");
+    REFUSED(2, "option --survey needs a value", "simulate", "--survey");
+    REFUSED(2, "'simulate' takes no argument 'here'", "simulate", "here");
+    REFUSED(2, "an argument is empty", "simulate", "");
+}
+
+static void lost_output_is_an_error(void **state)
+{
+    (void)state;
+    static const char *const outputs[] = {"/dev/full", "-"};
+    for (size_t i = 0; i < 2; i++) {
+        struct program program = {.output_path = outputs[i]};
+        RUN(&program, "--help");
+        assert_int_equal(program.status, 1);
+        assert_non_null(strstr(program.errors, "routefade: standard output: can't write"));
+        RUN(&program, "simulate");
+        assert_int_equal(program.status, 1);
+        assert_non_null(strstr(program.errors, "routefade: standard output: can't write"));
+        program_clear(&program);
+    }
+}
+
+int main(void)
+{
+    const struct CMUnitTest tests[] = {
+        cmocka_unit_test(version_is_one_line),
+        cmocka_unit_test(help_names_every_command_and_the_cautions),
+        cmocka_unit_test(help_of_each_command_names_its_options_and_the_cautions),
+        cmocka_unit_test(wrong_usage_is_two),
+        cmocka_unit_test(lost_output_is_an_error),
+    };
+    return cmocka_run_group_tests(tests, NULL, NULL);
+}
