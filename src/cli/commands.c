@@ -5,6 +5,8 @@
 #include "cli/command.h"
 
 static const struct rfade_command *const commands[] = {
+    &rfade_command_channel,
+    &rfade_command_status,
     &rfade_command_simulate,
 };
 

@@ -161,12 +161,13 @@ static enum rfade_status read_value(const struct parse *parse,
                                     const char *value)
 {
     void *member = (char *)target + option->offset;
-    if (value && *value == '\0')
-        return refuse(parse, option->name, "has an empty value", NULL);
-    switch (option->type) {
-    case RFADE_OPTION_FLAG:
+    if (option->type == RFADE_OPTION_FLAG) {
         *(bool *)member = true;
         return RFADE_OK;
+    }
+    if (!value || *value == '\0')
+        return refuse(parse, option->name, "has an empty value", NULL);
+    switch (option->type) {
     case RFADE_OPTION_TEXT:
         *(const char **)member = value;
         return RFADE_OK;
@@ -180,6 +181,8 @@ static enum rfade_status read_value(const struct parse *parse,
         return add_numbers(parse, option, value, member);
     case RFADE_OPTION_TEXTS:
         return add_text(parse, member, value);
+    case RFADE_OPTION_FLAG:
+        break;
     }
     return refuse(parse, option->name, "can't be read", NULL);
 }

@@ -67,7 +67,7 @@ static enum rfade_status take_fading(const struct predict_options *given, struct
         return rfade_usage(error, &rfade_command_predict,
                            "give one of --unfaded, --rayleigh, --rice-k, --rice-k-db, "
                            "--nakagami-m");
-    *link = (struct link){.unfaded = given->unfaded, .parameter = NAN};
+    link->unfaded = given->unfaded;
     if (given->rayleigh)
         link->model = rfade_model(RFADE_RAYLEIGH);
     if (!isnan(given->rice_k) || !isnan(given->rice_k_db)) {
@@ -202,7 +202,7 @@ static enum rfade_status write_rows(const struct rfade_run *run, const struct li
 static enum rfade_status run_predict(struct rfade_run *run, struct rfade_error *error)
 {
     const struct predict_options *given = run->options;
-    struct link link;
+    struct link link = {.parameter = NAN, .mean_snr_db = NAN, .median_snr_db = NAN};
     enum rfade_status status = take_fading(given, &link, error);
     if (status == RFADE_OK)
         status = take_snr(given, &link, error);

@@ -114,7 +114,7 @@ static enum rfade_status run_program(int argc, char **argv, struct rfade_run *ru
     }
     const struct rfade_command *command = NULL;
     enum rfade_status status = find_command(name, &command, error);
-    return status == RFADE_OK ? run_command(command, argc - 1, argv + 1, run, error) : status;
+    return command ? run_command(command, argc - 1, argv + 1, run, error) : status;
 }
 
 enum rfade_exit rfade_program(int argc, char **argv, FILE *output, FILE *notes)

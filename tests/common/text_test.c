@@ -6,6 +6,7 @@
 
 #include <cmocka.h>
 #include <math.h>
+#include <stdio.h>
 #include <string.h>
 
 #include "common/text.h"
@@ -13,7 +14,7 @@
 static void assert_printable(const char *given, const char *expected)
 {
     char text[128];
-    (void)strcpy(text, given);
+    (void)snprintf(text, sizeof text, "%s", given);
     rfade_text_printable(text);
     assert_string_equal(text, expected);
 }
