@@ -1,0 +1,184 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/* Commands on a survey: channels, vehicles, what it holds, and files that are no survey. */
+#include <setjmp.h>
+#include <stdarg.h>
+#include <stddef.h>
+#include <stdint.h>
+
+#include <cmocka.h>
+#include <jansson.h>
+#include <sqlite3.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+#include <sys/stat.h>
+#include <unistd.h>
+
+#include "program.h"
+
+struct fixture {
+    char folder[64];
+    char survey[96];
+};
+
+static int setup(void **state)
+{
+    struct fixture *fixture = calloc(1, sizeof *fixture);
+    (void)snprintf(fixture->folder, sizeof fixture->folder, "%s", folder_create());
+    (void)snprintf(fixture->survey, sizeof fixture->survey, "%s/night.routefade",
+                   fixture->folder);
+    *state = fixture;
+    return 0;
+}
+
+static int teardown(void **state)
+{
+    struct fixture *fixture = *state;
+    folder_remove(fixture->folder);
+    free(fixture);
+    return 0;
+}
+
+/* The JSON that the program prints with these arguments; json_decref it. */
+static json_t *json_of(const char *const *arguments)
+{
+    struct program program = {0};
+    program_run(&program, arguments);
+    assert_int_equal(program.status, 0);
+    json_t *value = json_loads(program.output, 0, NULL);
+    assert_non_null(value);
+    program_clear(&program);
+    return value;
+}
+
+#define JSON_OF(...) json_of((const char *const[]){__VA_ARGS__, "--format", "json", NULL})
+
+static void assert_done(const char *const *arguments)
+{
+    struct program program = {0};
+    program_run(&program, arguments);
+    assert_string_equal(program.errors, "");
+    assert_int_equal(program.status, 0);
+    program_clear(&program);
+}
+
+#define DONE(...) assert_done((const char *const[]){__VA_ARGS__, NULL})
+
+static void channel_keeps_what_was_told(void **state)
+{
+    const struct fixture *fixture = *state;
+    DONE("channel", "457-main", "--carrier-hz", "457.1e6", "--step-db", "1", "--survey",
+         fixture->survey);
+    DONE("channel", "457-main", "--floor-dbm", "-120", "--survey", fixture->survey);
+    json_t *list = JSON_OF("channel", "--survey", fixture->survey);
+    assert_int_equal(json_array_size(list), 1);
+    json_t *channel = json_array_get(list, 0);
+    assert_string_equal(json_string_value(json_object_get(channel, "channel")), "457-main");
+    assert_true(json_real_value(json_object_get(channel, "carrier_hz")) == 457.1e6);
+    assert_true(json_real_value(json_object_get(channel, "step_db")) == 1);
+    assert_true(json_real_value(json_object_get(channel, "floor_dbm")) == -120);
+    assert_true(json_is_null(json_object_get(channel, "bandwidth_hz")));
+    json_decref(list);
+}
+
+static void channel_refuses_what_can_not_be(void **state)
+{
+    const struct fixture *fixture = *state;
+    REFUSED(1, "there is no such survey", "channel", "--survey", fixture->survey);
+    REFUSED(2, "give NAME", "channel", "--carrier-hz", "457e6", "--survey", fixture->survey);
+    REFUSED(2, "option --carrier-hz needs a number", "channel", "a", "--carrier-hz", "457 MHz",
+            "--survey", fixture->survey);
+    assert_int_equal(access(fixture->survey, F_OK), -1); /* a refusal makes no survey */
+    DONE("channel", "a", "--floor-dbm", "-120", "--survey", fixture->survey);
+    REFUSED(1, "ceiling", "channel", "a", "--ceiling-dbm", "-130", "--survey", fixture->survey);
+    REFUSED(1, "no channel 'b'", "channel", "b", "--survey", fixture->survey);
+}
+
+static void status_counts(void **state)
+{
+    const struct fixture *fixture = *state;
+    DONE("channel", "a", "--carrier-hz", "457e6", "--survey", fixture->survey);
+    json_t *holdings = JSON_OF("status", "--survey", fixture->survey);
+    assert_int_equal(json_integer_value(json_object_get(holdings, "channels")), 1);
+    assert_int_equal(json_integer_value(json_object_get(holdings, "logger_files")), 0);
+    assert_true(json_is_false(json_object_get(holdings, "fitted")));
+    assert_int_equal(json_array_size(json_object_get(holdings, "streams")), 0);
+    json_decref(holdings);
+}
+
+/* Commands that only read a survey, which none of the files below is. */
+static const char *const readers[] = {"channel", "status"};
+enum { READERS = sizeof readers / sizeof readers[0] };
+
+static void assert_no_survey(const char *path, const char *part)
+{
+    for (size_t i = 0; i < READERS; i++)
+        REFUSED(1, part, readers[i], "--survey", path);
+    REFUSED(1, part, "channel", "a", "--carrier-hz", "457e6", "--survey", path);
+}
+
+static void files_that_are_no_survey_are_left_alone(void **state)
+{
+    const struct fixture *fixture = *state;
+    assert_no_survey(fixture->folder, "this is a folder, not a survey");
+    const char *text = "time,rssi\n1,-90\n";
+    const char *path = file_create(fixture->folder, "log.csv", text);
+    assert_no_survey(path, "log.csv: this is not a survey");
+    char *after = file_text(path);
+    assert_string_equal(after, text);
+    free(after);
+    REFUSED(1, "there is no such survey", "status", "--survey", "/nonexistent/a.routefade");
+}
+
+static void change_version(const char *path, const char *sql)
+{
+    sqlite3 *database = NULL;
+    assert_int_equal(sqlite3_open(path, &database), SQLITE_OK);
+    assert_int_equal(sqlite3_exec(database, sql, NULL, NULL, NULL), SQLITE_OK);
+    assert_int_equal(sqlite3_close(database), SQLITE_OK);
+}
+
+static void a_survey_of_a_newer_version_is_left_alone(void **state)
+{
+    const struct fixture *fixture = *state;
+    DONE("channel", "a", "--carrier-hz", "457e6", "--survey", fixture->survey);
+    change_version(fixture->survey, "PRAGMA user_version = 999");
+    assert_no_survey(fixture->survey, "written by a newer version");
+    change_version(fixture->survey, "PRAGMA user_version = 1; PRAGMA application_id = 7");
+    assert_no_survey(fixture->survey, "not a survey");
+}
+
+static void an_unreadable_survey_is_an_error(void **state)
+{
+    const struct fixture *fixture = *state;
+    if (geteuid() == 0) /* root reads everything */
+        skip();
+    DONE("channel", "a", "--carrier-hz", "457e6", "--survey", fixture->survey);
+    assert_int_equal(chmod(fixture->survey, 0), 0);
+    REFUSED(1, fixture->survey, "status", "--survey", fixture->survey);
+}
+
+static void a_cut_survey_is_an_error(void **state)
+{
+    const struct fixture *fixture = *state;
+    DONE("channel", "a", "--carrier-hz", "457e6", "--survey", fixture->survey);
+    assert_int_equal(truncate(fixture->survey, 20000), 0);
+    REFUSED(1, fixture->survey, "status", "--survey", fixture->survey);
+    REFUSED(1, fixture->survey, "channel", "--survey", fixture->survey);
+}
+
+int main(void)
+{
+    const struct CMUnitTest tests[] = {
+        cmocka_unit_test_setup_teardown(channel_keeps_what_was_told, setup, teardown),
+        cmocka_unit_test_setup_teardown(channel_refuses_what_can_not_be, setup, teardown),
+        cmocka_unit_test_setup_teardown(status_counts, setup, teardown),
+        cmocka_unit_test_setup_teardown(files_that_are_no_survey_are_left_alone, setup,
+                                        teardown),
+        cmocka_unit_test_setup_teardown(a_survey_of_a_newer_version_is_left_alone, setup,
+                                        teardown),
+        cmocka_unit_test_setup_teardown(an_unreadable_survey_is_an_error, setup, teardown),
+        cmocka_unit_test_setup_teardown(a_cut_survey_is_an_error, setup, teardown),
+    };
+    return cmocka_run_group_tests(tests, NULL, NULL);
+}
