@@ -32,17 +32,16 @@ struct rfade_ingest_names {
     const char *campaign;
 };
 
-/** What came out of a file. Every line is counted in exactly one of the first four. */
+/** What came out of a file. */
 struct rfade_ingest_summary {
-    size_t rows;        /**< lines that gave what they should */
-    size_t refused;     /**< lines of which something was refused, each told to the sink */
-    size_t no_reading;  /**< lines that say themselves that there was no reading */
-    size_t other_lines; /**< blank lines, comments, header and skipped lines */
-    size_t lines;       /**< all of these */
-    size_t readings;    /**< emitted */
-    size_t fixes;       /**< emitted, once a position */
-    size_t no_position; /**< rows that say themselves that there was no position */
-    int64_t first_us;   /**< earliest time of a reading or fix; 0 without any */
+    size_t lines;      /**< of the file */
+    size_t rows;       /**< lines of data among them: all but header, comments, blank lines */
+    size_t refused;    /**< rows of which something, or all, was refused and told to the sink */
+    size_t readings;   /**< emitted; one a row and level */
+    size_t no_reading; /**< row and level where the log says itself that there is none */
+    size_t fixes;      /**< emitted, once a position */
+    size_t no_position; /**< rows where the log says itself that there is none */
+    int64_t first_us;   /**< earliest time of a row that was used; 0 without any */
     int64_t last_us;    /**< latest */
     char map_name[256]; /**< the column map that was used */
 };

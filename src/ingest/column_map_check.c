@@ -1,0 +1,184 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "ingest/column_map_check.h"
+
+#include <math.h>
+
+/* What is wrong and how to mend it; what is NULL if nothing is. */
+struct finding {
+    size_t line;
+    const char *what;
+    const char *remedy;
+};
+
+static const struct finding fine;
+
+static struct finding check_file(struct rfade_column_map *map)
+{
+    const struct rfade_file_map *file = &map->file;
+    if (file->separator == file->decimal_sign)
+        return (struct finding){0, "the comma can't be both separator and decimal sign",
+                                "set `separator` to what stands between the columns, for "
+                                "instance semicolon"};
+    if (file->comment && file->comment == file->separator)
+        return (struct finding){0, "comments and columns can't begin with the same character",
+                                "set `comment = none`, or another separator"};
+    if (file->header == RFADE_HEADER_LINE && file->header_line <= file->skip)
+        return (struct finding){0, "the header line is among those skipped",
+                                "give `header` as a line number of the whole file, or lower "
+                                "`skip`"};
+    return fine;
+}
+
+static struct finding check_time(struct rfade_column_map *map)
+{
+    size_t line = map->time_line;
+    if (!rfade_column_given(&map->time_column))
+        return (struct finding){line, "the map names no column for the time",
+                                "add `column = ...` to its [time] section"};
+    bool epoch = map->time.form == RFADE_TIME_EPOCH;
+    bool date_column = rfade_column_given(&map->date_column);
+    if (map->time.has_date && date_column)
+        return (struct finding){line, "the date is given twice",
+                                "keep one of `date` and `date_column`"};
+    if (epoch && (map->time.has_date || date_column))
+        return (struct finding){line, "an epoch holds the date already",
+                                "leave out `date` and `date_column`, or give another format"};
+    if (!epoch && map->time.origin_us != 0)
+        return (struct finding){line, "an origin is for epoch formats only",
+                                "set `format` to epoch_s, epoch_ms, epoch_us or epoch_ns"};
+    if (rfade_column_given(&map->subsecond_column) != (map->subsecond_digits != 0))
+        return (struct finding){line,
+                                "a column of subseconds needs its unit, and a unit its "
+                                "column",
+                                "give both `subsecond_column` and `subsecond_unit`"};
+    return fine;
+}
+
+static const char position_remedy[] =
+    "give latitude_column and longitude_column; or x_column, y_column and epsg; or x_column, "
+    "y_column, origin_latitude and origin_longitude; or latitude and longitude";
+
+/* Sets the form that the reader could not know from one key alone. */
+static struct finding check_position(struct rfade_column_map *map)
+{
+    struct rfade_position_map *position = &map->position;
+    bool columns =
+        rfade_column_given(&position->first) || rfade_column_given(&position->second);
+    bool both = rfade_column_given(&position->first) && rfade_column_given(&position->second);
+    bool place = !isnan(position->latitude_deg) && !isnan(position->longitude_deg);
+    bool part = isnan(position->latitude_deg) != isnan(position->longitude_deg);
+    if (columns != both || part)
+        return (struct finding){position->line, "half of a position is missing",
+                                position_remedy};
+    bool fits = true;
+    switch (position->form) {
+    case RFADE_POSITION_NONE:
+        fits = !columns && !place && position->epsg == 0 && position->line == 0;
+        break;
+    case RFADE_POSITION_DEGREES:
+        fits = both && !place && position->epsg == 0;
+        break;
+    case RFADE_POSITION_GRID:
+    case RFADE_POSITION_LOCAL:
+        fits = both && place != (position->epsg != 0);
+        position->form = place ? RFADE_POSITION_LOCAL : RFADE_POSITION_GRID;
+        break;
+    case RFADE_POSITION_FIXED:
+        fits = !columns && place && position->epsg == 0;
+        break;
+    }
+    if (!fits)
+        return (struct finding){position->line, "the position's keys don't fit together",
+                                position_remedy};
+    return fine;
+}
+
+static struct finding check_speed(struct rfade_column_map *map)
+{
+    if (map->speed_line == 0)
+        return fine;
+    if (!rfade_column_given(&map->speed_column) || isnan(map->speed_m_s_per_unit))
+        return (struct finding){map->speed_line, "the speed needs a column and a unit",
+                                "give `column` and `unit` (km/h, m/s, mph, knots) in [speed]"};
+    return fine;
+}
+
+static struct finding check_named(const struct rfade_named *named)
+{
+    bool name = named->name[0] != '\0';
+    if (named->line > 0 && name == rfade_column_given(&named->column))
+        return (struct finding){named->line, "the section needs a name or a column, not both",
+                                "give either `name = ...` or `column = ...`"};
+    return fine;
+}
+
+static struct finding check_names(struct rfade_column_map *map)
+{
+    const struct rfade_named *all[3] = {&map->vehicle, &map->channel, &map->campaign};
+    struct finding found = fine;
+    for (size_t i = 0; i < 3 && !found.what; i++)
+        found = check_named(all[i]);
+    return found;
+}
+
+/* After check_position, which finds the position's form. */
+static struct finding check_levels(struct rfade_column_map *map)
+{
+    for (size_t i = 0; i < map->level_count; i++) {
+        const struct rfade_level_map *level = &map->levels[i];
+        if (!rfade_column_given(&level->level.column) &&
+            !rfade_column_given(&level->snr.column))
+            return (struct finding){level->line, "a level section names no column",
+                                    "add `column = ...` or `snr_column = ...`"};
+        if (map->level_count > 1 && level->channel[0] == '\0')
+            return (struct finding){level->line, "one of several levels has no channel",
+                                    "name it in the section: [level NAME]"};
+        if (map->channel.line > 0 && level->channel[0] != '\0')
+            return (struct finding){level->line, "the channel is given twice",
+                                    "write [level] without a name, or leave out [channel]"};
+    }
+    if (map->level_count == 0 && map->position.form == RFADE_POSITION_NONE)
+        return (struct finding){0, "the map names neither a level nor a position",
+                                "add a [level] section, or [position]"};
+    return fine;
+}
+
+static bool is_name(const struct rfade_column *column)
+{
+    return rfade_column_given(column) && column->number == 0;
+}
+
+static struct finding check_header(struct rfade_column_map *map)
+{
+    if (map->file.header != RFADE_HEADER_NONE)
+        return fine;
+    bool names = is_name(&map->time_column) || is_name(&map->date_column) ||
+                 is_name(&map->subsecond_column) || is_name(&map->position.first) ||
+                 is_name(&map->position.second) || is_name(&map->speed_column) ||
+                 is_name(&map->vehicle.column) || is_name(&map->channel.column) ||
+                 is_name(&map->campaign.column);
+    for (size_t i = 0; i < map->level_count && !names; i++)
+        names = is_name(&map->levels[i].level.column) || is_name(&map->levels[i].snr.column);
+    if (names)
+        return (struct finding){0, "a column is given by name, and the file has no header",
+                                "give every column by its number, the first being 1"};
+    return fine;
+}
+
+enum rfade_status rfade_column_map_check(struct rfade_column_map *map,
+                                         struct rfade_error *error)
+{
+    static struct finding (*const checks[])(struct rfade_column_map *) = {
+        check_file,  check_time,   check_position, check_speed,
+        check_names, check_levels, check_header};
+    for (size_t i = 0; i < sizeof checks / sizeof checks[0]; i++) {
+        struct finding found = checks[i](map);
+        if (!found.what)
+            continue;
+        enum rfade_status status =
+            rfade_error_set(error, RFADE_INPUT, found.remedy, "%s", found.what);
+        rfade_error_at(error, map->name, found.line);
+        return status;
+    }
+    return RFADE_OK;
+}

@@ -1,0 +1,135 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/** @file column_map_parts.h  The parts of a column map, for those that read or apply it. */
+#ifndef ROUTEFADE_INGEST_COLUMN_MAP_PARTS_H
+#define ROUTEFADE_INGEST_COLUMN_MAP_PARTS_H
+
+#include <stdbool.h>
+#include <stddef.h>
+#include <stdint.h>
+
+#include "ingest/column_map.h"
+#include "ingest/time.h"
+
+enum {
+    RFADE_NAME_SIZE = 128, /**< of a column, vehicle, channel or campaign, with the NUL */
+    RFADE_MOST_COLUMNS = 1024,
+    RFADE_MOST_LEVELS = 64,
+    RFADE_MOST_SENTINELS = 16,
+    RFADE_SENTINEL_SIZE = 24
+};
+
+/** A column by name, or by number if that isn't 0. Neither: not given. */
+struct rfade_column {
+    char name[RFADE_NAME_SIZE];
+    size_t number; /**< from 1 */
+};
+
+/** A name that is fixed, or stands in a column. */
+struct rfade_named {
+    char name[RFADE_NAME_SIZE];
+    struct rfade_column column;
+    size_t line; /**< of the section; 0: not given */
+};
+
+/** Values that mean "nothing there": as text, and as a number where they are one. */
+struct rfade_sentinels {
+    size_t count;
+    char texts[RFADE_MOST_SENTINELS][RFADE_SENTINEL_SIZE];
+    double values[RFADE_MOST_SENTINELS]; /**< NaN: no number */
+};
+
+enum rfade_level_unit {
+    RFADE_UNIT_DBM,
+    RFADE_UNIT_DBW,
+    RFADE_UNIT_DBUV,
+    RFADE_UNIT_W,
+    RFADE_UNIT_MW,
+    RFADE_UNIT_UW
+};
+
+/** value * scale + offset, in the unit. */
+struct rfade_quantity {
+    struct rfade_column column;
+    enum rfade_level_unit unit;
+    double scale;
+    double offset;
+    struct rfade_sentinels sentinels;
+    int32_t low_cdb; /**< valid range, ends included */
+    int32_t high_cdb;
+};
+
+struct rfade_level_map {
+    char channel[RFADE_NAME_SIZE]; /**< empty: [level] without a name */
+    struct rfade_quantity level;
+    struct rfade_quantity snr;
+    size_t line;
+};
+
+enum rfade_position_form {
+    RFADE_POSITION_NONE,
+    RFADE_POSITION_DEGREES,
+    RFADE_POSITION_GRID,
+    RFADE_POSITION_LOCAL,
+    RFADE_POSITION_FIXED
+};
+
+struct rfade_position_map {
+    enum rfade_position_form form;
+    struct rfade_column first;  /**< latitude, or x */
+    struct rfade_column second; /**< longitude, or y */
+    int epsg;
+    double latitude_deg; /**< of the origin, or of what stands still; NaN: not given */
+    double longitude_deg;
+    struct rfade_sentinels no_fix;
+    double held_s;
+    double max_speed_m_s;
+    size_t line;
+};
+
+enum rfade_header_form { RFADE_HEADER_FIRST, RFADE_HEADER_NONE, RFADE_HEADER_LINE };
+
+/* Separators that are no character. */
+enum { RFADE_SEPARATOR_BLANKS = ' ' };
+
+struct rfade_file_map {
+    char separator; /**< RFADE_SEPARATOR_BLANKS: runs of blanks and tabs */
+    char decimal_sign;
+    char comment; /**< '\0': none */
+    char quote;   /**< '\0': none */
+    enum rfade_header_form header;
+    size_t header_line;
+    size_t skip;
+    bool ragged;
+};
+
+struct rfade_column_map {
+    char name[256];
+    struct rfade_file_map file;
+    struct rfade_time_format time; /**< its zone is owned by `zone` */
+    struct rfade_zone *zone;
+    struct rfade_column time_column;
+    struct rfade_column date_column;
+    struct rfade_column subsecond_column;
+    int subsecond_digits; /**< decimal places: 3 ms, 6 us, 9 ns; 0: not given */
+    size_t time_line;
+    struct rfade_position_map position;
+    struct rfade_column speed_column;
+    double speed_m_s_per_unit; /**< NaN: not given */
+    size_t speed_line;
+    struct rfade_named vehicle;
+    struct rfade_named channel;
+    struct rfade_named campaign;
+    size_t level_count;
+    struct rfade_level_map levels[RFADE_MOST_LEVELS];
+};
+
+/** A map with the defaults of the map language. NULL if there is no memory. */
+struct rfade_column_map *rfade_column_map_create(const char *name);
+
+/** Appends a level with the defaults; NULL if there are RFADE_MOST_LEVELS. */
+struct rfade_level_map *rfade_column_map_add_level(struct rfade_column_map *map,
+                                                   const char *channel);
+
+bool rfade_column_given(const struct rfade_column *column);
+
+#endif

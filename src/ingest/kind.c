@@ -1,0 +1,82 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "ingest/kind.h"
+
+#include <stdbool.h>
+#include <string.h>
+
+/* One NUL or control byte in so many is damage; more is another kind of file. */
+enum { TEXT_PER_CONTROL = 20, ARCHIVE_MAGIC_AT = 257 };
+
+static const struct {
+    const char *magic;
+    size_t size;
+    struct rfade_other_kind kind;
+} signatures[] = {
+    {"PK\x03\x04",
+     4,
+     {"an XLSX workbook or a ZIP archive, whatever it is called",
+      "save the sheet as CSV, or unpack the archive"}},
+    {"\xD0\xCF\x11\xE0", 4, {"an old spreadsheet (XLS)", "save the sheet as CSV"}},
+    {"SQLite format 3", 16, {"an SQLite database", "export the log as delimited text"}},
+    {"%PDF-", 5, {"a PDF document", "export the log as delimited text"}},
+    {"\xFF\xFE", 2, {"text in UTF-16", "save it as UTF-8"}},
+    {"\xFE\xFF", 2, {"text in UTF-16", "save it as UTF-8"}},
+    {"\xFD"
+     "7zXZ",
+     5,
+     {"compressed with xz", "unpack it first, or compress it with gzip"}},
+    {"BZh", 3, {"compressed with bzip2", "unpack it first, or compress it with gzip"}},
+    {"\x28\xB5\x2F\xFD",
+     4,
+     {"compressed with zstd", "unpack it first, or compress it with gzip"}},
+    {"\x1F\x8B", 2, {"compressed with gzip twice", "unpack it once"}},
+    {"<?xml", 5, {"XML", "export the log as delimited text"}},
+    {"<", 1, {"a markup file (HTML or XML)", "export the log as delimited text"}},
+    {"{", 1, {"JSON", "convert it to delimited text with one row a reading"}},
+    {"$GP", 3, {"NMEA 0183", "give a log in delimited text"}},
+    {"$GN", 3, {"NMEA 0183", "give a log in delimited text"}},
+};
+
+/* [ and then { or [ or a number's list: a time in brackets is followed by a digit and text. */
+static bool is_json_list(const char *head, size_t size)
+{
+    if (size == 0 || head[0] != '[')
+        return false;
+    size_t i = 1;
+    while (i < size && strchr(" \t\r\n", head[i]))
+        i++;
+    return i < size && strchr("{[\"", head[i]);
+}
+
+static bool is_binary(const char *head, size_t size)
+{
+    size_t controls = 0;
+    for (size_t i = 0; i < size; i++) {
+        unsigned char byte = (unsigned char)head[i];
+        controls += byte < 0x20 && byte != '\t' && byte != '\n' && byte != '\r' && byte != '\f';
+    }
+    return controls > 16 + size / TEXT_PER_CONTROL;
+}
+
+struct rfade_other_kind rfade_other_kind(const char *head, size_t size)
+{
+    const char *text = head;
+    size_t left = size;
+    while (left > 0 && strchr(" \t\r\n", *text)) {
+        text++;
+        left--;
+    }
+    for (size_t i = 0; i < sizeof signatures / sizeof signatures[0]; i++)
+        if (left >= signatures[i].size &&
+            memcmp(text, signatures[i].magic, signatures[i].size) == 0)
+            return signatures[i].kind;
+    if (is_json_list(text, left))
+        return (struct rfade_other_kind){"JSON",
+                                         "convert it to delimited text with one row a reading"};
+    if (size > ARCHIVE_MAGIC_AT + 5 && memcmp(head + ARCHIVE_MAGIC_AT, "ustar", 5) == 0)
+        return (struct rfade_other_kind){"a tar archive", "unpack it"};
+    if (is_binary(head, size))
+        return (struct rfade_other_kind){"binary, not text",
+                                         "export the log as delimited text"};
+    return (struct rfade_other_kind){NULL, NULL};
+}

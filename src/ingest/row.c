@@ -1,0 +1,349 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "ingest/row.h"
+
+#include <math.h>
+#include <stdarg.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "common/text.h"
+#include "ingest/fields.h"
+#include "ingest/names.h"
+#include "ingest/number.h"
+#include "ingest/position.h"
+#include "ingest/quantity.h"
+#include "ingest/time.h"
+
+/* Faster than any vehicle that one would send round for this: 1000 km/h. */
+static const double most_speed_m_s = 1000.0 / 3.6;
+
+struct rfade_row_maker {
+    const struct rfade_column_map *map;
+    const struct rfade_layout *layout;
+    struct rfade_splitter *splitter;
+    struct rfade_name_table *names;
+    struct rfade_position_converter *converter;
+    struct rfade_time_reader time_reader;
+    const char *vehicle; /* NULL: in a column */
+    const char *channel;
+    const char *campaign;
+    uint16_t slots[RFADE_MOST_ROLES];
+    size_t last_size; /* of the last value of the row before */
+};
+
+void rfade_row_maker_destroy(struct rfade_row_maker *maker)
+{
+    if (!maker)
+        return;
+    rfade_splitter_destroy(maker->splitter);
+    rfade_name_table_destroy(maker->names);
+    rfade_position_converter_destroy(maker->converter);
+    free(maker);
+}
+
+/* What is given wins over the map's name; both over the column. NULL: by column. */
+static const char *fixed_name(const char *given, const struct rfade_named *named,
+                              const char *otherwise)
+{
+    if (given)
+        return given;
+    if (named->name[0])
+        return named->name;
+    return rfade_column_given(&named->column) ? NULL : otherwise;
+}
+
+static enum rfade_status settle_names(struct rfade_row_maker *maker,
+                                      const struct rfade_ingest_names *names,
+                                      struct rfade_error *error)
+{
+    static const struct rfade_ingest_names none;
+    const struct rfade_column_map *map = maker->map;
+    const struct rfade_ingest_names *given = names ? names : &none;
+    maker->vehicle = fixed_name(given->vehicle, &map->vehicle, "");
+    if (maker->vehicle && maker->vehicle[0] == '\0')
+        return rfade_error_set(error, RFADE_INPUT,
+                               "give --vehicle NAME, or a [vehicle] section in the column map",
+                               "nothing says which vehicle the log is from");
+    bool one_named = map->level_count == 1 && map->levels[0].channel[0];
+    if (given->channel && (map->level_count > 1 || one_named))
+        return rfade_error_set(error, RFADE_INPUT, "leave out --channel",
+                               "%s names the channels itself", map->name);
+    maker->channel = fixed_name(given->channel, &map->channel, RFADE_DEFAULT_CHANNEL);
+    maker->campaign = fixed_name(given->campaign, &map->campaign, RFADE_DEFAULT_CAMPAIGN);
+    return RFADE_OK;
+}
+
+enum rfade_status rfade_row_maker_create(const struct rfade_column_map *map,
+                                         const struct rfade_layout *layout,
+                                         const struct rfade_ingest_names *names,
+                                         struct rfade_row_maker **maker,
+                                         struct rfade_error *error)
+{
+    *maker = NULL;
+    struct rfade_row_maker *made = calloc(1, sizeof *made);
+    if (!made)
+        return rfade_error_set(error, RFADE_NO_MEMORY, NULL, "no memory for rows");
+    made->map = map;
+    made->layout = layout;
+    made->time_reader.format = &map->time;
+    made->splitter = rfade_splitter_create(&map->file);
+    made->names = rfade_name_table_create();
+    enum rfade_status status = RFADE_OK;
+    if (!made->splitter || !made->names)
+        status = rfade_error_set(error, RFADE_NO_MEMORY, NULL, "no memory for rows");
+    if (status == RFADE_OK)
+        status = settle_names(made, names, error);
+    if (status == RFADE_OK)
+        status = rfade_position_converter_create(&map->position, &made->converter, error);
+    if (status != RFADE_OK) {
+        rfade_row_maker_destroy(made);
+        return status;
+    }
+    for (size_t role = 0; role < RFADE_MOST_ROLES; role++)
+        made->slots[role] = layout->columns[role]
+                                ? rfade_splitter_want(made->splitter, layout->columns[role])
+                                : RFADE_NO_SLOT;
+    *maker = made;
+    return RFADE_OK;
+}
+
+static const struct rfade_field *field(const struct rfade_row_maker *maker, size_t role)
+{
+    static const struct rfade_field absent;
+    uint16_t slot = maker->slots[role];
+    return slot == RFADE_NO_SLOT ? &absent : rfade_split_field(maker->splitter, slot);
+}
+
+/* Adds to what is refused, as far as there is room. False, so that callers can return it. */
+static bool refuse(struct rfade_row *row, const char *format, ...)
+    __attribute__((format(printf, 2, 3)));
+
+static bool refuse(struct rfade_row *row, const char *format, ...)
+{
+    size_t used = strlen(row->refused);
+    if (used > 0 && used + 2 < sizeof row->refused) {
+        memcpy(row->refused + used, "; ", 3);
+        used += 2;
+    }
+    va_list arguments;
+    va_start(arguments, format);
+    (void)vsnprintf(row->refused + used, sizeof row->refused - used, format, arguments);
+    va_end(arguments);
+    rfade_text_printable(row->refused);
+    return false;
+}
+
+static bool refuse_value(struct rfade_row *row, const char *what,
+                         const struct rfade_field *value, const char *reason)
+{
+    return refuse(row, "the %s '%.40s' %s", what, value->text, reason);
+}
+
+/*
+ * A last line without line end may have been cut off. It can be trusted if it has all values
+ * and the last one is not shorter than in the row before.
+ */
+static bool is_whole(struct rfade_row_maker *maker, const struct rfade_line *line)
+{
+    size_t last_size = rfade_split_last_size(maker->splitter);
+    bool whole = line->ended || last_size >= maker->last_size;
+    maker->last_size = last_size;
+    return whole;
+}
+
+static bool take_apart(struct rfade_row_maker *maker, const struct rfade_line *line,
+                       struct rfade_row *row)
+{
+    const char *reason = rfade_split(maker->splitter, line);
+    if (reason)
+        return refuse(row, "%s", reason);
+    size_t count = rfade_split_count(maker->splitter);
+    size_t usual = maker->layout->value_count;
+    bool trailing = count == usual + 1 && rfade_split_last_size(maker->splitter) == 0;
+    if (count < maker->layout->last_column)
+        return refuse(row, "the row has %zu values, and column %zu is needed", count,
+                      maker->layout->last_column);
+    if (count != usual && !trailing && !maker->map->file.ragged)
+        return refuse(row, "the row has %zu values where most have %zu: columns may be shifted",
+                      count, usual);
+    if (!is_whole(maker, line))
+        return refuse(row, "the file stops inside the line: its last value may be cut off");
+    return true;
+}
+
+/* Whole units of a subsecond column, in microseconds. */
+static const char *read_subsecond(const struct rfade_row_maker *maker, int64_t *subsecond_us)
+{
+    const struct rfade_field *value = field(maker, RFADE_ROLE_SUBSECOND);
+    struct rfade_decimal decimal;
+    *subsecond_us = 0;
+    if (!rfade_decimal_read(value->text, value->size, maker->map->file.decimal_sign, &decimal))
+        return "has a fraction that is not a number";
+    if (!rfade_decimal_scaled(&decimal, 6 - maker->map->subsecond_digits, subsecond_us) ||
+        *subsecond_us < 0 || *subsecond_us > 1000000)
+        return "has a fraction that is not within a second";
+    return NULL;
+}
+
+static bool read_time(struct rfade_row_maker *maker, struct rfade_row *row)
+{
+    const struct rfade_field *value = field(maker, RFADE_ROLE_TIME);
+    struct rfade_field joined;
+    if (maker->slots[RFADE_ROLE_DATE] != RFADE_NO_SLOT) {
+        const struct rfade_field *date = field(maker, RFADE_ROLE_DATE);
+        joined.cut = date->size + value->size + 1 >= sizeof joined.text;
+        joined.size = 0;
+        if (!joined.cut) {
+            memcpy(joined.text, date->text, date->size);
+            joined.text[date->size] = ' ';
+            memcpy(joined.text + date->size + 1, value->text, value->size + 1);
+            joined.size = date->size + value->size + 1;
+        }
+        joined.text[joined.size] = '\0';
+        value = &joined;
+    }
+    const char *reason = value->cut ? "is too long"
+                                    : rfade_time_read(&maker->time_reader, value->text,
+                                                      value->size, &row->time_us);
+    if (!reason && maker->slots[RFADE_ROLE_SUBSECOND] != RFADE_NO_SLOT) {
+        int64_t subsecond_us = 0;
+        reason = read_subsecond(maker, &subsecond_us);
+        row->time_us += subsecond_us;
+    }
+    return !reason || refuse_value(row, "time", value, reason);
+}
+
+static bool read_name(struct rfade_row_maker *maker, struct rfade_row *row, const char *fixed,
+                      size_t role, const char *what, const char **name)
+{
+    *name = fixed;
+    if (fixed)
+        return true;
+    const struct rfade_field *value = field(maker, role);
+    const char *reason = value->cut
+                             ? "is too long for a name"
+                             : rfade_name_keep(maker->names, value->text, value->size, name);
+    return !reason || refuse_value(row, what, value, reason);
+}
+
+/* One level and its SNR; false if one of them can't be used. */
+static bool read_level(struct rfade_row_maker *maker, struct rfade_row *row, size_t index,
+                       struct rfade_row_level *level)
+{
+    const struct rfade_level_map *map = &maker->map->levels[index];
+    char decimal_sign = maker->map->file.decimal_sign;
+    level->level_cdb = RFADE_NO_VALUE_CDB;
+    level->snr_cdb = RFADE_NO_VALUE_CDB;
+    const struct rfade_field *value = field(maker, RFADE_ROLE_LEVELS + 2 * index);
+    const char *reason = rfade_quantity_read(&map->level, decimal_sign, value->text,
+                                             value->size, &level->level_cdb);
+    if (reason)
+        return refuse_value(row, "level", value, reason);
+    value = field(maker, RFADE_ROLE_LEVELS + 2 * index + 1);
+    reason =
+        rfade_quantity_read(&map->snr, decimal_sign, value->text, value->size, &level->snr_cdb);
+    return !reason || refuse_value(row, "SNR", value, reason);
+}
+
+/* All levels; false if some were refused and none is left. */
+static bool read_levels(struct rfade_row_maker *maker, struct rfade_row *row,
+                        const char *channel)
+{
+    size_t bad = 0;
+    for (size_t i = 0; i < maker->map->level_count; i++) {
+        struct rfade_row_level level = {0};
+        const char *named = maker->map->levels[i].channel;
+        if (!read_level(maker, row, i, &level)) {
+            bad++;
+            continue;
+        }
+        if (level.level_cdb == RFADE_NO_VALUE_CDB && level.snr_cdb == RFADE_NO_VALUE_CDB) {
+            row->no_reading++;
+            continue;
+        }
+        level.channel = named[0] ? named : channel;
+        row->levels[row->level_count++] = level;
+    }
+    return bad == 0 || row->level_count > 0;
+}
+
+/* Both coordinates; false if there are none, refused or not. */
+static bool read_coordinates(const struct rfade_row_maker *maker, struct rfade_row *row,
+                             double *first, double *second)
+{
+    char decimal_sign = maker->map->file.decimal_sign;
+    const struct rfade_position_map *map = &maker->map->position;
+    double *values[2] = {first, second};
+    for (size_t i = 0; i < 2; i++) {
+        const struct rfade_field *value = field(maker, RFADE_ROLE_FIRST + i);
+        struct rfade_decimal decimal;
+        if (rfade_says_nothing(&map->no_fix, decimal_sign, value->text, value->size)) {
+            row->no_place = true;
+            return false;
+        }
+        if (!rfade_decimal_read(value->text, value->size, decimal_sign, &decimal))
+            return refuse_value(row, "coordinate", value, "is not a number; position not used");
+        *values[i] = rfade_decimal_double(&decimal);
+    }
+    if (map->form == RFADE_POSITION_DEGREES && *first == 0 && *second == 0)
+        row->no_place = true;
+    return !row->no_place;
+}
+
+static void read_place(struct rfade_row_maker *maker, struct rfade_row *row)
+{
+    enum rfade_position_form form = maker->map->position.form;
+    double first = 0;
+    double second = 0;
+    if (form == RFADE_POSITION_NONE ||
+        (form != RFADE_POSITION_FIXED && !read_coordinates(maker, row, &first, &second)))
+        return;
+    const char *reason = rfade_position_convert(maker->converter, first, second,
+                                                &row->latitude_deg, &row->longitude_deg);
+    row->has_place = !reason;
+    if (reason)
+        (void)refuse(row, "the position %.20s, %.20s %s; not used",
+                     field(maker, RFADE_ROLE_FIRST)->text,
+                     field(maker, RFADE_ROLE_SECOND)->text, reason);
+}
+
+static void read_speed(struct rfade_row_maker *maker, struct rfade_row *row)
+{
+    static const struct rfade_sentinels none;
+    char decimal_sign = maker->map->file.decimal_sign;
+    const struct rfade_field *value = field(maker, RFADE_ROLE_SPEED);
+    struct rfade_decimal decimal;
+    if (rfade_says_nothing(&none, decimal_sign, value->text, value->size))
+        return;
+    if (rfade_decimal_read(value->text, value->size, decimal_sign, &decimal))
+        row->speed_m_s = rfade_decimal_double(&decimal) * maker->map->speed_m_s_per_unit;
+    if (row->speed_m_s >= 0 && row->speed_m_s <= most_speed_m_s)
+        return;
+    row->speed_m_s = NAN;
+    (void)refuse_value(row, "speed", value, "can't be right; not used");
+}
+
+bool rfade_row_make(struct rfade_row_maker *maker, const struct rfade_line *line,
+                    struct rfade_row *row)
+{
+    const char *channel = NULL;
+    row->time_us = 0;
+    row->has_place = false;
+    row->no_place = false;
+    row->speed_m_s = NAN;
+    row->level_count = 0;
+    row->no_reading = 0;
+    row->refused[0] = '\0';
+    if (!take_apart(maker, line, row) || !read_time(maker, row) ||
+        !read_name(maker, row, maker->vehicle, RFADE_ROLE_VEHICLE, "vehicle", &row->vehicle) ||
+        !read_name(maker, row, maker->channel, RFADE_ROLE_CHANNEL, "channel", &channel) ||
+        !read_name(maker, row, maker->campaign, RFADE_ROLE_CAMPAIGN, "campaign",
+                   &row->campaign) ||
+        !read_levels(maker, row, channel))
+        return false;
+    read_place(maker, row);
+    if (row->has_place)
+        read_speed(maker, row);
+    return true;
+}
