@@ -273,7 +273,7 @@ enum rfade_status rfade_survey_trace_readings(struct rfade_survey *survey, int64
 
 static void read_fix(sqlite3_stmt *statement, void *row)
 {
-    struct rfade_survey_fix *fix = row;
+    struct rfade_position *fix = row;
     fix->time_us = sqlite3_column_int64(statement, 0);
     fix->latitude_deg = sqlite3_column_double(statement, 1);
     fix->longitude_deg = sqlite3_column_double(statement, 2);
@@ -282,7 +282,7 @@ static void read_fix(sqlite3_stmt *statement, void *row)
 
 enum rfade_status rfade_survey_fixes(struct rfade_survey *survey, int64_t vehicle_id,
                                      int64_t from_us, int64_t to_us,
-                                     struct rfade_survey_fix **fixes, size_t *count,
+                                     struct rfade_position **fixes, size_t *count,
                                      struct rfade_error *error)
 {
     *fixes = NULL;
@@ -299,7 +299,7 @@ enum rfade_status rfade_survey_fixes(struct rfade_survey *survey, int64_t vehicl
     if (status == RFADE_OK)
         status = rfade_rows_read(survey, statement, sizeof **fixes, read_fix, &rows,
                                  &read_count, error);
-    struct rfade_survey_fix *read = rows;
+    struct rfade_position *read = rows;
     for (size_t i = 0; i < read_count; i++)
         if (*count == 0 || read[i].time_us != read[*count - 1].time_us)
             read[(*count)++] = read[i];

@@ -8,19 +8,13 @@
 
 #include <stddef.h>
 
+#include "route/match.h"
 #include "survey/survey.h"
 
 struct rfade_survey_reading {
     int64_t time_us;
     int32_t level_cdb; /**< as logged, without calibration; RFADE_NO_VALUE_CDB: none */
     int32_t snr_cdb;
-};
-
-struct rfade_survey_fix {
-    int64_t time_us;
-    double latitude_deg;
-    double longitude_deg;
-    double speed_m_s; /**< NaN: not logged */
 };
 
 /**
@@ -42,7 +36,7 @@ enum rfade_status rfade_survey_trace_readings(struct rfade_survey *survey, int64
  */
 enum rfade_status rfade_survey_fixes(struct rfade_survey *survey, int64_t vehicle_id,
                                      int64_t from_us, int64_t to_us,
-                                     struct rfade_survey_fix **fixes, size_t *count,
+                                     struct rfade_position **fixes, size_t *count,
                                      struct rfade_error *error);
 
 /**

@@ -186,7 +186,7 @@ static void fixes_are_stored_once_a_position(void **state)
     assert_int_equal(counts.fixes, 3);
     assert_int_equal(counts.repeated_fixes, 100);
     assert_int_equal(counts.differing_fixes, 1);
-    struct rfade_survey_fix *fixes = NULL;
+    struct rfade_position *fixes = NULL;
     size_t count = 0;
     struct rfade_error error = {0};
     assert_int_equal(
@@ -206,7 +206,7 @@ static void of_two_files_fixes_the_smaller_sha256_wins(void **state)
     import = begin_file(fixture->survey, "b.csv", 2);
     put_fix(import, 1000000, 51.2, 7.0);
     (void)finish_file(import);
-    struct rfade_survey_fix *fixes = NULL;
+    struct rfade_position *fixes = NULL;
     size_t count = 0;
     struct rfade_error error = {0};
     assert_int_equal(
