@@ -66,6 +66,9 @@ void rfade_command_help(FILE *stream, const struct rfade_command *command);
 /** The whole program: runs a command, prints at most one error line, returns the status. */
 enum rfade_exit rfade_program(int argc, char **argv, FILE *output, FILE *notes);
 
+/** The one line that tells what went wrong: "routefade: FILE:LINE: what; remedy". */
+void rfade_print_error(FILE *notes, const struct rfade_error *error);
+
 /** RFADE_USAGE with a remedy that points to the command's help. */
 enum rfade_status rfade_usage(struct rfade_error *error, const struct rfade_command *command,
                               const char *what_format, ...)

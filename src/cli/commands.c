@@ -5,9 +5,8 @@
 #include "cli/command.h"
 
 static const struct rfade_command *const commands[] = {
-    &rfade_command_channel,
-    &rfade_command_status,
-    &rfade_command_simulate,
+    &rfade_command_import, &rfade_command_channel,  &rfade_command_vehicle,
+    &rfade_command_status, &rfade_command_simulate,
 };
 
 const struct rfade_command *rfade_command_at(size_t index)

@@ -12,8 +12,7 @@ static const char *command_name_at(const void *context, size_t index)
     return command ? command->name : NULL;
 }
 
-/* The one line that tells what went wrong: "routefade: FILE:LINE: what; remedy". */
-static void print_error(FILE *notes, const struct rfade_error *error)
+void rfade_print_error(FILE *notes, const struct rfade_error *error)
 {
     (void)fputs("routefade: ", notes);
     if (error->file[0] != '\0' && error->line > 0)
@@ -132,6 +131,6 @@ enum rfade_exit rfade_program(int argc, char **argv, FILE *output, FILE *notes)
         return run.file_refused ? RFADE_EXIT_PARTLY : RFADE_EXIT_DONE;
     if (error.what[0] == '\0') /* a layer that gave no words */
         (void)rfade_error_set(&error, status, NULL, "%s", rfade_status_text(status));
-    print_error(notes, &error);
+    rfade_print_error(notes, &error);
     return status == RFADE_USAGE ? RFADE_EXIT_USAGE : RFADE_EXIT_FAILED;
 }
