@@ -7,6 +7,7 @@
 #include <string.h>
 
 #include "cli/command.h"
+#include "cli/time_option.h"
 #include "output/drive_log.h"
 #include "routefade/simulate.h"
 
@@ -21,7 +22,7 @@ struct simulate_options {
     struct rfade_numbers standstill_at_m;
     double standstill_s;
     double position_scatter_m, fix_interval_s;
-    const char *layout;
+    const char *start, *layout;
     int64_t zone_minutes;
     const char *vehicle, *channel, *second_channel;
     double second_carrier_hz, second_mean_level_dbm;
@@ -46,6 +47,7 @@ static const struct simulate_options defaults = {
     .standstill_s = 30,
     .position_scatter_m = 0,
     .fix_interval_s = 1,
+    .start = "2027-01-12T20:00:00Z",
     .layout = "comma",
     .zone_minutes = 60,
     .vehicle = "spreader-1",
@@ -109,6 +111,8 @@ static const struct rfade_option options[] = {
      "a new position so often, default 1"},
     {"seed", "N", RFADE_OPTION_INTEGER, TARGET(seed), 1, 4294967295, NULL,
      "the same seed and settings give the same digits, default 1"},
+    {"start", "TIME", RFADE_OPTION_TEXT, TARGET(start), 0, 0, NULL,
+     "time of the first reading, default 2027-01-12T20:00:00Z"},
     {"layout", "NAME", RFADE_OPTION_CHOICE, TARGET(layout), 0, 0, layout_name,
      "how the log's columns are laid out, comma if not told"},
     {"zone-minutes", "N", RFADE_OPTION_INTEGER, TARGET(zone_minutes), -840, 840, NULL,
@@ -278,7 +282,11 @@ static enum rfade_status run_simulate(struct rfade_run *run, struct rfade_error 
     size_t count = 0, second_count = 0;
     struct geod_geodesic earth;
     struct geod_geodesicline straight;
+    int64_t start_us = 0;
     enum rfade_status status = check_options(given, error);
+    if (status == RFADE_OK)
+        status =
+            rfade_time_option(&rfade_command_simulate, "start", given->start, &start_us, error);
     if (status != RFADE_OK)
         return status;
     geod_init(&earth, 6378137.0, 1 / 298.257223563);
@@ -299,7 +307,7 @@ static enum rfade_status run_simulate(struct rfade_run *run, struct rfade_error 
         .second_readings = second,
         .count = count,
         .step_db = given->step_db,
-        .start_us = INT64_C(1799784000) * 1000000,
+        .start_us = start_us,
         .zone_minutes = (int)given->zone_minutes,
         .fix_interval_s = given->fix_interval_s,
         .position_scatter_m = given->position_scatter_m,

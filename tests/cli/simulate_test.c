@@ -52,7 +52,7 @@ static void semicolon_layout_has_decimal_commas_and_a_zone(void **state)
     (void)state;
     struct program program = {0};
     RUN(&program, "simulate", "--length-m", "10", "--layout", "semicolon", "--step-db", "0.1",
-        "--zone-minutes", "-210");
+        "--zone-minutes", "-210", "--start", "2027-01-12T21:00:00+01:00");
     assert_int_equal(program.status, 0);
     assert_line(program.output, 0, "local time;lat;lon;speed [km/h];rssi [dBm]\n");
     assert_line(program.output, 1,
@@ -161,6 +161,7 @@ static void what_can_not_be_simulated_is_refused(void **state)
     REFUSED(2, "--second-channel needs --layout blanks", "simulate", "--second-channel", "b");
     REFUSED(2, "settings of a second channel need --second-channel", "simulate",
             "--second-carrier-hz", "460e6");
+    REFUSED(2, "option --start needs a time such as", "simulate", "--start", "tonight");
     REFUSED(2, "option --k needs a number from 0", "simulate", "--k", "-1");
     REFUSED(2, "option --seed needs a whole number from 1", "simulate", "--seed", "0");
     REFUSED(2, "option --layout needs one of comma, semicolon, blanks, not 'tabs'", "simulate",

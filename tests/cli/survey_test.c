@@ -94,6 +94,31 @@ static void channel_refuses_what_can_not_be(void **state)
     REFUSED(1, "no channel 'b'", "channel", "b", "--survey", fixture->survey);
 }
 
+static void vehicle_lists_its_calibrations(void **state)
+{
+    const struct fixture *fixture = *state;
+    DONE("vehicle", "plough-2", "--offset-db", "1.5", "--from", "2027-01-12", "--survey",
+         fixture->survey);
+    DONE("vehicle", "plough-2", "--offset-db", "-0.5", "--offset-uncertainty-db", "0.3",
+         "--survey", fixture->survey);
+    json_t *list = JSON_OF("vehicle", "--survey", fixture->survey);
+    assert_int_equal(json_array_size(list), 2);
+    json_t *first = json_array_get(list, 0), *second = json_array_get(list, 1);
+    assert_true(json_is_null(json_object_get(first, "from")));
+    assert_true(json_real_value(json_object_get(first, "offset_db")) == -0.5);
+    assert_true(json_real_value(json_object_get(first, "offset_uncertainty_db")) == 0.3);
+    assert_string_equal(json_string_value(json_object_get(second, "from")),
+                        "2027-01-12T00:00:00Z");
+    assert_true(json_real_value(json_object_get(second, "offset_db")) == 1.5);
+    json_decref(list);
+    REFUSED(1, "spreader-9", "vehicle", "spreader-9", "--survey", fixture->survey);
+    REFUSED(2, "a calibration needs --offset-db", "vehicle", "a", "--from", "2027-01-12",
+            "--survey", fixture->survey);
+    REFUSED(2, "give NAME", "vehicle", "--offset-db", "1", "--survey", fixture->survey);
+    REFUSED(2, "option --from needs a time", "vehicle", "a", "--offset-db", "1", "--from",
+            "yesterday", "--survey", fixture->survey);
+}
+
 static void status_counts(void **state)
 {
     const struct fixture *fixture = *state;
@@ -107,7 +132,7 @@ static void status_counts(void **state)
 }
 
 /* Commands that only read a survey, which none of the files below is. */
-static const char *const readers[] = {"channel", "status"};
+static const char *const readers[] = {"channel", "vehicle", "status"};
 enum { READERS = sizeof readers / sizeof readers[0] };
 
 static void assert_no_survey(const char *path, const char *part)
@@ -172,6 +197,7 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test_setup_teardown(channel_keeps_what_was_told, setup, teardown),
         cmocka_unit_test_setup_teardown(channel_refuses_what_can_not_be, setup, teardown),
+        cmocka_unit_test_setup_teardown(vehicle_lists_its_calibrations, setup, teardown),
         cmocka_unit_test_setup_teardown(status_counts, setup, teardown),
         cmocka_unit_test_setup_teardown(files_that_are_no_survey_are_left_alone, setup,
                                         teardown),
