@@ -85,7 +85,7 @@ RFADE_API enum rfade_status rfade_fit_bins(const struct rfade_model *model,
  * The bins of a tally, in key order; weights scaled so that they sum to the number of
  * readings. free() the array.
  */
-RFADE_API enum rfade_status rfade_bins_from_tally(struct rfade_tally *tally,
+RFADE_API enum rfade_status rfade_bins_from_tally(const struct rfade_tally *tally,
                                                   struct rfade_bin **bins, size_t *bin_count);
 
 /** How a plain column of levels was quantised and clipped. */

@@ -72,7 +72,7 @@ struct rfade_model {
 
     /**
      * Parameter whose power has the normalised variance var(y)/mean(y)^2 (moment estimate),
-     * clamped to the domain. NULL for a model without parameter.
+     * clamped to [fit_min, parameter_max]. NULL for a model without parameter.
      */
     double (*from_normalised_variance)(double normalised_variance);
 

@@ -133,7 +133,7 @@ static enum rfade_status quantile(double m, double lower, double upper, double *
 /* m is the inverse normalised variance by definition (Nakagami 1960). */
 static double from_normalised_variance(double normalised_variance)
 {
-    return fmin(fmax(1.0 / normalised_variance, m_min), m_max);
+    return fmin(fmax(1.0 / normalised_variance, m_fit_min), m_max);
 }
 
 static double normalised_variance(double m)
