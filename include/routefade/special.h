@@ -65,7 +65,7 @@ struct rfade_bessel_ratio {
 
 /**
  * Ratio of the modified Bessel functions of orders 1 and 0.
- * z <= 2: power series (AMS 55, 9.6.10); z < 20: moments of 1 - cos under the weight
+ * z <= 2: power series (AMS 55, 9.6.10); z < 25: moments of 1 - cos under the weight
  * exp(z cos), trapezoidal rule on 9.6.16; above: the expansion in 1/z that satisfies the
  * equation dr/dz = 1 - r/z - r^2.
  * @param z  >= 0, infinity allowed

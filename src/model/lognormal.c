@@ -4,6 +4,7 @@
  * sigma_db (Rec. ITU-R P.1057). The location of this model is the mean of the dB values.
  */
 #include <gsl/gsl_math.h>
+#include <gsl/gsl_sf_erf.h>
 #include <stddef.h>
 
 #include "model/model.h"
@@ -79,13 +80,13 @@ static struct rfade_interval_end interval_end(double sigma_db, double x_db)
         return rfade_interval_end_at_infinity(x_db > 0.0);
     }
     const double z = x_db / sigma_db;
-    struct rfade_interval_end end;
-    (void)rfade_normal_tails(z, &end.tails);
-    end.log_density = log_density_at(sigma_db, z);
-    /* d P / d sigma = -z density, at fixed x */
-    end.d_log_lower = -z * exp(end.log_density - end.tails.log_lower);
-    end.d_log_upper = z * exp(end.log_density - end.tails.log_upper);
-    return end;
+    const bool is_upper = z > 0.0;
+    struct rfade_tails both;
+    gsl_sf_result hazard; /* density over the small tail, of the standardised level */
+    (void)rfade_normal_tails(z, &both);
+    (void)gsl_sf_hazard_e(fabs(z), &hazard);
+    const double d_mean_db = (is_upper ? 1.0 : -1.0) * hazard.val / sigma_db;
+    return rfade_interval_end_from(&both, is_upper, d_mean_db, z * d_mean_db);
 }
 
 static enum rfade_status log_interval(double sigma_db, double low_db, double high_db,

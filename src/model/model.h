@@ -43,20 +43,25 @@ static inline struct rfade_log_gradient rfade_log_gradient_nan(void)
     return (struct rfade_log_gradient){NAN, NAN, NAN};
 }
 
-/** One end of an interval: tails, density per dB, and slopes of the log tails. */
+/** One end of an interval: ln of both tails with their slopes. */
 struct rfade_interval_end {
-    struct rfade_tails tails;
-    double log_density; /**< -inf at an infinite end */
-    double d_log_lower; /**< d ln lower / d parameter */
-    double d_log_upper; /**< d ln upper / d parameter */
+    struct rfade_log_gradient lower;
+    struct rfade_log_gradient upper;
 };
 
 /** An end at infinity, of the given sign. */
 struct rfade_interval_end rfade_interval_end_at_infinity(bool positive);
 
 /**
- * ln of the probability between two ends whose tails differ clearly, on the small side; the
- * mean moves the density along, so d/d mean is the difference of the densities.
+ * An end from one tail, whichever was computed, that tail's slopes, and both logarithms:
+ * slopes of lower and upper are opposite, and so are in ratio of the tails to each other.
+ */
+struct rfade_interval_end rfade_interval_end_from(const struct rfade_tails *tails,
+                                                  bool is_upper, double d_mean_db,
+                                                  double d_parameter);
+
+/**
+ * ln of the probability between two ends whose tails differ clearly, on the small side.
  */
 struct rfade_log_gradient rfade_interval_from_ends(const struct rfade_interval_end *low,
                                                    const struct rfade_interval_end *high);

@@ -36,7 +36,7 @@ static enum rfade_status tails(double m, double x_db, struct rfade_tails *result
         *result = rfade_tails_nan();
         return RFADE_DOMAIN;
     }
-    *result = rfade_gamma_tails_at(m, rfade_log_ratio(x_db), NULL);
+    *result = rfade_gamma_tails_at(m, rfade_log_ratio(x_db));
     return RFADE_OK;
 }
 
@@ -91,14 +91,12 @@ static struct rfade_interval_end interval_end(double m, double x_db)
     if (isinf(x_db)) {
         return rfade_interval_end_at_infinity(x_db > 0.0);
     }
-    const double log_y = rfade_log_ratio(x_db);
-    struct rfade_gamma_gradient gradient;
-    struct rfade_interval_end end;
-    end.tails = rfade_gamma_tails_at(m, log_y, &gradient);
-    end.log_density = log_density_at_mean(m) - m * rfade_exp_excess(log_y);
-    end.d_log_lower = gradient.d_log_lower;
-    end.d_log_upper = gradient.d_log_upper;
-    return end;
+    const struct rfade_gamma_scaled scaled = rfade_gamma_scaled(m, rfade_log_ratio(x_db));
+    const struct rfade_scaled_tail *tail = &scaled.tail;
+    const struct rfade_tails both = rfade_tails_from_scaled(tail, exp(tail->exponent));
+    const double share = exp(log_density_at_mean(m) - tail->log_factor);
+    return rfade_interval_end_from(&both, tail->is_upper, tail->is_upper ? share : -share,
+                                   scaled.slope);
 }
 
 static enum rfade_status log_interval(double m, double low_db, double high_db,

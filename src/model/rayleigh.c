@@ -3,20 +3,22 @@
  * Rayleigh fading: power over its mean is exponential, P(y <= x) = 1 - exp(-x)
  * (Lord Rayleigh 1880; Rec. ITU-R P.1057). Closed forms throughout.
  */
+#include <gsl/gsl_math.h>
 #include <stddef.h>
 
 #include "model/model.h"
+#include "special/tails.h"
 
 static enum rfade_status tails(double parameter, double x_db, struct rfade_tails *result)
 {
     (void)parameter;
     if (!rfade_level_valid(x_db)) {
-        *result = (struct rfade_tails){NAN, NAN, NAN, NAN};
+        *result = rfade_tails_nan();
         return RFADE_DOMAIN;
     }
     const double y = exp(rfade_log_ratio(x_db));
-    const double lower = -expm1(-y);
-    *result = (struct rfade_tails){lower, exp(-y), log(lower), -y};
+    *result = y > M_LN2 ? rfade_tails_from(exp(-y), -y, true)
+                        : rfade_tails_from(-expm1(-y), log(-expm1(-y)), false);
     return RFADE_OK;
 }
 
@@ -50,7 +52,8 @@ static enum rfade_status log_interval(double parameter, double low_db, double hi
                                    : y * expm1(rfade_log_ratio(high_db - low_db));
     /* d/expm1(d) has the limits 1 and 0, which the quotient reaches as 0/0 and inf/inf. */
     const double quotient = d > 700.0 ? 0.0 : d > 0.0 ? d / expm1(d) : 1.0;
-    result->value = log(-expm1(-d)) - y;
+    const double log_rest = d > M_LN2 ? log1p(-exp(-d)) : log(-expm1(-d));
+    result->value = log_rest - y;
     result->d_mean_db = RFADE_LN_PER_DB * (y - quotient);
     result->d_parameter = 0.0;
     return RFADE_OK;

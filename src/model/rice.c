@@ -162,24 +162,30 @@ static struct rfade_interval_end interval_end(double k, double a, double x_db)
     }
     const struct point point = point_at(k, a, x_db);
     const struct rfade_bessel_pair bessel = rfade_bessel_pair(a * point.b);
-    struct rfade_interval_end end;
-    (void)tails(k, x_db, &end.tails);
-    end.log_density = log_density_base(&point) + log(bessel.i0_scaled);
-    const double slope = tail_slope(k, a, &point, &bessel) * bessel.i0_scaled;
-    const double exponent = -0.5 * point.offset * point.offset;
-    end.d_log_lower = -slope * exp(exponent - end.tails.log_lower);
-    end.d_log_upper = slope * exp(exponent - end.tails.log_upper);
-    return end;
+    const struct rfade_scaled_tail tail = rfade_marcum_scaled(a, point.b, point.offset);
+    const struct rfade_tails both =
+        rfade_tails_from_scaled(&tail, rfade_exp_half_square(point.offset));
+    /* density and dQ1/dK over the tail: exp(-offset^2/2) stands in both */
+    const double share = bessel.i0_scaled * exp(-tail.log_factor);
+    const double d_mean_db = 0.5 * RFADE_LN_PER_DB * point.b * point.b * share;
+    const double d_parameter = tail_slope(k, a, &point, &bessel) * share;
+    return tail.is_upper ? rfade_interval_end_from(&both, true, d_mean_db, d_parameter)
+                         : rfade_interval_end_from(&both, false, -d_mean_db, -d_parameter);
 }
 
-/* How far ln density can move over half the interval: |slope| <= 2 + b |offset| / 2. */
+/*
+ * How far ln density can move over half the interval: |slope| <= 2 + b |b - a| / 2. Below a
+ * the product is greatest half way, at b = a/2.
+ */
 static double half_variation(double a, const struct point *middle, double width_db)
 {
     const double half_width = 0.5 * RFADE_LN_PER_DB * width_db;
     const double step = expm1(0.5 * half_width);
     const double b_high = middle->b * (1.0 + step);
     const double b_low = middle->b / (1.0 + step);
-    const double drift = fmax(b_high * fabs(b_high - a), b_low * fabs(b_low - a));
+    const double half_way = fmin(fmax(0.5 * a, b_low), b_high);
+    const double drift = fmax(b_high * fabs(b_high - a),
+                              fmax(b_low * fabs(b_low - a), half_way * (a - half_way)));
     return half_width * (2.0 + 0.5 * drift);
 }
 

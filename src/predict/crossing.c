@@ -7,6 +7,7 @@
  * mean power, is pi/sqrt(1 + K) (Rice, direct ray across the road) or pi/sqrt(m) (Nakagami:
  * Yacoub, Bautista and Guedes, IEEE Trans. Vehicular Technology 48 (1999)).
  */
+#include <gsl/gsl_math.h>
 #include <math.h>
 
 #include "routefade/stretch.h"

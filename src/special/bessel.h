@@ -5,7 +5,7 @@
 
 struct rfade_bessel_pair {
     double i0_scaled;   /**< exp(-z) I0(z), relative 1e-15 */
-    double complement;  /**< 1 - I1(z)/I0(z), relative 1e-15 (1 + z) up to 20, 1e-15 above */
+    double complement;  /**< 1 - I1(z)/I0(z), relative 1e-15 (1 + z) up to 25, 1e-15 above */
     double half_excess; /**< 1 - 2 I1(z)/(z I0(z)), likewise; exact in its limit at z = 0 */
 };
 

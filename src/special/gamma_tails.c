@@ -16,7 +16,6 @@
 #include <stddef.h>
 
 #include "special/gauss_legendre.h"
-#include "special/tails.h"
 
 /* What lies beyond exp(-42) of the integrand's start is below 1e-18 of the integral. */
 static const double negligible_exponent = 42.0;
@@ -28,7 +27,7 @@ static const double smallest_shape = 0.1;
 static const double largest_shape = 1e6;
 
 /* A tail over exp(-m phi) sqrt(m / 2 pi) / Gamma*(m), and d ln of that ratio / d m. */
-struct scaled_tail {
+struct integral {
     double value;
     double slope;
 };
@@ -41,7 +40,7 @@ double rfade_log_gamma_star(double shape)
 }
 
 /* 1/m (1 + x/(m+1) + x^2/((m+1)(m+2)) + ...), AMS 55 6.5.29. */
-static struct scaled_tail lower_series(double m, double y)
+static struct integral lower_series(double m, double y)
 {
     const double x = m * y;
     double term = 1.0;
@@ -54,7 +53,7 @@ static struct scaled_tail lower_series(double m, double y)
         sum += term;
         slope += term * term_slope;
     }
-    return (struct scaled_tail){sum / m, slope / sum - 1.0 / m};
+    return (struct integral){sum / m, slope / sum - 1.0 / m};
 }
 
 /* A length beyond which m h(t) exceeds the negligible exponent; h as at the top. */
@@ -76,7 +75,7 @@ static double tail_length(double m, double y, bool is_upper)
     return t;
 }
 
-static struct scaled_tail tail_quadrature(double m, double y, bool is_upper)
+static struct integral tail_quadrature(double m, double y, bool is_upper)
 {
     const double length = tail_length(m, y, is_upper);
     const double sign = is_upper ? 1.0 : -1.0;
@@ -92,49 +91,38 @@ static struct scaled_tail tail_quadrature(double m, double y, bool is_upper)
             sum_h += term * h;
         }
     }
-    return (struct scaled_tail){0.5 * length * sum, -sum_h / sum};
+    return (struct integral){0.5 * length * sum, -sum_h / sum};
 }
 
-static void gradient_from(const struct rfade_tails *tails, double slope, bool is_upper,
-                          struct rfade_gamma_gradient *gradient)
+struct rfade_gamma_scaled rfade_gamma_scaled(double shape, double log_ratio)
 {
-    if (is_upper) {
-        gradient->d_log_upper = slope;
-        gradient->d_log_lower = -slope * tails->upper / tails->lower;
-    } else {
-        gradient->d_log_lower = slope;
-        gradient->d_log_upper = -slope * tails->lower / tails->upper;
-    }
+    const double y = exp(log_ratio);
+    const double phi = rfade_exp_excess(log_ratio);
+    /* Below y = 1 or x = 1 the upper tail is at least a fortieth: no loss from 1 - lower. */
+    const bool is_upper = log_ratio > 0.0 && shape * y > 1.0;
+    const struct integral integral = !is_upper && shape < series_shape_limit
+                                         ? lower_series(shape, y)
+                                         : tail_quadrature(shape, y, is_upper);
+    const double log_gamma_star = rfade_log_gamma_star(shape);
+    double log_minus_psi = NAN;
+    (void)rfade_log_minus_psi(shape, &log_minus_psi, NULL);
+    struct rfade_gamma_scaled result;
+    result.tail.is_upper = is_upper;
+    result.tail.exponent = -shape * phi;
+    result.tail.factor = sqrt(shape / (2.0 * M_PI)) * integral.value * exp(-log_gamma_star);
+    result.tail.log_factor = log(result.tail.factor);
+    result.slope = log_minus_psi - phi + integral.slope;
+    return result;
 }
 
-struct rfade_tails rfade_gamma_tails_at(double shape, double log_ratio,
-                                        struct rfade_gamma_gradient *gradient)
+struct rfade_tails rfade_gamma_tails_at(double shape, double log_ratio)
 {
     if (isinf(log_ratio)) {
-        if (gradient != NULL) {
-            *gradient = (struct rfade_gamma_gradient){0.0, 0.0};
-        }
         return log_ratio < 0.0 ? (struct rfade_tails){0.0, 1.0, -INFINITY, 0.0}
                                : (struct rfade_tails){1.0, 0.0, 0.0, -INFINITY};
     }
-    const double y = exp(log_ratio);
-    const double exponent = -shape * rfade_exp_excess(log_ratio);
-    /* Below y = 1 or x = 1 the upper tail is at least a fortieth: no loss from 1 - lower. */
-    const bool is_upper = log_ratio > 0.0 && shape * y > 1.0;
-    const struct scaled_tail scaled = !is_upper && shape < series_shape_limit
-                                          ? lower_series(shape, y)
-                                          : tail_quadrature(shape, y, is_upper);
-    const double log_gamma_star = rfade_log_gamma_star(shape);
-    const double factor = sqrt(shape / (2.0 * M_PI)) * scaled.value * exp(-log_gamma_star);
-    const struct rfade_tails tails =
-        rfade_tails_from(exp(exponent) * factor, exponent + log(factor), is_upper);
-    if (gradient != NULL) {
-        double log_minus_psi = NAN;
-        (void)rfade_log_minus_psi(shape, &log_minus_psi, NULL);
-        const double slope = log_minus_psi - rfade_exp_excess(log_ratio) + scaled.slope;
-        gradient_from(&tails, slope, is_upper, gradient);
-    }
-    return tails;
+    const struct rfade_gamma_scaled scaled = rfade_gamma_scaled(shape, log_ratio);
+    return rfade_tails_from_scaled(&scaled.tail, exp(scaled.tail.exponent));
 }
 
 enum rfade_status rfade_gamma_tails(double shape, double x, struct rfade_tails *tails)
@@ -145,6 +133,6 @@ enum rfade_status rfade_gamma_tails(double shape, double x, struct rfade_tails *
     }
     const double difference = (x - shape) / shape;
     const double log_ratio = fabs(difference) < 0.5 ? log1p(difference) : log(x) - log(shape);
-    *tails = rfade_gamma_tails_at(shape, log_ratio, NULL);
+    *tails = rfade_gamma_tails_at(shape, log_ratio);
     return RFADE_OK;
 }

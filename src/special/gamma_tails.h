@@ -3,19 +3,22 @@
 #ifndef ROUTEFADE_SPECIAL_GAMMA_TAILS_H
 #define ROUTEFADE_SPECIAL_GAMMA_TAILS_H
 
-#include "routefade/special.h"
+#include "special/tails.h"
 
-struct rfade_gamma_gradient {
-    double d_log_lower; /**< d ln lower / d shape, log_ratio held */
-    double d_log_upper; /**< d ln upper / d shape, log_ratio held */
+/** The tail that was computed, and d ln tail / d shape with log_ratio held. */
+struct rfade_gamma_scaled {
+    struct rfade_scaled_tail tail;
+    double slope;
 };
 
 /**
- * As rfade_gamma_tails() at x = shape exp(log_ratio), without loss near log_ratio = 0;
- * no checks; log_ratio may be infinite. `gradient` may be NULL.
+ * One tail at x = shape exp(log_ratio), log_ratio finite, without loss near log_ratio = 0:
+ * the small one, or the lower one where it is at most 0.98. No checks.
  */
-struct rfade_tails rfade_gamma_tails_at(double shape, double log_ratio,
-                                        struct rfade_gamma_gradient *gradient);
+struct rfade_gamma_scaled rfade_gamma_scaled(double shape, double log_ratio);
+
+/** As rfade_gamma_tails(), likewise; log_ratio may be infinite. */
+struct rfade_tails rfade_gamma_tails_at(double shape, double log_ratio);
 
 /** ln of Gamma(shape) over Stirling's formula sqrt(2 pi / shape) (shape/e)^shape. */
 double rfade_log_gamma_star(double shape);

@@ -17,7 +17,6 @@
 #include <stdbool.h>
 
 #include "special/gauss_legendre.h"
-#include "special/tails.h"
 
 /* What lies beyond exp(-42) of the integrand's start is below 1e-18 of the integral. */
 static const double negligible_exponent = 42.0;
@@ -40,7 +39,7 @@ static double mean_integrand(double a, double b, double slope, double sign, doub
         for (int side = -1; side <= 1; side += 2) {
             const double share = 0.5 * (1.0 + side * rule->node[i]);
             const double t = length * share;
-            const double relative = 1.0 + sign * t / b;
+            const double relative = 1.0 + sign * (length / b) * share;
             sum += 0.5 * rule->weight[i] * relative * exp(-t * (slope + 0.5 * t)) *
                    i0_scaled(a * b * relative);
         }
@@ -48,29 +47,41 @@ static double mean_integrand(double a, double b, double slope, double sign, doub
     return sum;
 }
 
+struct rfade_scaled_tail rfade_marcum_scaled(double a, double b, double offset)
+{
+    struct rfade_scaled_tail tail;
+    /* The median lies between a^2 + 2 ln 2 (a = 0) and a^2 + 1 (a large). */
+    tail.is_upper = offset * (a + b) > 1.2;
+    const double slope = tail.is_upper ? offset : -offset;
+    double length =
+        2.0 * negligible_exponent / (slope + sqrt(slope * slope + 2.0 * negligible_exponent));
+    if (!tail.is_upper && length > b) {
+        length = b;
+    }
+    const double mean = mean_integrand(a, b, slope, tail.is_upper ? 1.0 : -1.0, length);
+    tail.exponent = -0.5 * offset * offset;
+    tail.factor = b * length * mean;
+    tail.log_factor = log(b) + log(length) + log(mean);
+    return tail;
+}
+
 struct rfade_tails rfade_marcum_tails_at(double a, double b, double offset)
 {
     if (a == 0.0) {
         /* P1(0, b) = 1 - exp(-b^2/2) */
-        const double lower = -expm1(-0.5 * b * b);
+        const double exponent = -0.5 * b * b;
+        if (exponent < -M_LN2) {
+            return rfade_tails_from(rfade_exp_half_square(b), exponent, true);
+        }
+        const double lower = -expm1(exponent);
         const double log_lower = b < 1e-8 ? 2.0 * log(b) - M_LN2 : log(lower);
-        return (struct rfade_tails){lower, rfade_exp_half_square(b), log_lower, -0.5 * b * b};
+        return rfade_tails_from(lower, log_lower, false);
     }
     if (b == 0.0) {
         return (struct rfade_tails){0.0, 1.0, -INFINITY, 0.0};
     }
-    /* The median lies between a^2 + 2 ln 2 (a = 0) and a^2 + 1 (a large). */
-    const bool is_upper = offset * (a + b) > 1.2;
-    const double slope = is_upper ? offset : -offset;
-    double length =
-        2.0 * negligible_exponent / (slope + sqrt(slope * slope + 2.0 * negligible_exponent));
-    if (!is_upper && length > b) {
-        length = b;
-    }
-    const double mean = mean_integrand(a, b, slope, is_upper ? 1.0 : -1.0, length);
-    const double tail = rfade_exp_half_square(offset) * b * length * mean;
-    const double log_tail = -0.5 * offset * offset + (log(b) + log(length) + log(mean));
-    return rfade_tails_from(tail, log_tail, is_upper);
+    const struct rfade_scaled_tail tail = rfade_marcum_scaled(a, b, offset);
+    return rfade_tails_from_scaled(&tail, rfade_exp_half_square(offset));
 }
 
 enum rfade_status rfade_marcum_tails(double a, double b, struct rfade_tails *tails)

@@ -11,6 +11,13 @@ struct rfade_tails rfade_tails_from(double tail, double log_tail, bool is_upper)
     return (struct rfade_tails){tail, 1.0 - tail, log_tail, log1p(-tail)};
 }
 
+struct rfade_tails rfade_tails_from_scaled(const struct rfade_scaled_tail *tail,
+                                           double exp_exponent)
+{
+    return rfade_tails_from(exp_exponent * tail->factor, tail->exponent + tail->log_factor,
+                            tail->is_upper);
+}
+
 struct rfade_tails rfade_tails_nan(void)
 {
     return (struct rfade_tails){NAN, NAN, NAN, NAN};

@@ -10,6 +10,21 @@
 /** All four fields from the small tail, its logarithm, and which one it is. */
 struct rfade_tails rfade_tails_from(double tail, double log_tail, bool is_upper);
 
+/**
+ * A tail as exp(exponent) * factor, so that ratios of tails and densities of one exponent
+ * keep their accuracy however small both are.
+ */
+struct rfade_scaled_tail {
+    bool is_upper;
+    double exponent;
+    double factor; /**< > 0, unless it underflows */
+    double log_factor;
+};
+
+/** All four fields from a scaled tail and exp(exponent). */
+struct rfade_tails rfade_tails_from_scaled(const struct rfade_scaled_tail *tail,
+                                           double exp_exponent);
+
 /** All fields NaN: what a failure leaves behind. */
 struct rfade_tails rfade_tails_nan(void);
 

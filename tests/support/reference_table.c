@@ -105,3 +105,16 @@ void reference_assert_close(const struct reference_table *table, const char *wha
                  table->line, what, actual, expected, fabs(actual / expected - 1.0));
     }
 }
+
+void reference_assert_column(const struct reference_table *table, const char *column,
+                             double actual, double relative)
+{
+    const double expected = reference_number(table, column);
+    const double range_end = 1e-300;
+    if (fabs(expected) >= range_end) {
+        reference_assert_close(table, column, actual, expected, relative);
+    } else if (!(fabs(actual) <= 1.001 * range_end)) {
+        fail_msg("%s:%zu: %s is %.17g, not %s", table->file_name, table->line, column, actual,
+                 reference_text(table, column));
+    }
+}

@@ -41,4 +41,11 @@ double reference_number(const struct reference_table *table, const char *column)
 void reference_assert_close(const struct reference_table *table, const char *what,
                             double actual, double expected, double relative);
 
+/**
+ * Likewise against a column; what the column has below 1e-300 in magnitude, near the end of
+ * the range of doubles, must only be as small.
+ */
+void reference_assert_column(const struct reference_table *table, const char *column,
+                             double actual, double relative);
+
 #endif
