@@ -35,30 +35,48 @@ struct rfade_receiver {
 };
 
 struct rfade_separate_settings {
-    double wavelength_m;
-    double window_wavelengths; /**< width of the local mean's window of travel; default 40 */
-    double block_wavelengths;  /**< length of the blocks that measure correlation */
+    double wavelength_m;       /**< [1e-3, 1e4] */
+    double window_wavelengths; /**< width of the local mean's window of travel, [4, 2000];
+                                    RFADE_DEFAULT_WINDOW_WAVELENGTHS [Lee 1985] */
+    double block_wavelengths;  /**< length of the blocks that measure correlation, [1, 1e5];
+                                    RFADE_DEFAULT_BLOCK_WAVELENGTHS */
 };
+#define RFADE_DEFAULT_WINDOW_WAVELENGTHS 40.0
+#define RFADE_DEFAULT_BLOCK_WAVELENGTHS 10.0
 
-/** Integer sums from which the sampling is judged; they add over traversals. */
+/** How many lengths, each twice the one before, the movement of the local mean is seen over:
+ * window/16, window/8, window/4 and window/2. */
+enum { RFADE_SAMPLING_SCALES = 4 };
+
+/**
+ * Integer sums from which the sampling is judged; they add over traversals. Products are
+ * weighted by travel: mm cdB^2. In a pass whose level is held, everything below `travel_mm`
+ * is about the updates alone, and the rows between them are left out of the tallies.
+ */
 struct rfade_sampling_sums {
     int64_t readings;         /**< rows, standing ones too */
-    int64_t standing;         /**< rows without travel */
+    int64_t standing;         /**< rows without travel since the one before */
+    int64_t held;             /**< rows of passes whose level is held between updates */
     int64_t moving_intervals; /**< steps from one row to the next with travel */
     int64_t updates;          /**< of these, how many changed the level */
     int64_t jump_square_cdb2; /**< sum of squared level changes at updates */
     int64_t step_square_cdb2; /**< sum over updates of the quantisation step squared */
     int64_t travel_mm;
-    int64_t windows_mm;     /**< sum over readings of their window's travel */
-    int64_t window_updates; /**< sum over readings of the updates in their window */
-    int64_t window_count;   /**< readings that had a window */
-    int64_t lag_product; /**< sum of products of fast fading (cdB^2) half a wavelength apart */
-    int64_t lag_square;  /**< sum of squares at the first of each such pair */
-    int64_t lag_pairs;
-    int64_t
-        half_window_difference_cdb2; /**< sum of squared differences of adjacent half windows */
-    int64_t half_windows;
-    int64_t wavelength_um_readings; /**< sum over readings of the wavelength in micrometres */
+    int64_t window_count;           /**< readings that had a window */
+    int64_t windows_mm;             /**< sum over them of their window's travel */
+    int64_t window_readings;        /**< sum over them of the readings in their window */
+    int64_t wavelength_um_readings; /**< sum over them of the wavelength, micrometres */
+    int64_t near_square; /**< squared level differences half a wavelength (or a bit) on */
+    int64_t near_mm;
+    int64_t far_square; /**< the same two wavelengths on */
+    int64_t far_mm;
+    int64_t fading_sum;    /**< fast fading: mm cdB */
+    int64_t fading_square; /**< fast fading: mm cdB^2 */
+    int64_t fading_mm;
+    /** Squared second differences of three adjacent means, by scale, out to 20 windows
+     * beyond the segment on either side (so they overlap from segment to segment). */
+    int64_t curvature_square[RFADE_SAMPLING_SCALES];
+    int64_t curvature_mm[RFADE_SAMPLING_SCALES];
 };
 
 enum rfade_sampling {
@@ -72,7 +90,22 @@ enum rfade_sampling {
 
 /** Fixed lower-case word: "resolved", "inseparable", ... */
 RFADE_API const char *rfade_sampling_name(enum rfade_sampling sampling);
+
+/** What the sums say; the rules and their figures stand in sampling_label.c. */
 RFADE_API enum rfade_sampling rfade_sampling_label(const struct rfade_sampling_sums *sums);
+
+/** Adds sign (1 or -1) times `other`; RFADE_OVERFLOW and RFADE_DOMAIN leave `sums` as is. */
+RFADE_API enum rfade_status rfade_sampling_merge(struct rfade_sampling_sums *sums,
+                                                 const struct rfade_sampling_sums *other,
+                                                 int sign);
+
+/** The members in their order as little-endian int64, nothing else. free() it. */
+RFADE_API enum rfade_status rfade_sampling_encode(const struct rfade_sampling_sums *sums,
+                                                  uint8_t **bytes, size_t *size);
+
+/** RFADE_INPUT, and all 0, if the size is not that of the sums. */
+RFADE_API enum rfade_status rfade_sampling_decode(const uint8_t *bytes, size_t size,
+                                                  struct rfade_sampling_sums *sums);
 
 /** What one traversal of one segment gave. Owned by the list. */
 struct rfade_traversal_tally {
@@ -92,9 +125,16 @@ struct rfade_separation {
 };
 
 /**
- * Separates one pass. Windows are centred on each reading, by travel; where the pass begins
- * or ends they are cut. The local mean is the travel-weighted mean POWER of the window.
- * A run of readings in one segment makes one traversal.
+ * Separates one pass. Each reading weighs the halves of the gaps of travel to its neighbours,
+ * each half at most half a wavelength: a vehicle that stands adds nothing, and readings far
+ * apart count evenly. Windows are centred on each reading, by travel; where the pass begins
+ * or ends they are cut. The local mean is the weighted mean POWER of the window; a censored
+ * reading enters it with the level that was reported. A run of readings in one segment makes
+ * one traversal; the window reaches over the segment's ends, the blocks do not.
+ * @param readings  [count], travel never falling; at most 1e10 mm of travel, levels within
+ *                  240 dB of each other
+ * @return RFADE_OK | RFADE_DOMAIN | RFADE_NO_DATA (no readings) | RFADE_NO_MEMORY |
+ *         RFADE_OVERFLOW; on failure `result` is empty
  */
 RFADE_API enum rfade_status rfade_separate(const struct rfade_track_reading *readings,
                                            size_t count, const struct rfade_receiver *receiver,
@@ -103,14 +143,26 @@ RFADE_API enum rfade_status rfade_separate(const struct rfade_track_reading *rea
 RFADE_API void rfade_separation_clear(struct rfade_separation *separation);
 
 /**
- * Share of the power's variance that dividing by a local mean over the window takes away:
- * var(window mean)/var(power) under Clarke's correlation J0^2 [Clarke 1968; Lee 1985].
+ * Share of the power's normalised variance that dividing by the local mean of a centred
+ * window takes away, under Rice fading with isotropic scatter [Clarke 1968] and the direct
+ * ray across the road: to first order in 1/window, third moments included. Not the same as
+ * var(window mean)/var(power): for Rayleigh fading it is about twice that.
+ * @param window_wavelengths  [4, 2000]
+ * @param k                   Rice K, [0, 1e9]
+ * @return the share, or NaN outside the domain
+ * Accuracy of the integrals 1e-10; the expansion is good to about a tenth of the share.
  */
 RFADE_API double rfade_window_narrowing(double window_wavelengths, double k);
 
 /**
- * Variance of the mean power over a stretch, relative to the mean power squared, under
- * Rice fading with isotropic scatter: what makes the segment's local mean uncertain.
+ * Variance of the mean power over a stretch, relative to the mean power squared:
+ * (2/L) integral from 0 to L of (1 - u/L) [J0(2 pi u)^2 + 2K J0(2 pi u)]/(1 + K)^2 du,
+ * under Rice fading with isotropic scatter and the direct ray across the road
+ * [Clarke 1968; Lee 1985]: what makes the segment's local mean uncertain.
+ * @param length_wavelengths  L > 0
+ * @param k                   Rice K, [0, 1e9]
+ * @return the variance, or NaN outside the domain
+ * Accuracy: relative 1e-9 up to 1000 wavelengths, 2e-5 beyond.
  */
 RFADE_API double rfade_stretch_mean_variance(double length_wavelengths, double k);
 

@@ -1,0 +1,163 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/*
+ * Means over travel against quadrature in 20 digits: mpmath 1.3.0, mp.dps = 20, mp.quad over
+ * panels of half a wavelength, J = besselj(0, 2*pi*u), s = 1/(1+K):
+ *   variance(L) = 2/L quad((1 - u/L)(s^2 J^2 + 2 K s^2 J), 0..L)
+ *   narrowing(W), with means j1 and j2 of J and J^2 over 0..W/2, a = K s, V = s^2 (1 + 2K):
+ *   [2((4 a^2 s + 8 a s^2) j1 + (4 a s^2 + 4 s^3) j2) - 2 (1 + V)(2 a s j1 + s^2 j2)
+ *    - (1 + V) variance(W)]/V
+ * The rows of 3000 wavelengths: numpy 1.24, 24 Gauss-Legendre points a panel, scipy j0.
+ */
+#include <gsl/gsl_errno.h>
+#include <math.h>
+#include <setjmp.h>
+#include <stdarg.h>
+#include <stddef.h>
+#include <stdint.h>
+#include <stdlib.h>
+
+#include <cmocka.h>
+
+#include "routefade/separate.h"
+#include "simulate/drives.h"
+
+struct row {
+    double length_wavelengths;
+    double k;
+    double expected;
+    double relative_tolerance;
+};
+
+static const struct row variances[] = {
+    {0.1, 0.0, 0.968056588174781, 1e-12},       {0.1, 10.0, 0.170597502002819, 1e-12},
+    {1.0, 0.0, 0.354028365581582, 1e-12},       {7.3, 1.0, 0.0407989962120929, 1e-12},
+    {40.0, 0.0, 0.0181957970790985, 1e-12},     {40.0, 10.0, 0.0014655231863862, 1e-12},
+    {152.4, 1.0, 0.00246060467135349, 1e-12},   {1000.0, 0.0, 0.00105397228983593, 1e-12},
+    {3000.0, 0.0, 0.0003884283291434218, 2e-5}, {3000.0, 10.0, 2.0747882433343935e-05, 2e-5}};
+
+static const struct row narrowings[] = {
+    {4.0, 0.0, 0.274391456262333, 1e-12},     {4.0, 10.0, 0.0671061506210772, 1e-12},
+    {20.0, 1.0, 0.0384703711570606, 1e-12},   {40.0, 0.0, 0.039460401065434, 1e-12},
+    {40.0, 1.0, 0.0211396771178354, 1e-12},   {40.0, 4.0, 0.0127255584898745, 1e-12},
+    {40.0, 10.0, 0.00970476564290633, 1e-12}, {100.0, 10.0, 0.00419441836769003, 1e-12}};
+
+static void variance_of_a_stretch_matches_quadrature(void **state)
+{
+    (void)state;
+    for (size_t i = 0; i < sizeof variances / sizeof variances[0]; i++) {
+        const struct row *row = &variances[i];
+        double value = rfade_stretch_mean_variance(row->length_wavelengths, row->k);
+
+        assert_true(fabs(value / row->expected - 1.0) <= row->relative_tolerance);
+    }
+}
+
+static void narrowing_matches_quadrature(void **state)
+{
+    (void)state;
+    for (size_t i = 0; i < sizeof narrowings / sizeof narrowings[0]; i++) {
+        const struct row *row = &narrowings[i];
+        double value = rfade_window_narrowing(row->length_wavelengths, row->k);
+
+        assert_true(fabs(value / row->expected - 1.0) <= row->relative_tolerance);
+    }
+}
+
+static void outside_the_domain_is_nan(void **state)
+{
+    (void)state;
+    assert_true(isnan(rfade_stretch_mean_variance(0.0, 1.0)));
+    assert_true(isnan(rfade_stretch_mean_variance(NAN, 1.0)));
+    assert_true(isnan(rfade_stretch_mean_variance(10.0, -1.0)));
+    assert_true(isnan(rfade_window_narrowing(3.9, 1.0)));
+    assert_true(isnan(rfade_window_narrowing(2001.0, 1.0)));
+    assert_true(isnan(rfade_window_narrowing(40.0, NAN)));
+}
+
+/* A stretch that is next to nothing has the variance of the power itself. */
+static void a_short_stretch_has_the_variance_of_power(void **state)
+{
+    (void)state;
+    assert_true(fabs(rfade_stretch_mean_variance(1e-6, 0.0) - 1.0) < 1e-9);
+    assert_true(fabs(rfade_stretch_mean_variance(1e-6, 4.0) - 9.0 / 25.0) < 1e-9);
+}
+
+/* Sums of a power and of the same divided by the mean of a window around it. */
+struct moments {
+    double plain[2];
+    double divided[2];
+    double count;
+};
+
+static double normalised_variance(const double sum[2], double count)
+{
+    return count * sum[1] / (sum[0] * sum[0]) - 1.0;
+}
+
+static void add_windows(const struct rfade_drive_reading *readings, size_t count, size_t half,
+                        struct moments *moments)
+{
+    double window = 0.0;
+    double width = 2.0 * (double)half + 1.0;
+
+    for (size_t i = 0; i < count; i++) {
+        window += pow(10.0, readings[i].power_dbm / 10.0);
+        if (i > 2 * half) {
+            double power = pow(10.0, readings[i - half].power_dbm / 10.0);
+            double ratio;
+
+            window -= pow(10.0, readings[i - 2 * half - 1].power_dbm / 10.0);
+            ratio = power * width / window;
+            moments->plain[0] += power;
+            moments->plain[1] += power * power;
+            moments->divided[0] += ratio;
+            moments->divided[1] += ratio * ratio;
+            moments->count += 1.0;
+        }
+    }
+}
+
+/* Simulated drives of 400 wavelengths, divided by a mean over 40, ten readings in each. */
+static void check_narrowing_by_simulation(double k)
+{
+    struct rfade_drive_settings settings = plain_drive();
+    struct moments moments = {.count = 0.0};
+    double share;
+
+    settings.length_m = 400.0;
+    settings.mean_level_dbm = 0.0;
+    settings.k = &k;
+    for (settings.seed = 1; settings.seed <= 300; settings.seed++) {
+        struct rfade_drive_reading *readings;
+        size_t count;
+
+        assert_int_equal(rfade_simulate_drive(&settings, &readings, &count), RFADE_OK);
+        add_windows(readings, count, 200, &moments);
+        free(readings);
+    }
+    share = 1.0 - normalised_variance(moments.divided, moments.count) /
+                      normalised_variance(moments.plain, moments.count);
+    assert_true(fabs(share / rfade_window_narrowing(40.0, k) - 1.0) < 0.2);
+}
+
+static void narrowing_is_what_drives_show(void **state)
+{
+    (void)state;
+    check_narrowing_by_simulation(0.0);
+    check_narrowing_by_simulation(1.0);
+    check_narrowing_by_simulation(4.0);
+}
+
+int main(void)
+{
+    const struct CMUnitTest tests[] = {
+        cmocka_unit_test(variance_of_a_stretch_matches_quadrature),
+        cmocka_unit_test(narrowing_matches_quadrature),
+        cmocka_unit_test(outside_the_domain_is_nan),
+        cmocka_unit_test(a_short_stretch_has_the_variance_of_power),
+        cmocka_unit_test(narrowing_is_what_drives_show),
+    };
+
+    gsl_set_error_handler_off();
+    return cmocka_run_group_tests(tests, NULL, NULL);
+}
