@@ -184,6 +184,7 @@ static enum rfade_status prepare(struct job *job, const struct import_options *g
         status = rfade_name_check(RFADE_NAMED_CAMPAIGN, given->campaign, error);
     if (status == RFADE_OK && given->channel)
         status = rfade_name_check(RFADE_NAMED_CHANNEL, given->channel, error);
+    /* NOLINTNEXTLINE(bugprone-sizeof-expression): an array of pointers */
     job->maps = calloc(given->columns.count + 1, sizeof *job->maps);
     if (status == RFADE_OK && !job->maps)
         status = rfade_error_set(error, RFADE_NO_MEMORY, NULL, "out of memory");

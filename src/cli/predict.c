@@ -50,8 +50,7 @@ static const struct rfade_option options[] = {
 
 /* What was typed, made into numbers. */
 struct link {
-    bool unfaded;
-    const struct rfade_model *model; /* of the fast fading; NULL if unfaded */
+    const struct rfade_model *model; /* of the fast fading; NULL: unfaded */
     double parameter;                /* K or m; NaN if there is none */
     double shadowing_db;
     double mean_snr_db;   /* over everything */
@@ -67,7 +66,6 @@ static enum rfade_status take_fading(const struct predict_options *given, struct
         return rfade_usage(error, &rfade_command_predict,
                            "give one of --unfaded, --rayleigh, --rice-k, --rice-k-db, "
                            "--nakagami-m");
-    link->unfaded = given->unfaded;
     if (given->rayleigh)
         link->model = rfade_model(RFADE_RAYLEIGH);
     if (!isnan(given->rice_k) || !isnan(given->rice_k_db)) {
@@ -113,7 +111,7 @@ static enum rfade_status outage_of(const struct link *link, double threshold_db,
     struct rfade_tails tails;
     enum rfade_status status = RFADE_OK;
     *outage = NAN;
-    if (!link->unfaded)
+    if (link->model)
         status = rfade_outage(link->model, link->parameter, link->shadowing_db, x_db, &tails);
     else if (link->shadowing_db > 0)
         status = rfade_model(RFADE_LOGNORMAL)->tails(link->shadowing_db, x_db, &tails);
@@ -129,13 +127,13 @@ static enum rfade_status outage_of(const struct link *link, double threshold_db,
 
 static const char *fading_name(const struct link *link)
 {
-    return link->unfaded ? "unfaded" : link->model->name;
+    return link->model ? link->model->name : "unfaded";
 }
 
 static json_t *fading_json(const struct link *link)
 {
     json_t *fading = json_pack("{s:s}", "model", fading_name(link));
-    if (link->unfaded || !link->model->parameter_name)
+    if (!link->model || !link->model->parameter_name)
         return fading;
     return rfade_json_join(fading, json_pack("{s:o}", link->model->parameter_name,
                                              rfade_json_number(link->parameter)));

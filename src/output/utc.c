@@ -6,8 +6,12 @@
 
 void rfade_utc_text(int64_t time_us, char text[RFADE_UTC_SIZE])
 {
-    int64_t second = time_us / 1000000 - (time_us % 1000000 < 0);
-    int fraction_us = (int)(time_us - second * 1000000);
+    int fraction_us = (int)(time_us % 1000000);
+    int64_t second = time_us / 1000000;
+    if (fraction_us < 0) { /* before 1970 */
+        fraction_us += 1000000;
+        second--;
+    }
     time_t seconds = (time_t)second;
     struct tm parts;
     char stamp[RFADE_UTC_SIZE];
