@@ -4,10 +4,17 @@
 
 #include "cli/command.h"
 
+/* In the order of the help, one a line. */
+/* clang-format off */
 static const struct rfade_command *const commands[] = {
-    &rfade_command_import, &rfade_command_channel,  &rfade_command_vehicle,
-    &rfade_command_status, &rfade_command_simulate,
+    &rfade_command_import,
+    &rfade_command_channel,
+    &rfade_command_vehicle,
+    &rfade_command_status,
+    &rfade_command_estimate,
+    &rfade_command_simulate,
 };
+/* clang-format on */
 
 const struct rfade_command *rfade_command_at(size_t index)
 {
