@@ -10,8 +10,10 @@ static const struct rfade_command *const commands[] = {
     &rfade_command_import,
     &rfade_command_channel,
     &rfade_command_vehicle,
+    &rfade_command_route,
     &rfade_command_status,
     &rfade_command_estimate,
+    &rfade_command_predict,
     &rfade_command_simulate,
 };
 /* clang-format on */

@@ -2,7 +2,6 @@
 #include "output/drive_log.h"
 
 #include <errno.h>
-#include <geodesic.h>
 #include <gsl/gsl_randist.h>
 #include <gsl/gsl_rng.h>
 #include <inttypes.h>
@@ -14,22 +13,17 @@
 
 #include "output/rows.h"
 
-/* WGS 84's defining parameters (NIMA TR8350.2, table 3.1). */
-static const double wgs84_equatorial_radius_m = 6378137.0;
-static const double wgs84_flattening = 1 / 298.257223563;
-
 enum { ROW_SIZE = 256, LEVEL_DECIMALS_WITHOUT_STEP = 6 };
 
 struct writer {
     const struct rfade_drive_log *log;
     FILE *stream;
     gsl_rng *generator;
-    struct geod_geodesic earth;
     int level_decimals;
     bool whole_ms; /* every time is a whole millisecond */
     bool new_fix;  /* the row brings a new position */
     double next_fix_s;
-    double latitude_deg, longitude_deg;
+    struct rfade_place fix;
 };
 
 /* Decimals that a multiple of the step needs, at most three. */
@@ -65,13 +59,11 @@ static void take_fix(struct writer *writer, const struct rfade_drive_reading *re
     if (!writer->new_fix)
         return;
     writer->next_fix_s += log->fix_interval_s;
-    double latitude_deg, longitude_deg;
-    log->line.locate(log->line.context, reading->distance_m, &latitude_deg, &longitude_deg);
+    struct rfade_place place = log->line.locate(log->line.context, reading->distance_m);
     double north_m = gsl_ran_gaussian(writer->generator, log->position_scatter_m);
     double east_m = gsl_ran_gaussian(writer->generator, log->position_scatter_m);
-    geod_direct(&writer->earth, latitude_deg, longitude_deg,
-                atan2(east_m, north_m) * 180 / acos(-1.0), hypot(north_m, east_m),
-                &writer->latitude_deg, &writer->longitude_deg, NULL);
+    writer->fix = rfade_geodesic_direct(&place, atan2(east_m, north_m) * 180 / acos(-1.0),
+                                        hypot(north_m, east_m));
 }
 
 /* Calendar time with its fraction: "2027-01-12", "20:00:00", "250" or "250000". */
@@ -98,8 +90,8 @@ static void comma_row(struct writer *writer, size_t index, char row[ROW_SIZE])
     char date[16], clock[16], fraction[8], position[48] = ",";
     calendar(writer, time_us(log, index), "%Y-%m-%d", date, clock, fraction);
     if (writer->new_fix)
-        (void)snprintf(position, sizeof position, "%.7f,%.7f", writer->latitude_deg,
-                       writer->longitude_deg);
+        (void)snprintf(position, sizeof position, "%.7f,%.7f", writer->fix.latitude_deg,
+                       writer->fix.longitude_deg);
     (void)snprintf(row, ROW_SIZE, "%sT%s.%sZ,%s,%.2f,%.64s,%.64s,%.*f\n", date, clock, fraction,
                    position, log->readings[index].speed_m_s * 3.6, log->vehicle, log->channel,
                    writer->level_decimals, log->readings[index].level_dbm);
@@ -114,7 +106,7 @@ static void semicolon_row(struct writer *writer, size_t index, char row[ROW_SIZE
              date, clock, fraction);
     (void)snprintf(row, ROW_SIZE, "%s %s,%s %c%02d%02d;%.7f;%.7f;%.1f;%.*f\n", date, clock,
                    fraction, log->zone_minutes < 0 ? '-' : '+', zone / 60, zone % 60,
-                   writer->latitude_deg, writer->longitude_deg,
+                   writer->fix.latitude_deg, writer->fix.longitude_deg,
                    log->readings[index].speed_m_s * 3.6, writer->level_decimals,
                    log->readings[index].level_dbm);
     for (char *at = row; *at; at++)
@@ -131,8 +123,8 @@ static void blanks_row(struct writer *writer, size_t index, char row[ROW_SIZE])
         (void)snprintf(second, sizeof second, " %8.*f", writer->level_decimals,
                        log->second_readings[index].level_dbm);
     (void)snprintf(row, ROW_SIZE, "%.*f  %.7f  %.7f  %5.1f  %8.*f%s\n",
-                   writer->whole_ms ? 0 : 3, (double)us / 1e3, writer->latitude_deg,
-                   writer->longitude_deg, log->readings[index].speed_m_s * 3.6,
+                   writer->whole_ms ? 0 : 3, (double)us / 1e3, writer->fix.latitude_deg,
+                   writer->fix.longitude_deg, log->readings[index].speed_m_s * 3.6,
                    writer->level_decimals, log->readings[index].level_dbm, second);
 }
 
@@ -181,7 +173,6 @@ enum rfade_status rfade_drive_log_write(FILE *stream, const char *stream_name,
                             .stream = stream,
                             .level_decimals = decimals_of_step(log->step_db),
                             .whole_ms = all_whole_ms(log)};
-    geod_init(&writer.earth, wgs84_equatorial_radius_m, wgs84_flattening);
     writer.generator = gsl_rng_alloc(gsl_rng_mt19937);
     if (!writer.generator)
         return rfade_error_set(error, RFADE_NO_MEMORY, NULL, "out of memory");

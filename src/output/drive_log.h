@@ -7,6 +7,7 @@
 #include <stdio.h>
 
 #include "common/error.h"
+#include "route/geodesy.h"
 #include "routefade/simulate.h"
 
 /** How a log lays out its columns. */
@@ -16,10 +17,9 @@ enum rfade_log_layout {
     RFADE_LAYOUT_BLANKS     /**< runs of blanks, no header, epoch in ms, one or two channels */
 };
 
-/** Where the vehicle is after `distance_m` of travel; degrees, WGS 84. */
+/** Where the vehicle is after `distance_m` of travel. */
 struct rfade_drive_line {
-    void (*locate)(const void *context, double distance_m, double *latitude_deg,
-                   double *longitude_deg);
+    struct rfade_place (*locate)(const void *context, double distance_m);
     const void *context;
 };
 
