@@ -87,29 +87,18 @@ static enum rfade_status driven_places(struct rfade_survey *survey, const char *
                                        struct rfade_place **places, size_t *place_count,
                                        struct rfade_error *error)
 {
-    struct rfade_survey_fix *fixes = NULL;
     struct rfade_position *positions = NULL;
     size_t count = 0;
     int64_t id = 0;
     enum rfade_status status =
         rfade_name_require(survey, RFADE_NAMED_VEHICLE, vehicle, &id, error);
     if (status == RFADE_OK)
-        status = rfade_survey_fixes(survey, id, INT64_MIN, INT64_MAX, &fixes, &count, error);
-    if (status == RFADE_OK) {
-        positions = calloc(count + 1, sizeof *positions);
-        if (!positions)
-            status = rfade_error_set(error, RFADE_NO_MEMORY, NULL, "out of memory");
-    }
-    for (size_t i = 0; status == RFADE_OK && i < count; i++)
-        positions[i] = (struct rfade_position){.time_us = fixes[i].time_us,
-                                               .latitude_deg = fixes[i].latitude_deg,
-                                               .longitude_deg = fixes[i].longitude_deg,
-                                               .speed_m_s = fixes[i].speed_m_s};
+        status =
+            rfade_survey_fixes(survey, id, INT64_MIN, INT64_MAX, &positions, &count, error);
     if (status == RFADE_OK)
         status =
             rfade_driven_line(positions, count, track_tolerance_m, places, place_count, error);
     free(positions);
-    free(fixes);
     return status;
 }
 
