@@ -1,0 +1,254 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/* Level crossings, the outage of a stretch, and the share observed below a threshold. */
+#include <setjmp.h>
+#include <stdarg.h>
+#include <stddef.h>
+#include <stdint.h>
+
+#include <cmocka.h>
+#include <gsl/gsl_errno.h>
+#include <gsl/gsl_randist.h>
+#include <math.h>
+#include <string.h>
+
+#include "routefade/stretch.h"
+#include "support/reference_table.h"
+
+static void assert_near(double actual, double expected, double tolerance)
+{
+    if (!(fabs(actual - expected) <= tolerance))
+        fail_msg("%.17g is not within %g of %.17g", actual, tolerance, expected);
+}
+
+/* N/fd is the rate per wavelength: a Doppler frequency of one is a wavelength a second. */
+static void crossings_match_reference(void **state)
+{
+    (void)state;
+    struct reference_table table;
+    reference_open(&table, "lcr_afd.tsv");
+    while (reference_next(&table)) {
+        const struct rfade_model *model =
+            rfade_model(strcmp(reference_text(&table, "fading"), "Rice") == 0 ? RFADE_RICE
+                                                                              : RFADE_NAKAGAMI);
+        double parameter = reference_number(&table, "par"), crossings = NAN;
+        double level_db = reference_number(&table, "level_dB");
+        assert_int_equal(rfade_crossings_per_wavelength(model, parameter, level_db, &crossings),
+                         RFADE_OK);
+        reference_assert_column(&table, "N_over_fd", crossings, 1e-12);
+        struct rfade_tails tails;
+        assert_int_equal(model->tails(parameter, level_db, &tails), RFADE_OK);
+        reference_assert_column(&table, "duration_times_fd", tails.lower / crossings, 1e-12);
+    }
+}
+
+static void rayleigh_crossings_are_those_of_rice_without_a_ray(void **state)
+{
+    (void)state;
+    double rayleigh = NAN, rice = NAN;
+    assert_int_equal(
+        rfade_crossings_per_wavelength(rfade_model(RFADE_RAYLEIGH), NAN, -7.0, &rayleigh),
+        RFADE_OK);
+    assert_int_equal(rfade_crossings_per_wavelength(rfade_model(RFADE_RICE), 0.0, -7.0, &rice),
+                     RFADE_OK);
+    assert_near(rayleigh, rice, 1e-13);
+}
+
+static void crossings_of_lognormal_are_refused(void **state)
+{
+    (void)state;
+    double crossings = 0.0;
+    assert_int_equal(
+        rfade_crossings_per_wavelength(rfade_model(RFADE_LOGNORMAL), 4.0, 0.0, &crossings),
+        RFADE_DOMAIN);
+    assert_true(isnan(crossings));
+}
+
+static const struct rfade_local_mean level_track[] = {{-90.0, 3.0}};
+static const struct rfade_local_mean stepped_track[] = {{-90.0, 3.0}, {-100.0, 1.0}};
+
+static struct rfade_stretch rayleigh_stretch(const struct rfade_local_mean *track, size_t count)
+{
+    return (struct rfade_stretch){.model = rfade_model(RFADE_RAYLEIGH),
+                                  .parameter = NAN,
+                                  .parameter_low = NAN,
+                                  .parameter_high = NAN,
+                                  .track = track,
+                                  .track_count = count,
+                                  .length_wavelengths = 150.0,
+                                  .passes = 1.0,
+                                  .level_uncertainty_db = 0.3,
+                                  .confidence = 0.95};
+}
+
+/* P = 1 - exp(-threshold/mean): Rayleigh power is exponential. */
+static double exponential(double threshold_dbm, double mean_dbm)
+{
+    return -expm1(-pow(10.0, (threshold_dbm - mean_dbm) / 10.0));
+}
+
+static void stretch_averages_over_the_track(void **state)
+{
+    (void)state;
+    struct rfade_stretch stretch = rayleigh_stretch(stepped_track, 2);
+    struct rfade_stretch_outage outage;
+    assert_int_equal(rfade_stretch_outage(&stretch, -100.0, &outage), RFADE_OK);
+    double expected = 0.75 * exponential(-100, -90) + 0.25 * exponential(-100, -100);
+    assert_near(outage.outage, expected, 1e-13);
+    stretch.offset_db = 0.5;
+    assert_int_equal(rfade_stretch_outage(&stretch, -99.5, &outage), RFADE_OK);
+    assert_near(outage.outage, expected, 1e-13);
+}
+
+/* With Rayleigh fading on a level track only the mean is uncertain: the ends are exact. */
+static void interval_follows_the_mean_level(void **state)
+{
+    (void)state;
+    struct rfade_stretch stretch = rayleigh_stretch(level_track, 1);
+    struct rfade_stretch_outage outage;
+    assert_int_equal(rfade_stretch_outage(&stretch, -100.0, &outage), RFADE_OK);
+    double shift_db = 1.959963984540054 * 0.3; /* normal quantile of 0.975, AMS 55 table 26.5 */
+    assert_near(outage.low, exponential(-100, -90 + shift_db), 1e-12);
+    assert_near(outage.high, exponential(-100, -90 - shift_db), 1e-12);
+}
+
+static void nothing_uncertain_gives_no_width(void **state)
+{
+    (void)state;
+    struct rfade_stretch stretch = rayleigh_stretch(level_track, 1);
+    stretch.model = rfade_model(RFADE_RICE);
+    stretch.parameter = stretch.parameter_low = stretch.parameter_high = 4.0;
+    stretch.level_uncertainty_db = 0.0;
+    struct rfade_stretch_outage outage;
+    assert_int_equal(rfade_stretch_outage(&stretch, -100.0, &outage), RFADE_OK);
+    assert_near(outage.low, outage.outage, 1e-15);
+    assert_near(outage.high, outage.outage, 1e-15);
+    stretch.parameter_low = 3.0; /* fades more, so the upper end moves */
+    assert_int_equal(rfade_stretch_outage(&stretch, -100.0, &outage), RFADE_OK);
+    assert_near(outage.low, outage.outage, 1e-15);
+    assert_true(outage.high > outage.outage * 1.1);
+}
+
+enum { DRAWS = 200000 };
+
+/* Draws the travel below the threshold as a Poisson number of exponential fades, with GSL's
+ * generators, and asks which share of the draws the prediction interval leaves on each side. */
+static void prediction_interval_holds_drawn_fades(void **state)
+{
+    (void)state;
+    struct rfade_stretch stretch = rayleigh_stretch(level_track, 1);
+    stretch.level_uncertainty_db = 0.0;
+    struct rfade_stretch_outage outage;
+    assert_int_equal(rfade_stretch_outage(&stretch, -100.0, &outage), RFADE_OK);
+    double fades = outage.crossings_per_wavelength * stretch.length_wavelengths;
+    double length = outage.outage / fades;
+    gsl_rng *random = gsl_rng_alloc(gsl_rng_mt19937);
+    int below = 0, above = 0;
+    for (int i = 0; i < DRAWS; i++) {
+        unsigned count = gsl_ran_poisson(random, fades);
+        double fraction = count ? gsl_ran_gamma(random, count, length) : 0.0;
+        below += fraction < outage.next_low;
+        above += fraction > outage.next_high;
+    }
+    gsl_rng_free(random);
+    /* 0.025 on each side; four standard errors of the count. */
+    double error = 4.0 * sqrt(0.025 * 0.975 / DRAWS);
+    assert_near((double)below / DRAWS, 0.025, error);
+    assert_near((double)above / DRAWS, 0.025, error);
+}
+
+static void rare_fades_may_not_come(void **state)
+{
+    (void)state;
+    struct rfade_stretch stretch = rayleigh_stretch(level_track, 1);
+    struct rfade_stretch_outage outage;
+    assert_int_equal(rfade_stretch_outage(&stretch, -135.0, &outage), RFADE_OK);
+    assert_true(outage.outage > 0.0 && outage.next_low == 0.0);
+    assert_int_equal(rfade_stretch_outage(&stretch, -80.0, &outage), RFADE_OK);
+    assert_true(outage.outage < 1.0 && outage.next_high > 0.9999);
+}
+
+static void useless_stretches_are_refused(void **state)
+{
+    (void)state;
+    struct rfade_stretch_outage outage;
+    struct rfade_stretch stretch = rayleigh_stretch(level_track, 0);
+    assert_int_equal(rfade_stretch_outage(&stretch, -100.0, &outage), RFADE_NO_DATA);
+    assert_true(isnan(outage.outage));
+    stretch = rayleigh_stretch(level_track, 1);
+    assert_int_equal(rfade_stretch_outage(&stretch, NAN, &outage), RFADE_DOMAIN);
+    stretch.length_wavelengths = 0.0;
+    assert_int_equal(rfade_stretch_outage(&stretch, -100.0, &outage), RFADE_DOMAIN);
+    stretch = rayleigh_stretch(level_track, 1);
+    stretch.confidence = 1.0;
+    assert_int_equal(rfade_stretch_outage(&stretch, -100.0, &outage), RFADE_DOMAIN);
+}
+
+static void add(struct rfade_tally *levels, enum rfade_tally_kind kind, int32_t step_cdb,
+                int32_t centre_cdb, int64_t weight)
+{
+    const struct rfade_tally_key key = {step_cdb, (int32_t)kind, centre_cdb, 0};
+    assert_int_equal(rfade_tally_add(levels, &key, weight, 1), RFADE_OK);
+}
+
+/* 1 dB steps at -100, -101 and -102 dBm, and a floor below -102.5. */
+static struct rfade_tally *floored_levels(void)
+{
+    struct rfade_tally *levels = NULL;
+    assert_int_equal(rfade_tally_create(&levels), RFADE_OK);
+    add(levels, RFADE_INTERVAL, 100, -10000, 40);
+    add(levels, RFADE_INTERVAL, 100, -10100, 30);
+    add(levels, RFADE_INTERVAL, 100, -10200, 20);
+    add(levels, RFADE_BELOW, 0, -10250, 10);
+    return levels;
+}
+
+static void observed_share_splits_the_step(void **state)
+{
+    (void)state;
+    struct rfade_tally *levels = floored_levels();
+    struct rfade_observed observed;
+    assert_int_equal(rfade_observed_below(levels, -100.5, &observed), RFADE_OK);
+    assert_near(observed.fraction, 0.6, 1e-15);
+    assert_near(observed.low, 0.6, 1e-15);
+    assert_near(observed.high, 0.6, 1e-15);
+    assert_int_equal(rfade_observed_below(levels, -100.75, &observed), RFADE_OK);
+    assert_near(observed.fraction, 0.3 + 0.3 * 0.75, 1e-15);
+    assert_near(observed.low, 0.3, 1e-15);
+    assert_near(observed.high, 0.6, 1e-15);
+    rfade_tally_destroy(levels);
+}
+
+static void observed_share_below_the_floor_is_bounds(void **state)
+{
+    (void)state;
+    struct rfade_tally *levels = floored_levels();
+    struct rfade_observed observed;
+    assert_int_equal(rfade_observed_below(levels, -110.0, &observed), RFADE_OK);
+    assert_true(isnan(observed.fraction));
+    assert_near(observed.low, 0.0, 0.0);
+    assert_near(observed.high, 0.1, 1e-15);
+    assert_int_equal(rfade_observed_below(levels, NAN, &observed), RFADE_DOMAIN);
+    rfade_tally_destroy(levels);
+    assert_int_equal(rfade_tally_create(&levels), RFADE_OK);
+    assert_int_equal(rfade_observed_below(levels, -110.0, &observed), RFADE_NO_DATA);
+    rfade_tally_destroy(levels);
+}
+
+int main(void)
+{
+    gsl_set_error_handler_off();
+    const struct CMUnitTest tests[] = {
+        cmocka_unit_test(crossings_match_reference),
+        cmocka_unit_test(rayleigh_crossings_are_those_of_rice_without_a_ray),
+        cmocka_unit_test(crossings_of_lognormal_are_refused),
+        cmocka_unit_test(stretch_averages_over_the_track),
+        cmocka_unit_test(interval_follows_the_mean_level),
+        cmocka_unit_test(nothing_uncertain_gives_no_width),
+        cmocka_unit_test(prediction_interval_holds_drawn_fades),
+        cmocka_unit_test(rare_fades_may_not_come),
+        cmocka_unit_test(useless_stretches_are_refused),
+        cmocka_unit_test(observed_share_splits_the_step),
+        cmocka_unit_test(observed_share_below_the_floor_is_bounds),
+    };
+    return cmocka_run_group_tests(tests, NULL, NULL);
+}
