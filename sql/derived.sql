@@ -15,6 +15,7 @@ CREATE TABLE trace (
     located_count INTEGER NOT NULL,   -- with a place on the route
     step_db REAL NOT NULL,            -- the channel's, or found in the data
     step_found INTEGER NOT NULL CHECK (step_found IN (0, 1)),
+    wavelength_m REAL NOT NULL,
     fingerprint BLOB NOT NULL
 ) STRICT;
 CREATE INDEX trace_by_channel ON trace (route_id, vehicle_id, channel_id, campaign_id, start_us);
@@ -28,8 +29,8 @@ CREATE TABLE traversal (
     end_us INTEGER NOT NULL,
     reading_count INTEGER NOT NULL,
     travel_m REAL NOT NULL,
-    fading_tally BLOB NOT NULL,
     level_uncertainty_db REAL NOT NULL, -- of the vehicle's calibration
+    fading_tally BLOB NOT NULL,
     level_tally BLOB NOT NULL,
     local_mean_tally BLOB NOT NULL,
     blocks BLOB NOT NULL,

@@ -1,5 +1,5 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-/** @file rows.h  The rows of a statement as an array. Private to src/survey. */
+/** @file rows.h  The rows of a statement as an array. */
 #ifndef ROUTEFADE_SURVEY_ROWS_H
 #define ROUTEFADE_SURVEY_ROWS_H
 

@@ -1,0 +1,223 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "analyse/results.h"
+
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "survey/rows.h"
+
+static const char *const ROWS_SQL =
+    "SELECT fading.fading_id, route.name, channel.name, campaign.name, sampling,"
+    " segment.number, from_m, to_m, pass_count, reading_count, travel_m, wavelength_m,"
+    " effective_count, mean_power_dbm, local_mean_dbm, local_sigma_db, local_sigma_low_db,"
+    " local_sigma_high_db, window_noise_db, level_uncertainty_db, channel.noise_floor_dbm,"
+    " channel.bandwidth_hz, channel.noise_figure_db, channel.symbol_rate_hz,"
+    " fading.level_tally, fading.local_mean_tally"
+    " FROM fading JOIN segment USING (segment_id) JOIN route USING (route_id)"
+    " JOIN channel USING (channel_id) JOIN campaign USING (campaign_id)"
+    " WHERE (?1 IS NULL OR route.name = ?1) AND (?2 IS NULL OR channel.name = ?2)"
+    " AND (?3 IS NULL OR campaign.name = ?3) AND (?4 = 0 OR segment.number = ?4)"
+    " AND (?5 IS NULL OR to_m > ?5) AND (?6 IS NULL OR from_m < ?6)"
+    " ORDER BY route.name, segment.number, channel.name, campaign.name";
+
+static const char *const FITS_SQL =
+    "SELECT model, preferred, offset_db, parameter, parameter_low, parameter_high, weight,"
+    " goodness_p FROM fit WHERE fading_id = ?1 ORDER BY model";
+
+/* Boltzmann's constant (SI, exact) times 290 K, in mW/Hz: the usual reference temperature of
+ * a noise figure (IEEE Std 161). */
+static const double THERMAL_MW_PER_HZ = 1.380649e-23 * 290.0 * 1e3;
+
+static char *column_text(sqlite3_stmt *statement, int column)
+{
+    const unsigned char *text = sqlite3_column_text(statement, column);
+    return text ? strdup((const char *)text) : NULL;
+}
+
+/* NULL if the bytes are no tally. */
+static struct rfade_tally *column_tally(sqlite3_stmt *statement, int column)
+{
+    struct rfade_tally *tally = NULL;
+    const void *bytes = sqlite3_column_blob(statement, column);
+    size_t size = (size_t)sqlite3_column_bytes(statement, column);
+    return rfade_tally_decode(bytes, size, &tally) == RFADE_OK ? tally : NULL;
+}
+
+static double noise_floor(double told_dbm, double bandwidth_hz, double noise_figure_db)
+{
+    if (!isnan(told_dbm))
+        return told_dbm;
+    return 10.0 * log10(THERMAL_MW_PER_HZ * bandwidth_hz) + noise_figure_db;
+}
+
+/* Members that could not be had stay NULL; check_row tells. */
+static void read_row(sqlite3_stmt *statement, void *row)
+{
+    *(struct rfade_segment_result *)row = (struct rfade_segment_result){
+        .fading_id = sqlite3_column_int64(statement, 0),
+        .route = column_text(statement, 1),
+        .channel = column_text(statement, 2),
+        .campaign = column_text(statement, 3),
+        .sampling = column_text(statement, 4),
+        .segment = sqlite3_column_int64(statement, 5),
+        .from_m = rfade_column_real(statement, 6),
+        .to_m = rfade_column_real(statement, 7),
+        .passes = sqlite3_column_int64(statement, 8),
+        .readings = sqlite3_column_int64(statement, 9),
+        .travel_m = rfade_column_real(statement, 10),
+        .wavelength_m = rfade_column_real(statement, 11),
+        .effective_count = rfade_column_real(statement, 12),
+        .mean_power_dbm = rfade_column_real(statement, 13),
+        .local_mean_dbm = rfade_column_real(statement, 14),
+        .local_sigma_db = rfade_column_real(statement, 15),
+        .local_sigma_low_db = rfade_column_real(statement, 16),
+        .local_sigma_high_db = rfade_column_real(statement, 17),
+        .window_noise_db = rfade_column_real(statement, 18),
+        .level_uncertainty_db = rfade_column_real(statement, 19),
+        .noise_floor_dbm =
+            noise_floor(rfade_column_real(statement, 20), rfade_column_real(statement, 21),
+                        rfade_column_real(statement, 22)),
+        .bandwidth_hz = rfade_column_real(statement, 21),
+        .symbol_rate_hz = rfade_column_real(statement, 23),
+        .level = column_tally(statement, 24),
+        .local_mean = column_tally(statement, 25),
+    };
+}
+
+static enum rfade_status check_row(const struct rfade_segment_result *row,
+                                   struct rfade_error *error)
+{
+    if (!row->route || !row->channel || !row->campaign || !row->sampling)
+        return rfade_error_set(error, RFADE_NO_MEMORY, "", "out of memory");
+    if (!row->level || !row->local_mean)
+        return rfade_error_set(error, RFADE_STORAGE, "run `routefade fit --all`",
+                               "a stored tally of route %s, segment %lld can't be read",
+                               row->route, (long long)row->segment);
+    return RFADE_OK;
+}
+
+static void read_fit(sqlite3_stmt *statement, void *fit)
+{
+    const char *name = (const char *)sqlite3_column_text(statement, 0);
+    *(struct rfade_stored_fit *)fit = (struct rfade_stored_fit){
+        .model = rfade_model_by_name(name ? name : ""),
+        .preferred = sqlite3_column_int(statement, 1) != 0,
+        .offset_db = rfade_column_real(statement, 2),
+        .parameter = rfade_column_real(statement, 3),
+        .parameter_low = rfade_column_real(statement, 4),
+        .parameter_high = rfade_column_real(statement, 5),
+        .weight = rfade_column_real(statement, 6),
+        .goodness_p = rfade_column_real(statement, 7),
+    };
+}
+
+static enum rfade_status read_fits(struct rfade_survey *survey,
+                                   struct rfade_segment_result *row, struct rfade_error *error)
+{
+    sqlite3_stmt *statement = NULL;
+    enum rfade_status status =
+        rfade_survey_prepare(survey, &statement, error, FITS_SQL, "i", row->fading_id);
+    if (status == RFADE_OK)
+        status = rfade_rows_read(survey, statement, sizeof *row->fits, read_fit,
+                                 (void **)&row->fits, &row->fit_count, error);
+    return status;
+}
+
+static void clear_row(struct rfade_segment_result *row)
+{
+    free(row->route);
+    free(row->channel);
+    free(row->campaign);
+    free(row->sampling);
+    free(row->fits);
+    rfade_tally_destroy(row->level);
+    rfade_tally_destroy(row->local_mean);
+}
+
+void rfade_results_clear(struct rfade_segment_results *results)
+{
+    for (size_t i = 0; i < results->count; i++)
+        clear_row(&results->rows[i]);
+    free(results->rows);
+    *results = (struct rfade_segment_results){NULL, 0};
+}
+
+/* Refuses a name that the survey does not hold. */
+static enum rfade_status check_name(struct rfade_survey *survey, const char *kind,
+                                    const char *sql, const char *name,
+                                    struct rfade_error *error)
+{
+    if (!name)
+        return RFADE_OK;
+    int64_t ignored = 0;
+    bool found = false;
+    enum rfade_status status =
+        rfade_survey_integer(survey, &ignored, &found, error, sql, "t", name);
+    if (status == RFADE_OK && !found)
+        return rfade_error_set(error, RFADE_INPUT, "see `routefade status` for what it holds",
+                               "the survey holds no %s '%s'", kind, name);
+    return status;
+}
+
+static enum rfade_status check_names(struct rfade_survey *survey,
+                                     const struct rfade_segment_filter *filter,
+                                     struct rfade_error *error)
+{
+    enum rfade_status status = check_name(
+        survey, "route", "SELECT 1 FROM route WHERE name = ?1", filter->route, error);
+    if (status == RFADE_OK)
+        status = check_name(survey, "channel", "SELECT 1 FROM channel WHERE name = ?1",
+                            filter->channel, error);
+    if (status == RFADE_OK)
+        status = check_name(survey, "campaign", "SELECT 1 FROM campaign WHERE name = ?1",
+                            filter->campaign, error);
+    return status;
+}
+
+enum rfade_status rfade_results_read(struct rfade_survey *survey,
+                                     const struct rfade_segment_filter *filter,
+                                     struct rfade_segment_results *results,
+                                     struct rfade_error *error)
+{
+    *results = (struct rfade_segment_results){NULL, 0};
+    sqlite3_stmt *statement = NULL;
+    enum rfade_status status = check_names(survey, filter, error);
+    if (status == RFADE_OK)
+        status = rfade_survey_prepare(survey, &statement, error, ROWS_SQL, "tttidd",
+                                      filter->route, filter->channel, filter->campaign,
+                                      filter->segment, filter->from_m, filter->to_m);
+    if (status == RFADE_OK)
+        status = rfade_rows_read(survey, statement, sizeof *results->rows, read_row,
+                                 (void **)&results->rows, &results->count, error);
+    for (size_t i = 0; i < results->count && status == RFADE_OK; i++) {
+        status = check_row(&results->rows[i], error);
+        if (status == RFADE_OK)
+            status = read_fits(survey, &results->rows[i], error);
+    }
+    if (status != RFADE_OK)
+        rfade_results_clear(results);
+    return status;
+}
+
+const struct rfade_stored_fit *rfade_result_preferred(const struct rfade_segment_result *row)
+{
+    for (size_t i = 0; i < row->fit_count; i++)
+        if (row->fits[i].preferred)
+            return &row->fits[i];
+    return NULL;
+}
+
+const struct rfade_stored_fit *rfade_result_fit(const struct rfade_segment_result *row,
+                                                enum rfade_model_id model)
+{
+    for (size_t i = 0; i < row->fit_count; i++)
+        if (row->fits[i].model && row->fits[i].model->id == model)
+            return &row->fits[i];
+    return NULL;
+}
+
+bool rfade_result_resolved(const struct rfade_segment_result *row)
+{
+    return strcmp(row->sampling, "resolved") == 0;
+}

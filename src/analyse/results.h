@@ -1,0 +1,98 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/** @file results.h  Reads back what `fit` left in the survey, one segment at a time. */
+#ifndef ROUTEFADE_ANALYSE_RESULTS_H
+#define ROUTEFADE_ANALYSE_RESULTS_H
+
+#include <stdbool.h>
+#include <stdint.h>
+
+#include "routefade/model.h"
+#include "routefade/stretch.h"
+#include "routefade/tally.h"
+#include "survey/survey.h"
+
+/** Which segments; NULL, 0 and NaN: all. */
+struct rfade_segment_filter {
+    const char *route;
+    const char *channel;
+    const char *campaign;
+    int64_t segment;
+    double from_m; /**< segments that reach into this stretch of chainage */
+    double to_m;
+};
+
+/** One fitted model as stored. */
+struct rfade_stored_fit {
+    const struct rfade_model *model;
+    bool preferred;
+    double offset_db;
+    double parameter;
+    double parameter_low;
+    double parameter_high;
+    double weight;
+    double goodness_p;
+};
+
+/** One row of `fading` with its fits. Texts and tallies are owned by the row. */
+struct rfade_segment_result {
+    int64_t fading_id;
+    char *route;
+    char *channel;
+    char *campaign;
+    char *sampling;
+    int64_t segment;
+    double from_m;
+    double to_m;
+    int64_t passes;
+    int64_t readings;
+    double travel_m;
+    double wavelength_m;
+    double effective_count;
+    double mean_power_dbm;
+    double local_mean_dbm;
+    double local_sigma_db;
+    double local_sigma_low_db;
+    double local_sigma_high_db;
+    double window_noise_db;
+    double level_uncertainty_db;
+    double noise_floor_dbm; /**< the channel's, told or from bandwidth and noise figure */
+    double bandwidth_hz;
+    double symbol_rate_hz;
+    struct rfade_tally *level;
+    struct rfade_tally *local_mean;
+    struct rfade_stored_fit *fits;
+    size_t fit_count;
+};
+
+struct rfade_segment_results {
+    struct rfade_segment_result *rows; /**< by route, segment, channel, campaign */
+    size_t count;
+};
+
+/**
+ * All results that pass the filter. A name in the filter that the survey doesn't hold is
+ * refused with the names that it does hold.
+ */
+enum rfade_status rfade_results_read(struct rfade_survey *survey,
+                                     const struct rfade_segment_filter *filter,
+                                     struct rfade_segment_results *results,
+                                     struct rfade_error *error);
+void rfade_results_clear(struct rfade_segment_results *results);
+
+/** The preferred fit, or NULL where nothing was fitted. Borrowed from the row. */
+const struct rfade_stored_fit *rfade_result_preferred(const struct rfade_segment_result *row);
+
+/** The fit of one model, or NULL. Borrowed from the row. */
+const struct rfade_stored_fit *rfade_result_fit(const struct rfade_segment_result *row,
+                                                enum rfade_model_id model);
+
+/** Whether the fast fading was told apart, so that K and m may be shown. */
+bool rfade_result_resolved(const struct rfade_segment_result *row);
+
+/** Outage of a row at a level; NaN members where nothing was fitted. */
+enum rfade_status rfade_result_outage(struct rfade_segment_result *row, double threshold_dbm,
+                                      double confidence, struct rfade_stretch_outage *outage,
+                                      struct rfade_observed *observed,
+                                      struct rfade_error *error);
+
+#endif

@@ -1,0 +1,266 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "analyse/trace.h"
+
+#include <math.h>
+#include <stdlib.h>
+
+#include "analyse/receiver.h"
+#include "ingest/sink.h"
+#include "routefade/separate.h"
+#include "survey/read.h"
+
+/* Speed of light in vacuum, m/s (SI, exact); air's index changes a wavelength by 3e-4. */
+static const double LIGHT_M_S = 299792458.0;
+
+static double wavelength_m(const struct rfade_channel *channel)
+{
+    return LIGHT_M_S / channel->carrier_hz;
+}
+
+enum rfade_status rfade_trace_fingerprint(const struct rfade_trace_work *work,
+                                          struct rfade_fingerprint *fingerprint,
+                                          struct rfade_error *error)
+{
+    const struct rfade_outing *outing = work->outing;
+    int64_t margin_us = llround(work->settings->fix_gap_s * 1e6);
+    unsigned char readings[32], fixes[32];
+    enum rfade_status status = rfade_survey_readings_fingerprint(
+        work->survey, outing->vehicle_id, work->stream->channel_id, work->stream->campaign_id,
+        outing->start_us, outing->end_us, readings, error);
+    if (status == RFADE_OK)
+        status = rfade_survey_fixes_fingerprint(work->survey, outing->vehicle_id,
+                                                outing->start_us - margin_us,
+                                                outing->end_us + margin_us, fixes, error);
+    if (status != RFADE_OK)
+        return status;
+    struct rfade_fingerprint_writer writer;
+    rfade_fingerprint_begin(&writer);
+    rfade_analysis_settings_fingerprint(work->settings, &writer);
+    rfade_fingerprint_bytes(&writer, work->route->fingerprint.bytes, RFADE_FINGERPRINT_SIZE);
+    rfade_fingerprint_bytes(&writer, readings, sizeof readings);
+    rfade_fingerprint_bytes(&writer, fixes, sizeof fixes);
+    rfade_fingerprint_integer(&writer, outing->start_us);
+    rfade_fingerprint_integer(&writer, outing->end_us);
+    rfade_fingerprint_number(&writer, work->channel->carrier_hz);
+    rfade_fingerprint_number(&writer, work->channel->step_db);
+    rfade_fingerprint_number(&writer, work->channel->floor_dbm);
+    rfade_fingerprint_number(&writer, work->channel->ceiling_dbm);
+    rfade_fingerprint_number(&writer, work->calibration ? work->calibration->offset_db : NAN);
+    rfade_fingerprint_number(
+        &writer, work->calibration ? work->calibration->offset_uncertainty_db : NAN);
+    *fingerprint = rfade_fingerprint_end(&writer);
+    return RFADE_OK;
+}
+
+/* One trace while it is made: a run of readings without a gap. */
+struct making {
+    const struct rfade_trace_work *work;
+    const struct rfade_drive *drive;
+    const struct rfade_fingerprint *fingerprint;
+    struct rfade_trace_receiver known;
+    struct rfade_track_reading *located; /* room for a whole trace */
+};
+
+static enum rfade_status store_trace(const struct making *making,
+                                     const struct rfade_survey_reading *readings, size_t count,
+                                     size_t repeated, size_t located_count, int64_t *trace_id,
+                                     struct rfade_error *error)
+{
+    const struct rfade_trace_work *work = making->work;
+    enum rfade_status status = rfade_survey_run(
+        work->survey, error,
+        "INSERT INTO trace (route_id, vehicle_id, channel_id, campaign_id, start_us, end_us,"
+        " reading_count, repeated_count, located_count, step_db, step_found, wavelength_m,"
+        " fingerprint) VALUES (?1, ?2, ?3, ?4, ?5, ?6, ?7, ?8, ?9, ?10, ?11, ?12, ?13)",
+        "iiiiiiiiididb", work->route->row.route_id, work->outing->vehicle_id,
+        work->stream->channel_id, work->stream->campaign_id, readings[0].time_us,
+        readings[count - 1].time_us, (int64_t)count, (int64_t)repeated, (int64_t)located_count,
+        making->known.receiver.step_cdb / 100.0, (int64_t)making->known.step_found,
+        wavelength_m(work->channel), (const void *)making->fingerprint->bytes,
+        sizeof making->fingerprint->bytes);
+    *trace_id = sqlite3_last_insert_rowid(rfade_survey_database(work->survey));
+    return status;
+}
+
+/* The byte forms of one traversal's tallies. */
+struct encoded {
+    uint8_t *bytes[5];
+    size_t sizes[5];
+};
+
+static void clear_encoded(struct encoded *encoded)
+{
+    for (size_t i = 0; i < 5; i++)
+        free(encoded->bytes[i]);
+}
+
+static enum rfade_status encode(const struct rfade_traversal_tally *traversal,
+                                struct encoded *encoded)
+{
+    *encoded = (struct encoded){{NULL}, {0}};
+    struct rfade_tally *const tallies[] = {traversal->fading, traversal->level,
+                                           traversal->local_mean};
+    enum rfade_status status = RFADE_OK;
+    for (size_t i = 0; i < 3 && status == RFADE_OK; i++)
+        status = rfade_tally_encode(tallies[i], &encoded->bytes[i], &encoded->sizes[i]);
+    if (status == RFADE_OK)
+        status =
+            rfade_blocks_encode(&traversal->blocks, &encoded->bytes[3], &encoded->sizes[3]);
+    if (status == RFADE_OK)
+        status =
+            rfade_sampling_encode(&traversal->sampling, &encoded->bytes[4], &encoded->sizes[4]);
+    return status;
+}
+
+static enum rfade_status store_traversal(const struct making *making, int64_t trace_id,
+                                         size_t pass,
+                                         const struct rfade_traversal_tally *traversal,
+                                         struct rfade_error *error)
+{
+    struct encoded encoded;
+    enum rfade_status status = encode(traversal, &encoded);
+    if (status != RFADE_OK) {
+        status = rfade_error_set(error, status, "", "a tally can't be stored: %s",
+                                 rfade_status_text(status));
+        goto out;
+    }
+    status = rfade_survey_run(
+        making->work->survey, error,
+        "INSERT INTO traversal (trace_id, segment_id, pass, start_us, end_us, reading_count,"
+        " travel_m, level_uncertainty_db, fading_tally, level_tally, local_mean_tally, blocks,"
+        " sampling) VALUES (?1, ?2, ?3, ?4, ?5, ?6, ?7, ?8, ?9, ?10, ?11, ?12, ?13)",
+        "iiiiiiddbbbbb", trace_id, making->work->route->segments[traversal->segment].segment_id,
+        (int64_t)pass + 1, traversal->first_time_us, traversal->last_time_us,
+        traversal->sampling.readings, (double)traversal->sampling.travel_mm / 1000.0,
+        making->known.uncertainty_db, (const void *)encoded.bytes[0], encoded.sizes[0],
+        (const void *)encoded.bytes[1], encoded.sizes[1], (const void *)encoded.bytes[2],
+        encoded.sizes[2], (const void *)encoded.bytes[3], encoded.sizes[3],
+        (const void *)encoded.bytes[4], encoded.sizes[4]);
+out:
+    clear_encoded(&encoded);
+    return status;
+}
+
+static enum rfade_status separate_pass(const struct making *making, int64_t trace_id,
+                                       size_t pass, const struct rfade_track_reading *located,
+                                       size_t count, struct rfade_error *error)
+{
+    const struct rfade_separate_settings how = {
+        .wavelength_m = wavelength_m(making->work->channel),
+        .window_wavelengths = making->work->settings->window_wavelengths,
+        .block_wavelengths = making->work->settings->block_wavelengths,
+    };
+    struct rfade_separation separation;
+    enum rfade_status status =
+        rfade_separate(located, count, &making->known.receiver, &how, &separation);
+    if (status != RFADE_OK)
+        return rfade_error_set(error, status, "", "a pass can't be separated: %s",
+                               rfade_status_text(status));
+    for (size_t i = 0; i < separation.count && status == RFADE_OK; i++)
+        status = store_traversal(making, trace_id, pass, &separation.traversals[i], error);
+    rfade_separation_clear(&separation);
+    return status;
+}
+
+/* Index of the first reading at or after a time. */
+static size_t first_at(const struct rfade_survey_reading *readings, size_t count,
+                       int64_t time_us)
+{
+    size_t low = 0, high = count;
+    while (low < high) {
+        size_t middle = low + (high - low) / 2;
+        if (readings[middle].time_us < time_us)
+            low = middle + 1;
+        else
+            high = middle;
+    }
+    return low;
+}
+
+/* The readings of a trace that lie on one pass, with their place. */
+static size_t locate(const struct making *making, const struct rfade_survey_reading *readings,
+                     size_t count, size_t pass, struct rfade_track_reading *located)
+{
+    int64_t start_us = 0, end_us = 0;
+    rfade_drive_pass_times(making->drive, pass, &start_us, &end_us);
+    size_t end = first_at(readings, count, end_us), found = 0;
+    for (size_t i = first_at(readings, count, start_us); i < end; i++) {
+        int64_t chainage_mm = 0, travel_mm = 0;
+        if (!rfade_track_at(making->drive->tracks[pass], readings[i].time_us, &chainage_mm,
+                            &travel_mm))
+            continue;
+        located[found++] = (struct rfade_track_reading){
+            .time_us = readings[i].time_us,
+            .travel_mm = travel_mm,
+            .level_cdb = readings[i].level_cdb + making->known.offset_cdb,
+            .segment =
+                rfade_route_work_segment(making->work->route, (double)chainage_mm / 1000.0),
+        };
+    }
+    return found;
+}
+
+static enum rfade_status make_trace(const struct making *making,
+                                    const struct rfade_survey_reading *readings, size_t count,
+                                    size_t repeated, struct rfade_error *error)
+{
+    size_t passes = making->drive->pass_count, located_count = 0;
+    for (size_t pass = 0; pass < passes; pass++)
+        located_count += locate(making, readings, count, pass, making->located);
+    int64_t trace_id = 0;
+    enum rfade_status status =
+        store_trace(making, readings, count, repeated, located_count, &trace_id, error);
+    for (size_t pass = 0; pass < passes && status == RFADE_OK; pass++) {
+        size_t located = locate(making, readings, count, pass, making->located);
+        if (located > 0)
+            status = separate_pass(making, trace_id, pass, making->located, located, error);
+    }
+    return status;
+}
+
+/* Rows that carry SNR alone say nothing of the level. */
+static size_t keep_levels(struct rfade_survey_reading *readings, size_t count)
+{
+    size_t kept = 0;
+    for (size_t i = 0; i < count; i++)
+        if (readings[i].level_cdb != RFADE_NO_VALUE_CDB)
+            readings[kept++] = readings[i];
+    return kept;
+}
+
+enum rfade_status rfade_trace_make(const struct rfade_trace_work *work,
+                                   const struct rfade_drive *drive,
+                                   const struct rfade_fingerprint *fingerprint,
+                                   struct rfade_error *error)
+{
+    struct rfade_survey_reading *readings = NULL;
+    size_t count = 0, repeated = 0;
+    enum rfade_status status = rfade_survey_trace_readings(
+        work->survey, work->outing->vehicle_id, work->stream->channel_id,
+        work->stream->campaign_id, work->outing->start_us, work->outing->end_us, &readings,
+        &count, &repeated, error);
+    if (status != RFADE_OK)
+        return status;
+    count = keep_levels(readings, count);
+    struct making making = {
+        .work = work,
+        .drive = drive,
+        .fingerprint = fingerprint,
+        .known = rfade_trace_receiver(work->channel, work->calibration, readings, count),
+        .located = malloc((count + 1) * sizeof *making.located),
+    };
+    if (!making.located)
+        status = rfade_error_set(error, RFADE_NO_MEMORY, "", "out of memory");
+    int64_t gap_us = llround(work->settings->gap_s * 1e6);
+    for (size_t first = 0; first < count && status == RFADE_OK;) {
+        size_t end = first + 1;
+        while (end < count && readings[end].time_us - readings[end - 1].time_us <= gap_us)
+            end++;
+        status =
+            make_trace(&making, readings + first, end - first, first ? 0 : repeated, error);
+        first = end;
+    }
+    free(making.located);
+    free(readings);
+    return status;
+}

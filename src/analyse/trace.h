@@ -1,0 +1,38 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/**
+ * @file trace.h  The readings of one channel during one outing, along one route: located,
+ * split into traces, separated, and stored as traversals.
+ */
+#ifndef ROUTEFADE_ANALYSE_TRACE_H
+#define ROUTEFADE_ANALYSE_TRACE_H
+
+#include "analyse/drive.h"
+#include "analyse/outing.h"
+#include "analyse/route_work.h"
+#include "analyse/settings.h"
+#include "survey/channel.h"
+#include "survey/vehicle.h"
+
+/** All that one stream's traces are made from. Borrowed. */
+struct rfade_trace_work {
+    struct rfade_survey *survey;
+    const struct rfade_analysis_settings *settings;
+    const struct rfade_route_work *route;
+    const struct rfade_outing *outing;
+    const struct rfade_outing_stream *stream;
+    const struct rfade_channel *channel;
+    const struct rfade_calibration *calibration; /**< in force; NULL: none told */
+};
+
+/** The fingerprint of what the stream's traces are made from. */
+enum rfade_status rfade_trace_fingerprint(const struct rfade_trace_work *work,
+                                          struct rfade_fingerprint *fingerprint,
+                                          struct rfade_error *error);
+
+/** Makes and stores the stream's traces and traversals under that fingerprint. */
+enum rfade_status rfade_trace_make(const struct rfade_trace_work *work,
+                                   const struct rfade_drive *drive,
+                                   const struct rfade_fingerprint *fingerprint,
+                                   struct rfade_error *error);
+
+#endif
