@@ -1,0 +1,135 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include <stdlib.h>
+#include <string.h>
+
+#include "cli/segment_rows.h"
+
+struct fading_options {
+    struct rfade_segment_options segments;
+};
+
+static const struct fading_options defaults = {.segments = RFADE_SEGMENT_DEFAULTS};
+
+static const struct rfade_option options[] = {
+    RFADE_SEGMENT_OPTION_LINES(struct fading_options)};
+
+static const struct rfade_column own_columns[] = {
+    {"sampling", RFADE_COLUMN_TEXT, 0, false},
+    {"passes", RFADE_COLUMN_INTEGER, 0, false},
+    {"k", RFADE_COLUMN_NUMBER, 2, true},
+    {"k_low", RFADE_COLUMN_NUMBER, 2, false},
+    {"k_high", RFADE_COLUMN_NUMBER, 2, false},
+    {"m", RFADE_COLUMN_NUMBER, 2, true},
+    {"m_low", RFADE_COLUMN_NUMBER, 2, false},
+    {"m_high", RFADE_COLUMN_NUMBER, 2, false},
+    {"local_mean_dbm", RFADE_COLUMN_NUMBER, 1, false},
+    {"local_sigma_db", RFADE_COLUMN_NUMBER, 1, true},
+    {"local_sigma_low_db", RFADE_COLUMN_NUMBER, 1, false},
+    {"local_sigma_high_db", RFADE_COLUMN_NUMBER, 1, false},
+    {"weight", RFADE_COLUMN_PROBABILITY, 2, false},
+    {"goodness_p", RFADE_COLUMN_PROBABILITY, 2, false},
+};
+enum { OWN_COLUMNS = sizeof own_columns / sizeof own_columns[0] };
+enum { COLUMNS = RFADE_SEGMENT_COLUMNS + OWN_COLUMNS };
+
+/* The parameter of a model with its interval; missing where it was not resolved. */
+static void parameter_values(const struct rfade_segment_result *row, enum rfade_model_id model,
+                             struct rfade_value *values)
+{
+    const struct rfade_stored_fit *fit = rfade_result_fit(row, model);
+    for (int i = 0; i < 3; i++)
+        values[i] = rfade_value_missing();
+    if (!fit || !rfade_result_resolved(row))
+        return;
+    values[0] = rfade_value_number(fit->parameter);
+    values[1] = rfade_value_number(fit->parameter_low);
+    values[2] = rfade_value_number(fit->parameter_high);
+}
+
+static void row_values(const struct rfade_segment_result *row, struct rfade_value *values)
+{
+    rfade_segment_values(row, values);
+    struct rfade_value *own = values + RFADE_SEGMENT_COLUMNS;
+    const struct rfade_stored_fit *fit = rfade_result_preferred(row);
+    bool resolved = fit && rfade_result_resolved(row);
+    own[0] = rfade_value_text(row->sampling);
+    own[1] = rfade_value_integer(row->passes);
+    parameter_values(row, RFADE_RICE, own + 2);
+    parameter_values(row, RFADE_NAKAGAMI, own + 5);
+    own[8] = rfade_value_number(row->local_mean_dbm);
+    own[9] = rfade_value_number(row->local_sigma_db);
+    own[10] = rfade_value_number(row->local_sigma_low_db);
+    own[11] = rfade_value_number(row->local_sigma_high_db);
+    own[12] = resolved ? rfade_value_number(fit->weight) : rfade_value_missing();
+    own[13] = resolved ? rfade_value_number(fit->goodness_p) : rfade_value_missing();
+}
+
+/* The deeper the fading the worse: a small K. */
+static void rank_rows(const struct rfade_segment_results *results, bool by_estimate,
+                      struct rfade_segment_rank *ranks)
+{
+    for (size_t i = 0; i < results->count; i++) {
+        const struct rfade_segment_result *row = &results->rows[i];
+        const struct rfade_stored_fit *rice = rfade_result_fit(row, RFADE_RICE);
+        ranks[i] = (struct rfade_segment_rank){i, NAN};
+        if (rice && rfade_result_resolved(row))
+            ranks[i].badness = by_estimate ? -rice->parameter : -rice->parameter_high;
+    }
+}
+
+static enum rfade_status print_rows(const struct rfade_run *run,
+                                    const struct rfade_segment_results *results,
+                                    const struct rfade_segment_rank *ranks, size_t count,
+                                    struct rfade_error *error)
+{
+    struct rfade_column columns[COLUMNS];
+    memcpy(columns, rfade_segment_columns, sizeof rfade_segment_columns);
+    memcpy(columns + RFADE_SEGMENT_COLUMNS, own_columns, sizeof own_columns);
+    struct rfade_rows *rows = NULL;
+    enum rfade_status status = rfade_rows_begin(run->common->format, run->output, NULL, columns,
+                                                COLUMNS, &rows, error);
+    for (size_t i = 0; i < count && status == RFADE_OK; i++) {
+        struct rfade_value values[COLUMNS];
+        row_values(&results->rows[ranks[i].row], values);
+        status = rfade_rows_row(rows, values, error);
+    }
+    if (status == RFADE_OK)
+        status = rfade_rows_end(rows, error);
+    rfade_rows_destroy(rows);
+    return status;
+}
+
+static enum rfade_status run_fading(struct rfade_run *run, struct rfade_error *error)
+{
+    const struct fading_options *asked = run->options;
+    struct rfade_segment_results results;
+    enum rfade_status status = rfade_segment_read(run, &asked->segments, &results, error);
+    if (status != RFADE_OK)
+        return status;
+    struct rfade_segment_rank *ranks = malloc((results.count + 1) * sizeof *ranks);
+    if (ranks) {
+        rank_rows(&results, asked->segments.by_estimate, ranks);
+        size_t count = rfade_segment_order(&asked->segments, ranks, results.count);
+        status = print_rows(run, &results, ranks, count, error);
+    } else {
+        status = rfade_error_set(error, RFADE_NO_MEMORY, "", "out of memory");
+    }
+    free(ranks);
+    rfade_results_clear(&results);
+    return status;
+}
+
+const struct rfade_command rfade_command_fading = {
+    .name = "fading",
+    .summary = "show how each segment fades: local mean, K, m, intervals, chosen model",
+    .details =
+        "The sampling column says whether the fast fading could be seen: resolved; inseparable "
+        "(the local mean moves within its window); undersampled; averaged (by the receiver); "
+        "held (rows repeat an older level); stationary. K and m are shown where it is "
+        "resolved. Intervals are of 95 %. weight and goodness_p belong to the chosen model.",
+    .options = options,
+    .option_count = sizeof options / sizeof options[0],
+    .defaults = &defaults,
+    .options_size = sizeof defaults,
+    .run = run_fading,
+};

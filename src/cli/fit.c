@@ -1,0 +1,80 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "analyse/analyse.h"
+#include "cli/command.h"
+
+struct fit_options {
+    bool all;
+    double window_wavelengths;
+    double gap_s;
+};
+
+static const struct fit_options defaults = {
+    .all = false, .window_wavelengths = 40, .gap_s = 30};
+
+static const struct rfade_option options[] = {
+    {"all", NULL, RFADE_OPTION_FLAG, offsetof(struct fit_options, all), 0, 0, NULL,
+     "make everything again, not only what changed"},
+    {"window-wavelengths", "W", RFADE_OPTION_NUMBER,
+     offsetof(struct fit_options, window_wavelengths), 5, 1000, NULL,
+     "window of travel of the local mean, in wavelengths (40)"},
+    {"gap-s", "T", RFADE_OPTION_NUMBER, offsetof(struct fit_options, gap_s), 0.001, 86400, NULL,
+     "a longer gap between readings ends a trace, in seconds (30)"},
+};
+
+static const struct rfade_column columns[] = {
+    {"streams_made", RFADE_COLUMN_INTEGER, 0, false},
+    {"streams_kept", RFADE_COLUMN_INTEGER, 0, false},
+    {"segments_fitted", RFADE_COLUMN_INTEGER, 0, false},
+    {"segments_kept", RFADE_COLUMN_INTEGER, 0, false},
+};
+enum { COLUMNS = sizeof columns / sizeof columns[0] };
+
+static enum rfade_status print_summary(const struct rfade_run *run,
+                                       const struct rfade_analysis_summary *summary,
+                                       struct rfade_error *error)
+{
+    const struct rfade_value values[COLUMNS] = {rfade_value_integer(summary->streams_made),
+                                                rfade_value_integer(summary->streams_kept),
+                                                rfade_value_integer(summary->segments_fitted),
+                                                rfade_value_integer(summary->segments_kept)};
+    struct rfade_rows *rows = NULL;
+    enum rfade_status status = rfade_rows_begin(run->common->format, run->output, NULL, columns,
+                                                COLUMNS, &rows, error);
+    if (status == RFADE_OK)
+        status = rfade_rows_row(rows, values, error);
+    if (status == RFADE_OK)
+        status = rfade_rows_end(rows, error);
+    rfade_rows_destroy(rows);
+    return status;
+}
+
+static enum rfade_status run_fit(struct rfade_run *run, struct rfade_error *error)
+{
+    const struct fit_options *asked = run->options;
+    struct rfade_analysis_settings settings = rfade_analysis_defaults();
+    settings.window_wavelengths = asked->window_wavelengths;
+    settings.gap_s = asked->gap_s;
+    struct rfade_survey *survey = NULL;
+    struct rfade_analysis_summary summary;
+    enum rfade_status status =
+        rfade_survey_open(run->common->survey, RFADE_SURVEY_WRITE, &survey, error);
+    if (status == RFADE_OK)
+        status = rfade_analyse(survey, &settings, asked->all, &summary, error);
+    rfade_survey_close(survey);
+    if (status == RFADE_OK && summary.nothing_new && !run->common->quiet)
+        (void)fputs("nothing new since the last fit\n", run->notes);
+    return status == RFADE_OK ? print_summary(run, &summary, error) : status;
+}
+
+const struct rfade_command rfade_command_fit = {
+    .name = "fit",
+    .summary = "separate, tally and fit whatever is new since the last fit",
+    .details = "A stream is what one vehicle logged of one channel on one outing, along one "
+               "route. What was made from unchanged readings, positions, descriptions and "
+               "settings is kept; the result is the same as that of --all.",
+    .options = options,
+    .option_count = sizeof options / sizeof options[0],
+    .defaults = &defaults,
+    .options_size = sizeof defaults,
+    .run = run_fit,
+};

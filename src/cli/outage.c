@@ -1,0 +1,225 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "cli/segment_rows.h"
+
+struct outage_options {
+    struct rfade_segment_options segments;
+    double threshold_db;
+    double threshold_esn0_db;
+    double threshold_dbm;
+};
+
+static const struct outage_options defaults = {.segments = RFADE_SEGMENT_DEFAULTS,
+                                               .threshold_db = NAN,
+                                               .threshold_esn0_db = NAN,
+                                               .threshold_dbm = NAN};
+
+static const struct rfade_option options[] = {
+    {"threshold-db", "X", RFADE_OPTION_NUMBER, offsetof(struct outage_options, threshold_db),
+     -200, 200, NULL, "SNR in the channel's bandwidth, dB"},
+    {"threshold-esn0-db", "X", RFADE_OPTION_NUMBER,
+     offsetof(struct outage_options, threshold_esn0_db), -200, 200, NULL,
+     "Es/N0, dB: needs the channel's bandwidth and symbol rate"},
+    {"threshold-dbm", "X", RFADE_OPTION_NUMBER, offsetof(struct outage_options, threshold_dbm),
+     -300, 200, NULL, "received level, dBm"},
+    RFADE_SEGMENT_OPTION_LINES(struct outage_options)};
+
+static const struct rfade_column own_columns[] = {
+    {"outage", RFADE_COLUMN_PROBABILITY, 3, true},
+    {"outage_low", RFADE_COLUMN_PROBABILITY, 3, false},
+    {"outage_high", RFADE_COLUMN_PROBABILITY, 3, false},
+    {"next_low", RFADE_COLUMN_PROBABILITY, 2, false},
+    {"next_high", RFADE_COLUMN_PROBABILITY, 2, false},
+    {"observed", RFADE_COLUMN_PROBABILITY, 3, false},
+    {"observed_low", RFADE_COLUMN_PROBABILITY, 3, false},
+    {"observed_high", RFADE_COLUMN_PROBABILITY, 3, false},
+};
+enum { OWN_COLUMNS = sizeof own_columns / sizeof own_columns[0] };
+enum { COLUMNS = RFADE_SEGMENT_COLUMNS + 1 + OWN_COLUMNS };
+
+/* The threshold as the user gave it: its column's name and value. */
+struct threshold {
+    const char *column;
+    double value;
+};
+
+static enum rfade_status choose_threshold(const struct outage_options *asked,
+                                          struct threshold *threshold,
+                                          struct rfade_error *error)
+{
+    const struct threshold given[] = {{"threshold_db", asked->threshold_db},
+                                      {"threshold_esn0_db", asked->threshold_esn0_db},
+                                      {"threshold_dbm", asked->threshold_dbm}};
+    int count = 0;
+    for (size_t i = 0; i < sizeof given / sizeof given[0]; i++) {
+        if (isnan(given[i].value))
+            continue;
+        *threshold = given[i];
+        count++;
+    }
+    if (count != 1)
+        return rfade_usage(error, &rfade_command_outage,
+                           "exactly one of --threshold-db, --threshold-esn0-db and "
+                           "--threshold-dbm is needed");
+    return RFADE_OK;
+}
+
+/* The received level of a threshold on this row's channel. */
+static enum rfade_status threshold_level(const struct rfade_segment_result *row,
+                                         const struct threshold *threshold, double *level_dbm,
+                                         struct rfade_error *error)
+{
+    *level_dbm = threshold->value;
+    if (strcmp(threshold->column, "threshold_dbm") == 0)
+        return RFADE_OK;
+    if (strcmp(threshold->column, "threshold_esn0_db") == 0) {
+        /* SNR in the bandwidth B is Es/N0 times symbol rate over B. */
+        *level_dbm += 10.0 * log10(row->symbol_rate_hz / row->bandwidth_hz);
+        if (isnan(*level_dbm))
+            return rfade_error_set(error, RFADE_INPUT,
+                                   "give them with `routefade channel NAME --bandwidth-hz B "
+                                   "--symbol-rate-hz R`, or use --threshold-dbm",
+                                   "channel %s has no bandwidth and symbol rate, so Es/N0 "
+                                   "is unknown",
+                                   row->channel);
+    }
+    *level_dbm += row->noise_floor_dbm;
+    if (isnan(*level_dbm))
+        return rfade_error_set(error, RFADE_INPUT,
+                               "give it with `routefade channel NAME --noise-floor-dbm N` (or "
+                               "--bandwidth-hz and --noise-figure-db), or use --threshold-dbm",
+                               "channel %s has no noise floor, so SNR is unknown",
+                               row->channel);
+    return RFADE_OK;
+}
+
+struct answer {
+    struct rfade_stretch_outage outage;
+    struct rfade_observed observed;
+};
+
+static enum rfade_status answer_rows(struct rfade_segment_results *results,
+                                     const struct threshold *threshold, double confidence,
+                                     struct answer *answers, struct rfade_error *error)
+{
+    for (size_t i = 0; i < results->count; i++) {
+        double level_dbm = NAN;
+        enum rfade_status status =
+            threshold_level(&results->rows[i], threshold, &level_dbm, error);
+        if (status == RFADE_OK)
+            status = rfade_result_outage(&results->rows[i], level_dbm, confidence,
+                                         &answers[i].outage, &answers[i].observed, error);
+        if (status != RFADE_OK)
+            return status;
+    }
+    return RFADE_OK;
+}
+
+/* Ranked by the interval's better end, so that a bad guess from few readings is not first. */
+static void rank_rows(const struct rfade_segment_results *results, const struct answer *answers,
+                      bool by_estimate, struct rfade_segment_rank *ranks)
+{
+    for (size_t i = 0; i < results->count; i++)
+        ranks[i] = (struct rfade_segment_rank){i, by_estimate ? answers[i].outage.outage
+                                                              : answers[i].outage.low};
+}
+
+static void row_values(const struct rfade_segment_result *row,
+                       const struct threshold *threshold, const struct answer *answer,
+                       struct rfade_value *values)
+{
+    rfade_segment_values(row, values);
+    struct rfade_value *own = values + RFADE_SEGMENT_COLUMNS;
+    own[0] = rfade_value_number(threshold->value);
+    own[1] = rfade_value_number(answer->outage.outage);
+    own[2] = rfade_value_number(answer->outage.low);
+    own[3] = rfade_value_number(answer->outage.high);
+    own[4] = rfade_value_number(answer->outage.next_low);
+    own[5] = rfade_value_number(answer->outage.next_high);
+    own[6] = rfade_value_number(answer->observed.fraction);
+    own[7] = rfade_value_number(answer->observed.low);
+    own[8] = rfade_value_number(answer->observed.high);
+}
+
+static enum rfade_status
+print_rows(const struct rfade_run *run, const struct rfade_segment_results *results,
+           const struct threshold *threshold, const struct answer *answers,
+           const struct rfade_segment_rank *ranks, size_t count, struct rfade_error *error)
+{
+    struct rfade_column columns[COLUMNS];
+    memcpy(columns, rfade_segment_columns, sizeof rfade_segment_columns);
+    columns[RFADE_SEGMENT_COLUMNS] =
+        (struct rfade_column){threshold->column, RFADE_COLUMN_NUMBER, 1, false};
+    memcpy(columns + RFADE_SEGMENT_COLUMNS + 1, own_columns, sizeof own_columns);
+    struct rfade_rows *rows = NULL;
+    enum rfade_status status = rfade_rows_begin(run->common->format, run->output, NULL, columns,
+                                                COLUMNS, &rows, error);
+    for (size_t i = 0; i < count && status == RFADE_OK; i++) {
+        struct rfade_value values[COLUMNS];
+        size_t row = ranks[i].row;
+        row_values(&results->rows[row], threshold, &answers[row], values);
+        status = rfade_rows_row(rows, values, error);
+    }
+    if (status == RFADE_OK)
+        status = rfade_rows_end(rows, error);
+    rfade_rows_destroy(rows);
+    return status;
+}
+
+static enum rfade_status show_outage(const struct rfade_run *run,
+                                     const struct outage_options *asked,
+                                     const struct threshold *threshold,
+                                     struct rfade_segment_results *results,
+                                     struct rfade_error *error)
+{
+    struct answer *answers = malloc((results->count + 1) * sizeof *answers);
+    struct rfade_segment_rank *ranks = malloc((results->count + 1) * sizeof *ranks);
+    enum rfade_status status = RFADE_OK;
+    if (!answers || !ranks)
+        status = rfade_error_set(error, RFADE_NO_MEMORY, "", "out of memory");
+    if (status == RFADE_OK)
+        status = answer_rows(results, threshold, rfade_analysis_defaults().confidence, answers,
+                             error);
+    if (status == RFADE_OK) {
+        rank_rows(results, answers, asked->segments.by_estimate, ranks);
+        size_t count = rfade_segment_order(&asked->segments, ranks, results->count);
+        status = print_rows(run, results, threshold, answers, ranks, count, error);
+    }
+    free(answers);
+    free(ranks);
+    return status;
+}
+
+static enum rfade_status run_outage(struct rfade_run *run, struct rfade_error *error)
+{
+    const struct outage_options *asked = run->options;
+    struct threshold threshold = {NULL, NAN};
+    enum rfade_status status = choose_threshold(asked, &threshold, error);
+    if (status != RFADE_OK)
+        return status;
+    struct rfade_segment_results results;
+    status = rfade_segment_read(run, &asked->segments, &results, error);
+    if (status == RFADE_OK)
+        status = show_outage(run, asked, &threshold, &results, error);
+    rfade_results_clear(&results);
+    return status;
+}
+
+const struct rfade_command rfade_command_outage = {
+    .name = "outage",
+    .summary = "show how often each segment is below a threshold: predicted and observed",
+    .details =
+        "outage is the probability of being below the threshold on this stretch, with the 95 % "
+        "confidence interval of that probability. next_low and next_high are the 95 % "
+        "prediction interval of the fraction that one more pass observes. observed is the "
+        "fraction of the travel that was below; its bounds differ where a quantisation step or "
+        "a censored reading straddles the threshold. A predicted outage is no safety case.",
+    .options = options,
+    .option_count = sizeof options / sizeof options[0],
+    .defaults = &defaults,
+    .options_size = sizeof defaults,
+    .run = run_outage,
+};

@@ -1,0 +1,76 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include "cli/segment_rows.h"
+
+#include <math.h>
+#include <stdlib.h>
+
+const struct rfade_column rfade_segment_columns[RFADE_SEGMENT_COLUMNS] = {
+    {"route", RFADE_COLUMN_TEXT, 0, false},
+    {"segment", RFADE_COLUMN_INTEGER, 0, false},
+    {"from_m", RFADE_COLUMN_NUMBER, 0, false},
+    {"to_m", RFADE_COLUMN_NUMBER, 0, false},
+    {"channel", RFADE_COLUMN_TEXT, 0, false},
+    {"campaign", RFADE_COLUMN_TEXT, 0, false},
+    {"readings", RFADE_COLUMN_INTEGER, 0, false},
+    {"effective_count", RFADE_COLUMN_NUMBER, 0, false},
+    {"mean_power_dbm", RFADE_COLUMN_NUMBER, 1, false},
+    {"model", RFADE_COLUMN_TEXT, 0, false},
+};
+
+void rfade_segment_values(const struct rfade_segment_result *row, struct rfade_value *values)
+{
+    const struct rfade_stored_fit *fit = rfade_result_preferred(row);
+    values[0] = rfade_value_text(row->route);
+    values[1] = rfade_value_integer(row->segment);
+    values[2] = rfade_value_number(row->from_m);
+    values[3] = rfade_value_number(row->to_m);
+    values[4] = rfade_value_text(row->channel);
+    values[5] = rfade_value_text(row->campaign);
+    values[6] = rfade_value_integer(row->readings);
+    values[7] = rfade_value_number(row->effective_count);
+    values[8] = rfade_value_number(row->mean_power_dbm);
+    values[9] = rfade_value_text(fit && fit->model ? fit->model->name : NULL);
+}
+
+enum rfade_status rfade_segment_read(const struct rfade_run *run,
+                                     const struct rfade_segment_options *options,
+                                     struct rfade_segment_results *results,
+                                     struct rfade_error *error)
+{
+    *results = (struct rfade_segment_results){NULL, 0};
+    const struct rfade_segment_filter filter = {
+        .route = options->route,
+        .channel = options->channel,
+        .campaign = options->campaign,
+        .segment = options->segment,
+        .from_m = options->from_m,
+        .to_m = options->to_m,
+    };
+    struct rfade_survey *survey = NULL;
+    enum rfade_status status =
+        rfade_survey_open(run->common->survey, RFADE_SURVEY_READ, &survey, error);
+    if (status == RFADE_OK)
+        status = rfade_results_read(survey, &filter, results, error);
+    rfade_survey_close(survey);
+    return status;
+}
+
+static int compare_ranks(const void *left, const void *right)
+{
+    const struct rfade_segment_rank *a = left, *b = right;
+    bool a_known = !isnan(a->badness), b_known = !isnan(b->badness);
+    if (a_known != b_known)
+        return a_known ? -1 : 1;
+    if (a_known && a->badness != b->badness)
+        return a->badness > b->badness ? -1 : 1;
+    return (a->row > b->row) - (a->row < b->row); /* ties stay along the route */
+}
+
+size_t rfade_segment_order(const struct rfade_segment_options *options,
+                           struct rfade_segment_rank *ranks, size_t count)
+{
+    if (options->worst == 0 || count == 0)
+        return count;
+    qsort(ranks, count, sizeof *ranks, compare_ranks);
+    return (uint64_t)options->worst < count ? (size_t)options->worst : count;
+}

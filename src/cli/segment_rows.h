@@ -1,0 +1,100 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/** @file segment_rows.h  What the by-segment commands share: narrowing, order, first columns.
+ */
+#ifndef ROUTEFADE_CLI_SEGMENT_ROWS_H
+#define ROUTEFADE_CLI_SEGMENT_ROWS_H
+
+#include "analyse/results.h"
+#include "analyse/settings.h"
+#include "cli/command.h"
+
+struct rfade_segment_options {
+    const char *route;
+    const char *channel;
+    const char *campaign;
+    int64_t segment;
+    double from_m;
+    double to_m;
+    int64_t worst;
+    bool by_estimate;
+};
+
+/** No narrowing, along the route. */
+#define RFADE_SEGMENT_DEFAULTS                                                                 \
+    {                                                                                          \
+        .from_m = NAN, .to_m = NAN                                                             \
+    }
+
+/** Lines of a command's option table; `type` has a member `segments` of the struct above. */
+#define RFADE_SEGMENT_OPTION_LINES(type)                                                       \
+    {"route", "NAME", RFADE_OPTION_TEXT, offsetof(type, segments.route), 0,                    \
+     0,       NULL,   "only this route"},                                                      \
+        {"channel", "NAME", RFADE_OPTION_TEXT,  offsetof(type, segments.channel), 0,           \
+         0,         NULL,   "only this channel"},                                              \
+        {"campaign", "NAME", RFADE_OPTION_TEXT,   offsetof(type, segments.campaign), 0,        \
+         0,          NULL,   "only this campaign"},                                            \
+        {"segment",                                                                            \
+         "N",                                                                                  \
+         RFADE_OPTION_INTEGER,                                                                 \
+         offsetof(type, segments.segment),                                                     \
+         1,                                                                                    \
+         1e9,                                                                                  \
+         NULL,                                                                                 \
+         "only the segment of this number"},                                                   \
+        {"from-m",                                                                             \
+         "A",                                                                                  \
+         RFADE_OPTION_NUMBER,                                                                  \
+         offsetof(type, segments.from_m),                                                      \
+         0,                                                                                    \
+         1e9,                                                                                  \
+         NULL,                                                                                 \
+         "only segments that reach past chainage A metres"},                                   \
+        {"to-m",                                                                               \
+         "B",                                                                                  \
+         RFADE_OPTION_NUMBER,                                                                  \
+         offsetof(type, segments.to_m),                                                        \
+         0,                                                                                    \
+         1e9,                                                                                  \
+         NULL,                                                                                 \
+         "only segments that begin before chainage B metres"},                                 \
+        {"worst",                                                                              \
+         "N",                                                                                  \
+         RFADE_OPTION_INTEGER,                                                                 \
+         offsetof(type, segments.worst),                                                       \
+         1,                                                                                    \
+         1e9,                                                                                  \
+         NULL,                                                                                 \
+         "the N worst segments, worst first, ranked by the better end of the interval"},       \
+    {                                                                                          \
+        "by-estimate", NULL, RFADE_OPTION_FLAG, offsetof(type, segments.by_estimate), 0, 0,    \
+            NULL, "with --worst: ranked by the estimate itself"                                \
+    }
+
+enum { RFADE_SEGMENT_COLUMNS = 10 };
+
+/** The first columns of every by-segment table: route ... model. */
+extern const struct rfade_column rfade_segment_columns[RFADE_SEGMENT_COLUMNS];
+
+/** Fills the first RFADE_SEGMENT_COLUMNS values of a row; borrowed from it. */
+void rfade_segment_values(const struct rfade_segment_result *row, struct rfade_value *values);
+
+/** Opens the run's survey for reading and reads the rows that the options ask for. */
+enum rfade_status rfade_segment_read(const struct rfade_run *run,
+                                     const struct rfade_segment_options *options,
+                                     struct rfade_segment_results *results,
+                                     struct rfade_error *error);
+
+/** A row's place in the output: the larger, the worse; NaN goes last. */
+struct rfade_segment_rank {
+    size_t row;
+    double badness;
+};
+
+/**
+ * Orders rows: with --worst worst first and cut to N, else as they are.
+ * @return how many rows to show
+ */
+size_t rfade_segment_order(const struct rfade_segment_options *options,
+                           struct rfade_segment_rank *ranks, size_t count);
+
+#endif
