@@ -135,6 +135,25 @@ static void truth_stands_beside_the_log(void **state)
     program_clear(&program);
 }
 
+/* Along a meridian the latitude grows by 1 degree in 111.4 km at 60 degrees north. */
+static void a_route_is_followed_to_its_end(void **state)
+{
+    (void)state;
+    struct program program = {0};
+    const char *folder = folder_create();
+    const char *path = file_create(folder, "line.csv", "60.5,-24.5\n60.502,-24.5\n");
+    RUN(&program, "simulate", "--route", path, "--rate-hz", "1");
+    assert_int_equal(program.status, 0);
+    assert_line(program.output, 1, "2027-01-12T20:00:00.000Z,60.5000000,-24.5000000,");
+    assert_line(program.output, 2, "2027-01-12T20:00:01.000Z,60.50008");
+    assert_int_equal(line_count(program.output), 24); /* 222.8 m at 10 m/s, and a header */
+    program_clear(&program);
+    REFUSED(2, "the route is 222.8 m long, less than --length-m 300", "simulate", "--route",
+            path, "--length-m", "300");
+    REFUSED(1, "there is no such file", "simulate", "--route", "nothing.csv");
+    folder_remove(folder);
+}
+
 static void a_file_that_is_there_is_never_overwritten(void **state)
 {
     (void)state;
@@ -178,6 +197,7 @@ int main(void)
         cmocka_unit_test(blanks_layout_has_two_channels_and_epoch_ms),
         cmocka_unit_test(same_seed_same_digits),
         cmocka_unit_test(truth_stands_beside_the_log),
+        cmocka_unit_test(a_route_is_followed_to_its_end),
         cmocka_unit_test(a_file_that_is_there_is_never_overwritten),
         cmocka_unit_test(what_can_not_be_simulated_is_refused),
     };

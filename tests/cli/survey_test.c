@@ -1,5 +1,6 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-/* Commands on a survey: channels, vehicles, what it holds, and files that are no survey. */
+/* Commands on a survey: channels, vehicles, routes, what it holds, and files that are no
+ * survey. */
 #include <setjmp.h>
 #include <stdarg.h>
 #include <stddef.h>
@@ -119,6 +120,76 @@ static void vehicle_lists_its_calibrations(void **state)
             "yesterday", "--survey", fixture->survey);
 }
 
+static const char line[] = "{\"type\":\"LineString\",\"coordinates\":"
+                           "[[-24.5,60.5],[-24.5,60.505],[-24.5,60.51]]}";
+
+/* A meridian's arc from 60.5 to 60.51 degrees on WGS 84: M dphi with M = a(1-e^2)/
+ * (1-e^2 sin^2 phi)^1.5 = 6383943 m at 60.505 degrees gives 1114.21 m. */
+static void route_is_added_and_listed(void **state)
+{
+    const struct fixture *fixture = *state;
+    const char *path = file_create(fixture->folder, "fen.geojson", line);
+    DONE("route", "fen", path, "--survey", fixture->survey);
+    DONE("route", "fen", path, "--survey", fixture->survey); /* the same again: no harm */
+    json_t *list = JSON_OF("route", "--survey", fixture->survey);
+    assert_int_equal(json_array_size(list), 1);
+    json_t *route = json_array_get(list, 0);
+    assert_string_equal(json_string_value(json_object_get(route, "route")), "fen");
+    double length_m = json_real_value(json_object_get(route, "length_m"));
+    assert_true(length_m > 1114.1 && length_m < 1114.3);
+    assert_true(json_real_value(json_object_get(route, "segment_m")) == 100);
+    assert_int_equal(json_integer_value(json_object_get(route, "segments")), 12);
+    assert_int_equal(json_integer_value(json_object_get(route, "points")), 3);
+    json_decref(list);
+    REFUSED(1, "fen", "route", "fen", path, "--segment-m", "50", "--survey", fixture->survey);
+}
+
+static void route_refuses_what_can_not_be(void **state)
+{
+    const struct fixture *fixture = *state;
+    char path[256];
+    (void)snprintf(path, sizeof path, "%s",
+                   file_create(fixture->folder, "point.geojson",
+                               "{\"type\":\"Point\",\"coordinates\":[-24.5,60.5]}"));
+    REFUSED(1, "point.geojson", "route", "fen", path, "--survey", fixture->survey);
+    REFUSED(1, "nothing.csv: there is no such file", "route", "fen", "nothing.csv", "--survey",
+            fixture->survey);
+    REFUSED(2, "option --segment-m needs a number from 1", "route", "fen", path, "--segment-m",
+            "0", "--survey", fixture->survey);
+    REFUSED(2, "a new route needs NAME and FILE", "route", "fen", "--segment-m", "50",
+            "--survey", fixture->survey);
+    REFUSED(2, "give a FILE or --from-vehicle, not both", "route", "fen", path,
+            "--from-vehicle", "a", "--survey", fixture->survey);
+    REFUSED(2, "--from-vehicle needs the route's NAME", "route", "--from-vehicle", "a",
+            "--survey", fixture->survey);
+    assert_int_equal(access(fixture->survey, F_OK), -1);
+    REFUSED(1, "there is no such survey", "route", "fen", "--from-vehicle", "a", "--survey",
+            fixture->survey);
+    DONE("channel", "a", "--carrier-hz", "457e6", "--survey", fixture->survey);
+    REFUSED(1, "no vehicle 'a'", "route", "fen", "--from-vehicle", "a", "--survey",
+            fixture->survey);
+    REFUSED(1, "no route 'fen'", "route", "fen", "--survey", fixture->survey);
+}
+
+/* A vehicle that drove 400 m straight on gives a route of 400 m. */
+static void route_follows_a_vehicle(void **state)
+{
+    const struct fixture *fixture = *state;
+    char log[128];
+    struct program program = {0};
+    (void)snprintf(log, sizeof log, "%s/drive.csv", fixture->folder);
+    DONE("simulate", "--length-m", "400", "--rate-hz", "10", "--vehicle", "plough-2",
+         "--output", log);
+    RUN(&program, "import", log, "--survey", fixture->survey);
+    assert_int_equal(program.status, 0);
+    program_clear(&program);
+    DONE("route", "own", "--from-vehicle", "plough-2", "--survey", fixture->survey);
+    json_t *list = JSON_OF("route", "own", "--survey", fixture->survey);
+    double length_m = json_real_value(json_object_get(json_array_get(list, 0), "length_m"));
+    assert_true(length_m > 396 && length_m < 404);
+    json_decref(list);
+}
+
 static void status_counts(void **state)
 {
     const struct fixture *fixture = *state;
@@ -132,7 +203,7 @@ static void status_counts(void **state)
 }
 
 /* Commands that only read a survey, which none of the files below is. */
-static const char *const readers[] = {"channel", "vehicle", "status"};
+static const char *const readers[] = {"channel", "vehicle", "route", "status"};
 enum { READERS = sizeof readers / sizeof readers[0] };
 
 static void assert_no_survey(const char *path, const char *part)
@@ -198,6 +269,9 @@ int main(void)
         cmocka_unit_test_setup_teardown(channel_keeps_what_was_told, setup, teardown),
         cmocka_unit_test_setup_teardown(channel_refuses_what_can_not_be, setup, teardown),
         cmocka_unit_test_setup_teardown(vehicle_lists_its_calibrations, setup, teardown),
+        cmocka_unit_test_setup_teardown(route_is_added_and_listed, setup, teardown),
+        cmocka_unit_test_setup_teardown(route_refuses_what_can_not_be, setup, teardown),
+        cmocka_unit_test_setup_teardown(route_follows_a_vehicle, setup, teardown),
         cmocka_unit_test_setup_teardown(status_counts, setup, teardown),
         cmocka_unit_test_setup_teardown(files_that_are_no_survey_are_left_alone, setup,
                                         teardown),
