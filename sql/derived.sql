@@ -24,7 +24,7 @@ CREATE TABLE traversal (
     traversal_id INTEGER PRIMARY KEY,
     trace_id INTEGER NOT NULL REFERENCES trace ON DELETE CASCADE,
     segment_id INTEGER NOT NULL REFERENCES segment ON DELETE CASCADE,
-    pass INTEGER NOT NULL,           -- of the vehicle along the route, from 1
+    pass_start_us INTEGER NOT NULL,  -- when the vehicle's pass along the route began
     start_us INTEGER NOT NULL,
     end_us INTEGER NOT NULL,
     reading_count INTEGER NOT NULL,

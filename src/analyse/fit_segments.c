@@ -100,7 +100,6 @@ static enum rfade_status merge_tally(sqlite3_stmt *statement, int column,
 
 static enum rfade_status merge_traversal(sqlite3_stmt *statement, struct rfade_pool *pool)
 {
-    pool->passes++;
     pool->readings += sqlite3_column_int64(statement, 3);
     pool->travel_m += sqlite3_column_double(statement, 4);
     pool->calibration_db = fmax(pool->calibration_db, sqlite3_column_double(statement, 5));
@@ -125,6 +124,20 @@ static enum rfade_status merge_traversal(sqlite3_stmt *statement, struct rfade_p
     if (status == RFADE_OK)
         status = rfade_sampling_merge(&pool->sampling, &sums, 1);
     return status;
+}
+
+/* A pass may be cut into several traversals of one segment, by gaps between its traces. */
+static enum rfade_status count_passes(struct rfade_survey *survey, const struct group *group,
+                                      int64_t *passes, struct rfade_error *error)
+{
+    bool found = false;
+    return rfade_survey_integer(survey, passes, &found, error,
+                                "SELECT count(*) FROM (SELECT DISTINCT vehicle_id,"
+                                " pass_start_us FROM traversal JOIN trace USING (trace_id)"
+                                " WHERE segment_id = ?1 AND channel_id = ?2"
+                                " AND campaign_id = ?3)",
+                                "iii", group->segment_id, group->channel_id,
+                                group->campaign_id);
 }
 
 static enum rfade_status fill_pool(struct rfade_survey *survey, const struct group *group,
@@ -216,6 +229,8 @@ static enum rfade_status fit_group(struct rfade_survey *survey,
     if (rfade_pool_create(&pool) != RFADE_OK)
         return out_of_memory(error);
     enum rfade_status status = fill_pool(survey, group, &pool, error);
+    if (status == RFADE_OK)
+        status = count_passes(survey, group, &pool.passes, error);
     if (status == RFADE_OK)
         status = rfade_pool_evaluate(&pool, settings, &result, error);
     if (status == RFADE_OK)

@@ -117,9 +117,10 @@ static void judge_local_mean(struct rfade_pool *pool,
     double pass_wavelengths = pool->travel_m / pool->wavelength_m / passes;
     double mean_variance = rfade_stretch_mean_variance(pass_wavelengths, k) / passes;
     double fading_db2 = DB_PER_NEPER_OF_POWER * DB_PER_NEPER_OF_POWER * mean_variance;
-    result->effective_count =
-        fmin((double)pool->readings,
-             rfade_model(RFADE_RICE)->normalised_variance(k) / mean_variance);
+    if (result->fitted)
+        result->effective_count =
+            fmin((double)pool->readings,
+                 rfade_model(RFADE_RICE)->normalised_variance(k) / mean_variance);
     result->level_uncertainty_db =
         sqrt(fading_db2 + pool->calibration_db * pool->calibration_db);
 }

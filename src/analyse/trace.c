@@ -126,16 +126,18 @@ static enum rfade_status store_traversal(const struct making *making, int64_t tr
     }
     status = rfade_survey_run(
         making->work->survey, error,
-        "INSERT INTO traversal (trace_id, segment_id, pass, start_us, end_us, reading_count,"
+        "INSERT INTO traversal (trace_id, segment_id, pass_start_us, start_us, end_us, "
+        "reading_count,"
         " travel_m, level_uncertainty_db, fading_tally, level_tally, local_mean_tally, blocks,"
         " sampling) VALUES (?1, ?2, ?3, ?4, ?5, ?6, ?7, ?8, ?9, ?10, ?11, ?12, ?13)",
         "iiiiiiddbbbbb", trace_id, making->work->route->segments[traversal->segment].segment_id,
-        (int64_t)pass + 1, traversal->first_time_us, traversal->last_time_us,
-        traversal->sampling.readings, (double)traversal->sampling.travel_mm / 1000.0,
-        making->known.uncertainty_db, (const void *)encoded.bytes[0], encoded.sizes[0],
-        (const void *)encoded.bytes[1], encoded.sizes[1], (const void *)encoded.bytes[2],
-        encoded.sizes[2], (const void *)encoded.bytes[3], encoded.sizes[3],
-        (const void *)encoded.bytes[4], encoded.sizes[4]);
+        rfade_track_start_us(making->drive->tracks[pass]), traversal->first_time_us,
+        traversal->last_time_us, traversal->sampling.readings,
+        (double)traversal->sampling.travel_mm / 1000.0, making->known.uncertainty_db,
+        (const void *)encoded.bytes[0], encoded.sizes[0], (const void *)encoded.bytes[1],
+        encoded.sizes[1], (const void *)encoded.bytes[2], encoded.sizes[2],
+        (const void *)encoded.bytes[3], encoded.sizes[3], (const void *)encoded.bytes[4],
+        encoded.sizes[4]);
 out:
     clear_encoded(&encoded);
     return status;
