@@ -8,7 +8,16 @@
 #include "estimate/classes.h"
 
 /* Below this many bins a shorter form gains nothing. */
-enum { SHORTEN_MIN = 4000, CELLS_A_DEVIATION = 400 };
+enum { SHORTEN_MIN = 300 };
+
+/*
+ * Cells a standard deviation of a reading: the shorter form's curvature, and with it an
+ * interval's width, is off by about (1/12)^2/10, or 1e-3. The more bins, the dearer a step
+ * over all of them, and the finer the cells that save one.
+ */
+static const double CELLS_MIN = 12.0;
+static const double CELLS_MAX = 600.0;
+static const double CELLS_GROWTH_FROM = 2000.0; /* bins */
 
 static const double CDB_PER_DB = 100.0;
 static const double DB_PER_NEPER_OF_POWER = 4.342944819032518; /* 10 / ln 10 */
@@ -72,54 +81,89 @@ enum rfade_status rfade_bins_moments(const struct rfade_bin *bins, size_t bin_co
     return RFADE_OK;
 }
 
-static int compare_places(const void *a, const void *b)
+static int compare_numbers(double a, double b)
 {
-    double first = rfade_bin_place(a);
-    double second = rfade_bin_place(b);
-    return (first > second) - (first < second);
+    return (a > b) - (a < b);
 }
 
-/*
- * Gathers points within cells of `width_db`. The error in the log-likelihood is of the order
- * of (width/deviation)^2/24 of its curvature: 3e-7 here.
- */
-static size_t gather(struct rfade_bin *bins, size_t bin_count, double width_db)
+static int compare_places(const void *a, const void *b)
+{
+    return compare_numbers(rfade_bin_place(a), rfade_bin_place(b));
+}
+
+void rfade_bins_sort(struct rfade_bin *bins, size_t bin_count)
+{
+    qsort(bins, bin_count, sizeof *bins, compare_places);
+}
+
+/* What only like bins share: the width in micro-dB, or a sign for the censored. */
+static double kind_of(const struct rfade_bin *bin)
+{
+    if (isinf(bin->low_db)) {
+        return -2.0;
+    }
+    return isinf(bin->high_db) ? -1.0 : nearbyint(1e6 * (bin->high_db - bin->low_db));
+}
+
+static int compare_kinds(const void *a, const void *b)
+{
+    int order = compare_numbers(kind_of(a), kind_of(b));
+    return order != 0 ? order : compare_places(a, b);
+}
+
+/* Moves a bin's place towards another of its kind, by their weights. */
+static void join(struct rfade_bin *into, const struct rfade_bin *bin)
+{
+    double weight = into->weight + bin->weight;
+    double move = (rfade_bin_place(bin) - rfade_bin_place(into)) * bin->weight / weight;
+    into->low_db += move;
+    into->high_db = into->low_db == into->high_db - move ? into->low_db : into->high_db + move;
+    into->weight = weight;
+}
+
+static size_t gather(struct rfade_bin *bins, size_t bin_count, double cell_db,
+                     const double *edges_db)
 {
     size_t count = 0;
     double cell = NAN;
+    double kind = NAN;
+    int place_class = -1;
     for (size_t i = 0; i < bin_count; i++) {
         struct rfade_bin bin = bins[i];
-        double here = bin.low_db == bin.high_db ? floor(bin.low_db / width_db) : NAN;
-        if (count > 0 && here == cell) {
-            struct rfade_bin *into = &bins[count - 1];
-            double weight = into->weight + bin.weight;
-            into->low_db += (bin.low_db - into->low_db) * bin.weight / weight;
-            into->high_db = into->low_db;
-            into->weight = weight;
+        double place_db = rfade_bin_place(&bin);
+        bool alike = floor(place_db / cell_db) == cell && kind_of(&bin) == kind &&
+                     rfade_class_of(edges_db, place_db) == place_class;
+        if (alike) {
+            join(&bins[count - 1], &bin);
         } else {
             bins[count++] = bin;
+            cell = floor(place_db / cell_db);
+            kind = kind_of(&bin);
+            place_class = rfade_class_of(edges_db, place_db);
         }
-        cell = here;
     }
     return count;
 }
 
 enum rfade_status rfade_bins_shorten(const struct rfade_bin *bins, size_t bin_count,
                                      const struct rfade_bin_moments *moments,
-                                     struct rfade_bin **shorter, size_t *shorter_count)
+                                     const double *edges_db, struct rfade_bin **shorter,
+                                     size_t *shorter_count)
 {
-    double deviation_db = DB_PER_NEPER_OF_POWER * sqrt(moments->normalised_variance);
-    bool many_points = bin_count >= SHORTEN_MIN && moments->step_min_db == 0.0;
-    *shorter_count = 0;
+    double deviation_db = DB_PER_NEPER_OF_POWER * fmin(sqrt(moments->normalised_variance), 1.0);
+    double cells = CELLS_MIN * sqrt(fmax(1.0, (double)bin_count / CELLS_GROWTH_FROM));
+    cells = fmin(cells, CELLS_MAX);
+    *shorter_count = bin_count;
     *shorter = malloc(bin_count * sizeof **shorter);
     if (*shorter == NULL) {
         return RFADE_NO_MEMORY;
     }
     memcpy(*shorter, bins, bin_count * sizeof **shorter);
-    qsort(*shorter, bin_count, sizeof **shorter, compare_places);
-    *shorter_count = many_points && deviation_db > 0.0
-                         ? gather(*shorter, bin_count, deviation_db / CELLS_A_DEVIATION)
-                         : bin_count;
+    if (bin_count >= SHORTEN_MIN && deviation_db > 0.0) {
+        qsort(*shorter, bin_count, sizeof **shorter, compare_kinds);
+        *shorter_count = gather(*shorter, bin_count, deviation_db / cells, edges_db);
+    }
+    rfade_bins_sort(*shorter, *shorter_count);
     return RFADE_OK;
 }
 

@@ -9,10 +9,7 @@
 
 #include "routefade/estimate.h"
 
-struct rfade_classes {
-    double edges_db[RFADE_COARSE_BINS - 1]; /**< upper edges, never falling */
-    int *of_bin;                            /**< class of each bin; owned */
-};
+enum { RFADE_CLASS_EDGES = RFADE_COARSE_BINS - 1 };
 
 /** Where a bin is counted: its middle, or its bound if it is censored. */
 double rfade_bin_place(const struct rfade_bin *bin);
@@ -20,16 +17,12 @@ double rfade_bin_place(const struct rfade_bin *bin);
 /** The class that holds a level. */
 int rfade_class_of(const double *edges_db, double level_db);
 
-/** Classes with given upper edges. */
-enum rfade_status rfade_classes_by_edges(const struct rfade_bin *bins, size_t bin_count,
-                                         const double *edges_db, struct rfade_classes *classes);
-
 /**
- * Classes of about equal weight, between distinct readings.
+ * Upper edges of classes of about equal weight, between distinct readings; never falling,
+ * INFINITY where there are fewer.
  * @param bins  in ascending order of place
  */
-enum rfade_status rfade_classes_of_column(const struct rfade_bin *bins, size_t bin_count,
-                                          struct rfade_classes *classes);
-void rfade_classes_clear(struct rfade_classes *classes);
+void rfade_class_edges(const struct rfade_bin *bins, size_t bin_count,
+                       double edges_db[RFADE_CLASS_EDGES]);
 
 #endif

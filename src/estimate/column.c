@@ -14,7 +14,7 @@ enum { BLOCKS_MAX = 1000 };
 struct column {
     struct rfade_bin *bins;
     size_t bin_count;
-    struct rfade_classes classes;
+    double edges_db[RFADE_CLASS_EDGES];
     struct rfade_blocks blocks;
     int64_t (*weights)[RFADE_COARSE_BINS];
 };
@@ -93,8 +93,7 @@ static enum rfade_status measure_blocks(const double *levels_dbm, size_t count,
     for (size_t i = 0; i < count; i++) {
         struct rfade_bin bin = bin_of_level(settings, step_db, levels_dbm[i]);
         size_t block = (size_t)((double)i / (double)count * (double)block_count);
-        column
-            ->weights[block][rfade_class_of(column->classes.edges_db, rfade_bin_place(&bin))]++;
+        column->weights[block][rfade_class_of(column->edges_db, rfade_bin_place(&bin))]++;
     }
     return rfade_blocks_add(&column->blocks,
                             (const int64_t(*)[RFADE_COARSE_BINS])column->weights, block_count);
@@ -136,7 +135,7 @@ enum rfade_status rfade_estimate_column(const double *levels_dbm, size_t count,
     }
     enum rfade_status status = group(levels_dbm, count, settings, result->step_db, &column);
     if (status == RFADE_OK) {
-        status = rfade_classes_of_column(column.bins, column.bin_count, &column.classes);
+        rfade_class_edges(column.bins, column.bin_count, column.edges_db);
     }
     if (status == RFADE_OK && !settings->independent) {
         status = measure_blocks(levels_dbm, count, settings, result->step_db, &column);
@@ -144,10 +143,9 @@ enum rfade_status rfade_estimate_column(const double *levels_dbm, size_t count,
     }
     if (status == RFADE_OK) {
         status = rfade_estimate_classes(column.bins, column.bin_count, &estimate_settings,
-                                        column.classes.edges_db, &result->estimate);
+                                        column.edges_db, &result->estimate);
     }
     free(column.weights);
     free(column.bins);
-    rfade_classes_clear(&column.classes);
     return status;
 }

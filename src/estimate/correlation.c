@@ -137,8 +137,7 @@ double rfade_design_effect(const struct rfade_class_covariance *covariance,
     return together / alone;
 }
 
-enum rfade_status rfade_class_scores(const struct rfade_sample *sample,
-                                     const struct rfade_classes *classes,
+enum rfade_status rfade_class_scores(const struct rfade_sample *sample, const double *edges_db,
                                      const struct rfade_maximum *maximum,
                                      struct rfade_class_scores *scores)
 {
@@ -153,7 +152,7 @@ enum rfade_status rfade_class_scores(const struct rfade_sample *sample,
         if (status != RFADE_OK) {
             return status;
         }
-        int place = classes->of_bin[i];
+        int place = rfade_class_of(edges_db, rfade_bin_place(bin));
         weight[place] += bin->weight;
         scores->mean[place][0] += bin->weight * score[0];
         scores->mean[place][1] += bin->weight * score[1];

@@ -43,8 +43,7 @@ double rfade_design_effect(const struct rfade_class_covariance *covariance,
                            const double influence[RFADE_COARSE_BINS]);
 
 /** Mean scores by class at the maximum. */
-enum rfade_status rfade_class_scores(const struct rfade_sample *sample,
-                                     const struct rfade_classes *classes,
+enum rfade_status rfade_class_scores(const struct rfade_sample *sample, const double *edges_db,
                                      const struct rfade_maximum *maximum,
                                      struct rfade_class_scores *scores);
 

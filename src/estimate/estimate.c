@@ -15,7 +15,7 @@ struct workspace {
     struct rfade_problem problem;
     struct rfade_bin_moments moments;
     struct rfade_bin *quick;
-    struct rfade_classes classes;
+    double edges_db[RFADE_CLASS_EDGES];
     struct rfade_class_covariance covariance;
 };
 
@@ -25,24 +25,36 @@ static bool settings_valid(const struct rfade_estimate_settings *settings)
            settings->narrowing >= 0.0 && settings->narrowing < 1.0;
 }
 
-static enum rfade_status classify(struct workspace *workspace, size_t quick_count,
-                                  const struct rfade_blocks *blocks, const double *edges_db)
+/* Edges that were given, those of a survey's blocks, or such as the readings suggest. */
+static enum rfade_status choose_edges(const struct rfade_bin *bins, size_t bin_count,
+                                      const struct rfade_blocks *blocks, const double *edges_db,
+                                      struct workspace *workspace)
+{
+    if (edges_db != NULL || blocks != NULL) {
+        memcpy(workspace->edges_db, edges_db != NULL ? edges_db : rfade_coarse_edges_db,
+               sizeof workspace->edges_db);
+        return RFADE_OK;
+    }
+    struct rfade_bin *sorted = malloc(bin_count * sizeof *sorted);
+    if (sorted == NULL) {
+        return RFADE_NO_MEMORY;
+    }
+    memcpy(sorted, bins, bin_count * sizeof *sorted);
+    rfade_bins_sort(sorted, bin_count);
+    rfade_class_edges(sorted, bin_count, workspace->edges_db);
+    free(sorted);
+    return RFADE_OK;
+}
+
+static void measure_covariance(struct workspace *workspace, const struct rfade_bin *bins,
+                               size_t bin_count, const struct rfade_blocks *blocks)
 {
     double totals[RFADE_COARSE_BINS] = {0.0};
-    enum rfade_status status =
-        blocks == NULL && edges_db == NULL
-            ? rfade_classes_of_column(workspace->quick, quick_count, &workspace->classes)
-            : rfade_classes_by_edges(workspace->quick, quick_count,
-                                     edges_db == NULL ? rfade_coarse_edges_db : edges_db,
-                                     &workspace->classes);
-    if (status != RFADE_OK) {
-        return status;
-    }
-    for (size_t i = 0; i < quick_count; i++) {
-        totals[workspace->classes.of_bin[i]] += workspace->quick[i].weight;
+    for (size_t i = 0; i < bin_count; i++) {
+        totals[rfade_class_of(workspace->edges_db, rfade_bin_place(&bins[i]))] +=
+            bins[i].weight;
     }
     rfade_class_covariance(blocks, totals, &workspace->covariance);
-    return RFADE_OK;
 }
 
 static enum rfade_status prepare(const struct rfade_bin *bins, size_t bin_count,
@@ -59,22 +71,22 @@ static enum rfade_status prepare(const struct rfade_bin *bins, size_t bin_count,
     }
     enum rfade_status status = rfade_bins_moments(bins, bin_count, &workspace->moments);
     if (status == RFADE_OK) {
-        status = rfade_bins_shorten(bins, bin_count, &workspace->moments, &workspace->quick,
-                                    &quick_count);
+        status = choose_edges(bins, bin_count, settings->blocks, edges_db, workspace);
     }
     if (status == RFADE_OK) {
-        status = classify(workspace, quick_count, settings->blocks, edges_db);
+        status = rfade_bins_shorten(bins, bin_count, &workspace->moments, workspace->edges_db,
+                                    &workspace->quick, &quick_count);
     }
     if (status != RFADE_OK) {
         return status;
     }
-    bool shorter = quick_count < bin_count;
+    measure_covariance(workspace, workspace->quick, quick_count, settings->blocks);
     workspace->problem = (struct rfade_problem){
-        .bins = shorter ? bins : workspace->quick,
+        .bins = quick_count < bin_count ? bins : workspace->quick,
         .bin_count = bin_count,
         .quick = workspace->quick,
         .quick_count = quick_count,
-        .classes = &workspace->classes,
+        .edges_db = workspace->edges_db,
         .covariance = &workspace->covariance,
         .settings = settings,
         .start_db = workspace->moments.mean_power_db,
@@ -87,7 +99,6 @@ static enum rfade_status prepare(const struct rfade_bin *bins, size_t bin_count,
 static void release(struct workspace *workspace)
 {
     free(workspace->quick);
-    rfade_classes_clear(&workspace->classes);
 }
 
 /* Readings over the design effect of their mean power. */
@@ -101,7 +112,7 @@ static double effective_count(const struct workspace *workspace)
     }
     for (size_t i = 0; i < problem->quick_count; i++) {
         const struct rfade_bin *bin = &problem->quick[i];
-        int place = workspace->classes.of_bin[i];
+        int place = rfade_class_of(workspace->edges_db, rfade_bin_place(bin));
         weight[place] += bin->weight;
         power[place] += bin->weight * rfade_bin_power(bin, workspace->moments.mean_power_db);
     }

@@ -112,8 +112,11 @@ static enum rfade_status find_maximum(const struct rfade_problem *problem,
     all.bin_count = problem->bin_count;
     if (status == RFADE_OK && problem->bins != problem->quick) {
         status = rfade_polish(&all, exact);
+        if (status == RFADE_NO_CONVERGENCE) {
+            status = rfade_maximise(&all, quick->theta, exact);
+        }
     }
-    if (status == RFADE_OK && quick->at_spread_min) {
+    if (status == RFADE_OK && exact->at_spread_min) {
         status = value_at_boundary(&all, exact->theta[RFADE_LOCATION], &exact->value);
     }
     return status;
@@ -130,30 +133,40 @@ static double corrected_parameter(const struct rfade_problem *problem,
     return rfade_parameter_of_spread(model, widest ? lowest : corrected);
 }
 
-/* Both ends of an interval in theta[dimension]; one-sided where the estimate is at an end. */
+/*
+ * Both ends of an interval in theta[dimension]; one-sided where the estimate is at an end.
+ * Profiles of the quick bins are set off from their own maximum.
+ */
 static enum rfade_status find_ends(const struct rfade_problem *problem,
                                    const struct rfade_fit_details *details, int dimension,
                                    bool one_sided, double ends[2])
 {
+    const struct rfade_sample *sample = &details->sample;
     double confidence = problem->settings->confidence;
     double probability = one_sided ? confidence : 0.5 * (1.0 + confidence);
     double deviate = rfade_deviate(probability, problem->covariance->degrees_of_freedom) *
                      sqrt(details->spread.design_effect[dimension]);
-    enum rfade_status status = rfade_profile_end(&details->sample, &details->maximum, dimension,
-                                                 -1, deviate, &ends[0]);
-    if (status == RFADE_OK) {
-        status = rfade_profile_end(&details->sample, &details->maximum, dimension, 1, deviate,
-                                   &ends[1]);
+    double offset = details->exact.theta[dimension] - details->maximum.theta[dimension];
+    for (int i = 0; i < 2; i++) {
+        enum rfade_status status = rfade_profile_end(sample, &details->maximum, dimension,
+                                                     i == 0 ? -1 : 1, deviate, &ends[i]);
+        if (status != RFADE_OK) {
+            return status;
+        }
+        bool limited = dimension == RFADE_SPREAD && (rfade_at_spread_min(sample, ends[i]) ||
+                                                     rfade_at_spread_max(sample, ends[i]));
+        ends[i] += limited ? 0.0 : offset;
     }
-    return status;
+    return RFADE_OK;
 }
 
 static enum rfade_status set_parameter(const struct rfade_problem *problem,
-                                       const struct rfade_fit_details *details, double spread,
+                                       const struct rfade_fit_details *details,
                                        struct rfade_fit *fit)
 {
     const struct rfade_sample *sample = &details->sample;
-    const struct rfade_maximum *maximum = &details->maximum;
+    const struct rfade_maximum *maximum = &details->exact;
+    double spread = maximum->theta[RFADE_SPREAD];
     double ends[2] = {NAN, NAN};
     double corrected = spread + log1p(-problem->settings->narrowing);
     fit->at_lower_boundary =
@@ -167,7 +180,7 @@ static enum rfade_status set_parameter(const struct rfade_problem *problem,
         return status;
     }
     for (int i = 0; i < 2; i++) {
-        bool unresolved = ends[i] >= sample->spread_max;
+        bool unresolved = rfade_at_spread_max(sample, ends[i]);
         ends[i] = corrected_parameter(problem, sample, ends[i]);
         if (unresolved) {
             ends[i] = sample->model->parameter_max;
@@ -213,32 +226,32 @@ enum rfade_status rfade_fit_problem(const struct rfade_model *model,
                                     struct rfade_fit_details *details)
 {
     double ends[2] = {NAN, NAN};
-    struct rfade_maximum exact;
+    const struct rfade_maximum *exact = &details->exact;
     rfade_fit_blank(model, fit);
     memset(details, 0, sizeof *details);
     details->sample = (struct rfade_sample){model, problem->quick, problem->quick_count, 0, 0};
     set_range(problem, &details->sample);
     enum rfade_status status =
-        find_maximum(problem, &details->sample, &details->maximum, &exact);
+        find_maximum(problem, &details->sample, &details->maximum, &details->exact);
     if (status != RFADE_OK) {
         return status;
     }
-    status = rfade_class_scores(&details->sample, problem->classes, &details->maximum,
+    status = rfade_class_scores(&details->sample, problem->edges_db, &details->maximum,
                                 &details->scores);
     if (status != RFADE_OK) {
         return status;
     }
     rfade_estimates_spread(problem->covariance, &details->scores, &details->maximum,
                            rfade_has_spread(model) ? 2 : 1, &details->spread);
-    fit->mean_power_db = exact.theta[RFADE_LOCATION];
-    fit->log_likelihood = exact.value;
+    fit->mean_power_db = exact->theta[RFADE_LOCATION];
+    fit->log_likelihood = exact->value;
     fit->aic = 2.0 * (details->spread.trace - fit->log_likelihood);
     set_matrices(details, fit);
     status = find_ends(problem, details, RFADE_LOCATION, false, ends);
     fit->mean_power_low_db = ends[0];
     fit->mean_power_high_db = ends[1];
     if (status == RFADE_OK && rfade_has_spread(model)) {
-        status = set_parameter(problem, details, exact.theta[RFADE_SPREAD], fit);
+        status = set_parameter(problem, details, fit);
     }
     return status;
 }

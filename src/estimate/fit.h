@@ -11,7 +11,7 @@ struct rfade_problem {
     size_t bin_count;
     const struct rfade_bin *quick; /**< the same readings in fewer bins, or the bins */
     size_t quick_count;
-    const struct rfade_classes *classes; /**< of `quick` */
+    const double *edges_db; /**< of the classes */
     const struct rfade_class_covariance *covariance;
     const struct rfade_estimate_settings *settings;
     double start_db;       /**< mean power by moments */
@@ -23,6 +23,7 @@ struct rfade_problem {
 struct rfade_fit_details {
     struct rfade_sample sample;   /**< of the quick bins */
     struct rfade_maximum maximum; /**< of the quick bins: profiles start from it */
+    struct rfade_maximum exact;   /**< of all bins; the same where they are the same */
     struct rfade_spread_of_estimates spread;
     struct rfade_class_scores scores;
 };

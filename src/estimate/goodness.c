@@ -64,13 +64,14 @@ static bool gather(const struct rfade_problem *problem, struct expectation *expe
     double above[CLASSES] = {0.0};
     double lost = CENSORED_LOST * problem->covariance->readings;
     memset(expectation, 0, sizeof *expectation);
-    for (size_t i = 0; i < problem->quick_count; i++) {
-        const struct rfade_bin *bin = &problem->quick[i];
+    for (size_t i = 0; i < problem->bin_count; i++) {
+        const struct rfade_bin *bin = &problem->bins[i];
+        int class_of = rfade_class_of(problem->edges_db, rfade_bin_place(bin));
         if (isinf(bin->low_db)) {
-            below[problem->classes->of_bin[i]] += bin->weight;
+            below[class_of] += bin->weight;
             expectation->censored += bin->weight;
         } else if (isinf(bin->high_db)) {
-            above[problem->classes->of_bin[i]] += bin->weight;
+            above[class_of] += bin->weight;
             expectation->censored += bin->weight;
         } else if (!add_to_grid(expectation, bin)) {
             return false;
@@ -111,7 +112,7 @@ static enum rfade_status expect_grid(const struct rfade_problem *problem,
     double parameter = rfade_parameter_of_spread(model, theta[RFADE_SPREAD]);
     double low = -INFINITY;
     for (int i = 0; i < CLASSES; i++) {
-        double edge = i == CLASSES - 1 ? INFINITY : problem->classes->edges_db[i];
+        double edge = i == CLASSES - 1 ? INFINITY : problem->edges_db[i];
         struct rfade_bin bin = {low, end_of_class(grid, edge), weight};
         double score[2] = {0.0, 0.0};
         double log_probability = -INFINITY;

@@ -13,6 +13,12 @@ enum { STEPS_MAX = 200, HALVINGS_MAX = 40, IDLE_STEPS_MAX = 8, POLISH_STEPS_MAX 
 static const double STEP_SMALL = 1e-8;
 
 /*
+ * The curvature of a shorter form is that of the whole to a share of 1e-3 or better: so much
+ * of a last step of this size is what is left.
+ */
+static const double POLISH_STEP_SMALL = 1e-6;
+
+/*
  * A rise of this share of the log-likelihood is 5e-8 of a reading's standard deviation; where
  * no step promises as much the likelihood is flat, along a ridge perhaps.
  */
@@ -138,11 +144,10 @@ static bool search(const struct rfade_sample *sample, double theta[2], double st
     return false;
 }
 
-static bool step_is_small(const struct rfade_sample *sample, const double theta[2],
-                          const double step[2])
+static bool step_within(const struct rfade_sample *sample, const double theta[2],
+                        const double step[2], double size)
 {
-    return fabs(step[0]) <= STEP_SMALL * reading_deviation_db(sample, theta) &&
-           fabs(step[1]) <= STEP_SMALL;
+    return fabs(step[0]) <= size * reading_deviation_db(sample, theta) && fabs(step[1]) <= size;
 }
 
 /* Minus the derivative of the gradient along one dimension, by differences to the inside. */
@@ -234,7 +239,7 @@ enum rfade_status rfade_maximise(const struct rfade_sample *sample, const double
         choose_step(sample, theta, &at, &curvature, step);
         double promised = step[0] * at.gradient[0] + step[1] * at.gradient[1];
         double little = RISE_SMALL * (1.0 + fabs(at.value));
-        bool small = step_is_small(sample, theta, step) || promised <= little;
+        bool small = step_within(sample, theta, step, STEP_SMALL) || promised <= little;
         bool risen = search(sample, theta, step, &at);
         idle = at.value - before.value <= little ? idle + 1 : 0;
         if (small || idle >= IDLE_STEPS_MAX) {
@@ -263,13 +268,17 @@ enum rfade_status rfade_polish(const struct rfade_sample *sample, struct rfade_m
         if (status != RFADE_OK) {
             return status;
         }
-        maximum->value = at.value;
         choose_step(sample, maximum->theta, &at, &maximum->information, step);
-        if (step_is_small(sample, maximum->theta, step)) {
-            return RFADE_OK;
-        }
+        /* So near the top half of what the gradient promises is the rise, to third order. */
+        maximum->value = at.value + 0.5 * (step[0] * at.gradient[0] + step[1] * at.gradient[1]);
         maximum->theta[0] += step[0];
         maximum->theta[1] += step[1];
+        if (step_within(sample, maximum->theta, step, POLISH_STEP_SMALL)) {
+            bool held = spread_held(sample, maximum->theta, at.gradient[1]);
+            maximum->at_spread_min = held && rfade_has_spread(sample->model) &&
+                                     rfade_at_spread_min(sample, maximum->theta[1]);
+            return RFADE_OK;
+        }
     }
     return RFADE_NO_CONVERGENCE;
 }

@@ -12,7 +12,7 @@
 enum { EVALUATIONS_MAX = 400, NEWTON_TRIES_MAX = 5 };
 
 /* Relative, of the deviate; an interval's end is itself uncertain by more. */
-static const double DEVIATE_ACCURACY = 1e-4;
+static const double DEVIATE_ACCURACY = 1e-3;
 
 /* What may be missing along the other dimension, of deviate^2. */
 static const double RESIDUAL_SHARE = 1e-3;
