@@ -11,14 +11,6 @@
 /* More blocks than this tell nothing new; fewer make a variance too uncertain. */
 enum { BLOCKS_MAX = 1000 };
 
-struct column {
-    struct rfade_bin *bins;
-    size_t bin_count;
-    double edges_db[RFADE_CLASS_EDGES];
-    struct rfade_blocks blocks;
-    int64_t (*weights)[RFADE_COARSE_BINS];
-};
-
 static bool below(const struct rfade_column_settings *settings, double level_dbm)
 {
     return level_dbm <= settings->floor_dbm; /* false for a floor of NaN */
@@ -49,27 +41,25 @@ static int compare_levels(const void *a, const void *b)
     return (first > second) - (first < second);
 }
 
-/* Equal readings are one bin; in ascending order. */
+/* Equal readings are one bin; in ascending order. Room for `count` bins. */
 static enum rfade_status group(const double *levels_dbm, size_t count,
                                const struct rfade_column_settings *settings, double step_db,
-                               struct column *column)
+                               struct rfade_bin *bins, size_t *bin_count)
 {
     double *sorted = malloc(count * sizeof *sorted);
-    column->bins = malloc(count * sizeof *column->bins);
-    if (sorted == NULL || column->bins == NULL) {
-        free(sorted);
+    *bin_count = 0;
+    if (sorted == NULL) {
         return RFADE_NO_MEMORY;
     }
     memcpy(sorted, levels_dbm, count * sizeof *sorted);
     qsort(sorted, count, sizeof *sorted, compare_levels);
     for (size_t i = 0; i < count; i++) {
         struct rfade_bin bin = bin_of_level(settings, step_db, sorted[i]);
-        struct rfade_bin *last =
-            column->bin_count == 0 ? NULL : &column->bins[column->bin_count - 1];
+        struct rfade_bin *last = *bin_count == 0 ? NULL : &bins[*bin_count - 1];
         if (last != NULL && last->low_db == bin.low_db && last->high_db == bin.high_db) {
             last->weight += 1.0;
         } else {
-            column->bins[column->bin_count++] = bin;
+            bins[(*bin_count)++] = bin;
         }
     }
     free(sorted);
@@ -82,21 +72,25 @@ static enum rfade_status group(const double *levels_dbm, size_t count,
  */
 static enum rfade_status measure_blocks(const double *levels_dbm, size_t count,
                                         const struct rfade_column_settings *settings,
-                                        double step_db, struct column *column)
+                                        double step_db, const double *edges_db,
+                                        struct rfade_blocks *blocks)
 {
     size_t wanted = (size_t)ceil(sqrt((double)count));
     size_t block_count = wanted < BLOCKS_MAX ? wanted : BLOCKS_MAX;
-    column->weights = calloc(block_count, sizeof *column->weights);
-    if (column->weights == NULL) {
+    int64_t(*weights)[RFADE_COARSE_BINS] = calloc(block_count, sizeof *weights);
+    memset(blocks, 0, sizeof *blocks);
+    if (weights == NULL) {
         return RFADE_NO_MEMORY;
     }
     for (size_t i = 0; i < count; i++) {
         struct rfade_bin bin = bin_of_level(settings, step_db, levels_dbm[i]);
         size_t block = (size_t)((double)i / (double)count * (double)block_count);
-        column->weights[block][rfade_class_of(column->edges_db, rfade_bin_place(&bin))]++;
+        weights[block][rfade_class_of(edges_db, rfade_bin_place(&bin))]++;
     }
-    return rfade_blocks_add(&column->blocks,
-                            (const int64_t(*)[RFADE_COARSE_BINS])column->weights, block_count);
+    enum rfade_status status =
+        rfade_blocks_add(blocks, (const int64_t(*)[RFADE_COARSE_BINS])weights, block_count);
+    free(weights);
+    return status;
 }
 
 static bool column_valid(const double *levels_dbm, size_t count,
@@ -111,13 +105,31 @@ static bool column_valid(const double *levels_dbm, size_t count,
     return !crossed && !(settings->step_db < 0.0) && !isinf(settings->step_db);
 }
 
+static enum rfade_status estimate_grouped(const double *levels_dbm, size_t count,
+                                          const struct rfade_column_settings *settings,
+                                          double step_db, const struct rfade_bin *bins,
+                                          size_t bin_count, struct rfade_estimate *estimate)
+{
+    struct rfade_estimate_settings estimate_settings = {settings->confidence, NULL, 0.0, false};
+    struct rfade_blocks blocks;
+    double edges_db[RFADE_CLASS_EDGES];
+    rfade_class_edges(bins, bin_count, edges_db);
+    if (!settings->independent) {
+        enum rfade_status status =
+            measure_blocks(levels_dbm, count, settings, step_db, edges_db, &blocks);
+        if (status != RFADE_OK) {
+            return status;
+        }
+        estimate_settings.blocks = &blocks;
+    }
+    return rfade_estimate_classes(bins, bin_count, &estimate_settings, edges_db, estimate);
+}
+
 enum rfade_status rfade_estimate_column(const double *levels_dbm, size_t count,
                                         const struct rfade_column_settings *settings,
                                         struct rfade_column_estimate *result)
 {
-    struct column column;
-    struct rfade_estimate_settings estimate_settings = {settings->confidence, NULL, 0.0, false};
-    memset(&column, 0, sizeof column);
+    size_t bin_count = 0;
     memset(result, 0, sizeof *result);
     rfade_estimate_blank(&result->estimate);
     result->step_db = NAN;
@@ -133,19 +145,16 @@ enum rfade_status rfade_estimate_column(const double *levels_dbm, size_t count,
         result->below_floor += below(settings, levels_dbm[i]) ? 1 : 0;
         result->above_ceiling += above(settings, levels_dbm[i]) ? 1 : 0;
     }
-    enum rfade_status status = group(levels_dbm, count, settings, result->step_db, &column);
+    struct rfade_bin *bins = malloc(count * sizeof *bins);
+    if (bins == NULL) {
+        return RFADE_NO_MEMORY;
+    }
+    enum rfade_status status =
+        group(levels_dbm, count, settings, result->step_db, bins, &bin_count);
     if (status == RFADE_OK) {
-        rfade_class_edges(column.bins, column.bin_count, column.edges_db);
+        status = estimate_grouped(levels_dbm, count, settings, result->step_db, bins, bin_count,
+                                  &result->estimate);
     }
-    if (status == RFADE_OK && !settings->independent) {
-        status = measure_blocks(levels_dbm, count, settings, result->step_db, &column);
-        estimate_settings.blocks = &column.blocks;
-    }
-    if (status == RFADE_OK) {
-        status = rfade_estimate_classes(column.bins, column.bin_count, &estimate_settings,
-                                        column.edges_db, &result->estimate);
-    }
-    free(column.weights);
-    free(column.bins);
+    free(bins);
     return status;
 }

@@ -247,20 +247,39 @@ static void traces(const struct rfade_class_covariance *covariance, const struct
     }
 }
 
+/* p-value of a statistic whose null distribution has these traces. */
+static double judge(const struct rfade_class_covariance *covariance,
+                    const struct pooled *pooled, int parameters)
+{
+    double statistic = 0.0;
+    double trace = 0.0;
+    double square = 0.0;
+    double f = covariance->degrees_of_freedom;
+    for (int i = 0; i < pooled->count; i++) {
+        double difference = pooled->observed[i] - pooled->expected[i];
+        statistic += difference * difference / pooled->expected[i];
+    }
+    traces(covariance, pooled, &trace, &square);
+    if (!(trace > 0.0)) {
+        return NAN;
+    }
+    double most = pooled->count - 1 - parameters;
+    double freedom = square > 0.0 ? fmin(fmax(trace * trace / square, 1.0), most) : most;
+    return isinf(f) ? gsl_cdf_chisq_Q(statistic * freedom / trace, freedom)
+                    : gsl_cdf_fdist_Q(statistic / trace, freedom, freedom * f);
+}
+
 enum rfade_status rfade_goodness(const struct rfade_problem *problem,
                                  const struct rfade_fit_details *details, double *p)
 {
+    const struct rfade_class_covariance *covariance = problem->covariance;
     struct expectation expectation;
     struct pooled pooled;
     int pool_of[CLASSES];
-    double trace = 0.0;
-    double square = 0.0;
-    double statistic = 0.0;
     int parameters = rfade_has_spread(details->sample.model) ? 2 : 1;
-    double f = problem->covariance->degrees_of_freedom;
     *p = NAN;
-    if (!problem->covariance->measured || f < FREEDOM_MIN || details->maximum.at_spread_max ||
-        !gather(problem, &expectation)) {
+    if (!covariance->measured || covariance->degrees_of_freedom < FREEDOM_MIN ||
+        details->maximum.at_spread_max || !gather(problem, &expectation)) {
         return RFADE_OK;
     }
     enum rfade_status status = expect(problem, details, &expectation);
@@ -268,21 +287,9 @@ enum rfade_status rfade_goodness(const struct rfade_problem *problem,
         return status;
     }
     pooled.count = pool_classes(&expectation, details->spread.trace / parameters, pool_of);
-    if (pooled.count < parameters + 2) {
-        return RFADE_OK;
+    if (pooled.count >= parameters + 2) {
+        pool(problem, details, &expectation, pool_of, &pooled);
+        *p = judge(covariance, &pooled, parameters);
     }
-    pool(problem, details, &expectation, pool_of, &pooled);
-    for (int i = 0; i < pooled.count; i++) {
-        double difference = pooled.observed[i] - pooled.expected[i];
-        statistic += difference * difference / pooled.expected[i];
-    }
-    traces(problem->covariance, &pooled, &trace, &square);
-    if (!(trace > 0.0)) {
-        return RFADE_OK;
-    }
-    double most = pooled.count - 1 - parameters;
-    double freedom = square > 0.0 ? fmin(fmax(trace * trace / square, 1.0), most) : most;
-    *p = isinf(f) ? gsl_cdf_chisq_Q(statistic * freedom / trace, freedom)
-                  : gsl_cdf_fdist_Q(statistic / trace, freedom, freedom * f);
     return RFADE_OK;
 }

@@ -159,6 +159,10 @@ static enum rfade_status measure_column(const struct rfade_sample *sample,
     double down = spread && centre[1] - size < sample->spread_min ? 0.0 : size;
     double up = spread && centre[1] + size > sample->spread_max ? 0.0 : size;
     double theta[2] = {centre[0], centre[1]};
+    column[0] = column[1] = 0.0;
+    if (!(down + up > 0.0)) {
+        return RFADE_OK; /* a spread held at one value */
+    }
     struct rfade_likelihood below;
     struct rfade_likelihood above;
     theta[dimension] = centre[dimension] - down;

@@ -100,8 +100,9 @@ static void go_to(struct walk *walk, double distance, double other)
 static void see_curvature(struct walk *walk, double gradient, double outer)
 {
     int other = 1 - walk->dimension;
-    double secant = (walk->last_gradient - gradient) / (walk->other - walk->last_other);
-    if (walk->tries > 0 && secant > 0.0 && isfinite(secant)) {
+    double moved = walk->tries > 0 ? walk->other - walk->last_other : 0.0;
+    double secant = moved != 0.0 ? (walk->last_gradient - gradient) / moved : 0.0;
+    if (secant > 0.0) {
         walk->curvature = secant;
     } else {
         walk->curvature = fmax(walk->maximum->information.at[other][other], 0.5 * outer);
