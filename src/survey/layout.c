@@ -173,6 +173,25 @@ static enum rfade_status create(struct rfade_survey *survey, const struct rfade_
     return status;
 }
 
+/* Results and views go first: SQLite doesn't let a table be made anew under a view. */
+static enum rfade_status run_migrations(struct rfade_survey *survey,
+                                        const struct rfade_layout *layout, int64_t version,
+                                        struct rfade_error *error)
+{
+    enum rfade_status status = drop_derived(survey, error);
+    for (const struct rfade_sql *step = layout->migrations; status == RFADE_OK && step->text;
+         step++) {
+        if (step->version <= version)
+            continue;
+        status = rfade_survey_execute(survey, step->text, error);
+        if (status == RFADE_OK)
+            status = set_pragma(survey, "user_version", step->version, error);
+    }
+    if (status == RFADE_OK)
+        status = make_derived(survey, layout, error);
+    return status;
+}
+
 static enum rfade_status migrate_inside(struct rfade_survey *survey,
                                         const struct rfade_layout *layout,
                                         struct rfade_error *error)
@@ -181,21 +200,13 @@ static enum rfade_status migrate_inside(struct rfade_survey *survey,
     bool current = false;
     bool broken = false;
     int64_t ignored = 0;
+    /* Another program may have done it since the version was read. */
     enum rfade_status status = identify(survey, &identity, error);
-    for (const struct rfade_sql *step = layout->migrations; status == RFADE_OK && step->text;
-         step++) {
-        if (step->version <= identity.version)
-            continue;
-        status = rfade_survey_execute(survey, step->text, error);
-        if (status == RFADE_OK)
-            status = set_pragma(survey, "user_version", step->version, error);
-    }
     if (status == RFADE_OK)
         status = derived_is_current(survey, layout, &current, error);
-    if (status == RFADE_OK && !current)
-        status = drop_derived(survey, error);
-    if (status == RFADE_OK && !current)
-        status = make_derived(survey, layout, error);
+    if (status != RFADE_OK || (current && identity.version == layout->version))
+        return status;
+    status = run_migrations(survey, layout, identity.version, error);
     if (status == RFADE_OK)
         status = rfade_survey_integer(survey, &ignored, &broken, error,
                                       "SELECT 1 FROM pragma_foreign_key_check", "");
