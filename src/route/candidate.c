@@ -102,7 +102,8 @@ struct rfade_leg_index *rfade_leg_index_create(const struct rfade_route *route,
         rfade_leg_index_destroy(index);
         return NULL;
     }
-    qsort(index->entries, index->entry_count, sizeof *index->entries, by_square_and_leg);
+    if (index->entry_count > 1)
+        qsort(index->entries, index->entry_count, sizeof *index->entries, by_square_and_leg);
     return index;
 }
 

@@ -127,6 +127,8 @@ static double off_chord_m(const struct rfade_plane *plane, const struct rfade_of
  * the ends to come takes the place of recursion. */
 static bool simplify(struct rfade_place *places, size_t *count, double tolerance_m)
 {
+    if (*count < 3)
+        return true;
     size_t *ends = malloc(*count * sizeof *ends);
     if (!ends)
         return false;
@@ -202,7 +204,7 @@ enum rfade_status rfade_driven_line(const struct rfade_position *positions, size
         return rfade_error_set(error, RFADE_DOMAIN, "give a tolerance above 0 m",
                                "a tolerance of %g m is impossible", tolerance_m);
     struct stretch drive = find_longest(positions, count);
-    if (!(drive.length_m >= shortest_drive_m))
+    if (!(drive.length_m >= shortest_drive_m) || drive.end <= drive.first)
         return rfade_error_set(error, RFADE_NO_DATA, "name a vehicle that has driven the road",
                                "the vehicle's fixes hold no drive of %g m", shortest_drive_m);
     size_t most = drive.end - drive.first;

@@ -168,6 +168,8 @@ bool rfade_find_standing(struct rfade_node *nodes, size_t count, double scatter_
     }
     for (size_t i = 0; i < count; i++)
         nodes[i].speed_m_s = NAN;
+    if (count == 0)
+        return true;
     double *scratch = malloc(count * sizeof *scratch);
     if (!scratch)
         return false;

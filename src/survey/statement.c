@@ -1,5 +1,4 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-#include <math.h>
 #include <stdarg.h>
 
 #include "survey/layout.h"
@@ -30,48 +29,51 @@ void rfade_survey_rollback(struct rfade_survey *survey)
         (void)sqlite3_exec(database, "ROLLBACK", NULL, NULL, NULL);
 }
 
-static int bind_one(sqlite3_stmt *statement, int place, char letter, va_list *values)
+/* Binds the values that follow, one letter of the format each. */
+static int bind_all(sqlite3_stmt *statement, const char *format, va_list values)
 {
-    switch (letter) {
-    case 'i':
-        return sqlite3_bind_int64(statement, place, va_arg(*values, int64_t));
-    case 'd': {
-        double value = va_arg(*values, double);
-        return isnan(value) ? sqlite3_bind_null(statement, place)
-                            : sqlite3_bind_double(statement, place, value);
+    int code = SQLITE_OK;
+    for (int place = 1; code == SQLITE_OK && format[place - 1]; place++) {
+        switch (format[place - 1]) {
+        case 'i':
+            code = sqlite3_bind_int64(statement, place, va_arg(values, int64_t));
+            break;
+        case 'd': /* SQLite stores a NaN as NULL */
+            code = sqlite3_bind_double(statement, place, va_arg(values, double));
+            break;
+        case 't':
+            code = sqlite3_bind_text(statement, place, va_arg(values, const char *), -1,
+                                     SQLITE_TRANSIENT);
+            break;
+        case 'b': {
+            const void *bytes = va_arg(values, const void *);
+            size_t size = va_arg(values, size_t);
+            /* A NULL pointer would bind NULL; an empty BLOB is meant. */
+            code = sqlite3_bind_blob64(statement, place, bytes ? bytes : "", size,
+                                       SQLITE_TRANSIENT);
+            break;
+        }
+        default:
+            return SQLITE_MISUSE;
+        }
     }
-    case 't':
-        return sqlite3_bind_text(statement, place, va_arg(*values, const char *), -1,
-                                 SQLITE_TRANSIENT);
-    case 'b': {
-        const void *bytes = va_arg(*values, const void *);
-        size_t size = va_arg(*values, size_t);
-        /* A NULL pointer would bind NULL; an empty BLOB is meant. */
-        return sqlite3_bind_blob64(statement, place, bytes ? bytes : "", size,
-                                   SQLITE_TRANSIENT);
-    }
-    default:
-        return SQLITE_MISUSE;
-    }
+    return code;
 }
 
 static enum rfade_status prepare(struct rfade_survey *survey, sqlite3_stmt **statement,
                                  struct rfade_error *error, const char *sql, const char *format,
-                                 va_list *values)
+                                 va_list values)
 {
     *statement = NULL;
     if (sqlite3_prepare_v2(rfade_survey_database(survey), sql, -1, statement, NULL) !=
         SQLITE_OK)
         return rfade_survey_failed(survey, "preparing SQL", error);
-    for (int i = 0; format[i]; i++) {
-        if (bind_one(*statement, i + 1, format[i], values) == SQLITE_OK)
-            continue;
-        enum rfade_status status = rfade_survey_failed(survey, "binding a value", error);
-        sqlite3_finalize(*statement);
-        *statement = NULL;
-        return status;
-    }
-    return RFADE_OK;
+    if (bind_all(*statement, format, values) == SQLITE_OK)
+        return RFADE_OK;
+    enum rfade_status status = rfade_survey_failed(survey, "binding a value", error);
+    sqlite3_finalize(*statement);
+    *statement = NULL;
+    return status;
 }
 
 enum rfade_status rfade_survey_prepare(struct rfade_survey *survey, sqlite3_stmt **statement,
@@ -80,7 +82,7 @@ enum rfade_status rfade_survey_prepare(struct rfade_survey *survey, sqlite3_stmt
 {
     va_list values;
     va_start(values, format);
-    enum rfade_status status = prepare(survey, statement, error, sql, format, &values);
+    enum rfade_status status = prepare(survey, statement, error, sql, format, values);
     va_end(values);
     return status;
 }
@@ -101,7 +103,7 @@ enum rfade_status rfade_survey_run(struct rfade_survey *survey, struct rfade_err
     sqlite3_stmt *statement = NULL;
     va_list values;
     va_start(values, format);
-    enum rfade_status status = prepare(survey, &statement, error, sql, format, &values);
+    enum rfade_status status = prepare(survey, &statement, error, sql, format, values);
     va_end(values);
     bool row = true;
     while (status == RFADE_OK && row)
@@ -119,7 +121,7 @@ enum rfade_status rfade_survey_integer(struct rfade_survey *survey, int64_t *val
     sqlite3_stmt *statement = NULL;
     va_list values;
     va_start(values, format);
-    enum rfade_status status = prepare(survey, &statement, error, sql, format, &values);
+    enum rfade_status status = prepare(survey, &statement, error, sql, format, values);
     va_end(values);
     if (status == RFADE_OK)
         status = rfade_survey_step(survey, statement, found, error);

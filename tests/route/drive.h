@@ -102,6 +102,7 @@ static inline void drive_match(struct drive *drive)
     const struct rfade_match_settings settings = rfade_match_defaults();
     assert_int_equal(rfade_matcher_create(drive->route, &settings, &matcher, &error), RFADE_OK);
     free(drive->passes);
+    drive->passes = NULL;
     assert_int_equal(rfade_match_positions(matcher, drive->positions, drive->count,
                                            drive->matches, &drive->passes, &drive->pass_count,
                                            &error),

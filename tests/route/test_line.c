@@ -55,8 +55,8 @@ static void geodesics_match_published_ones(void **state)
 static void the_plane_agrees_with_geodesics_nearby(void **state)
 {
     (void)state;
-    for (double latitude_deg = -75; latitude_deg <= 75; latitude_deg += 15)
-        for (double azimuth_deg = 0; azimuth_deg < 360; azimuth_deg += 20) {
+    for (int latitude_deg = -75; latitude_deg <= 75; latitude_deg += 15)
+        for (int azimuth_deg = 0; azimuth_deg < 360; azimuth_deg += 20) {
             const struct rfade_place origin = {latitude_deg, 179.9999};
             struct rfade_place to = rfade_geodesic_direct(&origin, azimuth_deg, 500);
             struct rfade_plane plane = rfade_plane_at(&origin);

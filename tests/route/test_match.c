@@ -127,11 +127,11 @@ static void turning_round_begins_a_pass(void **state)
     const double points[][2] = {{0, 0}, {3000, 0}};
     struct drive *drive = drive_new(route_of(points, 2), 3, false);
     int t = 0;
-    for (double at_m = 100; at_m < 2000; at_m += 10)
+    for (int at_m = 100; at_m < 2000; at_m += 10)
         drive_fix(drive, t++, at_m, 10);
-    for (double at_m = 2000; at_m > 500; at_m -= 10)
+    for (int at_m = 2000; at_m > 500; at_m -= 10)
         drive_fix(drive, t++, at_m, 10);
-    for (double at_m = 500; at_m < 2900; at_m += 10)
+    for (int at_m = 500; at_m < 2900; at_m += 10)
         drive_fix(drive, t++, at_m, 10);
     drive_match(drive);
     assert_int_equal(drive->pass_count, 3);
@@ -150,11 +150,11 @@ static void scatter_at_rest_is_no_turning_round(void **state)
     const double points[][2] = {{0, 0}, {3000, 0}};
     struct drive *drive = drive_new(route_of(points, 2), 5, false);
     int t = 0;
-    for (double at_m = 100; at_m < 1000; at_m += 10)
+    for (int at_m = 100; at_m < 1000; at_m += 10)
         drive_fix(drive, t++, at_m, 10);
     for (int i = 0; i < 600; i++)
         drive_fix(drive, t++, 1000, 0);
-    for (double at_m = 1000; at_m < 2000; at_m += 10)
+    for (int at_m = 1000; at_m < 2000; at_m += 10)
         drive_fix(drive, t++, at_m, 10);
     drive_match(drive);
     assert_int_equal(drive->pass_count, 1);

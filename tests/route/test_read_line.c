@@ -174,7 +174,7 @@ static void a_driven_line_follows_the_road(void **state)
     struct drive *drive = drive_new(route_of(points, 4), 5, false);
     double length_m = rfade_route_length_m(drive->route);
     int t = 0;
-    for (double at_m = 0; at_m < length_m; at_m += 10) {
+    for (int at_m = 0; at_m < length_m; at_m += 10) {
         drive_fix(drive, t++, at_m, 10);
         for (int i = 0; at_m == 1500 && i < 300; i++)
             drive_fix(drive, t++, at_m, 0);

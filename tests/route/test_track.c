@@ -249,9 +249,9 @@ static void against_the_chainage_travel_still_grows(void **state)
     const double points[][2] = {{0, 0}, {3000, 0}};
     struct drive *drive = drive_new(route_of(points, 2), 5, false);
     int t = 0;
-    for (double at_m = 0; at_m < 1500; at_m += 10)
+    for (int at_m = 0; at_m < 1500; at_m += 10)
         drive_fix(drive, t++, at_m, 10);
-    for (double at_m = 1500; at_m >= 0; at_m -= 10)
+    for (int at_m = 1500; at_m >= 0; at_m -= 10)
         drive_fix(drive, t++, at_m, 10);
     drive_match(drive);
     assert_int_equal(drive->pass_count, 2);

@@ -48,7 +48,7 @@ static void a_time_range_narrows_what_is_read(void **state)
     struct fixture *fixture = *state;
     struct rfade_import *import = begin_file(fixture->survey, "a.csv", 1);
     for (int i = 0; i < 10; i++)
-        put_reading(import, i * 1000, "salt", -9000 - i, 0);
+        put_reading(import, (int64_t)i * 1000, "salt", -9000 - i, 0);
     (void)finish_file(import);
     struct rfade_survey_reading *readings = NULL;
     size_t count = 0;
@@ -118,7 +118,7 @@ static void a_reading_takes_about_20_bytes(void **state)
         integer_of(fixture->survey, "SELECT page_count * page_size FROM pragma_page_count, "
                                     "pragma_page_size");
     print_message("%.2f bytes a reading\n", (double)bytes / 200000);
-    assert_true(bytes < 22 * 200000);
+    assert_true(bytes < INT64_C(22) * 200000);
 }
 
 static void the_same_bytes_are_known_under_any_name(void **state)
@@ -177,7 +177,7 @@ static void fixes_are_stored_once_a_position(void **state)
     struct fixture *fixture = *state;
     struct rfade_import *import = begin_file(fixture->survey, "a.csv", 1);
     for (int i = 0; i < 100; i++) /* one position beside a hundred rows */
-        put_fix(import, i * 10000, 51.0, 7.0);
+        put_fix(import, (int64_t)i * 10000, 51.0, 7.0);
     put_fix(import, 1000000, 51.1, 7.0);
     put_fix(import, 1000000, 51.2, 7.0); /* differs: the first stays */
     put_fix(import, 1000000, 51.1, 7.0); /* repeats */
