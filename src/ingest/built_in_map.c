@@ -1,6 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include "ingest/built_in_map.h"
 
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -47,9 +48,9 @@ enum { ROLE_COUNT = RFADE_ROLE_LEVELS + 2 };
 struct roles {
     size_t columns[ROLE_COUNT];
     size_t count;
-    const char *twice; /* name of a role's second column; NULL: none */
-    bool other_unit;   /* the level's brackets don't say dBm */
-    bool metres;       /* the speed is in m/s */
+    char twice[RFADE_NAME_SIZE]; /* name of a role's second column; empty: none */
+    bool other_unit;             /* the level's brackets don't say dBm */
+    bool metres;                 /* the speed is in m/s */
 };
 
 /* Whether the unit in the name's brackets, if any, is dBm or dB. */
@@ -72,7 +73,7 @@ static void take_name(struct roles *roles, const char *name, size_t column)
         if (strcmp(known_names[i].name, plain) != 0)
             continue;
         if (roles->columns[role] > 0)
-            roles->twice = name;
+            (void)snprintf(roles->twice, sizeof roles->twice, "%s", name);
         roles->columns[role] = column;
         roles->count++;
         if (role == RFADE_ROLE_LEVELS)
@@ -156,7 +157,7 @@ static enum rfade_status check_roles(const struct roles *roles, struct rfade_err
 {
     bool place = roles->columns[RFADE_ROLE_FIRST] && roles->columns[RFADE_ROLE_SECOND];
     bool level = roles->columns[RFADE_ROLE_LEVELS] || roles->columns[RFADE_ROLE_LEVELS + 1];
-    if (roles->twice)
+    if (roles->twice[0])
         return rfade_error_set(
             error, RFADE_INPUT, "say with --columns FILE.ini which column is meant",
             "the header has two columns for what '%.80s' holds", roles->twice);

@@ -128,6 +128,9 @@ static char *next_line(char *line, int size, void *context)
     memcpy(line, start, length);
     line[length] = '\0';
     char *bracket = line[0] == '[' ? strchr(line, ']') : NULL;
+    if (line[0] == '[' && !bracket)
+        refuse(reading, "write `key = value`, [section], or a comment that starts with #",
+               "a section without its closing bracket:", line);
     if (bracket) {
         char name[256];
         *bracket = '\0';

@@ -281,6 +281,20 @@ static bool has_time(const struct look *look, uint16_t time_slot, uint16_t date_
     return size > 0 && !rfade_time_read(&reader, joined, (size_t)size, &time_us);
 }
 
+/* The commonest number of values among the rows that have all columns; of two the larger.
+ * False if no row has them all. */
+static bool settle_value_count(struct rfade_layout *layout,
+                               const size_t counts[RFADE_MOST_COLUMNS + 1])
+{
+    size_t most = 0;
+    for (size_t i = layout->last_column; i <= RFADE_MOST_COLUMNS; i++)
+        if (counts[i] > 0 && counts[i] >= most) {
+            layout->value_count = i;
+            most = counts[i];
+        }
+    return most > 0;
+}
+
 /* Counts the values of the first rows. `line` is the first that can be data. */
 static enum rfade_status look_at_rows(struct look *look, struct rfade_error *error)
 {
@@ -302,14 +316,11 @@ static enum rfade_status look_at_rows(struct look *look, struct rfade_error *err
         rows++;
         timed += has_time(look, time_slot, date_slot);
     }
-    for (size_t i = 0; i <= RFADE_MOST_COLUMNS; i++)
-        if (counts[i] > counts[layout->value_count])
-            layout->value_count = i;
-    if (rows > 0 && layout->value_count < layout->last_column)
+    if (rows > 0 && !settle_value_count(layout, counts))
         return rfade_error_set(error, RFADE_INPUT,
                                "check the map's separator and its column numbers",
-                               "%s asks for column %zu, and the rows have %zu values",
-                               look->map->name, layout->last_column, layout->value_count);
+                               "%s asks for column %zu, and no row has so many values",
+                               look->map->name, layout->last_column);
     if (rows > 0 && timed == 0 && look->map->file.header == RFADE_HEADER_NONE)
         return rfade_error_set(error, RFADE_INPUT, "check the map's time column and format",
                                "no row has a time as %s describes it", look->map->name);
