@@ -203,8 +203,10 @@ enum rfade_status rfade_tracks_add(struct rfade_tracks *tracks,
     enum rfade_status status = RFADE_OK;
     if (track->waiting.any && same_place(&track->waiting.first, fix)) {
         track->waiting.latest = *fix;
-        return stands(tracks, &track->waiting) ? accept_waiting(tracks, track, error)
-                                               : RFADE_OK;
+        if (!stands(tracks, &track->waiting))
+            return RFADE_OK;
+        status = accept_waiting(tracks, track, error);
+        return status == RFADE_OK ? stay_here(tracks, &track->present, fix, error) : status;
     }
     if (reachable(tracks, &track->present, fix)) {
         status = refuse_waiting(tracks, track, error);
