@@ -1,0 +1,138 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/*
+ * A log read by the built-in map and by three others. Whatever it holds: all that comes out
+ * is in range, and every row is a reading, a position, or refused with a reason, or says
+ * itself that there is nothing.
+ */
+#include <math.h>
+#include <string.h>
+
+#include "ingest/built_in_map.h"
+#include "ingest/delimited.h"
+#include "ingest/kind.h"
+
+#include "fuzz.h"
+
+struct bytes {
+    const char *at;
+    size_t left;
+};
+
+struct counts {
+    size_t readings, fixes, refused;
+};
+
+static enum rfade_status read_bytes(void *context, char *buffer, size_t capacity, size_t *size,
+                                    struct rfade_error *error)
+{
+    struct bytes *bytes = context;
+    (void)error;
+    *size = bytes->left < capacity ? bytes->left : capacity;
+    if (*size > 0)
+        memcpy(buffer, bytes->at, *size);
+    bytes->at += *size;
+    bytes->left -= *size;
+    return RFADE_OK;
+}
+
+static enum rfade_status take_reading(void *context, const struct rfade_ingest_reading *reading,
+                                      struct rfade_error *error)
+{
+    struct counts *counts = context;
+    (void)error;
+    counts->readings++;
+    FUZZ_REQUIRE(reading->time_us >= RFADE_EARLIEST_US);
+    FUZZ_REQUIRE(reading->vehicle[0] && reading->channel[0] && reading->campaign[0]);
+    FUZZ_REQUIRE(reading->level_cdb != RFADE_NO_VALUE_CDB ||
+                 reading->snr_cdb != RFADE_NO_VALUE_CDB);
+    FUZZ_REQUIRE(reading->level_cdb == RFADE_NO_VALUE_CDB ||
+                 (reading->level_cdb >= -20000 && reading->level_cdb <= 6000));
+    return RFADE_OK;
+}
+
+static enum rfade_status take_fix(void *context, const struct rfade_ingest_fix *fix,
+                                  struct rfade_error *error)
+{
+    struct counts *counts = context;
+    (void)error;
+    counts->fixes++;
+    FUZZ_REQUIRE(fix->latitude_deg >= -90 && fix->latitude_deg <= 90);
+    FUZZ_REQUIRE(fix->longitude_deg >= -180 && fix->longitude_deg < 180);
+    FUZZ_REQUIRE(isnan(fix->speed_m_s) || fix->speed_m_s >= 0);
+    return RFADE_OK;
+}
+
+static enum rfade_status take_refusal(void *context, const struct rfade_ingest_refusal *refusal,
+                                      struct rfade_error *error)
+{
+    struct counts *counts = context;
+    (void)error;
+    counts->refused++;
+    FUZZ_REQUIRE(refusal->line >= 1 && refusal->reason[0] != '\0');
+    return RFADE_OK;
+}
+
+static void read_with(const struct rfade_column_map *map, const char *text, size_t size)
+{
+    struct rfade_layout *layout = NULL;
+    if (rfade_layout_create(map, text, size, true, &layout, NULL) != RFADE_OK) {
+        FUZZ_REQUIRE(!layout);
+        return;
+    }
+    struct bytes bytes = {text, size};
+    struct rfade_byte_source source = {&bytes, read_bytes};
+    struct counts counts = {0};
+    struct rfade_sink sink = {&counts, take_reading, take_fix, take_refusal};
+    struct rfade_ingest_names names = {.vehicle = "fuzz"};
+    struct rfade_ingest_summary summary = {0};
+    struct rfade_line_reader *lines = rfade_line_reader_create(&source);
+    if (!lines)
+        abort();
+    (void)rfade_delimited_read(lines, map, layout, &names, &sink, &summary, NULL);
+    FUZZ_REQUIRE(summary.readings == counts.readings && summary.fixes == counts.fixes);
+    FUZZ_REQUIRE(summary.refused == counts.refused && summary.rows <= summary.lines);
+    size_t levels = map->level_count;
+    FUZZ_REQUIRE(levels == 0 ||
+                 summary.readings + summary.no_reading + summary.refused * levels >=
+                     summary.rows);
+    rfade_line_reader_destroy(lines);
+    free(layout);
+}
+
+static struct rfade_column_map *made(const char *text)
+{
+    struct rfade_column_map *map = NULL;
+    if (rfade_column_map_parse(text, strlen(text), "fuzz.ini", &map, NULL) != RFADE_OK)
+        abort();
+    return map;
+}
+
+int LLVMFuzzerTestOneInput(const uint8_t *data, size_t size)
+{
+    static const char blanks[] =
+        "[file]\nseparator = blanks\nheader = no\n[time]\ncolumn = 1\n[position]\n"
+        "x_column = 2\ny_column = 3\norigin_latitude = 54\norigin_longitude = -2\n"
+        "[vehicle]\ncolumn = 4\n[level a]\ncolumn = 5\n[level b]\ncolumn = 6\nunit = mw\n";
+    static const char semicolon[] =
+        "[file]\nseparator = semicolon\ndecimal = comma\nheader = no\nrows = ragged\n"
+        "[time]\ncolumn = 2\ndate_column = 1\nformat = pattern %d.%m.%Y %H:%M:%S\n"
+        "zone = Europe/Berlin\n[channel]\ncolumn = 4\n[level]\ncolumn = 3\nno_reading = 0\n";
+    static const char second_line[] =
+        "[file]\nheader = 2\nquote = none\n[time]\ncolumn = time\n[position]\n"
+        "latitude_column = lat\nlongitude_column = lon\n[level]\ncolumn = rssi\n";
+    static const char *const texts[] = {blanks, semicolon, second_line};
+    enum { MAPS = sizeof texts / sizeof texts[0] };
+    static struct rfade_column_map *maps[MAPS];
+    for (size_t i = 0; i < MAPS; i++)
+        if (!maps[i])
+            maps[i] = made(texts[i]);
+    const char *text = (const char *)data;
+    (void)rfade_other_kind(text, size);
+    for (size_t i = 0; i < MAPS; i++)
+        read_with(maps[i], text, size);
+    struct rfade_column_map *built_in = NULL;
+    if (rfade_built_in_map(text, size, &built_in, NULL) == RFADE_OK)
+        read_with(built_in, text, size);
+    rfade_column_map_destroy(built_in);
+    return 0;
+}
