@@ -41,25 +41,26 @@ static bool is_blank(char c)
     return c == ' ' || c == '\t';
 }
 
-/* Takes one digit in; `shift` is -1 behind the decimal sign and 0 before it. */
-static void take_digit(struct rfade_decimal *decimal, int *digits, int digit, int shift)
-{
-    if (*digits < MAX_DIGITS) {
-        decimal->mantissa = decimal->mantissa * 10 + (uint64_t)digit;
-        decimal->exponent += shift;
-        *digits += decimal->mantissa != 0;
-    } else {
-        decimal->inexact = decimal->inexact || digit != 0;
-        decimal->exponent += shift + 1;
-    }
-}
-
-/* Reads the digits on one side of the decimal sign. */
+/* Reads the digits on one side of the decimal sign; `shift` is -1 behind it and 0 before.
+ * Digits are counted from the first that isn't 0. */
 static const char *take_digits(struct rfade_decimal *decimal, int *digits, const char *at,
                                const char *end, int shift)
 {
-    for (; at < end && is_digit(*at); at++)
-        take_digit(decimal, digits, *at - '0', shift);
+    uint64_t mantissa = decimal->mantissa;
+    int32_t exponent = decimal->exponent;
+    int count = *digits;
+    for (; at < end && is_digit(*at) && count < MAX_DIGITS; at++) {
+        mantissa = mantissa * 10 + (uint64_t)(*at - '0');
+        exponent += shift;
+        count += mantissa != 0;
+    }
+    for (; at < end && is_digit(*at); at++) {
+        decimal->inexact = decimal->inexact || *at != '0';
+        exponent += shift + 1;
+    }
+    decimal->mantissa = mantissa;
+    decimal->exponent = exponent;
+    *digits = count;
     return at;
 }
 

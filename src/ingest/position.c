@@ -17,9 +17,6 @@ struct rfade_position_converter {
     struct geod_geodesic ellipsoid; /* local form */
     PJ_CONTEXT *context;            /* grid form */
     PJ *transformation;
-    double first; /* converted last: rows repeat positions */
-    double second;
-    const char *reason;
     double latitude_deg;
     double longitude_deg;
 };
@@ -80,8 +77,6 @@ enum rfade_status rfade_position_converter_create(const struct rfade_position_ma
     if (!made)
         return rfade_error_set(error, RFADE_NO_MEMORY, NULL, "no memory for positions");
     made->map = map;
-    made->first = NAN;
-    made->second = NAN;
     geod_init(&made->ellipsoid, 6378137, 1 / 298.257223563); /* WGS 84 */
     enum rfade_status status =
         map->form == RFADE_POSITION_GRID ? open_grid(made, error) : RFADE_OK;
@@ -135,22 +130,17 @@ static void convert(struct rfade_position_converter *converter, double first, do
         converter->longitude_deg = second;
         break;
     }
-    if (converter->longitude_deg == 180)
-        converter->longitude_deg = -180;
-    bool valid = converter->latitude_deg >= -90 && converter->latitude_deg <= 90 &&
-                 converter->longitude_deg >= -180 && converter->longitude_deg < 180;
-    converter->reason = valid ? NULL : "is no place on the earth";
 }
 
 const char *rfade_position_convert(struct rfade_position_converter *converter, double first,
                                    double second, double *latitude_deg, double *longitude_deg)
 {
-    if (first != converter->first || second != converter->second) {
-        convert(converter, first, second);
-        converter->first = first;
-        converter->second = second;
-    }
-    *latitude_deg = converter->reason ? NAN : converter->latitude_deg;
-    *longitude_deg = converter->reason ? NAN : converter->longitude_deg;
-    return converter->reason;
+    convert(converter, first, second);
+    if (converter->longitude_deg == 180)
+        converter->longitude_deg = -180;
+    bool valid = converter->latitude_deg >= -90 && converter->latitude_deg <= 90 &&
+                 converter->longitude_deg >= -180 && converter->longitude_deg < 180;
+    *latitude_deg = valid ? converter->latitude_deg : NAN;
+    *longitude_deg = valid ? converter->longitude_deg : NAN;
+    return valid ? NULL : "is no place on the earth";
 }

@@ -4,7 +4,6 @@
 #include <math.h>
 #include <string.h>
 
-#include "ingest/number.h"
 #include "ingest/sink.h"
 
 /* 1 uV across 50 ohm is 2e-14 W: dBm = dBuV - (90 + 10 log10(50)). */
@@ -22,35 +21,45 @@ static bool is_word(const char *word, const char *text, size_t size)
 
 static bool is_nothing(const char *text, size_t size)
 {
-    static const char *const words[] = {"nan", "na", "n/a", "null", "none", "-", "--"};
-    if (size == 0)
-        return true;
-    if (size > 4 || (text[0] >= '0' && text[0] <= '9'))
-        return false;
+    static const char *const words[] = {"", "nan", "na", "n/a", "null", "none", "-", "--"};
     for (size_t i = 0; i < sizeof words / sizeof words[0]; i++)
         if (is_word(words[i], text, size))
             return true;
     return false;
 }
 
-bool rfade_says_nothing(const struct rfade_sentinels *sentinels, char decimal_sign,
-                        const char *text, size_t size)
+static bool is_sentinel_value(const struct rfade_sentinels *sentinels,
+                              const struct rfade_decimal *decimal)
 {
-    if (is_nothing(text, size))
-        return true;
-    if (sentinels->count == 0)
-        return false;
-    struct rfade_decimal decimal;
-    double value = NAN;
-    if (rfade_decimal_read(text, size, decimal_sign, &decimal))
-        value = rfade_decimal_double(&decimal);
-    for (size_t i = 0; i < sentinels->count; i++) {
+    double value = rfade_decimal_double(decimal);
+    for (size_t i = 0; i < sentinels->count; i++)
         if (value == sentinels->values[i])
             return true;
+    return false;
+}
+
+static bool is_sentinel_text(const struct rfade_sentinels *sentinels, const char *text,
+                             size_t size)
+{
+    for (size_t i = 0; i < sentinels->count; i++)
         if (strlen(sentinels->texts[i]) == size && memcmp(sentinels->texts[i], text, size) == 0)
             return true;
-    }
     return false;
+}
+
+enum rfade_number_kind rfade_number_read(const struct rfade_sentinels *sentinels,
+                                         char decimal_sign, const char *text, size_t size,
+                                         struct rfade_decimal *decimal)
+{
+    if (rfade_decimal_read(text, size, decimal_sign, decimal)) {
+        if (sentinels->count == 0 || !is_sentinel_value(sentinels, decimal))
+            return RFADE_NUMBER;
+        *decimal = (struct rfade_decimal){0};
+        return RFADE_NOTHING;
+    }
+    if (is_nothing(text, size) || is_sentinel_text(sentinels, text, size))
+        return RFADE_NOTHING;
+    return RFADE_NO_NUMBER;
 }
 
 static double to_dbm(enum rfade_level_unit unit, double value)
@@ -90,11 +99,11 @@ const char *rfade_quantity_read(const struct rfade_quantity *quantity, char deci
                                 const char *text, size_t size, int32_t *value_cdb)
 {
     *value_cdb = RFADE_NO_VALUE_CDB;
-    if (rfade_says_nothing(&quantity->sentinels, decimal_sign, text, size))
-        return NULL;
     struct rfade_decimal decimal;
-    if (!rfade_decimal_read(text, size, decimal_sign, &decimal))
-        return "is not a number";
+    enum rfade_number_kind kind =
+        rfade_number_read(&quantity->sentinels, decimal_sign, text, size, &decimal);
+    if (kind != RFADE_NUMBER)
+        return kind == RFADE_NOTHING ? NULL : "is not a number";
     int64_t value = 0;
     if (quantity->unit == RFADE_UNIT_DBM && quantity->scale == 1 && quantity->offset == 0) {
         if (!rfade_decimal_scaled(&decimal, 2, &value))

@@ -4,6 +4,7 @@
 #define ROUTEFADE_INGEST_QUANTITY_H
 
 #include "ingest/column_map_parts.h"
+#include "ingest/number.h"
 
 /**
  * Reads a level (centi-dBm) or a ratio (centi-dB: unit RFADE_UNIT_DBM) by its map. Without
@@ -15,8 +16,14 @@
 const char *rfade_quantity_read(const struct rfade_quantity *quantity, char decimal_sign,
                                 const char *text, size_t size, int32_t *value_cdb);
 
-/** Whether a text says that nothing was there: empty, nan, n/a, ... or one of `sentinels`. */
-bool rfade_says_nothing(const struct rfade_sentinels *sentinels, char decimal_sign,
-                        const char *text, size_t size);
+enum rfade_number_kind { RFADE_NUMBER, RFADE_NOTHING, RFADE_NO_NUMBER };
+
+/**
+ * Reads a number, unless the text says that nothing was there: empty, nan, n/a, ... or one of
+ * the sentinels. *decimal is 0 unless it is a number.
+ */
+enum rfade_number_kind rfade_number_read(const struct rfade_sentinels *sentinels,
+                                         char decimal_sign, const char *text, size_t size,
+                                         struct rfade_decimal *decimal);
 
 #endif

@@ -30,6 +30,11 @@ struct rfade_row_maker {
     const char *campaign;
     uint16_t slots[RFADE_MOST_ROLES];
     size_t last_size; /* of the last value of the row before */
+    bool has_place;   /* a place was read, from these texts: rows repeat positions */
+    struct rfade_field first;
+    struct rfade_field second;
+    double latitude_deg;
+    double longitude_deg;
 };
 
 void rfade_row_maker_destroy(struct rfade_row_maker *maker)
@@ -278,12 +283,14 @@ static bool read_coordinates(const struct rfade_row_maker *maker, struct rfade_r
     for (size_t i = 0; i < 2; i++) {
         const struct rfade_field *value = field(maker, RFADE_ROLE_FIRST + i);
         struct rfade_decimal decimal;
-        if (rfade_says_nothing(&map->no_fix, decimal_sign, value->text, value->size)) {
+        enum rfade_number_kind kind =
+            rfade_number_read(&map->no_fix, decimal_sign, value->text, value->size, &decimal);
+        if (kind == RFADE_NO_NUMBER)
+            return refuse_value(row, "coordinate", value, "is not a number; position not used");
+        if (kind == RFADE_NOTHING) {
             row->no_place = true;
             return false;
         }
-        if (!rfade_decimal_read(value->text, value->size, decimal_sign, &decimal))
-            return refuse_value(row, "coordinate", value, "is not a number; position not used");
         *values[i] = rfade_decimal_double(&decimal);
     }
     if (map->form == RFADE_POSITION_DEGREES && *first == 0 && *second == 0)
@@ -291,13 +298,40 @@ static bool read_coordinates(const struct rfade_row_maker *maker, struct rfade_r
     return !row->no_place;
 }
 
+/* Whether the coordinates are to the letter those that were read last, and good. */
+static bool is_same_place(const struct rfade_row_maker *maker)
+{
+    const struct rfade_field *first = field(maker, RFADE_ROLE_FIRST);
+    const struct rfade_field *second = field(maker, RFADE_ROLE_SECOND);
+    return maker->has_place && first->size == maker->first.size &&
+           second->size == maker->second.size &&
+           memcmp(first->text, maker->first.text, first->size) == 0 &&
+           memcmp(second->text, maker->second.text, second->size) == 0;
+}
+
+static void remember_place(struct rfade_row_maker *maker, const struct rfade_row *row)
+{
+    maker->has_place = row->has_place;
+    maker->first = *field(maker, RFADE_ROLE_FIRST);
+    maker->second = *field(maker, RFADE_ROLE_SECOND);
+    maker->latitude_deg = row->latitude_deg;
+    maker->longitude_deg = row->longitude_deg;
+}
+
 static void read_place(struct rfade_row_maker *maker, struct rfade_row *row)
 {
     enum rfade_position_form form = maker->map->position.form;
     double first = 0;
     double second = 0;
-    if (form == RFADE_POSITION_NONE ||
-        (form != RFADE_POSITION_FIXED && !read_coordinates(maker, row, &first, &second)))
+    if (form == RFADE_POSITION_NONE)
+        return;
+    if (is_same_place(maker)) {
+        row->has_place = true;
+        row->latitude_deg = maker->latitude_deg;
+        row->longitude_deg = maker->longitude_deg;
+        return;
+    }
+    if (form != RFADE_POSITION_FIXED && !read_coordinates(maker, row, &first, &second))
         return;
     const char *reason = rfade_position_convert(maker->converter, first, second,
                                                 &row->latitude_deg, &row->longitude_deg);
@@ -306,17 +340,19 @@ static void read_place(struct rfade_row_maker *maker, struct rfade_row *row)
         (void)refuse(row, "the position %.20s, %.20s %s; not used",
                      field(maker, RFADE_ROLE_FIRST)->text,
                      field(maker, RFADE_ROLE_SECOND)->text, reason);
+    remember_place(maker, row);
 }
 
 static void read_speed(struct rfade_row_maker *maker, struct rfade_row *row)
 {
     static const struct rfade_sentinels none;
-    char decimal_sign = maker->map->file.decimal_sign;
     const struct rfade_field *value = field(maker, RFADE_ROLE_SPEED);
     struct rfade_decimal decimal;
-    if (rfade_says_nothing(&none, decimal_sign, value->text, value->size))
+    enum rfade_number_kind kind = rfade_number_read(&none, maker->map->file.decimal_sign,
+                                                    value->text, value->size, &decimal);
+    if (kind == RFADE_NOTHING)
         return;
-    if (rfade_decimal_read(value->text, value->size, decimal_sign, &decimal))
+    if (kind == RFADE_NUMBER)
         row->speed_m_s = rfade_decimal_double(&decimal) * maker->map->speed_m_s_per_unit;
     if (row->speed_m_s >= 0 && row->speed_m_s <= most_speed_m_s)
         return;
