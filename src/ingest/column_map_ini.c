@@ -95,7 +95,7 @@ static void begin_section(struct reading *reading, char *name)
         refuse(reading, "give a name of at most 127 bytes", "name too long", channel);
         return;
     }
-    (void)snprintf(reading->section, sizeof reading->section, "%s", name);
+    (void)snprintf(reading->section, sizeof reading->section, "%.15s", name);
     if (level)
         begin_level(reading, channel);
     else
