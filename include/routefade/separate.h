@@ -39,7 +39,8 @@ struct rfade_separate_settings {
     double window_wavelengths; /**< width of the local mean's window of travel, [4, 2000];
                                     RFADE_DEFAULT_WINDOW_WAVELENGTHS [Lee 1985] */
     double block_wavelengths;  /**< length of the blocks that measure correlation, [1, 1e5];
-                                    RFADE_DEFAULT_BLOCK_WAVELENGTHS */
+                                    RFADE_DEFAULT_BLOCK_WAVELENGTHS: shorter ones miss
+                                    correlation, longer ones leave a segment too few */
 };
 #define RFADE_DEFAULT_WINDOW_WAVELENGTHS 40.0
 #define RFADE_DEFAULT_BLOCK_WAVELENGTHS 10.0
@@ -146,7 +147,9 @@ RFADE_API void rfade_separation_clear(struct rfade_separation *separation);
  * Share of the power's normalised variance that dividing by the local mean of a centred
  * window takes away, under Rice fading with isotropic scatter [Clarke 1968] and the direct
  * ray across the road: to first order in 1/window, third moments included. Not the same as
- * var(window mean)/var(power): for Rayleigh fading it is about twice that.
+ * var(window mean)/var(power): for Rayleigh fading it is about twice that. With the ray along
+ * the road more is taken away than this says: at 40 wavelengths a K corrected by it came out
+ * 4 to 6 % high (median of 500 simulated segments of 100 m at 457 MHz, K 1, 4 and 10).
  * @param window_wavelengths  [4, 2000]
  * @param k                   Rice K, [0, 1e9]
  * @return the share, or NaN outside the domain

@@ -227,7 +227,7 @@ static void averaging_is_recognised(void **state)
     }
 }
 
-/* A long standstill changes neither the label nor the fading of its segment. */
+/* A long standstill amid travel leaves the labels alone; without any travel it is said. */
 static void a_standstill_changes_no_label(void **state)
 {
     const double place_m = 950.0;
