@@ -5,8 +5,10 @@
 #include <stdio.h>
 #include <stdlib.h>
 
-/* Valid levels unless a map says otherwise: from below the noise of 1 Hz to a kilowatt. */
-enum { LOWEST_LEVEL_CDB = -20000, HIGHEST_LEVEL_CDB = 6000 };
+/* Valid levels unless a map says otherwise: from below the noise of 1 Hz to what destroys the
+ * input of a usual receiver, +20 dBm (common practice). One fault of +48 dBm taken for a
+ * reading would be all of a segment's mean power. */
+enum { LOWEST_LEVEL_CDB = -20000, HIGHEST_LEVEL_CDB = 2000 };
 enum { LOWEST_SNR_CDB = -10000, HIGHEST_SNR_CDB = 15000 };
 
 static const double default_held_s = 2;

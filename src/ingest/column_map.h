@@ -62,11 +62,11 @@
  *
  *     x_column = x             metres east (x) and north (y) of an origin
  *     y_column = y
- *     origin_latitude = 54.1
- *     origin_longitude = -2.3
+ *     origin_latitude = 56.02
+ *     origin_longitude = 3.05
  *
- *     latitude = 54.1          a receiver that stands
- *     longitude = -2.3
+ *     latitude = 56.02         a receiver that stands
+ *     longitude = 3.05
  *
  *     no_fix = -999, 9999      values of either coordinate that mean: no position. An empty
  *                              value and latitude 0 with longitude 0 always do
@@ -94,7 +94,7 @@
  *     no_reading = 0, 127      values, as logged, that mean: no reading. Empty, nan, na, n/a,
  *                              null, none, - and -- always do
  *     valid = -140 .. -20      levels outside are refused; dBm, ends included. Without it
- *                              -200 .. 60
+ *                              -200 .. 20
  *     snr_column = snr_a       dB
  *     snr_scale = 1            as for the level
  *     snr_offset = 0

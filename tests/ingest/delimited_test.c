@@ -144,6 +144,7 @@ static void rows_of_no_use_are_refused_alone(void **state)
         {"2026-01-15T20:15:00Z,54.1,-2.3,loud,14.2", "level 'loud' is not a number"},
         {"2026-01-15T20:15:00Z,54.1,-2.3,-999,14.2", "out of range"},
         {"2026-01-15T20:15:00Z,54.1,-2.3,1e30,14.2", "out of range"},
+        {"2026-01-15T20:15:00Z,54.1,-2.3,20.01,14.2", "out of range"},
         {"2026-01-15T20:15:00Z,54.1,-2.3,-87.5,400", "SNR '400' is out of range"},
         {"2026-01-15T20:15:00Z,54.1,-2.3,-87.5 dBm,14.2", "is not a number"},
         {"2026-01-15T20:15:00Z,54.1,-2.3", "3 values"},
