@@ -6,7 +6,7 @@
 
 static const double longest_leg_m = 500;
 static const double same_place_m = 0.001;
-static const double shortest_rest_m = 1;
+static const double shortest_rest = 0.1; /* of a segment: too short to say anything */
 
 struct rfade_route {
     struct rfade_route_point *points;
@@ -152,7 +152,7 @@ struct rfade_place rfade_route_place(const struct rfade_route *route, double cha
 size_t rfade_segment_count(double length_m, double segment_m)
 {
     double whole = floor(length_m / segment_m);
-    bool rest_counts = length_m - whole * segment_m >= shortest_rest_m;
+    bool rest_counts = length_m - whole * segment_m >= shortest_rest * segment_m;
     return (size_t)fmax(1, whole + (rest_counts ? 1 : 0));
 }
 

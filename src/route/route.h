@@ -49,7 +49,7 @@ struct rfade_place rfade_route_place(const struct rfade_route *route, double cha
 
 /**
  * Number of segments: equal lengths of segment_m (> 0) and a shorter last one; a rest below
- * 1 m belongs to the one before it. At least 1.
+ * a tenth of segment_m belongs to the one before it. At least 1.
  */
 size_t rfade_segment_count(double length_m, double segment_m);
 

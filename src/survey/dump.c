@@ -46,7 +46,8 @@ static const struct {
      "JOIN trace USING (trace_id) JOIN segment USING (segment_id) "
      "JOIN route ON route.route_id = segment.route_id JOIN vehicle USING (vehicle_id) "
      "JOIN channel USING (channel_id) JOIN campaign USING (campaign_id) "
-     "ORDER BY route, vehicle, channel, campaign, traversal.start_us, segment.number, pass"},
+     "ORDER BY route, vehicle, channel, campaign, traversal.start_us, segment.number, "
+     "pass_start_us"},
     {"fading",
      "SELECT route.name AS route, segment.number AS segment, channel.name AS channel, "
      "campaign.name AS campaign, fading.* FROM fading "

@@ -129,7 +129,7 @@ static void moment_estimates_come_back_and_are_clamped(void **state)
         const double ends[] = {model->from_normalised_variance(0.0),
                                model->from_normalised_variance(1e300)};
         for (size_t i = 0; i < 2; i++) {
-            assert_true(ends[i] >= model->parameter_min && ends[i] <= model->parameter_max);
+            assert_true(ends[i] >= model->fit_min && ends[i] <= model->parameter_max);
         }
     }
     /* no K fades more than Rayleigh */

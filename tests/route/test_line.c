@@ -128,8 +128,8 @@ static void segments_cover_the_line(void **state)
         size_t count;
         double last_from_m;
     } cases[] = {
-        {4000, 100, 40, 3900}, {4030, 100, 41, 4000}, {4000.5, 100, 40, 3900},
-        {4001, 100, 41, 4000}, {30, 100, 1, 0},       {0.5, 100, 1, 0},
+        {4000, 100, 40, 3900}, {4030, 100, 41, 4000}, {4009.5, 100, 40, 3900},
+        {4010, 100, 41, 4000}, {30, 100, 1, 0},       {0.5, 100, 1, 0},
     };
     for (size_t i = 0; i < sizeof cases / sizeof cases[0]; i++) {
         size_t count = rfade_segment_count(cases[i].length_m, cases[i].segment_m);
