@@ -60,7 +60,7 @@ static bool says_dbm(const char *name)
     if (!bracket)
         return true;
     bracket += 1 + strspn(bracket + 1, " ");
-    return (bracket[0] | 0x20) == 'd' && (bracket[1] | 0x20) == 'b' &&
+    return rfade_lower(bracket[0]) == 'd' && rfade_lower(bracket[1]) == 'b' &&
            strchr("mM)] ", bracket[2]) != NULL;
 }
 

@@ -4,6 +4,7 @@
 #include <math.h>
 #include <stdio.h>
 #include <stdlib.h>
+#include <string.h>
 
 /* Valid levels unless a map says otherwise: from below the noise of 1 Hz to what destroys the
  * input of a usual receiver, +20 dBm (common practice). One fault of +48 dBm taken for a
@@ -54,6 +55,16 @@ struct rfade_level_map *rfade_column_map_add_level(struct rfade_column_map *map,
         .snr = {.scale = 1, .low_cdb = LOWEST_SNR_CDB, .high_cdb = HIGHEST_SNR_CDB}};
     (void)snprintf(level->channel, sizeof level->channel, "%s", channel);
     return level;
+}
+
+char rfade_lower(char c)
+{
+    static const char upper[] = "ABCDEFGHIJKLMNOPQRSTUVWXYZ";
+    static const char lower[] = "abcdefghijklmnopqrstuvwxyz";
+    const char *found = c ? strchr(upper, c) : NULL;
+    if (!found)
+        return c;
+    return lower[found - upper];
 }
 
 bool rfade_column_given(const struct rfade_column *column)

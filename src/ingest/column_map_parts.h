@@ -130,6 +130,9 @@ struct rfade_column_map *rfade_column_map_create(const char *name);
 struct rfade_level_map *rfade_column_map_add_level(struct rfade_column_map *map,
                                                    const char *channel);
 
+/** An ASCII letter in lower case, whatever the locale; anything else as it is. */
+char rfade_lower(char c);
+
 bool rfade_column_given(const struct rfade_column *column);
 
 #endif

@@ -81,7 +81,7 @@ void rfade_plain_name(const char *name, char *plain)
         else if ((*name == ')' || *name == ']') && depth > 0)
             depth--;
         else if (depth == 0 && *name != ' ' && *name != '\t' && *name != '_' && *name != '\r')
-            *to++ = *name >= 'A' && *name <= 'Z' ? (char)(*name | 0x20) : *name;
+            *to++ = rfade_lower(*name);
     }
     *to = '\0';
 }

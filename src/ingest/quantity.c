@@ -11,11 +11,9 @@ static const double dbuv_in_dbm = 106.98970004336019;
 
 static bool is_word(const char *word, const char *text, size_t size)
 {
-    for (size_t i = 0; i < size; i++) {
-        char c = text[i] >= 'A' && text[i] <= 'Z' ? (char)(text[i] | 0x20) : text[i];
-        if (word[i] == '\0' || word[i] != c)
+    for (size_t i = 0; i < size; i++)
+        if (word[i] == '\0' || word[i] != rfade_lower(text[i]))
             return false;
-    }
     return word[size] == '\0';
 }
 

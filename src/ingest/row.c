@@ -133,6 +133,7 @@ static bool refuse(struct rfade_row *row, const char *format, ...)
     }
     va_list arguments;
     va_start(arguments, format);
+    /* NOLINTNEXTLINE(clang-analyzer-valist.Uninitialized): it is initialised a line above */
     (void)vsnprintf(row->refused + used, sizeof row->refused - used, format, arguments);
     va_end(arguments);
     rfade_text_printable(row->refused);

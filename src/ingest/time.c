@@ -92,7 +92,7 @@ static bool looks_like_epoch(const char *text, size_t size)
     for (size_t i = 0; i < size; i++) {
         if (text[i] >= '0' && text[i] <= '9')
             digits++;
-        else if (!memchr("+., \te", text[i], 6) && text[i] != 'E')
+        else if (!strchr("+., \teE", text[i]))
             return false;
     }
     return digits > 0;

@@ -21,7 +21,9 @@ struct cursor {
 
 static char peek(const struct cursor *cursor)
 {
-    return cursor->at < cursor->end ? *cursor->at : '\0';
+    if (cursor->at == cursor->end)
+        return '\0';
+    return *cursor->at;
 }
 
 static bool is_digit(char c)
@@ -122,7 +124,8 @@ static const char *set_clock(struct rfade_clock_time *time, int hour, int minute
     bool midnight = hour == 24 && minute == 0 && second == 0 && fraction_us == 0;
     if ((hour > 23 && !midnight) || minute > 59 || second > 60)
         return no_clock;
-    time->of_day_us = ((int64_t)hour * 3600 + minute * 60 + second) * SECOND_US + fraction_us;
+    time->of_day_us =
+        ((int64_t)hour * 3600 + (int64_t)minute * 60 + second) * SECOND_US + fraction_us;
     return NULL;
 }
 

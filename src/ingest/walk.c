@@ -3,6 +3,7 @@
 
 #include <dirent.h>
 #include <stdbool.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 #include <sys/stat.h>
@@ -54,13 +55,10 @@ static char *join(const char *folder, const char *name)
     size_t folder_length = strlen(folder);
     size_t name_length = strlen(name);
     bool slash = folder_length > 0 && folder[folder_length - 1] != '/';
-    char *path = malloc(folder_length + slash + name_length + 1);
-    if (!path)
-        return NULL;
-    memcpy(path, folder, folder_length);
-    if (slash)
-        path[folder_length] = '/';
-    memcpy(path + folder_length + slash, name, name_length + 1);
+    size_t size = folder_length + slash + name_length + 1;
+    char *path = malloc(size);
+    if (path)
+        (void)snprintf(path, size, "%s%s%s", folder, slash ? "/" : "", name);
     return path;
 }
 

@@ -112,7 +112,7 @@ static int64_t change_day(const struct rfade_zone_change *change, int year)
     int64_t weekday = (first + 4) % 7; /* 1970-01-01 was a Thursday */
     if (weekday < 0)
         weekday += 7;
-    int64_t day = (change->day - weekday + 7) % 7 + 7 * (change->week - 1);
+    int64_t day = (change->day - weekday + 7) % 7 + 7 * ((int64_t)change->week - 1);
     if (day >= rfade_calendar_month_days(year, change->month))
         day -= 7;
     return first + day;

@@ -79,6 +79,8 @@ static void a_log_without_vehicle_is_refused(void **state)
 static void separators_are_found(void **state)
 {
     (void)state;
+    static const char quoted[] = "\"time\",\"lat\",\"lon\",\"rssi\"\n"
+                                 "\"2026-01-15T20:15:00Z\",\"54.1\",\"-2.3\",\"-87.5\"\n";
     static const char *const logs[] = {
         "time;lat;lon;rssi\n2026-01-15T20:15:00Z;54,1;-2,3;-87,5\n",
         "time\tlat\tlon\trssi\n2026-01-15T20:15:00Z\t54.1\t-2.3\t-87.5\n",
@@ -90,8 +92,7 @@ static void separators_are_found(void **state)
         "# time,lat,lon,rssi\n2026-01-15T20:15:00Z,54.1,-2.3,-87.5\n",
         "time,lat,lon,rssi\r2026-01-15T20:15:00Z,54.1,-2.3,-87.5\r",
         "time,lat,lon,rssi\r\n\n2026-01-15T20:15:00Z,54.1,-2.3,-87.5\n\r\n",
-        "\"time\",\"lat\",\"lon\",\"rssi\"\n\"2026-01-15T20:15:00Z\",\"54.1\",\"-2.3\",\"-87."
-        "5\"\n",
+        quoted,
         "time,lat,lon,rssi\n 1768508100 , 54.1 , -2.3 , -87.5 \n",
     };
     for (size_t i = 0; i < sizeof logs / sizeof logs[0]; i++) {
@@ -196,9 +197,12 @@ static void names_that_are_no_text_are_refused(void **state)
         assert_null(strchr(got.refusals[0].reason, '\x1b'));
         assert_int_equal(got.reading_count, 1);
     }
-    char text[400] = "time,c,l\n2026-01-15T20:15:00Z,";
-    memset(text + strlen(text), 'x', 200);
-    strcat(text, ",-80\n2026-01-15T20:15:00Z,ok,-80\n");
+    char text[400];
+    char name[201] = {0};
+    memset(name, 'x', sizeof name - 1);
+    (void)snprintf(text, sizeof text,
+                   "time,c,l\n2026-01-15T20:15:00Z,%s,-80\n2026-01-15T20:15:00Z,ok,-80\n",
+                   name);
     collect_text(&got, map, text);
     assert_one_refusal(&got, 2, "too long");
 }
@@ -218,10 +222,9 @@ static void a_line_longer_than_the_block_is_refused_alone(void **state)
     enum { LENGTH = 200000 };
     char *text = malloc(LENGTH + 256);
     assert_non_null(text);
-    strcpy(text, HEADER ROW_0);
-    size_t used = strlen(text);
+    size_t used = (size_t)sprintf(text, HEADER ROW_0);
     memset(text + used, 'x', LENGTH);
-    strcpy(text + used + LENGTH, "\n" ROW_1);
+    (void)sprintf(text + used + LENGTH, "\n" ROW_1);
     collect_text(&got, NULL, text);
     free(text);
     assert_one_refusal(&got, 3, "longer than");

@@ -38,7 +38,7 @@ static void the_stored_bytes_are_hashed(void **state)
             rfade_log_source_open(write_log("hash", cases[i].bytes, size), &source, NULL),
             RFADE_OK);
         assert_int_equal(rfade_log_source_size_bytes(source), size);
-        for (int k = 0; k < RFADE_SHA256_SIZE; k++)
+        for (size_t k = 0; k < RFADE_SHA256_SIZE; k++)
             (void)sprintf(text + 2 * k, "%02x", rfade_log_source_sha256(source)[k]);
         assert_string_equal(text, cases[i].sha256);
         rfade_log_source_close(source);

@@ -6,6 +6,7 @@
 
 #include <cmocka.h>
 #include <stdbool.h>
+#include <stdio.h>
 #include <string.h>
 
 #include "ingest/time.h"
@@ -183,7 +184,7 @@ static void patterns_are_read(void **state)
     };
     for (size_t i = 0; i < sizeof cases / sizeof cases[0]; i++) {
         struct rfade_time_format format = {.form = RFADE_TIME_PATTERN};
-        strcpy(format.pattern, cases[i].pattern);
+        (void)snprintf(format.pattern, sizeof format.pattern, "%s", cases[i].pattern);
         assert_null(rfade_time_pattern_check(format.pattern));
         int64_t time_us = 0;
         const char *reason = read_by(&format, cases[i].text, &time_us);
@@ -209,7 +210,7 @@ static void texts_off_the_pattern_are_refused(void **state)
                  {"%F %H:%M%z", "2026-01-15 00:00 Berlin"}};
     for (size_t i = 0; i < sizeof cases / sizeof cases[0]; i++) {
         struct rfade_time_format format = {.form = RFADE_TIME_PATTERN};
-        strcpy(format.pattern, cases[i].pattern);
+        (void)snprintf(format.pattern, sizeof format.pattern, "%s", cases[i].pattern);
         int64_t time_us = 0;
         if (!read_by(&format, cases[i].text, &time_us))
             fail_msg("'%s' was read", cases[i].text);

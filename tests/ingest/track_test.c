@@ -58,8 +58,10 @@ static void a_held_position_is_told_once(void **state)
 {
     (void)state;
     struct place_at places[80];
-    for (int i = 0; i < 80; i++)
-        places[i] = (struct place_at){50 * i, 54.1 + 0.0001 * (i / 20), -2.3};
+    for (int i = 0; i < 80; i++) {
+        int second = i / 20;
+        places[i] = (struct place_at){50 * i, 54.1 + 0.0001 * second, -2.3};
+    }
     run(places, 80, "");
     static const int ms[] = {0, 1000, 2000, 3000};
     assert_fixes(ms, 4);
@@ -82,8 +84,10 @@ static void a_slow_receiver_holds_for_as_long_as_the_map_says(void **state)
 {
     (void)state;
     struct place_at places[12];
-    for (int i = 0; i < 12; i++)
-        places[i] = (struct place_at){1000 * i, 54.1 + 0.0001 * (i / 5), -2.3};
+    for (int i = 0; i < 12; i++) {
+        int place = i / 5;
+        places[i] = (struct place_at){1000 * i, 54.1 + 0.0001 * place, -2.3};
+    }
     run(places, 12, "held_s = 5\n");
     static const int ms[] = {0, 5000, 10000};
     assert_fixes(ms, 3);
