@@ -101,12 +101,12 @@ static inline void drive_match(struct drive *drive)
     struct rfade_error error = {0};
     const struct rfade_match_settings settings = rfade_match_defaults();
     assert_int_equal(rfade_matcher_create(drive->route, &settings, &matcher, &error), RFADE_OK);
-    free(drive->passes);
-    drive->passes = NULL;
+    struct rfade_pass *passes = NULL;
     assert_int_equal(rfade_match_positions(matcher, drive->positions, drive->count,
-                                           drive->matches, &drive->passes, &drive->pass_count,
-                                           &error),
+                                           drive->matches, &passes, &drive->pass_count, &error),
                      RFADE_OK);
+    free(drive->passes);
+    drive->passes = passes;
     rfade_matcher_destroy(matcher);
 }
 
