@@ -40,15 +40,15 @@ static const struct rfade_option options[] = {
 enum { OPTIONS = sizeof options / sizeof options[0] };
 
 static const struct rfade_column columns[] = {
-    {"channel", RFADE_COLUMN_TEXT, 0, false},
-    {"carrier_hz", RFADE_COLUMN_NUMBER, 0, false},
-    {"bandwidth_hz", RFADE_COLUMN_NUMBER, 0, false},
-    {"symbol_rate_hz", RFADE_COLUMN_NUMBER, 0, false},
-    {"noise_figure_db", RFADE_COLUMN_NUMBER, 1, false},
-    {"noise_floor_dbm", RFADE_COLUMN_NUMBER, 1, false},
-    {"step_db", RFADE_COLUMN_NUMBER, 2, false},
-    {"floor_dbm", RFADE_COLUMN_NUMBER, 1, false},
-    {"ceiling_dbm", RFADE_COLUMN_NUMBER, 1, false},
+    {"channel", RFADE_COLUMN_TEXT, 0, false, false},
+    {"carrier_hz", RFADE_COLUMN_NUMBER, 0, false, false},
+    {"bandwidth_hz", RFADE_COLUMN_NUMBER, 0, false, false},
+    {"symbol_rate_hz", RFADE_COLUMN_NUMBER, 0, false, false},
+    {"noise_figure_db", RFADE_COLUMN_NUMBER, 1, false, false},
+    {"noise_floor_dbm", RFADE_COLUMN_NUMBER, 1, false, false},
+    {"step_db", RFADE_COLUMN_NUMBER, 2, false, false},
+    {"floor_dbm", RFADE_COLUMN_NUMBER, 1, false, false},
+    {"ceiling_dbm", RFADE_COLUMN_NUMBER, 1, false, false},
 };
 enum { COLUMNS = sizeof columns / sizeof columns[0] };
 

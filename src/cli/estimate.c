@@ -113,19 +113,19 @@ static json_t *estimate_json(const struct rfade_column_estimate *result, size_t 
 }
 
 static const struct rfade_column columns[] = {
-    {"model", RFADE_COLUMN_TEXT, 0, false},
-    {"preferred", RFADE_COLUMN_TEXT, 0, false},
-    {"mean_power_dbm", RFADE_COLUMN_NUMBER, 2, true},
-    {"mean_power_dbm_low", RFADE_COLUMN_NUMBER, 2, false},
-    {"mean_power_dbm_high", RFADE_COLUMN_NUMBER, 2, false},
-    {"parameter", RFADE_COLUMN_TEXT, 0, false},
-    {"value", RFADE_COLUMN_NUMBER, 3, true},
-    {"value_low", RFADE_COLUMN_NUMBER, 3, false},
-    {"value_high", RFADE_COLUMN_NUMBER, 3, false},
-    {"log_likelihood", RFADE_COLUMN_NUMBER, 2, false},
-    {"aic", RFADE_COLUMN_NUMBER, 2, false},
-    {"weight", RFADE_COLUMN_PROBABILITY, 2, false},
-    {"goodness_p", RFADE_COLUMN_PROBABILITY, 2, false},
+    {"model", RFADE_COLUMN_TEXT, 0, false, false},
+    {"preferred", RFADE_COLUMN_TEXT, 0, false, false},
+    {"mean_power_dbm", RFADE_COLUMN_NUMBER, 2, true, false},
+    {"mean_power_dbm_low", RFADE_COLUMN_NUMBER, 2, false, false},
+    {"mean_power_dbm_high", RFADE_COLUMN_NUMBER, 2, false, false},
+    {"parameter", RFADE_COLUMN_TEXT, 0, false, false},
+    {"value", RFADE_COLUMN_NUMBER, 3, true, false},
+    {"value_low", RFADE_COLUMN_NUMBER, 3, false, false},
+    {"value_high", RFADE_COLUMN_NUMBER, 3, false, false},
+    {"log_likelihood", RFADE_COLUMN_NUMBER, 2, false, false},
+    {"aic", RFADE_COLUMN_NUMBER, 2, false, false},
+    {"weight", RFADE_COLUMN_PROBABILITY, 2, false, false},
+    {"goodness_p", RFADE_COLUMN_PROBABILITY, 2, false, false},
 };
 enum { COLUMNS = sizeof columns / sizeof columns[0] };
 

@@ -14,20 +14,20 @@ static const struct rfade_option options[] = {
     RFADE_SEGMENT_OPTION_LINES(struct fading_options)};
 
 static const struct rfade_column own_columns[] = {
-    {"sampling", RFADE_COLUMN_TEXT, 0, false},
-    {"passes", RFADE_COLUMN_INTEGER, 0, false},
-    {"k", RFADE_COLUMN_NUMBER, 2, true},
-    {"k_low", RFADE_COLUMN_NUMBER, 2, false},
-    {"k_high", RFADE_COLUMN_NUMBER, 2, false},
-    {"m", RFADE_COLUMN_NUMBER, 2, true},
-    {"m_low", RFADE_COLUMN_NUMBER, 2, false},
-    {"m_high", RFADE_COLUMN_NUMBER, 2, false},
-    {"local_mean_dbm", RFADE_COLUMN_NUMBER, 1, false},
-    {"local_sigma_db", RFADE_COLUMN_NUMBER, 1, true},
-    {"local_sigma_low_db", RFADE_COLUMN_NUMBER, 1, false},
-    {"local_sigma_high_db", RFADE_COLUMN_NUMBER, 1, false},
-    {"weight", RFADE_COLUMN_PROBABILITY, 2, false},
-    {"goodness_p", RFADE_COLUMN_PROBABILITY, 2, false},
+    {"sampling", RFADE_COLUMN_TEXT, 0, false, false},
+    {"passes", RFADE_COLUMN_INTEGER, 0, false, false},
+    {"k", RFADE_COLUMN_NUMBER, 2, true, false},
+    {"k_low", RFADE_COLUMN_NUMBER, 2, false, false},
+    {"k_high", RFADE_COLUMN_NUMBER, 2, false, false},
+    {"m", RFADE_COLUMN_NUMBER, 2, true, false},
+    {"m_low", RFADE_COLUMN_NUMBER, 2, false, false},
+    {"m_high", RFADE_COLUMN_NUMBER, 2, false, false},
+    {"local_mean_dbm", RFADE_COLUMN_NUMBER, 1, false, false},
+    {"local_sigma_db", RFADE_COLUMN_NUMBER, 1, true, false},
+    {"local_sigma_low_db", RFADE_COLUMN_NUMBER, 1, false, false},
+    {"local_sigma_high_db", RFADE_COLUMN_NUMBER, 1, false, false},
+    {"weight", RFADE_COLUMN_PROBABILITY, 2, false, false},
+    {"goodness_p", RFADE_COLUMN_PROBABILITY, 2, false, false},
 };
 enum { OWN_COLUMNS = sizeof own_columns / sizeof own_columns[0] };
 enum { COLUMNS = RFADE_SEGMENT_COLUMNS + OWN_COLUMNS };

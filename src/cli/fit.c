@@ -22,10 +22,10 @@ static const struct rfade_option options[] = {
 };
 
 static const struct rfade_column columns[] = {
-    {"streams_made", RFADE_COLUMN_INTEGER, 0, false},
-    {"streams_kept", RFADE_COLUMN_INTEGER, 0, false},
-    {"segments_fitted", RFADE_COLUMN_INTEGER, 0, false},
-    {"segments_kept", RFADE_COLUMN_INTEGER, 0, false},
+    {"streams_made", RFADE_COLUMN_INTEGER, 0, false, false},
+    {"streams_kept", RFADE_COLUMN_INTEGER, 0, false, false},
+    {"segments_fitted", RFADE_COLUMN_INTEGER, 0, false, false},
+    {"segments_kept", RFADE_COLUMN_INTEGER, 0, false, false},
 };
 enum { COLUMNS = sizeof columns / sizeof columns[0] };
 

@@ -31,9 +31,12 @@ static const struct rfade_option options[] = {
 };
 
 static const struct rfade_column columns[] = {
-    {"file", RFADE_COLUMN_TEXT, 0, false},     {"readings", RFADE_COLUMN_INTEGER, 0, false},
-    {"fixes", RFADE_COLUMN_INTEGER, 0, false}, {"refused", RFADE_COLUMN_INTEGER, 0, false},
-    {"state", RFADE_COLUMN_TEXT, 0, false},    {"why", RFADE_COLUMN_TEXT, 0, false},
+    {"file", RFADE_COLUMN_TEXT, 0, false, false},
+    {"readings", RFADE_COLUMN_INTEGER, 0, false, false},
+    {"fixes", RFADE_COLUMN_INTEGER, 0, false, false},
+    {"refused", RFADE_COLUMN_INTEGER, 0, false, false},
+    {"state", RFADE_COLUMN_TEXT, 0, false, false},
+    {"why", RFADE_COLUMN_TEXT, 0, false, false},
 };
 enum { COLUMNS = sizeof columns / sizeof columns[0] };
 

@@ -28,14 +28,14 @@ static const struct rfade_option options[] = {
     RFADE_SEGMENT_OPTION_LINES(struct outage_options)};
 
 static const struct rfade_column own_columns[] = {
-    {"outage", RFADE_COLUMN_PROBABILITY, 3, true},
-    {"outage_low", RFADE_COLUMN_PROBABILITY, 3, false},
-    {"outage_high", RFADE_COLUMN_PROBABILITY, 3, false},
-    {"next_low", RFADE_COLUMN_PROBABILITY, 2, false},
-    {"next_high", RFADE_COLUMN_PROBABILITY, 2, false},
-    {"observed", RFADE_COLUMN_PROBABILITY, 3, false},
-    {"observed_low", RFADE_COLUMN_PROBABILITY, 3, false},
-    {"observed_high", RFADE_COLUMN_PROBABILITY, 3, false},
+    {"outage", RFADE_COLUMN_PROBABILITY, 3, true, false},
+    {"outage_low", RFADE_COLUMN_PROBABILITY, 3, false, false},
+    {"outage_high", RFADE_COLUMN_PROBABILITY, 3, false, false},
+    {"next_low", RFADE_COLUMN_PROBABILITY, 2, false, false},
+    {"next_high", RFADE_COLUMN_PROBABILITY, 2, false, false},
+    {"observed", RFADE_COLUMN_PROBABILITY, 3, false, false},
+    {"observed_low", RFADE_COLUMN_PROBABILITY, 3, false, false},
+    {"observed_high", RFADE_COLUMN_PROBABILITY, 3, false, false},
 };
 enum { OWN_COLUMNS = sizeof own_columns / sizeof own_columns[0] };
 enum { COLUMNS = RFADE_SEGMENT_COLUMNS + 1 + OWN_COLUMNS };
@@ -152,7 +152,7 @@ print_rows(const struct rfade_run *run, const struct rfade_segment_results *resu
     struct rfade_column columns[COLUMNS];
     memcpy(columns, rfade_segment_columns, sizeof rfade_segment_columns);
     columns[RFADE_SEGMENT_COLUMNS] =
-        (struct rfade_column){threshold->column, RFADE_COLUMN_NUMBER, 1, false};
+        (struct rfade_column){threshold->column, RFADE_COLUMN_NUMBER, 1, false, true};
     memcpy(columns + RFADE_SEGMENT_COLUMNS + 1, own_columns, sizeof own_columns);
     struct rfade_rows *rows = NULL;
     enum rfade_status status = rfade_rows_begin(run->common->format, run->output, NULL, columns,

@@ -169,12 +169,12 @@ static enum rfade_status write_rows(const struct rfade_run *run, const struct li
                                     struct rfade_error *error)
 {
     static const struct rfade_column columns[] = {
-        {"fading", RFADE_COLUMN_TEXT, 0, false},
-        {"parameter", RFADE_COLUMN_NUMBER, 3, false},
-        {"mean_snr_db", RFADE_COLUMN_NUMBER, 2, false},
-        {"shadowing_db", RFADE_COLUMN_NUMBER, 2, false},
-        {"threshold_db", RFADE_COLUMN_NUMBER, 2, false},
-        {"outage", RFADE_COLUMN_PROBABILITY, 4, false},
+        {"fading", RFADE_COLUMN_TEXT, 0, false, false},
+        {"parameter", RFADE_COLUMN_NUMBER, 3, false, false},
+        {"mean_snr_db", RFADE_COLUMN_NUMBER, 2, false, false},
+        {"shadowing_db", RFADE_COLUMN_NUMBER, 2, false, false},
+        {"threshold_db", RFADE_COLUMN_NUMBER, 2, false, false},
+        {"outage", RFADE_COLUMN_PROBABILITY, 4, false, false},
     };
     enum { COLUMNS = sizeof columns / sizeof columns[0] };
     struct rfade_rows *rows = NULL;

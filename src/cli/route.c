@@ -32,9 +32,12 @@ static const struct rfade_option options[] = {
 };
 
 static const struct rfade_column columns[] = {
-    {"route", RFADE_COLUMN_TEXT, 0, false},       {"length_m", RFADE_COLUMN_NUMBER, 1, false},
-    {"segment_m", RFADE_COLUMN_NUMBER, 1, false}, {"corridor_m", RFADE_COLUMN_NUMBER, 1, false},
-    {"points", RFADE_COLUMN_INTEGER, 0, false},   {"segments", RFADE_COLUMN_INTEGER, 0, false},
+    {"route", RFADE_COLUMN_TEXT, 0, false, false},
+    {"length_m", RFADE_COLUMN_NUMBER, 1, false, false},
+    {"segment_m", RFADE_COLUMN_NUMBER, 1, false, false},
+    {"corridor_m", RFADE_COLUMN_NUMBER, 1, false, false},
+    {"points", RFADE_COLUMN_INTEGER, 0, false, false},
+    {"segments", RFADE_COLUMN_INTEGER, 0, false, false},
 };
 enum { COLUMNS = sizeof columns / sizeof columns[0] };
 

@@ -5,16 +5,16 @@
 #include <stdlib.h>
 
 const struct rfade_column rfade_segment_columns[RFADE_SEGMENT_COLUMNS] = {
-    {"route", RFADE_COLUMN_TEXT, 0, false},
-    {"segment", RFADE_COLUMN_INTEGER, 0, false},
-    {"from_m", RFADE_COLUMN_NUMBER, 0, false},
-    {"to_m", RFADE_COLUMN_NUMBER, 0, false},
-    {"channel", RFADE_COLUMN_TEXT, 0, false},
-    {"campaign", RFADE_COLUMN_TEXT, 0, false},
-    {"readings", RFADE_COLUMN_INTEGER, 0, false},
-    {"effective_count", RFADE_COLUMN_NUMBER, 0, false},
-    {"mean_power_dbm", RFADE_COLUMN_NUMBER, 1, false},
-    {"model", RFADE_COLUMN_TEXT, 0, false},
+    {"route", RFADE_COLUMN_TEXT, 0, false, true},
+    {"segment", RFADE_COLUMN_INTEGER, 0, false, false},
+    {"from_m", RFADE_COLUMN_NUMBER, 0, false, false},
+    {"to_m", RFADE_COLUMN_NUMBER, 0, false, false},
+    {"channel", RFADE_COLUMN_TEXT, 0, false, true},
+    {"campaign", RFADE_COLUMN_TEXT, 0, false, true},
+    {"readings", RFADE_COLUMN_INTEGER, 0, false, false},
+    {"effective_count", RFADE_COLUMN_NUMBER, 0, false, false},
+    {"mean_power_dbm", RFADE_COLUMN_NUMBER, 1, false, false},
+    {"model", RFADE_COLUMN_TEXT, 0, false, false},
 };
 
 void rfade_segment_values(const struct rfade_segment_result *row, struct rfade_value *values)

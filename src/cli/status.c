@@ -35,9 +35,12 @@ static bool is_fitted(const struct rfade_survey_counts *counts)
 }
 
 static const struct rfade_column columns[] = {
-    {"vehicle", RFADE_COLUMN_TEXT, 0, false},  {"channel", RFADE_COLUMN_TEXT, 0, false},
-    {"campaign", RFADE_COLUMN_TEXT, 0, false}, {"readings", RFADE_COLUMN_INTEGER, 0, false},
-    {"start", RFADE_COLUMN_TEXT, 0, false},    {"end", RFADE_COLUMN_TEXT, 0, false},
+    {"vehicle", RFADE_COLUMN_TEXT, 0, false, false},
+    {"channel", RFADE_COLUMN_TEXT, 0, false, false},
+    {"campaign", RFADE_COLUMN_TEXT, 0, false, false},
+    {"readings", RFADE_COLUMN_INTEGER, 0, false, false},
+    {"start", RFADE_COLUMN_TEXT, 0, false, false},
+    {"end", RFADE_COLUMN_TEXT, 0, false, false},
 };
 enum { COLUMNS = sizeof columns / sizeof columns[0] };
 

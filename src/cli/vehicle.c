@@ -28,10 +28,10 @@ static const struct rfade_option options[] = {
 };
 
 static const struct rfade_column columns[] = {
-    {"vehicle", RFADE_COLUMN_TEXT, 0, false},
-    {"from", RFADE_COLUMN_TEXT, 0, false},
-    {"offset_db", RFADE_COLUMN_NUMBER, 2, false},
-    {"offset_uncertainty_db", RFADE_COLUMN_NUMBER, 2, false},
+    {"vehicle", RFADE_COLUMN_TEXT, 0, false, false},
+    {"from", RFADE_COLUMN_TEXT, 0, false, false},
+    {"offset_db", RFADE_COLUMN_NUMBER, 2, false, false},
+    {"offset_uncertainty_db", RFADE_COLUMN_NUMBER, 2, false, false},
 };
 enum { COLUMNS = sizeof columns / sizeof columns[0] };
 

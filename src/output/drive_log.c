@@ -189,12 +189,12 @@ enum rfade_status rfade_drive_truth_write(FILE *stream, const char *stream_name,
                                           size_t count, struct rfade_error *error)
 {
     static const struct rfade_column columns[] = {
-        {"time_s", RFADE_COLUMN_NUMBER, 3, false},
-        {"distance_m", RFADE_COLUMN_NUMBER, 3, false},
-        {"level_dbm", RFADE_COLUMN_NUMBER, 2, false},
-        {"power_dbm", RFADE_COLUMN_NUMBER, 2, false},
-        {"local_mean_dbm", RFADE_COLUMN_NUMBER, 2, false},
-        {"k", RFADE_COLUMN_NUMBER, 3, false},
+        {"time_s", RFADE_COLUMN_NUMBER, 3, false, false},
+        {"distance_m", RFADE_COLUMN_NUMBER, 3, false, false},
+        {"level_dbm", RFADE_COLUMN_NUMBER, 2, false, false},
+        {"power_dbm", RFADE_COLUMN_NUMBER, 2, false, false},
+        {"local_mean_dbm", RFADE_COLUMN_NUMBER, 2, false, false},
+        {"k", RFADE_COLUMN_NUMBER, 3, false, false},
     };
     enum { COLUMNS = sizeof columns / sizeof columns[0] };
     struct rfade_rows *rows = NULL;

@@ -27,7 +27,7 @@ enum rfade_column_kind {
     RFADE_COLUMN_PROBABILITY
 };
 
-/** `decimals` and `interval_follows` matter to tables only: CSV and JSON are exact. */
+/** What follows `kind` matters to tables only: CSV and JSON are exact. */
 struct rfade_column {
     const char *name; /**< as COMMANDS name it, unit last */
     enum rfade_column_kind kind;
@@ -35,6 +35,7 @@ struct rfade_column {
                        value without an interval. 0 for a probability: 3 */
     bool interval_follows; /**< the next two columns are the ends of this one's interval: all
                                 three are rounded to the second digit of its half-width */
+    bool shared_above; /**< where it is the same in every row, it stands once above the rows */
 };
 
 enum rfade_value_type {

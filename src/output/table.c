@@ -3,6 +3,9 @@
  * A table for people: columns aligned, numbers to the right and rounded to what their
  * interval supports. Widths are found on the first rows and only grow, so that any number
  * of rows needs the memory of one page. Width is counted in characters, not bytes.
+ *
+ * To fit a screen, what is the same in every row stands once, above the table; and long
+ * column names are broken at their underscores.
  */
 #include <inttypes.h>
 #include <stdlib.h>
@@ -13,10 +16,14 @@
 
 enum { PAGE_ROWS = 2000, DEFAULT_PROBABILITY_DIGITS = 3 };
 
+/* A name is broken so that its lines are no wider than this, or than the column's cells. */
+enum { NARROW_NAME = 10 };
+
 struct table {
     char **cells; /* PAGE_ROWS x column_count, owned */
     size_t rows;
     size_t *widths;
+    bool *stands_above; /* the column's one value is written above the table */
     bool header_written;
 };
 
@@ -41,28 +48,123 @@ static void write_cell(FILE *stream, const char *text, size_t width, bool right,
         (void)fprintf(stream, "%s%*s", text, padding, "");
 }
 
-static void write_line(const struct rfade_rows *rows, char *const *cells)
+/* Where the line of a name ends that begins at `start`: behind the last underscore that fits
+ * into the width, or behind the first one, or at the name's end. */
+static size_t name_line_end(const char *name, size_t start, size_t width)
+{
+    size_t end = start;
+    for (size_t i = start; name[i]; i++)
+        if (name[i] == '_' && (end == start || i + 1 - start <= width))
+            end = i + 1;
+    bool rest_fits = strlen(name + start) <= width;
+    return end == start || rest_fits ? start + strlen(name + start) : end;
+}
+
+/* The name's line number `line`, cut out into `text`; empty past the last. */
+static void name_line(const char *name, size_t width, size_t line, char *text, size_t size)
+{
+    size_t start = 0, end = name_line_end(name, 0, width);
+    for (; line > 0 && name[start]; line--) {
+        start = end;
+        end = name_line_end(name, start, width);
+    }
+    (void)snprintf(text, size, "%.*s", (int)(end - start), name + start);
+}
+
+static size_t name_lines(const char *name, size_t width)
+{
+    size_t count = 1;
+    for (size_t end = name_line_end(name, 0, width); name[end]; count++)
+        end = name_line_end(name, end, width);
+    return count;
+}
+
+/* Widest line of a broken name. */
+static size_t name_width(const char *name, size_t width)
+{
+    size_t widest = 0;
+    for (size_t line = 0; line < name_lines(name, width); line++) {
+        char text[64];
+        name_line(name, width, line, text, sizeof text);
+        widest = width_of(text) > widest ? width_of(text) : widest;
+    }
+    return widest;
+}
+
+static bool same_in_all_rows(const struct rfade_rows *rows, size_t column)
 {
     const struct table *table = rows->state;
+    for (size_t r = 1; r < table->rows; r++)
+        if (strcmp(table->cells[r * rows->column_count + column], table->cells[column]) != 0)
+            return false;
+    return true;
+}
+
+/* Text that all rows share; only where all rows are at hand, and columns are left over. */
+static void write_shared(struct rfade_rows *rows)
+{
+    struct table *table = rows->state;
+    bool any = false;
+    if (table->rows < 2 || table->rows == PAGE_ROWS)
+        return;
     for (size_t i = 0; i < rows->column_count; i++) {
-        const char *text = cells ? cells[i] : rows->columns[i].name;
-        if (i)
+        table->stands_above[i] = rows->columns[i].shared_above && same_in_all_rows(rows, i);
+        if (!table->stands_above[i])
+            continue;
+        (void)fprintf(rows->stream, "%s%s %s", any ? ", " : "", rows->columns[i].name,
+                      table->cells[i]);
+        any = true;
+    }
+    if (any)
+        (void)fputc('\n', rows->stream);
+}
+
+static void write_line(const struct rfade_rows *rows, char *const *cells,
+                       size_t name_line_number)
+{
+    const struct table *table = rows->state;
+    bool first = true;
+    for (size_t i = 0; i < rows->column_count; i++) {
+        char name[64];
+        if (table->stands_above[i])
+            continue;
+        name_line(rows->columns[i].name, table->widths[i], name_line_number, name, sizeof name);
+        if (!first)
             (void)fputs("  ", rows->stream);
-        write_cell(rows->stream, text, table->widths[i],
+        first = false;
+        write_cell(rows->stream, cells ? cells[i] : name, table->widths[i],
                    rows->columns[i].kind != RFADE_COLUMN_TEXT, i + 1 == rows->column_count);
     }
     (void)fputc('\n', rows->stream);
+}
+
+static void write_header(struct rfade_rows *rows)
+{
+    struct table *table = rows->state;
+    size_t lines = 1;
+    write_shared(rows);
+    for (size_t i = 0; i < rows->column_count; i++) {
+        const char *name = rows->columns[i].name;
+        size_t widest = table->widths[i] > NARROW_NAME ? table->widths[i] : NARROW_NAME;
+        size_t needed = name_width(name, widest);
+        table->widths[i] = needed > table->widths[i] ? needed : table->widths[i];
+        size_t count = name_lines(name, table->widths[i]);
+        if (!table->stands_above[i] && count > lines)
+            lines = count;
+    }
+    for (size_t line = 0; line < lines; line++)
+        write_line(rows, NULL, line);
+    table->header_written = true;
 }
 
 static void write_page(struct rfade_rows *rows)
 {
     struct table *table = rows->state;
     if (!table->header_written)
-        write_line(rows, NULL);
-    table->header_written = true;
+        write_header(rows);
     for (size_t r = 0; r < table->rows; r++) {
         char **cells = table->cells + r * rows->column_count;
-        write_line(rows, cells);
+        write_line(rows, cells, 0);
         for (size_t i = 0; i < rows->column_count; i++) {
             free(cells[i]);
             cells[i] = NULL;
@@ -133,11 +235,9 @@ static enum rfade_status begin(struct rfade_rows *rows)
         return RFADE_NO_MEMORY;
     table->cells = calloc(PAGE_ROWS * (rows->column_count + 1), sizeof *table->cells);
     table->widths = calloc(rows->column_count + 1, sizeof *table->widths);
-    if (!table->cells || !table->widths)
-        return RFADE_NO_MEMORY;
-    for (size_t i = 0; i < rows->column_count; i++)
-        table->widths[i] = width_of(rows->columns[i].name);
-    return RFADE_OK;
+    table->stands_above = calloc(rows->column_count + 1, sizeof *table->stands_above);
+    bool enough = table->cells && table->widths && table->stands_above;
+    return enough ? RFADE_OK : RFADE_NO_MEMORY;
 }
 
 static enum rfade_status row(struct rfade_rows *rows)
@@ -175,6 +275,7 @@ static void destroy(struct rfade_rows *rows)
             free(table->cells[i]);
     free(table->cells);
     free(table->widths);
+    free(table->stands_above);
     free(table);
     rows->state = NULL;
 }

@@ -14,9 +14,12 @@
 #include "output/rows.h"
 
 static const struct rfade_column columns[] = {
-    {"channel", RFADE_COLUMN_TEXT, 0, false},  {"readings", RFADE_COLUMN_INTEGER, 0, false},
-    {"k", RFADE_COLUMN_NUMBER, 2, true},       {"k_low", RFADE_COLUMN_NUMBER, 2, false},
-    {"k_high", RFADE_COLUMN_NUMBER, 2, false}, {"outage", RFADE_COLUMN_PROBABILITY, 0, false},
+    {"channel", RFADE_COLUMN_TEXT, 0, false, false},
+    {"readings", RFADE_COLUMN_INTEGER, 0, false, false},
+    {"k", RFADE_COLUMN_NUMBER, 2, true, false},
+    {"k_low", RFADE_COLUMN_NUMBER, 2, false, false},
+    {"k_high", RFADE_COLUMN_NUMBER, 2, false, false},
+    {"outage", RFADE_COLUMN_PROBABILITY, 0, false, false},
 };
 enum { COLUMNS = sizeof columns / sizeof columns[0] };
 
@@ -80,6 +83,39 @@ static void table_of_no_rows_has_its_header(void **state)
 {
     (void)state;
     assert_written(&rfade_rows_table, NULL, 0, "channel  readings  k  k_low  k_high  outage\n");
+}
+
+static void table_says_once_what_all_rows_share_and_breaks_long_names(void **state)
+{
+    (void)state;
+    static const struct rfade_column shared[] = {
+        {"route", RFADE_COLUMN_TEXT, 0, false, true},
+        {"passes", RFADE_COLUMN_INTEGER, 0, false, false},
+        {"local_sigma_high_db", RFADE_COLUMN_NUMBER, 1, false, false},
+    };
+    char *text = NULL;
+    size_t size = 0;
+    struct rfade_rows *rows = NULL;
+    struct rfade_error error;
+    FILE *stream = open_memstream(&text, &size);
+    assert_int_equal(
+        rfade_rows_begin(&rfade_rows_table, stream, NULL, shared, 3, &rows, &error), RFADE_OK);
+    for (int i = 0; i < 2; i++) {
+        const struct rfade_value values[] = {rfade_value_text("valley-road"),
+                                             rfade_value_integer(3),
+                                             rfade_value_number(4.0 + i)};
+        assert_int_equal(rfade_rows_row(rows, values, &error), RFADE_OK);
+    }
+    assert_int_equal(rfade_rows_end(rows, &error), RFADE_OK);
+    rfade_rows_destroy(rows);
+    assert_int_equal(fclose(stream), 0);
+    assert_string_equal(text, "route valley-road\n"
+                              "passes   local_\n"
+                              "         sigma_\n"
+                              "        high_db\n"
+                              "     3      4.0\n"
+                              "     3      5.0\n");
+    free(text);
 }
 
 /* More rows than a page holds: widths only grow, no row is lost. */
@@ -253,6 +289,7 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(table_aligns_and_rounds_to_the_interval),
         cmocka_unit_test(table_of_no_rows_has_its_header),
+        cmocka_unit_test(table_says_once_what_all_rows_share_and_breaks_long_names),
         cmocka_unit_test(table_goes_on_past_its_page),
         cmocka_unit_test(csv_follows_rfc_4180),
         cmocka_unit_test(csv_keeps_formulas_from_spreadsheets),
