@@ -16,8 +16,9 @@
 
 enum { PAGE_ROWS = 2000, DEFAULT_PROBABILITY_DIGITS = 3 };
 
-/* A name is broken so that its lines are no wider than this, or than the column's cells. */
-enum { NARROW_NAME = 10 };
+/* In a table wider than a usual screen, a name is broken so that its lines are no wider than
+ * this, or than the column's cells. */
+enum { SCREEN_WIDTH = 100, NARROW_NAME = 10 };
 
 struct table {
     char **cells; /* PAGE_ROWS x column_count, owned */
@@ -138,14 +139,28 @@ static void write_line(const struct rfade_rows *rows, char *const *cells,
     (void)fputc('\n', rows->stream);
 }
 
+/* How wide a line of a column's name may be, for the table to fit the screen. */
+static size_t name_limit(const struct rfade_rows *rows)
+{
+    const struct table *table = rows->state;
+    size_t total = 0;
+    for (size_t i = 0; i < rows->column_count; i++) {
+        size_t name = width_of(rows->columns[i].name);
+        if (!table->stands_above[i])
+            total += 2 + (name > table->widths[i] ? name : table->widths[i]);
+    }
+    return total > SCREEN_WIDTH ? NARROW_NAME : SCREEN_WIDTH;
+}
+
 static void write_header(struct rfade_rows *rows)
 {
     struct table *table = rows->state;
     size_t lines = 1;
     write_shared(rows);
+    size_t limit = name_limit(rows);
     for (size_t i = 0; i < rows->column_count; i++) {
         const char *name = rows->columns[i].name;
-        size_t widest = table->widths[i] > NARROW_NAME ? table->widths[i] : NARROW_NAME;
+        size_t widest = table->widths[i] > limit ? table->widths[i] : limit;
         size_t needed = name_width(name, widest);
         table->widths[i] = needed > table->widths[i] ? needed : table->widths[i];
         size_t count = name_lines(name, table->widths[i]);

@@ -92,29 +92,36 @@ static void table_says_once_what_all_rows_share_and_breaks_long_names(void **sta
         {"route", RFADE_COLUMN_TEXT, 0, false, true},
         {"passes", RFADE_COLUMN_INTEGER, 0, false, false},
         {"local_sigma_high_db", RFADE_COLUMN_NUMBER, 1, false, false},
+        {"note", RFADE_COLUMN_TEXT, 0, false, false},
     };
+    /* As wide as a screen, so that the names must be narrow. */
+    static const char note[] = "0123456789012345678901234567890123456789012345678"
+                               "9012345678901234567890123456789";
     char *text = NULL;
     size_t size = 0;
     struct rfade_rows *rows = NULL;
     struct rfade_error error;
     FILE *stream = open_memstream(&text, &size);
     assert_int_equal(
-        rfade_rows_begin(&rfade_rows_table, stream, NULL, shared, 3, &rows, &error), RFADE_OK);
+        rfade_rows_begin(&rfade_rows_table, stream, NULL, shared, 4, &rows, &error), RFADE_OK);
     for (int i = 0; i < 2; i++) {
-        const struct rfade_value values[] = {rfade_value_text("valley-road"),
-                                             rfade_value_integer(3),
-                                             rfade_value_number(4.0 + i)};
+        const struct rfade_value values[] = {
+            rfade_value_text("valley-road"), rfade_value_integer(3),
+            rfade_value_number(4.0 + i), rfade_value_text(note)};
         assert_int_equal(rfade_rows_row(rows, values, &error), RFADE_OK);
     }
     assert_int_equal(rfade_rows_end(rows, &error), RFADE_OK);
     rfade_rows_destroy(rows);
     assert_int_equal(fclose(stream), 0);
-    assert_string_equal(text, "route valley-road\n"
-                              "passes   local_\n"
-                              "         sigma_\n"
-                              "        high_db\n"
-                              "     3      4.0\n"
-                              "     3      5.0\n");
+    assert_string_equal(text,
+                        "route valley-road\n"
+                        "passes   local_  note\n"
+                        "         sigma_  \n"
+                        "        high_db  \n"
+                        "     3      4.0  0123456789012345678901234567890123456789012345678"
+                        "9012345678901234567890123456789\n"
+                        "     3      5.0  0123456789012345678901234567890123456789012345678"
+                        "9012345678901234567890123456789\n");
     free(text);
 }
 
