@@ -11,13 +11,16 @@ double rfade_bin_place(const struct rfade_bin *bin)
     return isinf(bin->high_db) ? bin->low_db : 0.5 * (bin->low_db + bin->high_db);
 }
 
+/* A middle of an interval may miss an edge that it lies on by its rounding. */
+static const double ROUNDING_DB = 1e-9;
+
 int rfade_class_of(const double *edges_db, double level_db)
 {
     int low = 0;
     int high = RFADE_COARSE_BINS - 1;
     while (low < high) {
         int middle = (low + high) / 2;
-        if (level_db > edges_db[middle]) {
+        if (level_db > edges_db[middle] + ROUNDING_DB) {
             low = middle + 1;
         } else {
             high = middle;

@@ -78,16 +78,17 @@ static void measure(const struct rfade_blocks *blocks, double scale,
 }
 
 void rfade_class_covariance(const struct rfade_blocks *blocks,
-                            const double totals[RFADE_COARSE_BINS],
+                            const double observed[RFADE_COARSE_BINS],
                             struct rfade_class_covariance *covariance)
 {
     double block_total = 0.0;
     memset(covariance, 0, sizeof *covariance);
     for (int i = 0; i < RFADE_COARSE_BINS; i++) {
-        covariance->readings += totals[i];
+        covariance->readings += observed[i];
         block_total += blocks == NULL ? 0.0 : (double)blocks->total[i];
     }
-    memcpy(covariance->total, totals, sizeof covariance->total);
+    memcpy(covariance->observed, observed, sizeof covariance->observed);
+    memcpy(covariance->total, observed, sizeof covariance->total);
     if (blocks == NULL) {
         independent(covariance);
         return;

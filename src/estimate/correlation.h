@@ -15,7 +15,8 @@
 /** Covariance of the classes' weights, in units of readings. */
 struct rfade_class_covariance {
     double readings;
-    double total[RFADE_COARSE_BINS]; /**< readings by class; they sum to `readings` */
+    double observed[RFADE_COARSE_BINS]; /**< readings by class, of the bins */
+    double total[RFADE_COARSE_BINS];    /**< likewise, of the blocks: they are rounded apart */
     double value[RFADE_COARSE_BINS][RFADE_COARSE_BINS];
     double degrees_of_freedom; /**< of the covariance; INFINITY for independent readings */
     bool measured;             /**< false: too few blocks; see rfade_design_effect */
@@ -29,10 +30,10 @@ struct rfade_class_scores {
 
 /**
  * From blocks, or of independent readings (multinomial) where blocks is NULL.
- * @param totals  readings by class, used where blocks is NULL
+ * @param observed  readings by class, of the bins
  */
 void rfade_class_covariance(const struct rfade_blocks *blocks,
-                            const double totals[RFADE_COARSE_BINS],
+                            const double observed[RFADE_COARSE_BINS],
                             struct rfade_class_covariance *covariance);
 
 /**

@@ -191,22 +191,26 @@ static enum rfade_status set_parameter(const struct rfade_problem *problem,
     return RFADE_OK;
 }
 
-/* From theta to (mean power, parameter). */
+/*
+ * From theta to (mean power, parameter). Where the readings don't resolve the fading there is
+ * no information about the parameter, and no variance.
+ */
 static void set_matrices(const struct rfade_fit_details *details, struct rfade_fit *fit)
 {
     const struct rfade_maximum *maximum = &details->maximum;
     const struct rfade_model *model = details->sample.model;
-    double slope[2] = {1.0, 0.0};
-    if (rfade_has_spread(model)) {
+    double slope[2] = {1.0, 1.0};
+    int dimensions = rfade_has_spread(model) ? 2 : 1;
+    if (dimensions == 2) {
         double raw = rfade_parameter_of_spread(model, maximum->theta[RFADE_SPREAD]);
         slope[1] = rfade_spread_slope(model, raw);
     }
-    for (int i = 0; i < 2; i++) {
-        for (int j = 0; j < 2; j++) {
+    for (int i = 0; i < dimensions; i++) {
+        for (int j = 0; j < dimensions; j++) {
             double scale = slope[i] * slope[j];
-            fit->information[i][j] = scale == 0.0 ? 0.0 : maximum->information.at[i][j] * scale;
-            fit->covariance[i][j] =
-                scale == 0.0 ? 0.0 : details->spread.covariance[i][j] / scale;
+            bool known = maximum->inverse.at[i][i] > 0.0 && maximum->inverse.at[j][j] > 0.0;
+            fit->information[i][j] = maximum->information.at[i][j] * scale;
+            fit->covariance[i][j] = known ? details->spread.covariance[i][j] / scale : NAN;
         }
     }
 }

@@ -197,7 +197,7 @@ static void pool(const struct rfade_problem *problem, const struct rfade_fit_det
     memset(pooled->observed, 0, sizeof pooled->observed);
     memset(pooled->expected, 0, sizeof pooled->expected);
     for (int c = 0; c < CLASSES; c++) {
-        pooled->observed[pool_of[c]] += problem->covariance->total[c];
+        pooled->observed[pool_of[c]] += problem->covariance->observed[c];
         pooled->expected[pool_of[c]] += expectation->expected[c];
         slope[pool_of[c]][0] += expectation->slope[c][0];
         slope[pool_of[c]][1] += expectation->slope[c][1];
