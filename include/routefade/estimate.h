@@ -92,7 +92,7 @@ struct rfade_estimate {
  *         or all of them censored) | RFADE_NO_CONVERGENCE | RFADE_NO_MEMORY; on failure
  *         fit_count counts the fits that were finished
  * Accuracy: the maximum to about 1e-8 of the parameter, the log-likelihood to 1e-11
- * relative; ends of intervals to 1e-3 of their distance, from more than 300 bins to 5e-3.
+ * relative; ends of intervals to 1e-3 of their distance, from more than 120 bins to 5e-3.
  */
 RFADE_API enum rfade_status rfade_estimate_bins(const struct rfade_bin *bins, size_t bin_count,
                                                 const struct rfade_estimate_settings *settings,

@@ -8,7 +8,7 @@
 #include "estimate/classes.h"
 
 /* Below this many bins a shorter form gains nothing. */
-enum { SHORTEN_MIN = 300 };
+enum { SHORTEN_MIN = 120 };
 
 /*
  * Cells a standard deviation of a reading: the shorter form's curvature, and with it an
@@ -91,7 +91,7 @@ static int compare_places(const void *a, const void *b)
     return compare_numbers(rfade_bin_place(a), rfade_bin_place(b));
 }
 
-void rfade_bins_sort(struct rfade_bin *bins, size_t bin_count)
+static void sort_by_place(struct rfade_bin *bins, size_t bin_count)
 {
     qsort(bins, bin_count, sizeof *bins, compare_places);
 }
@@ -121,8 +121,9 @@ static void join(struct rfade_bin *into, const struct rfade_bin *bin)
     into->weight = weight;
 }
 
-static size_t gather(struct rfade_bin *bins, size_t bin_count, double cell_db,
-                     const double *edges_db)
+/* Joins neighbours of one kind, cell and class, in place; the bins come sorted by kind. */
+static size_t join_neighbours(struct rfade_bin *bins, size_t bin_count, double cell_db,
+                              const double *edges_db)
 {
     size_t count = 0;
     double cell = NAN;
@@ -131,18 +132,76 @@ static size_t gather(struct rfade_bin *bins, size_t bin_count, double cell_db,
     for (size_t i = 0; i < bin_count; i++) {
         struct rfade_bin bin = bins[i];
         double place_db = rfade_bin_place(&bin);
+        int class_here = edges_db == NULL ? -1 : rfade_class_of(edges_db, place_db);
         bool alike = floor(place_db / cell_db) == cell && kind_of(&bin) == kind &&
-                     rfade_class_of(edges_db, place_db) == place_class;
+                     class_here == place_class;
         if (alike) {
             join(&bins[count - 1], &bin);
         } else {
             bins[count++] = bin;
             cell = floor(place_db / cell_db);
             kind = kind_of(&bin);
-            place_class = rfade_class_of(edges_db, place_db);
+            place_class = class_here;
         }
     }
     return count;
+}
+
+/*
+ * Points gathered by counting, without a sort: a million of them come unquantised. Appends
+ * to `gathered`, which has room; as they are if they lie too far apart for that.
+ */
+static enum rfade_status gather_points(const struct rfade_bin *points, size_t point_count,
+                                       double cell_db, struct rfade_bin *gathered,
+                                       size_t *gathered_count)
+{
+    double low_db = INFINITY;
+    double high_db = -INFINITY;
+    for (size_t i = 0; i < point_count; i++) {
+        low_db = fmin(low_db, points[i].low_db);
+        high_db = fmax(high_db, points[i].low_db);
+    }
+    double cells = floor((high_db - low_db) / cell_db) + 1.0;
+    if (point_count == 0 || !(cells <= (double)point_count)) {
+        memcpy(gathered + *gathered_count, points, point_count * sizeof *points);
+        *gathered_count += point_count;
+        return RFADE_OK;
+    }
+    struct rfade_bin *sums = calloc((size_t)cells, sizeof *sums);
+    if (sums == NULL) {
+        return RFADE_NO_MEMORY;
+    }
+    for (size_t i = 0; i < point_count; i++) {
+        struct rfade_bin *sum = &sums[(size_t)((points[i].low_db - low_db) / cell_db)];
+        if (sum->weight > 0.0) {
+            join(sum, &points[i]);
+        } else {
+            *sum = points[i];
+        }
+    }
+    for (size_t i = 0; i < (size_t)cells; i++) {
+        if (sums[i].weight > 0.0) {
+            gathered[(*gathered_count)++] = sums[i];
+        }
+    }
+    free(sums);
+    return RFADE_OK;
+}
+
+/* Points to the end of a copy, intervals to its beginning; the number of intervals. */
+static size_t part_points(const struct rfade_bin *bins, size_t bin_count,
+                          struct rfade_bin *parted)
+{
+    size_t intervals = 0;
+    size_t points = 0;
+    for (size_t i = 0; i < bin_count; i++) {
+        if (bins[i].low_db == bins[i].high_db) {
+            parted[bin_count - ++points] = bins[i];
+        } else {
+            parted[intervals++] = bins[i];
+        }
+    }
+    return intervals;
 }
 
 enum rfade_status rfade_bins_shorten(const struct rfade_bin *bins, size_t bin_count,
@@ -152,19 +211,34 @@ enum rfade_status rfade_bins_shorten(const struct rfade_bin *bins, size_t bin_co
 {
     double deviation_db = DB_PER_NEPER_OF_POWER * fmin(sqrt(moments->normalised_variance), 1.0);
     double cells = CELLS_MIN * sqrt(fmax(1.0, (double)bin_count / CELLS_GROWTH_FROM));
-    cells = fmin(cells, CELLS_MAX);
-    *shorter_count = bin_count;
-    *shorter = malloc(bin_count * sizeof **shorter);
-    if (*shorter == NULL) {
-        return RFADE_NO_MEMORY;
+    double cell_db = deviation_db / fmin(cells, CELLS_MAX);
+    enum rfade_status status = RFADE_OK;
+    struct rfade_bin *parted = malloc(bin_count * sizeof *parted);
+    struct rfade_bin *made = malloc(bin_count * sizeof *made);
+    *shorter = NULL;
+    *shorter_count = 0;
+    if (parted == NULL || made == NULL) {
+        status = RFADE_NO_MEMORY;
+        goto out;
     }
-    memcpy(*shorter, bins, bin_count * sizeof **shorter);
-    if (bin_count >= SHORTEN_MIN && deviation_db > 0.0) {
-        qsort(*shorter, bin_count, sizeof **shorter, compare_kinds);
-        *shorter_count = gather(*shorter, bin_count, deviation_db / cells, edges_db);
+    if (bin_count < SHORTEN_MIN || !(cell_db > 0.0)) {
+        memcpy(made, bins, bin_count * sizeof *made);
+        *shorter_count = bin_count;
+    } else {
+        size_t intervals = part_points(bins, bin_count, parted);
+        qsort(parted, intervals, sizeof *parted, compare_kinds);
+        *shorter_count = join_neighbours(parted, intervals, cell_db, edges_db);
+        memcpy(made, parted, *shorter_count * sizeof *made);
+        status = gather_points(parted + intervals, bin_count - intervals, cell_db, made,
+                               shorter_count);
     }
-    rfade_bins_sort(*shorter, *shorter_count);
-    return RFADE_OK;
+    sort_by_place(made, *shorter_count);
+    *shorter = made;
+    made = NULL;
+out:
+    free(parted);
+    free(made);
+    return status;
 }
 
 static bool same_interval(const struct rfade_bin *a, const struct rfade_bin *b)

@@ -26,14 +26,11 @@ double rfade_bin_power(const struct rfade_bin *bin, double reference_db);
 enum rfade_status rfade_bins_moments(const struct rfade_bin *bins, size_t bin_count,
                                      struct rfade_bin_moments *moments);
 
-/** Sorts bins by place. */
-void rfade_bins_sort(struct rfade_bin *bins, size_t bin_count);
-
 /**
  * The same readings in fewer bins, in ascending order of place: bins of one kind, width and
  * class whose places differ by little against the spread are gathered at their mean. A fit
  * of the shorter form is a first approximation; its curvature serves for the whole.
- * @param edges_db  of the classes
+ * @param edges_db  of classes that are given; NULL: there are none yet
  * @param[out] shorter  free() it; as many as the bins if there is nothing to gain
  */
 enum rfade_status rfade_bins_shorten(const struct rfade_bin *bins, size_t bin_count,

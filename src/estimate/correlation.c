@@ -147,9 +147,11 @@ enum rfade_status rfade_class_scores(const struct rfade_sample *sample, const do
     memset(scores, 0, sizeof *scores);
     for (size_t i = 0; i < sample->bin_count; i++) {
         double score[2];
+        double log_probability = NAN;
         const struct rfade_bin *bin = &sample->bins[i];
-        enum rfade_status status = rfade_bin_score(
-            sample->model, bin, maximum->theta[RFADE_LOCATION], parameter, score);
+        enum rfade_status status =
+            rfade_bin_score(sample->model, bin, maximum->theta[RFADE_LOCATION], parameter,
+                            &log_probability, score);
         if (status != RFADE_OK) {
             return status;
         }

@@ -25,27 +25,6 @@ static bool settings_valid(const struct rfade_estimate_settings *settings)
            settings->narrowing >= 0.0 && settings->narrowing < 1.0;
 }
 
-/* Edges that were given, those of a survey's blocks, or such as the readings suggest. */
-static enum rfade_status choose_edges(const struct rfade_bin *bins, size_t bin_count,
-                                      const struct rfade_blocks *blocks, const double *edges_db,
-                                      struct workspace *workspace)
-{
-    if (edges_db != NULL || blocks != NULL) {
-        memcpy(workspace->edges_db, edges_db != NULL ? edges_db : rfade_coarse_edges_db,
-               sizeof workspace->edges_db);
-        return RFADE_OK;
-    }
-    struct rfade_bin *sorted = malloc(bin_count * sizeof *sorted);
-    if (sorted == NULL) {
-        return RFADE_NO_MEMORY;
-    }
-    memcpy(sorted, bins, bin_count * sizeof *sorted);
-    rfade_bins_sort(sorted, bin_count);
-    rfade_class_edges(sorted, bin_count, workspace->edges_db);
-    free(sorted);
-    return RFADE_OK;
-}
-
 static void measure_covariance(struct workspace *workspace, const struct rfade_bin *bins,
                                size_t bin_count, const struct rfade_blocks *blocks)
 {
@@ -70,15 +49,21 @@ static enum rfade_status prepare(const struct rfade_bin *bins, size_t bin_count,
         return RFADE_NO_DATA;
     }
     enum rfade_status status = rfade_bins_moments(bins, bin_count, &workspace->moments);
-    if (status == RFADE_OK) {
-        status = choose_edges(bins, bin_count, settings->blocks, edges_db, workspace);
+    /* Edges that were given, those of a survey's blocks, or such as the readings suggest. */
+    if (edges_db == NULL && settings->blocks != NULL) {
+        edges_db = rfade_coarse_edges_db;
     }
     if (status == RFADE_OK) {
-        status = rfade_bins_shorten(bins, bin_count, &workspace->moments, workspace->edges_db,
+        status = rfade_bins_shorten(bins, bin_count, &workspace->moments, edges_db,
                                     &workspace->quick, &quick_count);
     }
     if (status != RFADE_OK) {
         return status;
+    }
+    if (edges_db != NULL) {
+        memcpy(workspace->edges_db, edges_db, sizeof workspace->edges_db);
+    } else {
+        rfade_class_edges(workspace->quick, quick_count, workspace->edges_db);
     }
     measure_covariance(workspace, workspace->quick, quick_count, settings->blocks);
     workspace->problem = (struct rfade_problem){

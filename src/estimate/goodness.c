@@ -119,11 +119,8 @@ static enum rfade_status expect_grid(const struct rfade_problem *problem,
         if (!(bin.high_db > bin.low_db)) {
             continue;
         }
-        enum rfade_status status = rfade_bin_log_probability(model, &bin, theta[RFADE_LOCATION],
-                                                             parameter, &log_probability);
-        if (status == RFADE_OK) {
-            status = rfade_bin_score(model, &bin, theta[RFADE_LOCATION], parameter, score);
-        }
+        enum rfade_status status = rfade_bin_score(model, &bin, theta[RFADE_LOCATION],
+                                                   parameter, &log_probability, score);
         if (status != RFADE_OK) {
             return status;
         }

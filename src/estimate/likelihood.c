@@ -48,10 +48,12 @@ enum rfade_status rfade_bin_log_probability(const struct rfade_model *model,
 }
 
 enum rfade_status rfade_bin_score(const struct rfade_model *model, const struct rfade_bin *bin,
-                                  double location_db, double parameter, double score[2])
+                                  double location_db, double parameter, double *log_probability,
+                                  double score[2])
 {
     struct rfade_log_gradient gradient = {NAN, NAN, NAN};
     enum rfade_status status = bin_gradient(model, bin, location_db, parameter, &gradient);
+    *log_probability = gradient.value;
     score[RFADE_LOCATION] = gradient.d_mean_db;
     score[RFADE_SPREAD] = !rfade_has_spread(model)
                               ? 0.0

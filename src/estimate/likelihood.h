@@ -76,9 +76,10 @@ enum rfade_status rfade_bin_log_probability(const struct rfade_model *model,
                                             const struct rfade_bin *bin, double location_db,
                                             double parameter, double *log_probability);
 
-/** Scores of one bin about theta. */
+/** The same, with its scores about theta; not for the very end of the domain (K = 0). */
 enum rfade_status rfade_bin_score(const struct rfade_model *model, const struct rfade_bin *bin,
-                                  double location_db, double parameter, double score[2]);
+                                  double location_db, double parameter, double *log_probability,
+                                  double score[2]);
 
 /** @return RFADE_OK, or what the model returned; RFADE_NO_CONVERGENCE if it isn't finite. */
 enum rfade_status rfade_likelihood_at(const struct rfade_sample *sample, const double theta[2],

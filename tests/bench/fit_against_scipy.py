@@ -4,7 +4,7 @@
 
 usage: fit_against_scipy.py BUILD/tests/bench/bench_fit [COUNT...]
 
-Prints, for each number of readings and each round, scipy's seconds over ours and our
+Prints, for each number of readings and each round, scipy's processor seconds over ours and our
 log-likelihood less scipy's (of the same amplitudes; not negative if ours is as good).
 """
 import subprocess
@@ -28,9 +28,9 @@ def ours(program, levels_db):
 
 
 def scipys(distribution, amplitudes):
-    start = time.perf_counter()
+    start = time.process_time()
     parameters = distribution.fit(amplitudes, floc=0)
-    seconds = time.perf_counter() - start
+    seconds = time.process_time() - start
     return seconds, distribution.logpdf(amplitudes, *parameters).sum()
 
 
