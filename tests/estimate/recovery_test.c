@@ -43,10 +43,11 @@ static double draw_db(gsl_rng *generator, const struct cell *cell)
 }
 
 /*
+ * Returns in how many trials the interval held the truth.
  * With 100 trials a root mean square error has a standard deviation of 7 %, a mean one of
  * a tenth of a standard error, and a share of 95 % one of 2.2 %: limits at 3.5 of them.
  */
-static void assert_cell(gsl_rng *generator, const struct cell *cell)
+static int assert_cell(gsl_rng *generator, const struct cell *cell)
 {
     double bound = cell->deviation_of_one / sqrt(READINGS);
     double sum = 0.0;
@@ -73,15 +74,20 @@ static void assert_cell(gsl_rng *generator, const struct cell *cell)
         fail_msg("%s %g: bias %g and RMSE %g of the bound, covered %d of %d",
                  rfade_model(cell->model)->name, cell->parameter, bias, rmse, covered, TRIALS);
     }
+    return covered;
 }
 
 static void estimates_meet_the_cramer_rao_bound(void **state)
 {
     (void)state;
     gsl_rng *generator = generator_create(21);
-    for (size_t i = 0; i < sizeof CELLS / sizeof *CELLS; i++) {
-        assert_cell(generator, &CELLS[i]);
+    const int cells = sizeof CELLS / sizeof *CELLS;
+    int covered = 0;
+    for (int i = 0; i < cells; i++) {
+        covered += assert_cell(generator, &CELLS[i]);
     }
+    /* 95 % of 700, within 3.5 standard deviations of 5.8 */
+    assert_in_range(covered, 645, 685);
     gsl_rng_free(generator);
 }
 
@@ -94,6 +100,7 @@ static void tests_keep_their_error_rate(void **state)
     const struct rfade_column_settings settings = {1.0, NAN, NAN, true, 0.95};
     int misfits[3] = {0, 0, 0};
     int rice = 0;
+    int between = 0;
     for (int repeat = 0; repeat < REPEATS; repeat++) {
         double levels_dbm[SAMPLE];
         struct rfade_column_estimate result;
@@ -105,12 +112,19 @@ static void tests_keep_their_error_rate(void **state)
         for (int i = 0; i < 3; i++) {
             misfits[i] += result.estimate.fits[i].goodness_p < 0.05 ? 1 : 0;
         }
+        const struct rfade_fit *fits = result.estimate.fits;
+        double ratio =
+            2.0 * (fits[RFADE_RICE].log_likelihood - fits[RFADE_RAYLEIGH].log_likelihood);
+        /* Half chi-square of one degree: 5 % lie above 2.7055 [AMS 55, table 26.8, Q = 0.1]. */
+        assert_true(result.estimate.preferred != RFADE_RICE || ratio > 2.7055);
+        between += ratio > 2.0 && ratio < 2.7 ? 1 : 0; /* where AIC alone would take Rice */
         rice += result.estimate.preferred == RFADE_RICE ? 1 : 0;
     }
     for (int i = 0; i < 3; i++) {
         assert_in_range(misfits[i], 3, 28);
     }
     assert_in_range(rice, 1, 28);
+    assert_true(between > 0);
     gsl_rng_free(generator);
 }
 
