@@ -98,9 +98,10 @@ static enum rfade_status log_interval(double sigma_db, double low_db, double hig
     }
     const double width_db = high_db - low_db;
     if (isfinite(width_db)) {
+        const double half_width = 0.5 * width_db / sigma_db;
         const double slope = fmax(fabs(low_db), fabs(high_db)) / sigma_db;
         const struct rfade_gauss_rule *rule =
-            rfade_gauss_rule_for(0.5 * width_db / sigma_db * (1.0 + slope));
+            rfade_gauss_rule_for(half_width * slope, half_width * half_width);
         if (rule != NULL) {
             *result = narrow_interval(sigma_db, 0.5 * (low_db + high_db), width_db, rule);
             return RFADE_OK;

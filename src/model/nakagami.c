@@ -108,10 +108,13 @@ static enum rfade_status log_interval(double m, double low_db, double high_db,
     }
     const double width_db = high_db - low_db;
     if (width_db <= RFADE_NARROW_DB) {
-        const double slope = m * fmax(fabs(expm1(rfade_log_ratio(low_db))),
-                                      fabs(expm1(rfade_log_ratio(high_db))));
+        /* g = m (s - exp(s)): slope and curvature are greatest at the ends */
+        const double half_width = 0.5 * RFADE_LN_PER_DB * width_db;
+        const double y_high = exp(rfade_log_ratio(high_db));
+        const double slope =
+            m * fmax(fabs(1.0 - y_high), fabs(1.0 - y_high * exp(-2.0 * half_width)));
         const struct rfade_gauss_rule *rule =
-            rfade_gauss_rule_for(0.5 * RFADE_LN_PER_DB * width_db * (1.0 + slope));
+            rfade_gauss_rule_for(half_width * slope, half_width * half_width * m * y_high);
         if (rule != NULL) {
             *result = narrow_interval(m, 0.5 * (low_db + high_db), width_db, rule);
             return RFADE_OK;

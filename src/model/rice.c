@@ -174,10 +174,11 @@ static struct rfade_interval_end interval_end(double k, double a, double x_db)
 }
 
 /*
- * How far ln density can move over half the interval: |slope| <= 2 + b |b - a| / 2. Below a
- * the product is greatest half way, at b = a/2.
+ * The rule for an interval, from bounds: |slope| is at most 1.4 + b |b - a| / 2, and below a
+ * that product is greatest half way, at b = a/2; |curvature| is at most b^2/2.
  */
-static double half_variation(double a, const struct point *middle, double width_db)
+static const struct rfade_gauss_rule *rule_for(double a, const struct point *middle,
+                                               double width_db)
 {
     const double half_width = 0.5 * RFADE_LN_PER_DB * width_db;
     const double step = expm1(0.5 * half_width);
@@ -186,7 +187,8 @@ static double half_variation(double a, const struct point *middle, double width_
     const double half_way = fmin(fmax(0.5 * a, b_low), b_high);
     const double drift = fmax(b_high * fabs(b_high - a),
                               fmax(b_low * fabs(b_low - a), half_way * (a - half_way)));
-    return half_width * (2.0 + 0.5 * drift);
+    return rfade_gauss_rule_for(half_width * (1.4 + 0.5 * drift),
+                                0.5 * half_width * half_width * b_high * b_high);
 }
 
 static enum rfade_status log_interval(double k, double low_db, double high_db,
@@ -200,8 +202,7 @@ static enum rfade_status log_interval(double k, double low_db, double high_db,
     const double width_db = high_db - low_db;
     if (width_db <= RFADE_NARROW_DB) {
         const struct point middle = point_at(k, a, 0.5 * (low_db + high_db));
-        const struct rfade_gauss_rule *rule =
-            rfade_gauss_rule_for(half_variation(a, &middle, width_db));
+        const struct rfade_gauss_rule *rule = rule_for(a, &middle, width_db);
         if (rule != NULL) {
             *result = narrow_interval(k, a, &middle, width_db, rule);
             return RFADE_OK;

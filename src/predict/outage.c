@@ -4,12 +4,17 @@
  * urban radio propagation", IEEE Transactions on Communications 25, 1977, for Rayleigh).
  *
  * The level is u + s, u the fast fading about its mean power and s normal with the standard
- * deviation of the shadowing. Either tail T at x is an integral of positive terms, written in
- * the narrower of the two variables:
- *     over s: T_fast(x - s) phi(s/sigma)/sigma ds,   over u: f(u) T_normal((x - u)/sigma) du.
- * All factors are log-concave and analytic, so the trapezoidal rule on the whole line
- * converges exponentially (L. N. Trefethen and J. A. C. Weideman, SIAM Review 56, 2014):
- * halving the step about squares the error, and sums go outward from the peak.
+ * deviation of the shadowing. Either tail T at x is an integral over u of positive terms, in
+ * the form whose narrow factor is a density, so that its sum is short:
+ *     T_fast(u) phi((x - u)/sigma)/sigma   or   f(u) T_normal((x - u)/sigma).
+ * Both are analytic, so the trapezoidal rule on the whole line converges exponentially
+ * (L. N. Trefethen and J. A. C. Weideman, SIAM Review 56, 2014): halving the step about
+ * squares the error. Sums go outward from the peaks.
+ *
+ * ln f of Rayleigh and Nakagami is concave in u, as are all the other factors, so there is one
+ * peak. ln f of Rice bends upward in deep fades, where the slope climbs from 1 (the power law)
+ * to K/4 and more at 6 dB below the mean: a deep outage may then come from a deep fade, a deep
+ * local mean, or both, with a valley between.
  */
 #include "routefade/predict.h"
 
@@ -22,14 +27,17 @@
 
 static const double shadowing_max_db = 30.0;
 static const double threshold_max_db = 1000.0;
-static const double search_max_db = 2900.0; /* leaves the sums room within the models' domain */
+/* No peak lies further beyond the threshold or the mean: ten standard deviations. */
+static const double peak_margin_db = 10.0 * 30.0;
+/* Where the slope of ln f of Rice is greatest, at large K: half the steady amplitude. */
+static const double rice_steepest_db = -6.0;
 static const double db_per_neper = 10.0 / M_LN10;
 
 /* Two steps that agree to here leave about the square of it. */
 static const double step_tolerance = 1e-9;
-/* Terms this far below the peak, in nepers, end a sum of log-concave terms. */
+/* Terms this far below the highest peak, in nepers, end a sum. */
 static const double negligible_exponent = 45.0;
-enum { HALVINGS_MAX = 12, BISECTIONS_MAX = 60 };
+enum { HALVINGS_MAX = 12, BISECTIONS_MAX = 60, VALLEY_PARTS = 24 };
 
 struct mixture;
 
@@ -39,14 +47,27 @@ struct term {
     double slope;
 };
 
+/* Of the integrand: the lowest and the highest peak, which may be one. */
+struct peaks {
+    double low_db;
+    double high_db;
+    double log_value; /* at the higher of them */
+};
+
 struct mixture {
     const struct rfade_model *model;
     double parameter;
     double shadowing_db;
     double x_db;
     bool is_upper;
+    double spread_db; /* scale on which the integrand varies */
+    /* of the variable that it has been written in */
     struct term (*integrand)(const struct mixture *mixture, double v_db);
+    double origin_db; /* the level u at which that variable is 0 */
 };
+
+/* Beyond the levels that a model takes. */
+static const struct term nothing = {-INFINITY, 0.0};
 
 /* ln of a tail and its slope, which is the density's share of it. */
 static struct term tail_term(const struct mixture *mixture, const struct rfade_tails *tails,
@@ -63,20 +84,23 @@ static double log_shadowing_density(const struct mixture *mixture, double s_db)
     return -0.5 * z * z - log(mixture->shadowing_db * (M_SQRT2 * M_SQRTPI));
 }
 
-static struct term over_shadowing(const struct mixture *mixture, double s_db)
+/* In v = u - x = -s, so that a narrow shadowing is not lost in the rounding of x. */
+static struct term over_shadowing(const struct mixture *mixture, double v_db)
 {
-    const double u_db = mixture->x_db - s_db;
+    const double u_db = mixture->x_db + v_db;
     struct rfade_tails tails;
     struct rfade_log_gradient density;
     if (mixture->model->tails(mixture->parameter, u_db, &tails) != RFADE_OK ||
         mixture->model->log_density(mixture->parameter, u_db, &density) != RFADE_OK) {
-        return (struct term){-INFINITY, 0.0};
+        return nothing;
     }
     const struct term tail = tail_term(mixture, &tails, density.value);
-    return (struct term){tail.log_value + log_shadowing_density(mixture, s_db),
-                         -tail.slope - s_db / (mixture->shadowing_db * mixture->shadowing_db)};
+    const double variance = mixture->shadowing_db * mixture->shadowing_db;
+    return (struct term){tail.log_value + log_shadowing_density(mixture, v_db),
+                         tail.slope - v_db / variance};
 }
 
+/* In u itself. */
 static struct term over_fading(const struct mixture *mixture, double u_db)
 {
     const double s_db = mixture->x_db - u_db;
@@ -84,63 +108,112 @@ static struct term over_fading(const struct mixture *mixture, double u_db)
     struct rfade_log_gradient density;
     if (mixture->model->log_density(mixture->parameter, u_db, &density) != RFADE_OK ||
         rfade_normal_tails(s_db / mixture->shadowing_db, &tails) != RFADE_OK) {
-        return (struct term){-INFINITY, 0.0};
+        return nothing;
     }
     const struct term tail = tail_term(mixture, &tails, log_shadowing_density(mixture, s_db));
     return (struct term){tail.log_value + density.value, -tail.slope - density.d_mean_db};
 }
 
-/* Near enough to the integrand's peak: within a thousandth of the narrower spread. */
-static double find_peak(const struct mixture *mixture, double spread_db)
+/* Near enough to the peak between two levels where the integrand rises and falls. */
+static double bisect_peak(const struct mixture *mixture, double low_db, double high_db)
 {
-    const double centre_db = mixture->integrand == over_shadowing ? mixture->x_db : 0.0;
-    double low = centre_db - search_max_db;
-    double high = centre_db + search_max_db;
-    for (int i = 0; i < BISECTIONS_MAX && high - low > 1e-3 * spread_db; i++) {
-        const double middle = 0.5 * (low + high);
-        if (mixture->integrand(mixture, middle).slope > 0.0) {
-            low = middle;
+    for (int i = 0; i < BISECTIONS_MAX && high_db - low_db > 1e-3 * mixture->spread_db; i++) {
+        const double middle_db = 0.5 * (low_db + high_db);
+        if (mixture->integrand(mixture, middle_db).slope > 0.0) {
+            low_db = middle_db;
         } else {
-            high = middle;
+            high_db = middle_db;
         }
     }
-    return 0.5 * (low + high);
+    return 0.5 * (low_db + high_db);
 }
 
-/* Sum of the integrand over its peak at `first_db`, first_db + step_db, ... outward. */
-static double sum_outward(const struct mixture *mixture, double first_db, double step_db,
-                          double log_peak)
+/* The lowest and the highest peak: one and the same, or two with a valley between. */
+static void find_peaks(const struct mixture *mixture, struct peaks *peaks)
+{
+    const double low_db = fmin(mixture->x_db, 0.0) - peak_margin_db;
+    const double high_db = fmax(mixture->x_db, 0.0) + peak_margin_db;
+    const bool may_have_valley = mixture->model->id == RFADE_RICE && !mixture->is_upper;
+    const int parts = may_have_valley ? VALLEY_PARTS : 1;
+    const double ends_db[] = {low_db - mixture->origin_db,
+                              fmax(rice_steepest_db, low_db) - mixture->origin_db,
+                              high_db - mixture->origin_db};
+    double before_db = ends_db[0];
+    bool rises = true;
+    *peaks = (struct peaks){NAN, NAN, -INFINITY};
+    for (int i = 1; i <= 2 * parts; i++) {
+        const int half = i > parts ? 1 : 0;
+        const double share = (double)(i - half * parts) / parts;
+        const double at_db = ends_db[half] + share * (ends_db[half + 1] - ends_db[half]);
+        const bool rises_here = mixture->integrand(mixture, at_db).slope > 0.0;
+        if (rises && !rises_here) {
+            peaks->high_db = bisect_peak(mixture, before_db, at_db);
+            peaks->low_db = isnan(peaks->low_db) ? peaks->high_db : peaks->low_db;
+            peaks->log_value =
+                fmax(peaks->log_value, mixture->integrand(mixture, peaks->high_db).log_value);
+        }
+        rises = rises_here;
+        before_db = at_db;
+    }
+}
+
+/*
+ * Sum of the integrand, relative to the highest peak, at first_db, first_db + step_db, ...
+ * until it is negligible or a limit is passed; where that was, in *end_db.
+ */
+static double sum_outward(const struct mixture *mixture, const struct peaks *peaks,
+                          double first_db, double step_db, double limit_db, double *end_db)
 {
     double sum = 0.0;
     for (size_t i = 0;; i++) {
-        const double below_peak =
-            mixture->integrand(mixture, first_db + (double)i * step_db).log_value - log_peak;
-        if (!(below_peak > -negligible_exponent)) {
+        const double at_db = first_db + (double)i * step_db;
+        const double relative = mixture->integrand(mixture, at_db).log_value - peaks->log_value;
+        *end_db = at_db;
+        if (!(relative > -negligible_exponent) || (at_db - limit_db) * step_db > 0.0) {
             return sum;
         }
-        sum += exp(below_peak);
+        sum += exp(relative);
     }
 }
 
-static enum rfade_status integrate(const struct mixture *mixture, double spread_db,
-                                   double *log_tail)
+/* Sum over the whole line at high peak + offset_db + any multiple of step_db. */
+static double sum_line(const struct mixture *mixture, const struct peaks *peaks,
+                       double offset_db, double step_db)
 {
-    const double peak_db = find_peak(mixture, spread_db);
-    const double log_peak = mixture->integrand(mixture, peak_db).log_value;
-    double step_db = 0.5 * spread_db;
-    double sum = sum_outward(mixture, peak_db, step_db, log_peak) +
-                 sum_outward(mixture, peak_db - step_db, -step_db, log_peak);
+    const double first_db = peaks->high_db + offset_db;
+    double reached_db = NAN;
+    double end_db = NAN;
+    double sum =
+        sum_outward(mixture, peaks, first_db, step_db, INFINITY, &end_db) +
+        sum_outward(mixture, peaks, first_db - step_db, -step_db, -INFINITY, &reached_db);
+    if (peaks->low_db < reached_db) {
+        /* the valley was negligible: on the same grid, about the peak beyond it */
+        const double steps = ceil((first_db - peaks->low_db) / step_db);
+        const double low_first_db = first_db - steps * step_db;
+        sum += sum_outward(mixture, peaks, low_first_db, -step_db, -INFINITY, &end_db) +
+               sum_outward(mixture, peaks, low_first_db + step_db, step_db,
+                           reached_db - 0.5 * step_db, &end_db);
+    }
+    return sum;
+}
+
+static enum rfade_status integrate(const struct mixture *mixture, double *log_tail)
+{
+    struct peaks peaks;
+    find_peaks(mixture, &peaks);
+    if (isnan(peaks.high_db)) {
+        return RFADE_NO_CONVERGENCE;
+    }
+    double step_db = 0.5 * mixture->spread_db;
+    double sum = sum_line(mixture, &peaks, 0.0, step_db);
     for (int i = 0; i < HALVINGS_MAX; i++) {
         /* the new points lie half way between the old ones */
-        const double between =
-            sum_outward(mixture, peak_db + 0.5 * step_db, step_db, log_peak) +
-            sum_outward(mixture, peak_db - 0.5 * step_db, -step_db, log_peak);
-        const double refined = 0.5 * (sum + between);
-        const bool agrees = fabs(refined - sum) <= step_tolerance * refined;
-        sum = sum + between;
+        const double between = sum_line(mixture, &peaks, 0.5 * step_db, step_db);
+        const bool agrees = fabs(between - sum) <= 2.0 * step_tolerance * (sum + between);
+        sum += between;
         step_db *= 0.5;
         if (agrees) {
-            *log_tail = log_peak + log(sum * step_db);
+            *log_tail = peaks.log_value + log(sum * step_db);
             return RFADE_OK;
         }
     }
@@ -148,12 +221,12 @@ static enum rfade_status integrate(const struct mixture *mixture, double spread_
 }
 
 /* One tail first; if it proves the large one, the other is integrated for itself. */
-static enum rfade_status integrate_small_tail(struct mixture *mixture, double spread_db,
+static enum rfade_status integrate_small_tail(struct mixture *mixture,
                                               struct rfade_tails *result)
 {
     for (int attempt = 0; attempt < 2; attempt++) {
         double log_tail = NAN;
-        const enum rfade_status status = integrate(mixture, spread_db, &log_tail);
+        const enum rfade_status status = integrate(mixture, &log_tail);
         if (status != RFADE_OK) {
             return status;
         }
@@ -186,11 +259,17 @@ enum rfade_status rfade_outage(const struct rfade_model *model, double parameter
      */
     const double fading_db =
         db_per_neper * fmin(sqrt(model->normalised_variance(parameter)), 1.0);
-    const bool shadowing_narrower = shadowing_db < fading_db;
-    struct mixture mixture = {model,        parameter,
-                              shadowing_db, x_db,
-                              x_db > 0.0,   shadowing_narrower ? over_shadowing : over_fading};
-    return integrate_small_tail(&mixture, fmin(shadowing_db, fading_db), result);
+    struct mixture mixture = {
+        .model = model,
+        .parameter = parameter,
+        .shadowing_db = shadowing_db,
+        .x_db = x_db,
+        .is_upper = x_db > 0.0,
+        .spread_db = fmin(shadowing_db, fading_db),
+        .integrand = shadowing_db < fading_db ? over_shadowing : over_fading,
+        .origin_db = shadowing_db < fading_db ? x_db : 0.0,
+    };
+    return integrate_small_tail(&mixture, result);
 }
 
 double rfade_lognormal_mean_over_median_db(double sigma_db)

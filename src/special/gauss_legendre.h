@@ -13,9 +13,10 @@ struct rfade_gauss_rule {
 
 /**
  * The shortest rule that integrates exp(g(t)) over [-1, 1] to about 1e-16 when |g'| is at
- * most `variation` and g is smooth on that scale; NULL if the longest does not.
+ * most `slope` and |g''| at most `curvature`, and g is smooth on that scale; NULL if the
+ * longest does not.
  */
-const struct rfade_gauss_rule *rfade_gauss_rule_for(double variation);
+const struct rfade_gauss_rule *rfade_gauss_rule_for(double slope, double curvature);
 
 /** The rule of 32 nodes. */
 const struct rfade_gauss_rule *rfade_gauss_rule_finest(void);

@@ -64,8 +64,10 @@ static void parts_add_up_to_the_whole(void **state)
 {
     (void)state;
     for (size_t i = 0; i < EXAMPLE_COUNT; i++) {
-        for (double width_db = 1e-3; width_db < 120.0; width_db *= 1.9) {
-            for (double low_db = -70.0; low_db < 15.0; low_db += 3.3) {
+        for (int width_step = 0; 1e-3 * pow(1.9, width_step) < 120.0; width_step++) {
+            const double width_db = 1e-3 * pow(1.9, width_step);
+            for (int low_step = 0; - 70.0 + low_step * 3.3 < 15.0; low_step++) {
+                const double low_db = -70.0 + low_step * 3.3;
                 const double high_db = low_db + width_db;
                 const double middle_db = low_db + 0.4 * width_db;
                 const double whole = interval(&examples[i], low_db, high_db).value;
@@ -84,7 +86,8 @@ static void censored_halves_are_the_tails(void **state)
 {
     (void)state;
     for (size_t i = 0; i < EXAMPLE_COUNT; i++) {
-        for (double x_db = -60.0; x_db < 15.0; x_db += 0.71) {
+        for (int x_step = 0; - 60.0 + x_step * 0.71 < 15.0; x_step++) {
+            const double x_db = -60.0 + x_step * 0.71;
             struct rfade_tails tails;
             const struct rfade_log_gradient below = interval(&examples[i], -INFINITY, x_db);
             const struct rfade_log_gradient above = interval(&examples[i], x_db, INFINITY);
@@ -140,7 +143,8 @@ static void slopes_match_differences(void **state)
                        ? 40.0 / (examples[i].parameter * examples[i].parameter)
                        : examples[i].parameter);
         for (size_t w = 0; w < sizeof widths_db / sizeof widths_db[0]; w++) {
-            for (double low_db = -25.0; low_db < 8.0; low_db += 1.3) {
+            for (int low_step = 0; - 25.0 + low_step * 1.3 < 8.0; low_step++) {
+                const double low_db = -25.0 + low_step * 1.3;
                 const double high_db = low_db + widths_db[w];
                 const struct rfade_log_gradient slopes =
                     interval(&examples[i], low_db, high_db);
@@ -168,7 +172,8 @@ static void slopes_match_differences(void **state)
 static void rice_slope_is_right_at_and_near_zero(void **state)
 {
     (void)state;
-    for (double x_db = -30.0; x_db < 10.0; x_db += 1.7) {
+    for (int x_step = 0; - 30.0 + x_step * 1.7 < 10.0; x_step++) {
+        const double x_db = -30.0 + x_step * 1.7;
         const double y = pow(10.0, 0.1 * x_db);
         const double k = 1e-9;
         const struct example near_zero = {RFADE_RICE, k};
@@ -190,8 +195,10 @@ static void special_cases_are_rayleigh(void **state)
     (void)state;
     const struct example rayleigh = {RFADE_RAYLEIGH, 0.0};
     const struct example others[] = {{RFADE_RICE, 0.0}, {RFADE_NAKAGAMI, 1.0}};
-    for (double low_db = -90.0; low_db < 20.0; low_db += 2.3) {
-        for (double width_db = 1e-3; width_db < 90.0; width_db *= 2.5) {
+    for (int low_step = 0; - 90.0 + low_step * 2.3 < 20.0; low_step++) {
+        const double low_db = -90.0 + low_step * 2.3;
+        for (int width_step = 0; 1e-3 * pow(2.5, width_step) < 90.0; width_step++) {
+            const double width_db = 1e-3 * pow(2.5, width_step);
             const struct rfade_log_gradient expected =
                 interval(&rayleigh, low_db, low_db + width_db);
             for (size_t i = 0; i < 2; i++) {

@@ -38,7 +38,8 @@ static void level_moments(enum rfade_model_id id, double parameter, double *mean
     const double step_db = 0.25;
     double mean = 0.0;
     double square = 0.0;
-    for (double x_db = -400.0; x_db < 40.0; x_db += step_db) {
+    for (int x_step = 0; - 400.0 + x_step * step_db < 40.0; x_step++) {
+        const double x_db = -400.0 + x_step * step_db;
         struct rfade_log_gradient bin;
         assert_int_equal(rfade_model(id)->log_interval(parameter, x_db - 0.5 * step_db,
                                                        x_db + 0.5 * step_db, &bin),
@@ -121,7 +122,8 @@ static void moment_estimates_come_back_and_are_clamped(void **state)
     (void)state;
     for (int id = RFADE_RICE; id < RFADE_MODEL_COUNT; id++) {
         const struct rfade_model *model = rfade_model((enum rfade_model_id)id);
-        for (double parameter = 0.6; parameter < 50.0; parameter *= 1.3) {
+        for (int parameter_step = 0; 0.6 * pow(1.3, parameter_step) < 50.0; parameter_step++) {
+            const double parameter = 0.6 * pow(1.3, parameter_step);
             const double variance = model->normalised_variance(parameter);
             const double back = model->from_normalised_variance(variance);
             assert_true(fabs(back / parameter - 1.0) < 1e-12 * (1.0 + parameter));

@@ -54,7 +54,8 @@ static void p528_nakagami_rice_table(void **state)
 static void rayleigh_quantile_is_closed(void **state)
 {
     (void)state;
-    for (double p = 1e-300; p < 0.5; p *= 10.0) {
+    for (int p_step = 0; 1e-300 * pow(10.0, p_step) < 0.5; p_step++) {
+        const double p = 1e-300 * pow(10.0, p_step);
         const double low = quantile(RFADE_RAYLEIGH, 0.0, p, 1.0 - p);
         const double high = quantile(RFADE_RAYLEIGH, 0.0, 1.0 - p, p);
         assert_true(fabs(low - 10.0 * log10(-log1p(-p))) < 1e-12 * fabs(low));
@@ -74,7 +75,8 @@ static void quantiles_come_back_through_the_tails(void **state)
                  {RFADE_LOGNORMAL, 0.1}, {RFADE_LOGNORMAL, 8.0}};
     for (size_t i = 0; i < sizeof cases / sizeof cases[0]; i++) {
         const struct rfade_model *model = rfade_model(cases[i].id);
-        for (double p = 0.5; p > 1e-145; p *= 0.37) {
+        for (int p_step = 0; 0.5 * pow(0.37, p_step) > 1e-145; p_step++) {
+            const double p = 0.5 * pow(0.37, p_step);
             struct rfade_tails tails;
             const double low = quantile(cases[i].id, cases[i].parameter, p, 1.0 - p);
             assert_int_equal(model->tails(cases[i].parameter, low, &tails), RFADE_OK);

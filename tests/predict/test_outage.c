@@ -61,11 +61,27 @@ static void composite_matches_random_points(void **state)
     assert_int_equal(table.row_count, 120);
 }
 
+/* Deep outages of Rice fading: from a deep fade, a deep local mean, or both. */
+static void both_sides_of_a_valley_count(void **state)
+{
+    (void)state;
+    struct reference_table table;
+    reference_open(&table, "valley_random.tsv");
+    while (reference_next(&table)) {
+        const struct rfade_tails tails =
+            outage(RFADE_RICE, reference_number(&table, "parameter"),
+                   reference_number(&table, "shadowing_db"), reference_number(&table, "x_db"));
+        reference_assert_column(&table, "outage", tails.lower, outage_accuracy);
+    }
+    assert_int_equal(table.row_count, 30);
+}
+
 /* Without shadowing it is the model itself; with next to none, next to it. */
 static void no_shadowing_is_the_limit(void **state)
 {
     (void)state;
-    for (double x_db = -40.0; x_db < 10.0; x_db += 3.7) {
+    for (int x_step = 0; - 40.0 + x_step * 3.7 < 10.0; x_step++) {
+        const double x_db = -40.0 + x_step * 3.7;
         struct rfade_tails expected;
         assert_int_equal(rfade_model(RFADE_RICE)->tails(4.0, x_db, &expected), RFADE_OK);
         const struct rfade_tails none = outage(RFADE_RICE, 4.0, 0.0, x_db);
@@ -80,7 +96,8 @@ static void no_shadowing_is_the_limit(void **state)
 static void steady_signal_is_the_other_limit(void **state)
 {
     (void)state;
-    for (double x_db = -25.0; x_db < 25.0; x_db += 3.1) {
+    for (int x_step = 0; - 25.0 + x_step * 3.1 < 25.0; x_step++) {
+        const double x_db = -25.0 + x_step * 3.1;
         struct rfade_tails expected;
         assert_int_equal(rfade_normal_tails(x_db / 6.0, &expected), RFADE_OK);
         const struct rfade_tails tails = outage(RFADE_NAKAGAMI, 1e4, 6.0, x_db);
@@ -96,7 +113,8 @@ static void outage_is_continuous_where_the_variable_changes(void **state)
     (void)state;
     const double m = 7.0;
     const double at_db = 10.0 / log(10.0) / sqrt(m);
-    for (double x_db = -60.0; x_db < 15.0; x_db += 4.1) {
+    for (int x_step = 0; - 60.0 + x_step * 4.1 < 15.0; x_step++) {
+        const double x_db = -60.0 + x_step * 4.1;
         const struct rfade_tails low = outage(RFADE_NAKAGAMI, m, at_db * (1.0 - 1e-15), x_db);
         const struct rfade_tails high = outage(RFADE_NAKAGAMI, m, at_db * (1.0 + 1e-15), x_db);
         assert_true(fabs(low.lower / high.lower - 1.0) < 1e-12);
@@ -108,7 +126,8 @@ static void outage_is_monotone(void **state)
 {
     (void)state;
     struct rfade_tails before = {0.0, 1.0, -INFINITY, 0.0};
-    for (double x_db = -60.0; x_db < 40.0; x_db += 0.5) {
+    for (int x_step = 0; - 60.0 + x_step * 0.5 < 40.0; x_step++) {
+        const double x_db = -60.0 + x_step * 0.5;
         const struct rfade_tails tails = outage(RFADE_RICE, 2.0, 8.0, x_db);
         assert_true(tails.log_lower > before.log_lower);
         assert_true(tails.log_upper < before.log_upper);
@@ -154,6 +173,7 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(composite_matches_reference),
         cmocka_unit_test(composite_matches_random_points),
+        cmocka_unit_test(both_sides_of_a_valley_count),
         cmocka_unit_test(no_shadowing_is_the_limit),
         cmocka_unit_test(steady_signal_is_the_other_limit),
         cmocka_unit_test(outage_is_continuous_where_the_variable_changes),

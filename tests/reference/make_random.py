@@ -1,7 +1,7 @@
 # SPDX-License-Identifier: GPL-3.0-or-later
 """Random reference points for the special functions, the fading models and the outage.
 
-    python3 make_random.py marcum|gamma|ratio|psi|tails|interval|outage > NAME_random.tsv
+    python3 make_random.py marcum|gamma|ratio|psi|tails|interval|outage|valley > NAME_random.tsv
 
 Integrals of the definitions with mpmath in 30-digit arithmetic: Gauss-Legendre panels of 40
 nodes, no longer than a sixth of the integrand's e-folding or its spread, from the greatest
@@ -263,7 +263,29 @@ def outage(count):
               sep="\t")
 
 
-TABLES = {"marcum": (marcum, 300), "gamma": (gamma, 300), "ratio": (ratio, 200),
+def valley(count):
+    """Deep Rice outages: a deep fade and a deep local mean compete, a valley between."""
+    print("model\tparameter\tshadowing_db\tx_db\toutage")
+    for _ in range(count):
+        k = 10 ** random.uniform(0.8, 2.5)
+        model = Rice(k)
+        sigma = random.uniform(1, 6)
+        # both of one order: exp(-K) y against exp(-(x/sigma)^2/2)
+        x = -sigma * (2 * k) ** 0.5 * random.uniform(0.95, 1.4)
+        value = lambda u: model.density(u) * erfc((u - x) / (sigma * sqrt(mpf(2)))) / 2
+        step = min(model.spread, mpf(sigma)) * 1.5
+        low = mpf(x) - 300
+        edges = [low + step * i for i in range(int((40 - low) / step))]
+        values = [value(u) for u in edges]
+        greatest = max(values)
+        total = mpf(0)
+        for u, left, right in zip(edges, values, values[1:]):
+            if max(left, right) > greatest * mpf(10) ** -22:
+                total += sum(w * value(u + (1 + t) * step / 2) for t, w in NODES) * step / 2
+        print("rice", repr(k), repr(sigma), repr(x), nstr(total, 20), sep="\t")
+
+
+TABLES = {"valley": (valley, 30), "marcum": (marcum, 300), "gamma": (gamma, 300), "ratio": (ratio, 200),
           "psi": (log_minus_psi, 100), "tails": (tails, 400), "interval": (interval, 500),
           "outage": (outage, 120)}
 

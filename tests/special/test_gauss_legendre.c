@@ -15,8 +15,9 @@
 /* The rule of 2 half_count nodes, or NULL. */
 static const struct rfade_gauss_rule *rule_of(int half_count)
 {
-    for (double variation = 0.0; variation < 30.0; variation += 0.01) {
-        const struct rfade_gauss_rule *rule = rfade_gauss_rule_for(variation);
+    for (int variation_step = 0; 0.0 + variation_step * 0.01 < 30.0; variation_step++) {
+        const double variation = 0.0 + variation_step * 0.01;
+        const struct rfade_gauss_rule *rule = rfade_gauss_rule_for(variation, 0.0);
         if (rule != NULL && rule->half_count == half_count) {
             return rule;
         }
@@ -63,10 +64,10 @@ static void ams55_table_25_4_gauss_legendre(void **state)
         }
         checked++;
     }
-    assert_true(checked >= 2 * (2 + 4));
+    assert_int_equal(checked, 2 * (2 + 4 + 8)); /* n = 4, 8 and 16 */
 }
 
-/* A rule of n nodes is exact to degree 2n - 1, and is not at degree 2n. */
+/* A rule of n nodes is exact to degree 2n - 1. */
 static void rules_are_exact_to_their_degree(void **state)
 {
     (void)state;
@@ -74,7 +75,7 @@ static void rules_are_exact_to_their_degree(void **state)
     for (size_t r = 0; r < sizeof half_counts / sizeof half_counts[0]; r++) {
         const struct rfade_gauss_rule *rule = rule_of(half_counts[r]);
         assert_non_null(rule);
-        for (int degree = 0; degree <= 4 * rule->half_count - 2; degree += 2) {
+        for (int degree = 0; degree < 4 * rule->half_count; degree += 2) {
             double sum = 0.0;
             for (int i = 0; i < rule->half_count; i++) {
                 sum += 2.0 * rule->weight[i] * pow(rule->node[i], degree);
@@ -88,8 +89,9 @@ static void rules_are_exact_to_their_degree(void **state)
 static void chosen_rule_keeps_its_promise(void **state)
 {
     (void)state;
-    for (double v = 1e-3; v < 24.0; v *= 1.05) {
-        const struct rfade_gauss_rule *rule = rfade_gauss_rule_for(v);
+    for (int v_step = 0; 1e-3 * pow(1.05, v_step) < 24.0; v_step++) {
+        const double v = 1e-3 * pow(1.05, v_step);
+        const struct rfade_gauss_rule *rule = rfade_gauss_rule_for(v, 0.0);
         assert_non_null(rule);
         double sum = 0.0;
         for (int i = 0; i < rule->half_count; i++) {
@@ -97,9 +99,29 @@ static void chosen_rule_keeps_its_promise(void **state)
         }
         assert_true(fabs(sum * v / (2.0 * sinh(v)) - 1.0) < 2e-15);
     }
-    assert_null(rfade_gauss_rule_for(24.5));
-    assert_null(rfade_gauss_rule_for(NAN));
+    assert_null(rfade_gauss_rule_for(26.5, 0.0));
+    assert_null(rfade_gauss_rule_for(NAN, 0.0));
     assert_int_equal(rfade_gauss_rule_finest()->half_count, 16);
+}
+
+/* exp(-c t^2/2), whose slope at the ends is c: sqrt(2 pi/c) erf(sqrt(c/2)). */
+static void chosen_rule_follows_curvature(void **state)
+{
+    (void)state;
+    for (int c_step = 0; c_step < 180; c_step++) {
+        const double c = 1e-3 * pow(1.05, c_step);
+        const struct rfade_gauss_rule *rule = rfade_gauss_rule_for(c, c);
+        if (rule == NULL) {
+            assert_true(c > 15.0);
+            continue;
+        }
+        double sum = 0.0;
+        for (int i = 0; i < rule->half_count; i++) {
+            sum += 2.0 * rule->weight[i] * exp(-0.5 * c * rule->node[i] * rule->node[i]);
+        }
+        const double expected = sqrt(2.0 * acos(-1.0) / c) * erf(sqrt(0.5 * c));
+        assert_true(fabs(sum / expected - 1.0) < 2e-15);
+    }
 }
 
 int main(void)
@@ -108,6 +130,7 @@ int main(void)
         cmocka_unit_test(ams55_table_25_4_gauss_legendre),
         cmocka_unit_test(rules_are_exact_to_their_degree),
         cmocka_unit_test(chosen_rule_keeps_its_promise),
+        cmocka_unit_test(chosen_rule_follows_curvature),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

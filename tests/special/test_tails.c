@@ -146,7 +146,8 @@ static void logarithms_reach_below_the_range_of_doubles(void **state)
 static void tails_are_continuous_where_the_side_changes(void **state)
 {
     (void)state;
-    for (double a = 1e-3; a < 1e3; a *= 1.7) {
+    for (int a_step = 0; 1e-3 * pow(1.7, a_step) < 1e3; a_step++) {
+        const double a = 1e-3 * pow(1.7, a_step);
         const double b = sqrt(a * a + 1.2); /* the switch in marcum.c */
         for (int i = -2; i <= 2; i++) {
             const double offset = 1.2 / (a + b) * (1.0 + i * 1e-15);
@@ -156,7 +157,8 @@ static void tails_are_continuous_where_the_side_changes(void **state)
             assert_true(fabs(low.log_upper - high.log_upper) < 3e-14);
         }
     }
-    for (double shape = 0.1; shape < 1e6; shape *= 1.7) {
+    for (int shape_step = 0; 0.1 * pow(1.7, shape_step) < 1e6; shape_step++) {
+        const double shape = 0.1 * pow(1.7, shape_step);
         const double at = fmax(shape, 1.0); /* the switch in gamma_tails.c */
         struct rfade_tails low;
         struct rfade_tails high;
@@ -173,7 +175,8 @@ static void tails_are_continuous_where_the_side_changes(void **state)
 static void gamma_is_continuous_where_the_series_ends(void **state)
 {
     (void)state;
-    for (double log_ratio = -20.0; log_ratio < 0.0; log_ratio += 0.3) {
+    for (int log_step = 0; - 20.0 + log_step * 0.3 < 0.0; log_step++) {
+        const double log_ratio = -20.0 + log_step * 0.3;
         const double step = 30.0 * 4.0 * DBL_EPSILON;
         const struct rfade_gamma_scaled low = rfade_gamma_scaled(30.0 - step, log_ratio);
         const struct rfade_gamma_scaled high = rfade_gamma_scaled(30.0 + step, log_ratio);
@@ -188,7 +191,8 @@ static void tails_are_monotone(void **state)
 {
     (void)state;
     struct rfade_tails before = {0.0, 1.0, -INFINITY, 0.0};
-    for (double b = 0.01; b < 60.0; b += 0.01) {
+    for (int b_step = 0; 0.01 + b_step * 0.01 < 60.0; b_step++) {
+        const double b = 0.01 + b_step * 0.01;
         struct rfade_tails tails;
         assert_int_equal(rfade_marcum_tails(20.0, b, &tails), RFADE_OK);
         assert_true(tails.log_lower > before.log_lower || tails.lower == 1.0);
@@ -196,7 +200,8 @@ static void tails_are_monotone(void **state)
         before = tails;
     }
     before = (struct rfade_tails){0.0, 1.0, -INFINITY, 0.0};
-    for (double x = 0.01; x < 200.0; x *= 1.002) {
+    for (int x_step = 0; 0.01 * pow(1.002, x_step) < 200.0; x_step++) {
+        const double x = 0.01 * pow(1.002, x_step);
         struct rfade_tails tails;
         assert_int_equal(rfade_gamma_tails(12.5, x, &tails), RFADE_OK);
         assert_true(tails.log_lower > before.log_lower || tails.lower == 1.0);
