@@ -37,6 +37,15 @@ struct rfade_log_gradient {
     double d_parameter; /**< d ln p / d parameter; 0 for a model without one */
 };
 
+/**
+ * What all intervals of one parameter have in common, so that a fit pays for it once. Filled
+ * by `prepare`; its constants are the model's own business. No resources: copy it freely.
+ */
+struct rfade_prepared {
+    double parameter;
+    double constants[3];
+};
+
 struct rfade_model {
     enum rfade_model_id id;
     const char *name;           /**< "rayleigh", "rice", "nakagami", "lognormal" */
@@ -63,6 +72,13 @@ struct rfade_model {
      */
     enum rfade_status (*log_interval)(double parameter, double low_db, double high_db,
                                       struct rfade_log_gradient *result);
+
+    /** @return RFADE_OK | RFADE_DOMAIN (parameter is NaN, and log_interval_of refuses) */
+    enum rfade_status (*prepare)(double parameter, struct rfade_prepared *prepared);
+
+    /** As log_interval, the same digits, for a parameter that has been prepared. */
+    enum rfade_status (*log_interval_of)(const struct rfade_prepared *prepared, double low_db,
+                                         double high_db, struct rfade_log_gradient *result);
 
     /**
      * The level not exceeded with probability `lower`, given with its complement `upper` so

@@ -89,9 +89,17 @@ static struct rfade_interval_end interval_end(double sigma_db, double x_db)
     return rfade_interval_end_from(&both, is_upper, d_mean_db, z * d_mean_db);
 }
 
-static enum rfade_status log_interval(double sigma_db, double low_db, double high_db,
-                                      struct rfade_log_gradient *result)
+static enum rfade_status prepare(double sigma_db, struct rfade_prepared *prepared)
 {
+    const bool valid = parameter_valid(sigma_db);
+    *prepared = (struct rfade_prepared){.parameter = valid ? sigma_db : NAN};
+    return valid ? RFADE_OK : RFADE_DOMAIN;
+}
+
+static enum rfade_status log_interval_of(const struct rfade_prepared *prepared, double low_db,
+                                         double high_db, struct rfade_log_gradient *result)
+{
+    const double sigma_db = prepared->parameter;
     *result = rfade_log_gradient_nan();
     if (!parameter_valid(sigma_db) || !rfade_interval_valid(low_db, high_db)) {
         return RFADE_DOMAIN;
@@ -111,6 +119,12 @@ static enum rfade_status log_interval(double sigma_db, double low_db, double hig
     const struct rfade_interval_end high = interval_end(sigma_db, high_db);
     *result = rfade_interval_from_ends(&low, &high);
     return RFADE_OK;
+}
+
+static enum rfade_status log_interval(double sigma_db, double low_db, double high_db,
+                                      struct rfade_log_gradient *result)
+{
+    return rfade_log_interval_once(&rfade_model_lognormal, sigma_db, low_db, high_db, result);
 }
 
 static enum rfade_status quantile(double sigma_db, double lower, double upper, double *x_db)
@@ -141,6 +155,8 @@ const struct rfade_model rfade_model_lognormal = {
     .tails = tails,
     .log_density = log_density,
     .log_interval = log_interval,
+    .prepare = prepare,
+    .log_interval_of = log_interval_of,
     .quantile = quantile,
     .from_normalised_variance = from_normalised_variance,
     .normalised_variance = normalised_variance,

@@ -56,10 +56,25 @@ static enum rfade_status log_density(double m, double x_db, struct rfade_log_gra
     return RFADE_OK;
 }
 
+enum { LOG_DENSITY_AT_MEAN, LOG_MINUS_PSI }; /* constants */
+
+static enum rfade_status prepare(double m, struct rfade_prepared *prepared)
+{
+    *prepared = (struct rfade_prepared){.parameter = NAN};
+    if (!parameter_valid(m)) {
+        return RFADE_DOMAIN;
+    }
+    prepared->parameter = m;
+    prepared->constants[LOG_DENSITY_AT_MEAN] = log_density_at_mean(m);
+    return rfade_log_minus_psi(m, &prepared->constants[LOG_MINUS_PSI], NULL);
+}
+
 /* Relative to the interval's middle the density is exp(-m h(t)), h = y expm1(t) - t. */
-static struct rfade_log_gradient narrow_interval(double m, double middle_db, double width_db,
+static struct rfade_log_gradient narrow_interval(const struct rfade_prepared *prepared,
+                                                 double middle_db, double width_db,
                                                  const struct rfade_gauss_rule *rule)
 {
+    const double m = prepared->parameter;
     const double half_width = 0.5 * RFADE_LN_PER_DB * width_db;
     const double log_y = rfade_log_ratio(middle_db);
     const double y = exp(log_y);
@@ -77,12 +92,10 @@ static struct rfade_log_gradient narrow_interval(double m, double middle_db, dou
             sum_h += term * (power - t);
         }
     }
-    double log_minus_psi = NAN;
-    (void)rfade_log_minus_psi(m, &log_minus_psi, NULL);
     return (struct rfade_log_gradient){
-        log_density_at_mean(m) - m * phi + log(0.5 * width_db * sum),
+        prepared->constants[LOG_DENSITY_AT_MEAN] - m * phi + log(0.5 * width_db * sum),
         RFADE_LN_PER_DB * m * (expm1(log_y) + sum_power / sum),
-        log_minus_psi - phi - sum_h / sum,
+        prepared->constants[LOG_MINUS_PSI] - phi - sum_h / sum,
     };
 }
 
@@ -99,9 +112,10 @@ static struct rfade_interval_end interval_end(double m, double x_db)
                                    scaled.slope);
 }
 
-static enum rfade_status log_interval(double m, double low_db, double high_db,
-                                      struct rfade_log_gradient *result)
+static enum rfade_status log_interval_of(const struct rfade_prepared *prepared, double low_db,
+                                         double high_db, struct rfade_log_gradient *result)
 {
+    const double m = prepared->parameter;
     *result = rfade_log_gradient_nan();
     if (!parameter_valid(m) || !rfade_interval_valid(low_db, high_db)) {
         return RFADE_DOMAIN;
@@ -116,7 +130,7 @@ static enum rfade_status log_interval(double m, double low_db, double high_db,
         const struct rfade_gauss_rule *rule =
             rfade_gauss_rule_for(half_width * slope, half_width * half_width * m * y_high);
         if (rule != NULL) {
-            *result = narrow_interval(m, 0.5 * (low_db + high_db), width_db, rule);
+            *result = narrow_interval(prepared, 0.5 * (low_db + high_db), width_db, rule);
             return RFADE_OK;
         }
     }
@@ -124,6 +138,12 @@ static enum rfade_status log_interval(double m, double low_db, double high_db,
     const struct rfade_interval_end high = interval_end(m, high_db);
     *result = rfade_interval_from_ends(&low, &high);
     return RFADE_OK;
+}
+
+static enum rfade_status log_interval(double m, double low_db, double high_db,
+                                      struct rfade_log_gradient *result)
+{
+    return rfade_log_interval_once(&rfade_model_nakagami, m, low_db, high_db, result);
 }
 
 static enum rfade_status quantile(double m, double lower, double upper, double *x_db)
@@ -152,6 +172,8 @@ const struct rfade_model rfade_model_nakagami = {
     .tails = tails,
     .log_density = log_density,
     .log_interval = log_interval,
+    .prepare = prepare,
+    .log_interval_of = log_interval_of,
     .quantile = quantile,
     .from_normalised_variance = from_normalised_variance,
     .normalised_variance = normalised_variance,

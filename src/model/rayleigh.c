@@ -38,11 +38,17 @@ static enum rfade_status log_density(double parameter, double x_db,
     return RFADE_OK;
 }
 
-/* exp(-y) - exp(-(y + d)) = exp(-y) (1 - exp(-d)), d the width in power. */
-static enum rfade_status log_interval(double parameter, double low_db, double high_db,
-                                      struct rfade_log_gradient *result)
+static enum rfade_status prepare(double parameter, struct rfade_prepared *prepared)
 {
-    (void)parameter;
+    *prepared = (struct rfade_prepared){.parameter = parameter};
+    return RFADE_OK;
+}
+
+/* exp(-y) - exp(-(y + d)) = exp(-y) (1 - exp(-d)), d the width in power. */
+static enum rfade_status log_interval_of(const struct rfade_prepared *prepared, double low_db,
+                                         double high_db, struct rfade_log_gradient *result)
+{
+    (void)prepared;
     *result = rfade_log_gradient_nan();
     if (!rfade_interval_valid(low_db, high_db)) {
         return RFADE_DOMAIN;
@@ -57,6 +63,12 @@ static enum rfade_status log_interval(double parameter, double low_db, double hi
     result->d_mean_db = RFADE_LN_PER_DB * (y - quotient);
     result->d_parameter = 0.0;
     return RFADE_OK;
+}
+
+static enum rfade_status log_interval(double parameter, double low_db, double high_db,
+                                      struct rfade_log_gradient *result)
+{
+    return rfade_log_interval_once(&rfade_model_rayleigh, parameter, low_db, high_db, result);
 }
 
 static enum rfade_status quantile(double parameter, double lower, double upper, double *x_db)
@@ -80,6 +92,8 @@ const struct rfade_model rfade_model_rayleigh = {
     .tails = tails,
     .log_density = log_density,
     .log_interval = log_interval,
+    .prepare = prepare,
+    .log_interval_of = log_interval_of,
     .quantile = quantile,
     .from_normalised_variance = NULL,
     .normalised_variance = normalised_variance,

@@ -6,10 +6,10 @@
 #include "special/bessel.h"
 
 #include <gsl/gsl_math.h>
-#include <gsl/gsl_sf_bessel.h>
 #include <math.h>
 
 #include "routefade/special.h"
+#include "special/bessel_pieces.h"
 
 static const double series_limit = 2.0;
 static const double expansion_limit = 25.0;
@@ -83,18 +83,53 @@ struct power_series {
     double difference; /* of the two, summed for itself */
 };
 
-static struct power_series power_series(double z)
+/* 1/k^2 and 1/(k+1); for q <= 1 the eleventh term, q^11/11!^2, is below 1e-15. */
+static const double inverse_square[] = {1.0,      1.0 / 4,  1.0 / 9,  1.0 / 16, 1.0 / 25,
+                                        1.0 / 36, 1.0 / 49, 1.0 / 64, 1.0 / 81, 1.0 / 100};
+static const double inverse[] = {1.0 / 2, 1.0 / 3, 1.0 / 4, 1.0 / 5,  1.0 / 6,
+                                 1.0 / 7, 1.0 / 8, 1.0 / 9, 1.0 / 10, 1.0 / 11};
+enum { SERIES_TERMS = sizeof inverse / sizeof inverse[0] };
+
+static inline struct power_series power_series(double z)
 {
     const double q = 0.25 * z * z;
     double term = 1.0;
     struct power_series sum = {1.0, 1.0, 0.0};
-    for (int k = 1; term > 1e-18; k++) {
-        term *= q / ((double)k * k);
+    for (int k = 1; k <= SERIES_TERMS; k++) {
+        term *= q * inverse_square[k - 1];
+        const double part = term * inverse[k - 1]; /* of k + 1 */
         sum.i0 += term;
-        sum.i1_over_half_z += term / (k + 1);
-        sum.difference += term * k / (k + 1);
+        sum.i1_over_half_z += part;
+        sum.difference += term - part;
     }
     return sum;
+}
+
+/*
+ * A polynomial with an even number of coefficients, odd and even powers apart: two shorter
+ * chains, which a processor works on side by side.
+ */
+static inline double polynomial(const double *coefficients, int count, double v)
+{
+    const double v2 = v * v;
+    double even = coefficients[count - 2];
+    double odd = coefficients[count - 1];
+    for (int i = count - 4; i >= 0; i -= 2) {
+        even = even * v2 + coefficients[i];
+        odd = odd * v2 + coefficients[i + 1];
+    }
+    return even + odd * v;
+}
+
+#define COUNT(array) ((int)(sizeof(array) / sizeof((array)[0])))
+
+/* From sqrt(z) exp(-z) I0 and z (1 - r). */
+static inline struct rfade_bessel_pair pair_from(double z, double scaled_i0,
+                                                 double scaled_complement)
+{
+    const double complement = scaled_complement / z;
+    return (struct rfade_bessel_pair){scaled_i0 / sqrt(z), complement,
+                                      1.0 - 2.0 * (1.0 - complement) / z};
 }
 
 struct rfade_bessel_pair rfade_bessel_pair(double z)
@@ -105,17 +140,26 @@ struct rfade_bessel_pair rfade_bessel_pair(double z)
                                           1.0 - 0.5 * z * sum.i1_over_half_z / sum.i0,
                                           sum.difference / sum.i0};
     }
-    gsl_sf_result i0;
-    (void)gsl_sf_bessel_I0_scaled_e(z, &i0);
-    double complement = 0.0;
-    if (z < expansion_limit) {
-        gsl_sf_result i1;
-        (void)gsl_sf_bessel_I1_scaled_e(z, &i1);
-        complement = (i0.val - i1.val) / i0.val;
-    } else {
-        complement = expansion_complement(z);
+    if (z < 4.0) {
+        const double v = z - 3.0;
+        return pair_from(z, polynomial(i0_2_to_4, COUNT(i0_2_to_4), v),
+                         polynomial(complement_2_to_4, COUNT(complement_2_to_4), v));
     }
-    return (struct rfade_bessel_pair){i0.val, complement, 1.0 - 2.0 * (1.0 - complement) / z};
+    if (z < 8.0) {
+        const double v = 0.5 * (z - 6.0);
+        return pair_from(z, polynomial(i0_4_to_8, COUNT(i0_4_to_8), v),
+                         polynomial(complement_4_to_8, COUNT(complement_4_to_8), v));
+    }
+    if (z < 20.0) {
+        /* 1/z from 1/20 to 1/8 */
+        const double v = (80.0 / z - 7.0) / 3.0;
+        return pair_from(z, polynomial(i0_8_to_20, COUNT(i0_8_to_20), v),
+                         polynomial(complement_8_to_20, COUNT(complement_8_to_20), v));
+    }
+    /* 1/z from 0 to 1/20 */
+    const double v = 40.0 / z - 1.0;
+    return pair_from(z, polynomial(i0_above_20, COUNT(i0_above_20), v),
+                     polynomial(complement_above_20, COUNT(complement_above_20), v));
 }
 
 /*

@@ -22,14 +22,16 @@ enum rfade_status rfade_log_minus_psi(double m, double *value, double *derivativ
     if (!(m >= smallest_m)) {
         return RFADE_DOMAIN;
     }
+    const double given = m;
     double sum = 0.0;
     double slope = 0.0;
     while (m < expansion_limit) {
-        /* psi(m+1) = psi(m) + 1/m: the step adds 1/m - ln(1 + 1/m), which is positive. */
-        sum += 1.0 / m - log1p(1.0 / m);
+        /* psi(m+1) = psi(m) + 1/m: every step adds 1/m - ln(1 + 1/m), which is positive. */
+        sum += 1.0 / m;
         slope -= 1.0 / (m * m * (m + 1.0));
         m += 1.0;
     }
+    sum -= log(m / given);
     const double u = 1.0 / m;
     double tail = 0.0;
     double tail_slope = 0.0;

@@ -12,23 +12,16 @@
 #include "special/marcum.h"
 
 #include <gsl/gsl_math.h>
-#include <gsl/gsl_sf_bessel.h>
 #include <math.h>
 #include <stdbool.h>
 
+#include "special/bessel.h"
 #include "special/gauss_legendre.h"
 
 /* What lies beyond exp(-42) of the integrand's start is below 1e-18 of the integral. */
 static const double negligible_exponent = 42.0;
 
 static const double largest_a = 1e8;
-
-static double i0_scaled(double z)
-{
-    gsl_sf_result result;
-    (void)gsl_sf_bessel_I0_scaled_e(z, &result);
-    return result.val;
-}
 
 /* Integral over the tail, without exp(-(b-a)^2/2), over b * length; see above. */
 static double mean_integrand(double a, double b, double slope, double sign, double length)
@@ -41,7 +34,7 @@ static double mean_integrand(double a, double b, double slope, double sign, doub
             const double t = length * share;
             const double relative = 1.0 + sign * (length / b) * share;
             sum += 0.5 * rule->weight[i] * relative * exp(-t * (slope + 0.5 * t)) *
-                   i0_scaled(a * b * relative);
+                   rfade_bessel_pair(a * b * relative).i0_scaled;
         }
     }
     return sum;

@@ -32,15 +32,40 @@ double rfade_exp_half_square(double x)
     return exp(-0.5 * square) * exp(-0.5 * fma(x, x, -square));
 }
 
+/* 1/n!, n = 2 ... 19; the next is below 1e-17 of the first. */
+static const double inverse_factorial[] = {
+    1.0 / 2.0,
+    1.0 / 6.0,
+    1.0 / 24.0,
+    1.0 / 120.0,
+    1.0 / 720.0,
+    1.0 / 5040.0,
+    1.0 / 40320.0,
+    1.0 / 362880.0,
+    1.0 / 3628800.0,
+    1.0 / 39916800.0,
+    1.0 / 479001600.0,
+    1.0 / 6227020800.0,
+    1.0 / 87178291200.0,
+    1.0 / 1307674368000.0,
+    1.0 / 20922789888000.0,
+    1.0 / 355687428096000.0,
+    1.0 / 6402373705728000.0,
+    1.0 / 121645100408832000.0,
+};
+enum { INVERSE_FACTORIALS = sizeof inverse_factorial / sizeof inverse_factorial[0] };
+
 double rfade_exp_excess(double x)
 {
     if (fabs(x) >= 1.0) {
         return expm1(x) - x;
     }
-    /* x^2/2! + x^3/3! + ... + x^18/18!, by Horner; the next term is below 1e-17 of it. */
-    double sum = 1.0;
-    for (int n = 18; n > 2; n--) {
-        sum = 1.0 + sum * x / n;
+    const double square = x * x;
+    double even = 0.0;
+    double odd = 0.0;
+    for (int n = INVERSE_FACTORIALS - 1; n >= 0; n -= 2) {
+        odd = odd * square + inverse_factorial[n];
+        even = even * square + inverse_factorial[n - 1];
     }
-    return 0.5 * x * x * sum;
+    return square * (even + x * odd);
 }

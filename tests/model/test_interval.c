@@ -213,6 +213,31 @@ static void special_cases_are_rayleigh(void **state)
     }
 }
 
+static void prepared_parameter_gives_the_same_digits(void **state)
+{
+    (void)state;
+    for (size_t i = 0; i < EXAMPLE_COUNT; i++) {
+        const struct rfade_model *model = rfade_model(examples[i].id);
+        struct rfade_prepared prepared;
+        assert_int_equal(model->prepare(examples[i].parameter, &prepared), RFADE_OK);
+        for (int step = 0; step < 40; step++) {
+            const double low_db = -40.0 + 1.3 * step;
+            const double high_db = low_db + 0.1 * pow(1.2, step);
+            const struct rfade_log_gradient expected = interval(&examples[i], low_db, high_db);
+            struct rfade_log_gradient result;
+            assert_int_equal(model->log_interval_of(&prepared, low_db, high_db, &result),
+                             RFADE_OK);
+            assert_memory_equal(&result, &expected, sizeof result);
+        }
+    }
+    struct rfade_prepared prepared;
+    struct rfade_log_gradient result;
+    assert_int_equal(rfade_model(RFADE_RICE)->prepare(-1.0, &prepared), RFADE_DOMAIN);
+    assert_int_equal(rfade_model(RFADE_RICE)->log_interval_of(&prepared, 0.0, 1.0, &result),
+                     RFADE_DOMAIN);
+    assert_true(isnan(result.value));
+}
+
 static void assert_refused(enum rfade_model_id id, double parameter, double low_db,
                            double high_db)
 {
@@ -249,6 +274,7 @@ int main(void)
         cmocka_unit_test(slopes_match_differences),
         cmocka_unit_test(rice_slope_is_right_at_and_near_zero),
         cmocka_unit_test(special_cases_are_rayleigh),
+        cmocka_unit_test(prepared_parameter_gives_the_same_digits),
         cmocka_unit_test(outside_the_domain_is_refused),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
