@@ -154,6 +154,9 @@ static enum rfade_status quantile(double m, double lower, double upper, double *
 /* m is the inverse normalised variance by definition (Nakagami 1960). */
 static double from_normalised_variance(double normalised_variance)
 {
+    if (!(normalised_variance > 0.0)) {
+        return m_max;
+    }
     return fmin(fmax(1.0 / normalised_variance, m_fit_min), m_max);
 }
 
