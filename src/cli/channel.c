@@ -137,7 +137,7 @@ static enum rfade_status run_channel(struct rfade_run *run, struct rfade_error *
 const struct rfade_command rfade_command_channel = {
     .name = "channel",
     .arguments = "[NAME]",
-    .summary = "Describes a radio channel; without options, lists them",
+    .summary = "describe a radio channel; without options, list them",
     .details = "What is not told keeps what was told before.",
     .arguments_max = 1,
     .options = options,

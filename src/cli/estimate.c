@@ -228,7 +228,7 @@ static enum rfade_status run_estimate(struct rfade_run *run, struct rfade_error 
 const struct rfade_command rfade_command_estimate = {
     .name = "estimate",
     .arguments = "FILE",
-    .summary = "Fits one column of levels, no survey needed",
+    .summary = "fit one column of levels, no survey needed",
     .details =
         "FILE is a headerless column of numbers or a file with separated columns; '-' is\n"
         "standard input. Blank lines and lines that begin with '#' are passed over; any\n"

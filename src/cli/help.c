@@ -31,7 +31,7 @@ void rfade_program_help(FILE *stream)
 
 void rfade_command_help(FILE *stream, const struct rfade_command *command)
 {
-    (void)fprintf(stream, "Usage: routefade %s [OPTION]...%s%s\n\n%s.\n", command->name,
+    (void)fprintf(stream, "Usage: routefade %s [OPTION]...%s%s\n\nTo %s.\n", command->name,
                   command->arguments ? " " : "", command->arguments ? command->arguments : "",
                   command->summary);
     if (command->details)

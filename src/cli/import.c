@@ -246,7 +246,7 @@ static enum rfade_status run_import(struct rfade_run *run, struct rfade_error *e
 const struct rfade_command rfade_command_import = {
     .name = "import",
     .arguments = "PATH...",
-    .summary = "Reads logger files and folders of them into the survey",
+    .summary = "read logger files and folders of them into the survey",
     .details =
         "Each file comes in whole or not at all, and the same bytes only once. Headers that\n"
         "say what their columns hold need no column map.",

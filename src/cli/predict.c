@@ -215,7 +215,7 @@ static enum rfade_status run_predict(struct rfade_run *run, struct rfade_error *
 
 const struct rfade_command rfade_command_predict = {
     .name = "predict",
-    .summary = "Predicts outage from parameters typed in, no survey needed",
+    .summary = "predict outage from parameters typed in, no survey needed",
     .details = "One kind of fading, one SNR, and the thresholds. SNR is Es/N0 of one branch.",
     .options = options,
     .option_count = sizeof options / sizeof options[0],

@@ -191,7 +191,7 @@ static enum rfade_status run_route(struct rfade_run *run, struct rfade_error *er
 const struct rfade_command rfade_command_route = {
     .name = "route",
     .arguments = "[NAME [FILE]]",
-    .summary = "Adds a reference line cut into segments; without FILE, lists routes",
+    .summary = "add a reference line cut into segments; without FILE, list routes",
     .details = "FILE is a GeoJSON LineString, or text with a latitude and a longitude a line.",
     .arguments_max = 2,
     .options = options,

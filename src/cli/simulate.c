@@ -183,7 +183,7 @@ static enum rfade_status run_simulate(struct rfade_run *run, struct rfade_error 
 
 const struct rfade_command rfade_command_simulate = {
     .name = "simulate",
-    .summary = "Writes a synthetic drive with known truth",
+    .summary = "write a synthetic drive with known truth",
     .details = "The log is what a receiver of that step, floor and ceiling would report on a\n"
                "drive through Gaussian scatter with a direct ray over a lognormal local mean.",
     .options = rfade_simulate_option_table,

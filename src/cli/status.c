@@ -173,6 +173,6 @@ static enum rfade_status run_status(struct rfade_run *run, struct rfade_error *e
 
 const struct rfade_command rfade_command_status = {
     .name = "status",
-    .summary = "Says what the survey holds",
+    .summary = "say what the survey holds",
     .run = run_status,
 };

@@ -138,7 +138,7 @@ static enum rfade_status run_vehicle(struct rfade_run *run, struct rfade_error *
 const struct rfade_command rfade_command_vehicle = {
     .name = "vehicle",
     .arguments = "[NAME]",
-    .summary = "Calibrates a vehicle's receiving chain; without options, lists them",
+    .summary = "calibrate a vehicle's receiving chain; without options, list them",
     .arguments_max = 1,
     .options = options,
     .option_count = sizeof options / sizeof options[0],

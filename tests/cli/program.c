@@ -22,13 +22,19 @@ static void become_program(const struct program *program, FILE *input, FILE *out
                            FILE *errors, char *const *arguments)
 {
     int out = fileno(output);
-    if (program->output_path && strcmp(program->output_path, "-") != 0)
-        out = open(program->output_path, O_WRONLY);
+    const char *path = program->output_path ? program->output_path : "";
+    int ends[2] = {-1, -1};
+    if (strcmp(path, "|") == 0 && pipe(ends) == 0) {
+        (void)close(ends[0]);
+        out = ends[1];
+    } else if (path[0] == '/') {
+        out = open(path, O_WRONLY);
+    }
     (void)unsetenv("ROUTEFADE_SURVEY");
     if (dup2(fileno(input), STDIN_FILENO) < 0 || dup2(out, STDOUT_FILENO) < 0 ||
         dup2(fileno(errors), STDERR_FILENO) < 0)
         _exit(126);
-    if (program->output_path && strcmp(program->output_path, "-") == 0)
+    if (strcmp(path, "-") == 0)
         (void)close(STDOUT_FILENO);
     (void)execv(ROUTEFADE_PROGRAM, arguments);
     _exit(127);

@@ -8,7 +8,8 @@
 /** One run: zero it first, program_clear it afterwards. */
 struct program {
     const char *input;       /**< standard input; NULL: empty */
-    const char *output_path; /**< where standard output goes; NULL: kept; "-": closed */
+    const char *output_path; /**< where standard output goes; NULL: kept; "-": closed; "|": a
+                                   pipe that nobody reads */
     int status;              /**< exit status; -1: ended by a signal */
     char *output;            /**< standard output, if kept */
     char *errors;            /**< standard error */

@@ -95,15 +95,21 @@ static void wrong_usage_is_two(void **state)
 static void lost_output_is_an_error(void **state)
 {
     (void)state;
-    static const char *const outputs[] = {"/dev/full", "-"};
-    for (size_t i = 0; i < 2; i++) {
-        struct program program = {.output_path = outputs[i]};
+    static const struct {
+        const char *path, *reason;
+    } outputs[] = {{"/dev/full", "No space left on device"},
+                   {"-", "Bad file descriptor"},
+                   {"|", "Broken pipe"}};
+    for (size_t i = 0; i < sizeof outputs / sizeof outputs[0]; i++) {
+        struct program program = {.output_path = outputs[i].path};
         RUN(&program, "--help");
         assert_int_equal(program.status, 1);
         assert_non_null(strstr(program.errors, "routefade: standard output: can't write"));
+        assert_non_null(strstr(program.errors, outputs[i].reason));
         RUN(&program, "simulate");
         assert_int_equal(program.status, 1);
         assert_non_null(strstr(program.errors, "routefade: standard output: can't write"));
+        assert_non_null(strstr(program.errors, outputs[i].reason));
         program_clear(&program);
     }
 }
