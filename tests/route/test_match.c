@@ -101,6 +101,14 @@ static void an_out_and_back_line_follows_the_drive(void **state)
     assert_truth(drive, 45);
     assert_int_equal(drive->pass_count, 1);
     drive_free(drive);
+    /* The way back alone: with the chainage on the second half, not against it on the first. */
+    drive = drive_new(route_of(points, 3), 5, false);
+    for (int i = 0; i < 120; i++)
+        drive_fix(drive, i, 2500 + 10.0 * i, 10);
+    drive_match(drive);
+    assert_truth(drive, 25);
+    assert_int_equal(drive->passes[0].direction, 1);
+    drive_free(drive);
 }
 
 /* Two stretches of one line side by side, 24 m apart: nearest would jump with the scatter. */

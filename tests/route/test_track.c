@@ -1,6 +1,8 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include "drive.h"
 
+#include "route/smooth.h"
+
 /* Chainage driven: 10 m/s, braking and starting at 1.5 m/s^2 round a standstill of 30 s at
  * 2000 m. Time 0 at chainage 0. */
 static double profile(double t, double *speed_m_s)
@@ -276,6 +278,34 @@ static void against_the_chainage_travel_still_grows(void **state)
     drive_free(drive);
 }
 
+static void what_goes_back_is_made_level(void **state)
+{
+    (void)state;
+    enum { COUNT = 500 };
+    struct rfade_node nodes[COUNT];
+    gsl_rng *generator = gsl_rng_alloc(gsl_rng_mt19937);
+    double sum_m = 0;
+    double last_m = 0;
+    for (int i = 0; i < COUNT; i++) {
+        nodes[i] = (struct rfade_node){.time_s = i,
+                                       .travel_m = 2 * i + gsl_ran_gaussian(generator, 20),
+                                       .speed_m_s = gsl_ran_gaussian(generator, 5),
+                                       .standing = i >= 200 && i < 260};
+        sum_m += nodes[i].travel_m;
+    }
+    assert_true(rfade_make_monotone(nodes, COUNT));
+    for (int i = 0; i < COUNT; i++) {
+        if (i > 0)
+            assert_true(nodes[i].travel_m >= nodes[i - 1].travel_m);
+        if (i > 200 && i < 260)
+            assert_true(nodes[i].travel_m == nodes[200].travel_m && nodes[i].speed_m_s == 0);
+        assert_true(nodes[i].speed_m_s >= 0);
+        last_m += nodes[i].travel_m;
+    }
+    assert_true(fabs(last_m - sum_m) < 1e-6); /* pooling keeps the mean */
+    gsl_rng_free(generator);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -287,6 +317,7 @@ int main(void)
         cmocka_unit_test(gaps_and_ends_have_no_place),
         cmocka_unit_test(off_the_route_there_is_no_place),
         cmocka_unit_test(against_the_chainage_travel_still_grows),
+        cmocka_unit_test(what_goes_back_is_made_level),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
