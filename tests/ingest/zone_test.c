@@ -198,6 +198,7 @@ static void zones_that_are_none_are_refused(void **state)
                                         "../passwd",
                                         "/etc/passwd",
                                         "Europe/../../../etc/passwd",
+                                        "Europe/../Europe/Berlin",
                                         "+24:00",
                                         "+1:00",
                                         "+01:60",
