@@ -6,10 +6,13 @@
 #include <stddef.h>
 
 #include <cmocka.h>
+#include <dirent.h>
 #include <stdbool.h>
 #include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
+#include <sys/stat.h>
+#include <unistd.h>
 
 static enum rfade_status keep_reading(void *context, const struct rfade_ingest_reading *reading,
                                       struct rfade_error *error)
@@ -59,12 +62,43 @@ static enum rfade_status keep_refusal(void *context, const struct rfade_ingest_r
     return RFADE_OK;
 }
 
+static char folder[] = "/tmp/routefade-ingest-XXXXXX";
+
+static void remove_tree(const char *path)
+{
+    DIR *directory = opendir(path);
+    /* NOLINTNEXTLINE(concurrency-mt-unsafe): the stream is this function's own */
+    for (struct dirent *entry = directory ? readdir(directory) : NULL; entry;
+         /* NOLINTNEXTLINE(concurrency-mt-unsafe) */
+         entry = readdir(directory)) {
+        char inner[512];
+        struct stat about;
+        int size = snprintf(inner, sizeof inner, "%s/%s", path, entry->d_name);
+        if (strcmp(entry->d_name, ".") == 0 || strcmp(entry->d_name, "..") == 0 || size < 0 ||
+            (size_t)size >= sizeof inner || lstat(inner, &about) != 0)
+            continue;
+        if (S_ISDIR(about.st_mode))
+            remove_tree(inner);
+        else
+            (void)unlink(inner);
+    }
+    if (directory)
+        (void)closedir(directory);
+    (void)rmdir(path);
+}
+
+static void remove_folder(void)
+{
+    remove_tree(folder);
+}
+
 const char *test_folder(void)
 {
-    static char folder[] = "/tmp/routefade-ingest-XXXXXX";
     static bool made;
-    if (!made)
+    if (!made) {
         assert_non_null(mkdtemp(folder));
+        assert_int_equal(atexit(remove_folder), 0);
+    }
     made = true;
     return folder;
 }
