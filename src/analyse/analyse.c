@@ -32,7 +32,7 @@ static enum rfade_status read_material(struct rfade_survey *survey,
                                        const struct rfade_analysis_settings *settings,
                                        struct material *material, struct rfade_error *error)
 {
-    *material = (struct material){NULL};
+    *material = (struct material){.channels = NULL};
     enum rfade_status status =
         rfade_survey_channels(survey, &material->channels, &material->channel_count, error);
     if (status == RFADE_OK)

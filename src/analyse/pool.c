@@ -47,7 +47,8 @@ static enum rfade_status track_moments(struct rfade_tally *local_mean,
     if (status != RFADE_OK || count == 0)
         return status;
     double weights = 0.0, sum = 0.0, power = 0.0, squares = 0.0;
-    double reference_db = cells[count / 2].key.centre_cdb / 100.0;
+    size_t middle = count / 2;
+    double reference_db = cells[middle].key.centre_cdb / 100.0;
     for (size_t i = 0; i < count; i++) {
         double weight = (double)cells[i].weight;
         double about_db = cells[i].key.centre_cdb / 100.0 - reference_db;

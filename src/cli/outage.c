@@ -175,19 +175,21 @@ static enum rfade_status show_outage(const struct rfade_run *run,
                                      struct rfade_segment_results *results,
                                      struct rfade_error *error)
 {
-    struct answer *answers = malloc((results->count + 1) * sizeof *answers);
-    struct rfade_segment_rank *ranks = malloc((results->count + 1) * sizeof *ranks);
-    enum rfade_status status = RFADE_OK;
-    if (!answers || !ranks)
-        status = rfade_error_set(error, RFADE_NO_MEMORY, "", "out of memory");
-    if (status == RFADE_OK)
-        status = answer_rows(results, threshold, rfade_analysis_defaults().confidence, answers,
-                             error);
-    if (status == RFADE_OK) {
-        rank_rows(results, answers, asked->segments.by_estimate, ranks);
-        size_t count = rfade_segment_order(&asked->segments, ranks, results->count);
-        status = print_rows(run, results, threshold, answers, ranks, count, error);
+    struct answer *answers = calloc(results->count + 1, sizeof *answers);
+    struct rfade_segment_rank *ranks = calloc(results->count + 1, sizeof *ranks);
+    enum rfade_status status = RFADE_NO_MEMORY;
+    if (!answers || !ranks) {
+        (void)rfade_error_set(error, status, "", "out of memory");
+        goto out;
     }
+    status =
+        answer_rows(results, threshold, rfade_analysis_defaults().confidence, answers, error);
+    if (status != RFADE_OK)
+        goto out;
+    rank_rows(results, answers, asked->segments.by_estimate, ranks);
+    size_t count = rfade_segment_order(&asked->segments, ranks, results->count);
+    status = print_rows(run, results, threshold, answers, ranks, count, error);
+out:
     free(answers);
     free(ranks);
     return status;
@@ -196,7 +198,7 @@ static enum rfade_status show_outage(const struct rfade_run *run,
 static enum rfade_status run_outage(struct rfade_run *run, struct rfade_error *error)
 {
     const struct outage_options *asked = run->options;
-    struct threshold threshold = {NULL, NAN};
+    struct threshold threshold = {"threshold_dbm", NAN};
     enum rfade_status status = choose_threshold(asked, &threshold, error);
     if (status != RFADE_OK)
         return status;
