@@ -49,6 +49,10 @@ struct rfade_separate_settings {
  * window/16, window/8, window/4 and window/2. */
 enum { RFADE_SAMPLING_SCALES = 4 };
 
+/** Distances at which the fast fading is compared with itself. */
+enum { RFADE_LAGS = 16 };
+#define RFADE_LAG_WAVELENGTHS 0.25
+
 /**
  * Integer sums from which the sampling is judged; they add over traversals. Products are
  * weighted by travel: mm cdB^2. In a pass whose level is held, everything below `travel_mm`
@@ -78,6 +82,12 @@ struct rfade_sampling_sums {
      * beyond the segment on either side (so they overlap from segment to segment). */
     int64_t curvature_square[RFADE_SAMPLING_SCALES];
     int64_t curvature_mm[RFADE_SAMPLING_SCALES];
+    /** Products of the fast fading (power over local mean less 1, in thousandths) of readings
+     * that lie (i + 1) RFADE_LAG_WAVELENGTHS apart or a bit more: mm 1e-6; the distances at
+     * which they lie, mm mm; and the travel that they stand for. */
+    int64_t lag_product[RFADE_LAGS];
+    int64_t lag_distance[RFADE_LAGS];
+    int64_t lag_mm[RFADE_LAGS];
 };
 
 enum rfade_sampling {
@@ -143,31 +153,54 @@ RFADE_API enum rfade_status rfade_separate(const struct rfade_track_reading *rea
                                            struct rfade_separation *result);
 RFADE_API void rfade_separation_clear(struct rfade_separation *separation);
 
+/** Directions of the direct ray against the road that are told apart: i * 90/(n - 1) degrees,
+ * from along the road (0) to across (the last). */
+enum { RFADE_RAY_DIRECTIONS = 13 };
+
+/** How likely the direct ray came from each direction; sums to 1. */
+struct rfade_ray {
+    double weight[RFADE_RAY_DIRECTIONS];
+};
+
+/** A ray from one direction, rounded to the nearest that is told apart. */
+RFADE_API struct rfade_ray rfade_ray_at(double angle_deg);
+
+/**
+ * What the correlation of the fast fading over a few wavelengths says of the ray's direction,
+ * given K; the derivation stands in ray.c. Where nothing is known: a ray across the road.
+ * @param k  Rice K, [0, 1e9]
+ */
+RFADE_API struct rfade_ray rfade_ray_from_lags(const struct rfade_sampling_sums *sums,
+                                               double k);
+
 /**
  * Share of the power's normalised variance that dividing by the local mean of a centred
- * window takes away, under Rice fading with isotropic scatter [Clarke 1968] and the direct
- * ray across the road: to first order in 1/window, third moments included. Not the same as
- * var(window mean)/var(power): for Rayleigh fading it is about twice that. With the ray along
- * the road more is taken away than this says: at 40 wavelengths a K corrected by it came out
- * 4 to 6 % high (median of 500 simulated segments of 100 m at 457 MHz, K 1, 4 and 10).
+ * window takes away, under Rice fading with isotropic scatter [Clarke 1968]: to first order
+ * in 1/window, third moments included. Not the same as var(window mean)/var(power): for
+ * Rayleigh fading it is about twice that.
  * @param window_wavelengths  [4, 2000]
  * @param k                   Rice K, [0, 1e9]
+ * @param ray                 directions of the direct ray
  * @return the share, or NaN outside the domain
  * Accuracy of the integrals 1e-10; the expansion is good to about a tenth of the share.
  */
-RFADE_API double rfade_window_narrowing(double window_wavelengths, double k);
+RFADE_API double rfade_window_narrowing(double window_wavelengths, double k,
+                                        const struct rfade_ray *ray);
 
 /**
  * Variance of the mean power over a stretch, relative to the mean power squared:
- * (2/L) integral from 0 to L of (1 - u/L) [J0(2 pi u)^2 + 2K J0(2 pi u)]/(1 + K)^2 du,
- * under Rice fading with isotropic scatter and the direct ray across the road
- * [Clarke 1968; Lee 1985]: what makes the segment's local mean uncertain.
+ * (2/L) integral from 0 to L of (1 - u/L) [J0(2 pi u)^2 + 2K J0(2 pi u) cos(2 pi u c)] du
+ * over (1 + K)^2, c the cosine of the ray's direction, under Rice fading with isotropic
+ * scatter [Clarke 1968; Lee 1985]: what makes the segment's local mean uncertain.
  * @param length_wavelengths  L > 0
  * @param k                   Rice K, [0, 1e9]
+ * @param ray                 directions of the direct ray: the variance is their mean
  * @return the variance, or NaN outside the domain
- * Accuracy: relative 1e-9 up to 1000 wavelengths, 2e-5 beyond.
+ * Accuracy: relative 1e-9 up to 1000 wavelengths; beyond, 2e-5 with the ray across the road,
+ * 1 % from other directions.
  */
-RFADE_API double rfade_stretch_mean_variance(double length_wavelengths, double k);
+RFADE_API double rfade_stretch_mean_variance(double length_wavelengths, double k,
+                                             const struct rfade_ray *ray);
 
 #ifdef __cplusplus
 }

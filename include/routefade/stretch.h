@@ -36,6 +36,10 @@ struct rfade_stretch {
     double passes;               /**< how many passes the track is made of */
     double level_uncertainty_db; /**< standard error of the stretch's mean level, dB:
                                       fading not averaged out, and calibration */
+    double calibration_db;       /**< the part of it that all of the track shares, dB */
+    double slow_variance;        /**< variance of one pass's mean power, relative, beyond that
+                                      under a ray across the road; 0: none */
+    double readings;             /**< by which one more pass would be observed; 0: many */
     double confidence;           /**< of both intervals, two-sided */
 };
 
@@ -52,10 +56,13 @@ struct rfade_stretch_outage {
  *
  * outage = sum w F(threshold - local mean) / sum w. The confidence interval combines, on the
  * scale of ln(odds), the ends of the parameter's interval and of the mean level's by the
- * method of variance estimates recovery [Zou and Donner 2008, eq. 4]. The prediction
- * interval takes the travel below the threshold on one pass as a Poisson number of fades of
- * exponential length, with the rate and mean length that the model gives [Rice 1948], mixed
- * over the uncertainty of the outage itself.
+ * method of variance estimates recovery [Zou and Donner 2008, eq. 4]; only the part of the
+ * track that lies near the threshold counts, so its level is less certain than the whole
+ * stretch's. The prediction interval takes the readings below the threshold on one pass as a
+ * Poisson number of fades of geometric length [Polya and Aeppli; Johnson, Kemp and Kotz 2005,
+ * section 9.7], with the mean of the outage and the variance of a telegraph signal of the
+ * model's rate and mean length of fades [Rice 1948], mixed over the uncertainty of the outage
+ * itself.
  *
  * @return RFADE_OK | RFADE_DOMAIN | RFADE_NO_DATA (empty track)
  * Accuracy: the outage to that of the model's tails; interval ends are solved to 1e-6

@@ -1,21 +1,37 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
+#include <gsl/gsl_math.h>
 #include <math.h>
 #include <stdlib.h>
 
 #include "analyse/results.h"
+#include "routefade/separate.h"
 
-/*
- * The measured local mean carries its window's noise. Drawing the track in towards its mean
- * by this factor leaves the variance that the local mean itself has, so that the noise is
- * not counted again beside the fast fading.
- */
-static double track_shrink(const struct rfade_segment_result *row)
+/* d(dB)/d(relative power) */
+static const double DB_PER_NEPER_OF_POWER = 10.0 / M_LN10;
+
+/* Mean and standard deviation of the measured local mean, dB. */
+static void track_moments(const struct rfade_tally_cell *cells, size_t count, double *mean_dbm,
+                          double *deviation_db)
 {
-    double own_db2 = row->local_sigma_db * row->local_sigma_db;
-    double noise_db2 = row->window_noise_db * row->window_noise_db;
-    return own_db2 + noise_db2 > 0 ? sqrt(own_db2 / (own_db2 + noise_db2)) : 1.0;
+    double weights = 0.0, sum = 0.0, squares = 0.0;
+    for (size_t i = 0; i < count; i++) {
+        weights += (double)cells[i].weight;
+        sum += (double)cells[i].weight * (cells[i].key.centre_cdb / 100.0);
+    }
+    *mean_dbm = sum / weights;
+    for (size_t i = 0; i < count; i++) {
+        double about_db = cells[i].key.centre_cdb / 100.0 - *mean_dbm;
+        squares += (double)cells[i].weight * about_db * about_db;
+    }
+    *deviation_db = sqrt(squares / weights);
 }
 
+/*
+ * The measured local mean carries its window's noise, and lacks what the window smooths away.
+ * Drawing the track in towards its mean, or out from it, leaves the variance that the local
+ * mean itself has, so that the noise is not counted again beside the fast fading. The mean of
+ * the dB of a noisy power lies below the dB of its mean by half its relative variance.
+ */
 static enum rfade_status local_mean_track(struct rfade_segment_result *row,
                                           struct rfade_local_mean **track, size_t *count)
 {
@@ -27,13 +43,44 @@ static enum rfade_status local_mean_track(struct rfade_segment_result *row,
     *track = malloc(*count * sizeof **track);
     if (!*track)
         return RFADE_NO_MEMORY;
-    double shrink = track_shrink(row);
+    double mean_dbm = NAN, deviation_db = NAN;
+    track_moments(cells, *count, &mean_dbm, &deviation_db);
+    double scale = deviation_db > 0.0 ? row->local_sigma_db / deviation_db : 1.0;
+    double lift_db = 0.5 * row->window_noise_db * row->window_noise_db / DB_PER_NEPER_OF_POWER;
     for (size_t i = 0; i < *count; i++) {
-        double about_db = cells[i].key.centre_cdb / 100.0 - row->local_mean_dbm;
-        (*track)[i] = (struct rfade_local_mean){row->local_mean_dbm + shrink * about_db,
+        double about_db = cells[i].key.centre_cdb / 100.0 - mean_dbm;
+        (*track)[i] = (struct rfade_local_mean){mean_dbm + lift_db + scale * about_db,
                                                 (double)cells[i].weight};
     }
     return RFADE_OK;
+}
+
+/* Relative variance of the pooled passes' mean power by fading; 0 where nothing is known. */
+static double fading_variance(const struct rfade_segment_result *row)
+{
+    const struct rfade_stored_fit *rice = rfade_result_fit(row, RFADE_RICE);
+    double k = rice ? rice->parameter : 0.0;
+    double variance = rfade_model(RFADE_RICE)->normalised_variance(k) / row->effective_count;
+    return isfinite(variance) ? variance : 0.0;
+}
+
+/* The part of the level's uncertainty that is not fading. */
+static double calibration_db(const struct rfade_segment_result *row)
+{
+    double total = row->level_uncertainty_db * row->level_uncertainty_db;
+    double fading = DB_PER_NEPER_OF_POWER * DB_PER_NEPER_OF_POWER * fading_variance(row);
+    return sqrt(fmax(0.0, total - fading));
+}
+
+/* What a pass's mean power varies beyond that under a ray across the road. */
+static double slow_variance(const struct rfade_segment_result *row, double pass_wavelengths)
+{
+    const struct rfade_stored_fit *rice = rfade_result_fit(row, RFADE_RICE);
+    struct rfade_ray across = rfade_ray_at(90.0);
+    double least =
+        rfade_stretch_mean_variance(pass_wavelengths, rice ? rice->parameter : 0.0, &across);
+    double excess = (double)row->passes * fading_variance(row) - least;
+    return excess > 0.0 ? excess : 0.0;
 }
 
 static enum rfade_status predicted(struct rfade_segment_result *row,
@@ -44,6 +91,8 @@ static enum rfade_status predicted(struct rfade_segment_result *row,
     size_t count = 0;
     enum rfade_status status = local_mean_track(row, &track, &count);
     if (status == RFADE_OK) {
+        double passes = (double)row->passes;
+        double pass_wavelengths = row->travel_m / row->wavelength_m / passes;
         struct rfade_stretch stretch = {
             .model = fit->model,
             .parameter = fit->parameter,
@@ -52,9 +101,12 @@ static enum rfade_status predicted(struct rfade_segment_result *row,
             .offset_db = fit->offset_db,
             .track = track,
             .track_count = count,
-            .length_wavelengths = row->travel_m / row->wavelength_m / (double)row->passes,
-            .passes = (double)row->passes,
+            .length_wavelengths = pass_wavelengths,
+            .passes = passes,
             .level_uncertainty_db = row->level_uncertainty_db,
+            .calibration_db = calibration_db(row),
+            .slow_variance = slow_variance(row, pass_wavelengths),
+            .readings = (double)rfade_tally_readings(row->level) / passes,
             .confidence = confidence,
         };
         status = rfade_stretch_outage(&stretch, threshold_dbm, outage);

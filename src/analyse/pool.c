@@ -30,20 +30,19 @@ void rfade_pool_clear(struct rfade_pool *pool)
     *pool = (struct rfade_pool){.wavelength_m = NAN};
 }
 
-/* Mean, variance and mean power of the local mean along the travel. */
-struct track_moments {
+/* Mean of the levels of a tally in dB, their variance, and the level of their mean power. */
+struct level_moments {
     double mean_dbm;
     double variance_db2;
     double mean_power_dbm;
 };
 
-static enum rfade_status track_moments(struct rfade_tally *local_mean,
-                                       struct track_moments *result)
+static enum rfade_status level_moments(struct rfade_tally *levels, struct level_moments *result)
 {
-    *result = (struct track_moments){NAN, NAN, NAN};
+    *result = (struct level_moments){NAN, NAN, NAN};
     const struct rfade_tally_cell *cells = NULL;
     size_t count = 0;
-    enum rfade_status status = rfade_tally_cells(local_mean, &cells, &count);
+    enum rfade_status status = rfade_tally_cells(levels, &cells, &count);
     if (status != RFADE_OK || count == 0)
         return status;
     double weights = 0.0, sum = 0.0, power = 0.0, squares = 0.0;
@@ -68,55 +67,61 @@ static enum rfade_status track_moments(struct rfade_tally *local_mean,
 }
 
 /*
- * Standard deviation of the local mean, its window's own noise taken off, with an interval
- * from the chi-square distribution. Degrees of freedom: the number of windows that fit side
- * by side into the travel, less one (common practice; neighbouring windows share no reading).
+ * Standard deviation of the local mean along the track that was driven. Its variance is that
+ * of the measured means, less their noise, plus what the window smooths away: over a window w
+ * and to second order that is w^2/12 of the mean squared slope, as much as the variance within
+ * a window, which also raises the window's mean power above its middle, by ln(10)/20 of it in
+ * dB, and so shows in the mean of the fast fading [delta method].
+ *
+ * The measured variance has an error by the noise itself, 2 noise^2 over the number n of
+ * windows side by side, and by its product with the track, 4 track noise over n.
  */
 static void local_sigma(const struct rfade_pool *pool,
                         const struct rfade_analysis_settings *settings, double variance_db2,
-                        struct rfade_pool_result *result)
+                        double offset_db, struct rfade_pool_result *result)
 {
     double noise_db2 = result->window_noise_db * result->window_noise_db;
-    result->local_sigma_db = sqrt(fmax(0.0, variance_db2 - noise_db2));
-    double window_m = settings->window_wavelengths * pool->wavelength_m;
-    double freedom = pool->travel_m / window_m - 1.0;
-    if (!(freedom >= 1.0))
-        return;
-    double tail = 0.5 * (1.0 - settings->confidence);
-    double low_db2 = variance_db2 * freedom / gsl_cdf_chisq_Qinv(tail, freedom);
-    double high_db2 = variance_db2 * freedom / gsl_cdf_chisq_Pinv(tail, freedom);
-    result->local_sigma_low_db = sqrt(fmax(0.0, low_db2 - noise_db2));
-    result->local_sigma_high_db = sqrt(fmax(0.0, high_db2 - noise_db2));
+    double within_db2 = fmax(0.0, -2.0 * DB_PER_NEPER_OF_POWER * offset_db);
+    double track_db2 = fmax(0.0, variance_db2 - noise_db2) + within_db2;
+    double windows = pool->travel_m / (settings->window_wavelengths * pool->wavelength_m);
+    double error_db2 = sqrt((4.0 * track_db2 + 2.0 * noise_db2) * noise_db2 / windows);
+    double reach_db2 = gsl_cdf_ugaussian_Pinv(0.5 + 0.5 * settings->confidence) * error_db2;
+    result->local_sigma_db = sqrt(track_db2);
+    result->local_sigma_low_db = sqrt(fmax(0.0, track_db2 - reach_db2));
+    result->local_sigma_high_db = sqrt(track_db2 + reach_db2);
 }
 
-/* Steadiness in terms of K: what the window's noise depends on. */
-static double fitted_k(const struct rfade_pool_result *result)
+static const struct rfade_fit *rice_fit(const struct rfade_pool_result *result)
 {
     if (!result->fitted)
-        return 0.0;
+        return NULL;
     for (size_t i = 0; i < result->estimate.fit_count; i++)
         if (result->estimate.fits[i].model == RFADE_RICE)
-            return result->estimate.fits[i].parameter;
-    return 0.0;
+            return &result->estimate.fits[i];
+    return NULL;
 }
 
 static void judge_local_mean(struct rfade_pool *pool,
                              const struct rfade_analysis_settings *settings,
-                             const struct track_moments *track,
+                             const struct level_moments *track,
                              struct rfade_pool_result *result)
 {
-    double k = fitted_k(result);
-    double window_variance = rfade_stretch_mean_variance(settings->window_wavelengths, k);
+    const struct rfade_fit *rice = rice_fit(result);
+    double k = rice ? rice->parameter : 0.0;
+    struct rfade_ray ray = rfade_ray_from_lags(&pool->sampling, k);
+    double window_variance = rfade_stretch_mean_variance(settings->window_wavelengths, k, &ray);
     result->window_noise_db = DB_PER_NEPER_OF_POWER * sqrt(window_variance);
-    result->mean_power_dbm = track->mean_power_dbm;
     /* The mean of dB of a noisy power lies below the dB of its mean, to first order by half
-     * its relative variance. */
-    result->local_mean_dbm = track->mean_dbm + 0.5 * DB_PER_NEPER_OF_POWER * window_variance;
-    local_sigma(pool, settings, track->variance_db2, result);
+     * its relative variance. What the local mean does within its window, and beyond the
+     * segment's ends, raises the window's mean power above the readings at its centre: that
+     * is the mean of the fast fading. */
+    result->local_mean_dbm = track->mean_dbm + 0.5 * DB_PER_NEPER_OF_POWER * window_variance +
+                             (rice ? rice->mean_power_db : 0.0);
+    local_sigma(pool, settings, track->variance_db2, rice ? rice->mean_power_db : 0.0, result);
 
     double passes = (double)pool->passes;
     double pass_wavelengths = pool->travel_m / pool->wavelength_m / passes;
-    double mean_variance = rfade_stretch_mean_variance(pass_wavelengths, k) / passes;
+    double mean_variance = rfade_stretch_mean_variance(pass_wavelengths, k, &ray) / passes;
     double fading_db2 = DB_PER_NEPER_OF_POWER * DB_PER_NEPER_OF_POWER * mean_variance;
     if (result->fitted)
         result->effective_count =
@@ -124,6 +129,54 @@ static void judge_local_mean(struct rfade_pool *pool,
                  rfade_model(RFADE_RICE)->normalised_variance(k) / mean_variance);
     result->level_uncertainty_db =
         sqrt(fading_db2 + pool->calibration_db * pool->calibration_db);
+}
+
+/*
+ * How the parameter moves with the relative mean power when the ray's power a moves it:
+ * K = a/s, dK = da/s = (1 + K) d(power); m = (1 + K)^2/(1 + 2K), dm/dK = 2K(1 + K)/(1 + 2K)^2
+ * with K from m [Nakagami 1960].
+ */
+static double slow_slope(const struct rfade_fit *fit)
+{
+    if (fit->model == RFADE_RICE)
+        return 1.0 + fit->parameter;
+    double m = fit->parameter;
+    if (fit->model != RFADE_NAKAGAMI || !(m > 1.0))
+        return 0.0;
+    double root = sqrt(m * m - m);
+    double k = root / (m - root);
+    return 2.0 * k * (1.0 + k) * (1.0 + k) / ((1.0 + 2.0 * k) * (1.0 + 2.0 * k));
+}
+
+/*
+ * Scatter that moves in step with the direct ray looks like a stronger or weaker ray all along
+ * a pass: with the mean x of the scatter in phase over it, K is off by 2 x/sqrt(ray power),
+ * relative. Blocks within the pass don't see that. Of the relative variance of the pass's
+ * mean power it is v = 4 (ray power) var(x): K then has the variance ((1 + K) v^(1/2))^2.
+ */
+static void widen(const struct rfade_analysis_settings *settings, double slow_variance,
+                  struct rfade_fit *fit)
+{
+    double reach = gsl_cdf_ugaussian_Pinv(0.5 + 0.5 * settings->confidence) * slow_slope(fit) *
+                   sqrt(slow_variance);
+    if (!(reach > 0.0))
+        return;
+    fit->parameter_low = fit->parameter - hypot(fit->parameter - fit->parameter_low, reach);
+    fit->parameter_low = fmax(fit->parameter_low, rfade_model(fit->model)->fit_min);
+    fit->parameter_high = fit->parameter + hypot(fit->parameter_high - fit->parameter, reach);
+    fit->parameter_high = fmin(fit->parameter_high, rfade_model(fit->model)->parameter_max);
+}
+
+/* Relative variance of the passes' mean power beyond that under a ray across the road. */
+static double slow_variance(const struct rfade_pool *pool, double k,
+                            const struct rfade_ray *ray)
+{
+    struct rfade_ray across = rfade_ray_at(90.0);
+    double passes = (double)pool->passes;
+    double wavelengths = pool->travel_m / pool->wavelength_m / passes;
+    double excess = rfade_stretch_mean_variance(wavelengths, k, ray) -
+                    rfade_stretch_mean_variance(wavelengths, k, &across);
+    return fmax(0.0, excess) / passes;
 }
 
 static enum rfade_status fit_fading(struct rfade_pool *pool,
@@ -142,9 +195,13 @@ static enum rfade_status fit_fading(struct rfade_pool *pool,
     struct rfade_fit narrowed;
     status = rfade_fit_bins(rfade_model(RFADE_RICE), bins, bin_count, &plain, &narrowed);
     if (status == RFADE_OK) {
+        struct rfade_ray ray = rfade_ray_from_lags(&pool->sampling, narrowed.parameter);
         how.narrowing =
-            rfade_window_narrowing(settings->window_wavelengths, narrowed.parameter);
+            rfade_window_narrowing(settings->window_wavelengths, narrowed.parameter, &ray);
         status = rfade_estimate_bins(bins, bin_count, &how, &result->estimate);
+        double slow = slow_variance(pool, narrowed.parameter, &ray);
+        for (size_t i = 0; i < result->estimate.fit_count && status == RFADE_OK; i++)
+            widen(settings, slow, &result->estimate.fits[i]);
     }
     result->fitted = status == RFADE_OK;
     free(bins);
@@ -173,11 +230,14 @@ enum rfade_status rfade_pool_evaluate(struct rfade_pool *pool,
                                    "the fast fading of a segment can't be fitted: %s",
                                    rfade_status_text(status));
     }
-    struct track_moments track;
-    enum rfade_status status = track_moments(pool->local_mean, &track);
+    struct level_moments track, readings;
+    enum rfade_status status = level_moments(pool->local_mean, &track);
+    if (status == RFADE_OK)
+        status = level_moments(pool->level, &readings);
     if (status != RFADE_OK)
         return rfade_error_set(error, status, "", "a local-mean tally can't be read: %s",
                                rfade_status_text(status));
+    result->mean_power_dbm = readings.mean_power_dbm;
     if (!isnan(track.mean_dbm))
         judge_local_mean(pool, settings, &track, result);
     return RFADE_OK;

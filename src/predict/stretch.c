@@ -7,50 +7,109 @@
 #include "routefade/stretch.h"
 
 #include <gsl/gsl_cdf.h>
-#include <gsl/gsl_randist.h>
+#include <gsl/gsl_math.h>
 #include <math.h>
 #include <stdbool.h>
 
-/* Beyond this many fades on a pass the travel below the threshold is normal to better than
- * the first-order statistics it rests on. */
-static const double FADES_FOR_NORMAL = 200.0;
+#include "predict/next_pass.h"
+#include "predict/response.h"
 
-/* Probability, and its complement, averaged over the track; and the rate of fades. */
+/* d(dB)/d(relative power) */
+static const double DB_PER_NEPER_OF_POWER = 10.0 / M_LN10;
+
+/* Probability, and its complement, averaged over the track. */
 struct average {
     double lower;
     double upper;
-    double crossings;
 };
+
+/* What the track says beside: means over it. */
+struct track_means {
+    double crossings;       /* rate of fades */
+    double lengths;         /* of squared lengths of fades: see fluctuation */
+    double response;        /* d outage / d level, per dB */
+    double response_square; /* of its square */
+    double slow_response;   /* what slow variations of the power move */
+};
+
+/* Where the threshold lies about the mean power at one place of the track, dB. */
+static double place_db(const struct rfade_stretch *stretch, size_t i, double shift_db,
+                       double threshold_dbm)
+{
+    return threshold_dbm - (stretch->track[i].level_dbm + stretch->offset_db + shift_db);
+}
 
 static enum rfade_status average_over_track(const struct rfade_stretch *stretch,
                                             double parameter, double shift_db,
-                                            double threshold_dbm, bool with_crossings,
-                                            struct average *result)
+                                            double threshold_dbm, struct average *result)
 {
-    *result = (struct average){NAN, NAN, NAN};
-    double lower = 0.0, upper = 0.0, crossings = 0.0, weights = 0.0;
+    *result = (struct average){NAN, NAN};
+    double lower = 0.0, upper = 0.0, weights = 0.0;
     for (size_t i = 0; i < stretch->track_count; i++) {
         double weight = stretch->track[i].weight;
-        double x_db =
-            threshold_dbm - (stretch->track[i].level_dbm + stretch->offset_db + shift_db);
         struct rfade_tails tails;
-        enum rfade_status status = stretch->model->tails(parameter, x_db, &tails);
+        enum rfade_status status = stretch->model->tails(
+            parameter, place_db(stretch, i, shift_db, threshold_dbm), &tails);
         if (status != RFADE_OK)
             return status;
         lower += weight * tails.lower;
         upper += weight * tails.upper;
         weights += weight;
-        if (!with_crossings)
-            continue;
-        double rate = 0.0;
-        status = rfade_crossings_per_wavelength(stretch->model, parameter, x_db, &rate);
+    }
+    *result = (struct average){lower / weights, upper / weights};
+    return RFADE_OK;
+}
+
+/*
+ * Fades and the gaps between them, both of exponential length, make a telegraph signal: the
+ * share p of a long travel L that lies in fades, begun at a rate N, has the variance
+ * 2 p^2 (1 - p)^2 / (N L) [Cox, Renewal Theory, 1962, chapter 7].
+ */
+static enum rfade_status average_means(const struct rfade_stretch *stretch,
+                                       double threshold_dbm, struct track_means *result)
+{
+    struct track_means sum = {0.0, 0.0, 0.0, 0.0, 0.0};
+    double weights = 0.0;
+    for (size_t i = 0; i < stretch->track_count; i++) {
+        double weight = stretch->track[i].weight;
+        double x_db = place_db(stretch, i, 0.0, threshold_dbm);
+        double rate = NAN;
+        struct rfade_tails tails;
+        struct rfade_response response;
+        enum rfade_status status = stretch->model->tails(stretch->parameter, x_db, &tails);
+        if (status == RFADE_OK)
+            status =
+                rfade_crossings_per_wavelength(stretch->model, stretch->parameter, x_db, &rate);
+        if (status == RFADE_OK)
+            status = rfade_response(stretch->model, stretch->parameter, x_db, &response);
         if (status != RFADE_OK)
             return status;
-        crossings += weight * rate;
+        double both = tails.lower * tails.upper;
+        sum.crossings += weight * rate;
+        sum.lengths += rate > 0.0 ? weight * both * both / rate : 0.0;
+        sum.response += weight * response.level;
+        sum.response_square += weight * response.level * response.level;
+        sum.slow_response += weight * response.slow;
+        weights += weight;
     }
-    *result = (struct average){lower / weights, upper / weights,
-                               with_crossings ? crossings / weights : NAN};
+    *result = (struct track_means){sum.crossings / weights, sum.lengths / weights,
+                                   sum.response / weights, sum.response_square / weights,
+                                   sum.slow_response / weights};
     return RFADE_OK;
+}
+
+/*
+ * Standard error of the level where it matters: the fading averages out over the share of
+ * the track that responds to the level, (mean response)^2 / mean squared response of it.
+ */
+static double level_error_db(const struct rfade_stretch *stretch,
+                             const struct track_means *means)
+{
+    double total = stretch->level_uncertainty_db * stretch->level_uncertainty_db;
+    double shared = fmin(stretch->calibration_db * stretch->calibration_db, total);
+    double square = means->response * means->response;
+    double share = square > 0.0 ? square / means->response_square : 1.0;
+    return sqrt(shared + (total - shared) / share);
 }
 
 static double log_odds(const struct average *average)
@@ -70,7 +129,7 @@ static enum rfade_status add_distances(const struct rfade_stretch *stretch, doub
 {
     struct average moved;
     enum rfade_status status =
-        average_over_track(stretch, parameter, shift_db, threshold_dbm, false, &moved);
+        average_over_track(stretch, parameter, shift_db, threshold_dbm, &moved);
     if (status != RFADE_OK)
         return status;
     double distance = log_odds(&moved) - centre;
@@ -81,13 +140,28 @@ static enum rfade_status add_distances(const struct rfade_stretch *stretch, doub
     return RFADE_OK;
 }
 
+/*
+ * When it is the scatter in step with a direct ray that made the level uncertain, the
+ * parameter is off with it, and both move the outage the same way: twice the product of the
+ * two distances comes on top of their squares. Slow variation moves the outage by `slow` in
+ * all, by `level` through the level.
+ */
+static double together(const struct rfade_stretch *stretch, const struct average *average,
+                       const struct track_means *means, double quantile)
+{
+    double reach = quantile * sqrt(stretch->slow_variance / stretch->passes) /
+                   (average->lower * average->upper);
+    double level = reach * DB_PER_NEPER_OF_POWER * means->response;
+    double parameter = reach * means->slow_response - level;
+    return 2.0 * level * fmax(parameter, 0.0);
+}
+
 /* Ends of the confidence interval as log odds. */
 static enum rfade_status confidence_ends(const struct rfade_stretch *stretch,
-                                         double threshold_dbm, double centre, double quantile,
-                                         double *low, double *high)
+                                         double threshold_dbm, double centre, double shift_db,
+                                         double both, double *low, double *high)
 {
-    double below = 0.0, above = 0.0;
-    double shift_db = quantile * stretch->level_uncertainty_db;
+    double below = both, above = both;
     const double moves[][2] = {{stretch->parameter_low, 0.0},
                                {stretch->parameter_high, 0.0},
                                {stretch->parameter, shift_db},
@@ -105,65 +179,11 @@ static enum rfade_status confidence_ends(const struct rfade_stretch *stretch,
     return RFADE_OK;
 }
 
-/*
- * P(travel in fades <= fraction of the pass), fades a Poisson number with this mean, each of
- * exponential length: the sum over n of Poisson(n) times the gamma distribution of n lengths.
- */
-static double fades_cdf(double fraction, double outage, double fades)
-{
-    if (fraction < 0)
-        return 0.0;
-    double length = outage / fades; /* of one fade, as a fraction of the pass */
-    if (fades > FADES_FOR_NORMAL)
-        return gsl_cdf_gaussian_P(fraction - outage, sqrt(2.0 * fades) * length);
-    unsigned last = (unsigned)(fades + 10.0 * sqrt(fades) + 30.0);
-    double sum = exp(-fades); /* no fade at all */
-    for (unsigned n = 1; n <= last; n++)
-        sum += gsl_ran_poisson_pdf(n, fades) * gsl_cdf_gamma_P(fraction / length, n, 1.0);
-    return sum;
-}
-
-/*
- * The same mixed over what isn't known of the outage: log odds normal about their estimate,
- * taken at the nodes of the five-point Gauss-Hermite rule [AMS 55, table 25.10].
- */
-static double next_cdf(double fraction, double centre, double spread, double rate)
-{
-    static const double node[] = {-2.8569700138728056, -1.3556261799742659, 0.0,
-                                  1.3556261799742659, 2.8569700138728056};
-    static const double weight[] = {0.011257411327720689, 0.22207592200561264,
-                                    0.53333333333333333, 0.22207592200561264,
-                                    0.011257411327720689};
-    double sum = 0.0;
-    for (size_t i = 0; i < sizeof node / sizeof node[0]; i++) {
-        double outage = probability_of(centre + spread * node[i]);
-        /* Far beyond one half it is the gaps between fades that are rare. */
-        sum +=
-            weight[i] * (outage <= 0.5 ? fades_cdf(fraction, outage, rate)
-                                       : 1.0 - fades_cdf(1.0 - fraction, 1.0 - outage, rate));
-    }
-    return sum;
-}
-
-static double next_quantile(double probability, double centre, double spread, double rate)
-{
-    double low = 0.0, high = 1.0;
-    if (next_cdf(0.0, centre, spread, rate) >= probability)
-        return 0.0;
-    for (int i = 0; i < 60 && high - low > 1e-6 * high; i++) {
-        double middle = 0.5 * (low + high);
-        if (next_cdf(middle, centre, spread, rate) < probability)
-            low = middle;
-        else
-            high = middle;
-    }
-    return 0.5 * (low + high);
-}
-
 static bool valid(const struct rfade_stretch *stretch)
 {
     return stretch->model && stretch->length_wavelengths > 0 && stretch->passes > 0 &&
-           stretch->level_uncertainty_db >= 0 && stretch->confidence > 0 &&
+           stretch->level_uncertainty_db >= 0 && stretch->calibration_db >= 0 &&
+           stretch->slow_variance >= 0 && stretch->readings >= 0 && stretch->confidence > 0 &&
            stretch->confidence < 1 && isfinite(stretch->offset_db);
 }
 
@@ -177,12 +197,15 @@ enum rfade_status rfade_stretch_outage(const struct rfade_stretch *stretch,
     if (stretch->track_count == 0)
         return RFADE_NO_DATA;
     struct average average;
+    struct track_means means;
     enum rfade_status status =
-        average_over_track(stretch, stretch->parameter, 0.0, threshold_dbm, true, &average);
+        average_over_track(stretch, stretch->parameter, 0.0, threshold_dbm, &average);
+    if (status == RFADE_OK)
+        status = average_means(stretch, threshold_dbm, &means);
     if (status != RFADE_OK)
         return status;
     result->outage = average.lower;
-    result->crossings_per_wavelength = average.crossings;
+    result->crossings_per_wavelength = means.crossings;
 
     double centre = log_odds(&average);
     double quantile = gsl_cdf_ugaussian_Pinv(0.5 + 0.5 * stretch->confidence);
@@ -192,16 +215,20 @@ enum rfade_status rfade_stretch_outage(const struct rfade_stretch *stretch,
         result->next_low = result->next_high = result->outage;
         return RFADE_OK;
     }
-    status = confidence_ends(stretch, threshold_dbm, centre, quantile, &low, &high);
+    status = confidence_ends(stretch, threshold_dbm, centre,
+                             quantile * level_error_db(stretch, &means),
+                             together(stretch, &average, &means, quantile), &low, &high);
     if (status != RFADE_OK)
         return status;
     result->low = probability_of(low);
     result->high = probability_of(high);
 
-    double spread = 0.5 * (high - low) / quantile;
-    double fades = average.crossings * stretch->length_wavelengths;
-    double tail = 0.5 * (1.0 - stretch->confidence);
-    result->next_low = next_quantile(tail, centre, spread, fades);
-    result->next_high = next_quantile(1.0 - tail, centre, spread, fades);
+    struct rfade_next_pass next = {
+        .log_odds = centre,
+        .log_odds_deviation = 0.5 * (high - low) / quantile,
+        .variance = 2.0 * means.lengths / stretch->length_wavelengths +
+                    means.slow_response * means.slow_response * stretch->slow_variance,
+        .readings = stretch->readings};
+    rfade_next_pass_interval(&next, stretch->confidence, &result->next_low, &result->next_high);
     return RFADE_OK;
 }

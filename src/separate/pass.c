@@ -7,6 +7,7 @@
 static const int64_t most_travel_mm = 10000000000; /* with these two the power sums */
 static const int32_t most_range_cdb = 24000;       /* stay below 2^128 */
 static const int32_t most_level_cdb = 1000000;
+static const double most_fading = 30.0;
 static const double power_unit = 16384.0; /* fixed point: resolution of the weakest level */
 
 static bool within(double value, double low, double high)
@@ -52,8 +53,9 @@ static enum rfade_status allocate(struct rfade_pass *pass)
     pass->kept_sum = calloc(pass->count + 1, sizeof *pass->kept_sum);
     pass->power = calloc(pass->count + 1, sizeof *pass->power);
     pass->local_mean_cdb = calloc(pass->count, sizeof *pass->local_mean_cdb);
+    pass->fading = calloc(pass->count, sizeof *pass->fading);
     got = pass->weight_mm != NULL && pass->weight_sum != NULL && pass->kept_sum != NULL &&
-          pass->power != NULL && pass->local_mean_cdb != NULL;
+          pass->power != NULL && pass->local_mean_cdb != NULL && pass->fading != NULL;
     return got ? RFADE_OK : RFADE_NO_MEMORY;
 }
 
@@ -137,6 +139,12 @@ static void find_local_means(struct rfade_pass *pass)
         rfade_pass_window(pass, i, &window);
         pass->local_mean_cdb[i] =
             pass->weight_mm[i] > 0 ? rfade_pass_mean_cdb(pass, window) : NAN;
+        if (pass->weight_mm[i] > 0) {
+            double over_cdb = pass->readings[i].level_cdb - pass->local_mean_cdb[i];
+
+            pass->fading[i] =
+                (int64_t)round(1000.0 * fmin(pow(10.0, over_cdb / 1000.0) - 1.0, most_fading));
+        }
     }
 }
 
@@ -180,6 +188,7 @@ void rfade_pass_destroy(struct rfade_pass *pass)
     free(pass->kept_sum);
     free(pass->power);
     free(pass->local_mean_cdb);
+    free(pass->fading);
     for (int scale = 0; scale < RFADE_SAMPLING_SCALES; scale++) {
         free(pass->curvature[scale].square);
         free(pass->curvature[scale].mm);

@@ -34,6 +34,8 @@ struct rfade_pass {
     int64_t *kept_sum;      /**< [count + 1] how many readings with weight came before */
     rfade_power_sum *power; /**< [count + 1] prefix sums of weight times power */
     double *local_mean_cdb; /**< [count]; NaN where there is no weight */
+    int64_t *fading;        /**< [count] power over local mean less 1, thousandths, at most
+                                 30000 so that sums of products stay below 2^63 */
     struct rfade_curvature curvature[RFADE_SAMPLING_SCALES];
 };
 

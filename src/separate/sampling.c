@@ -86,6 +86,39 @@ static void sum_differences(const struct rfade_pass *pass, struct rfade_range ru
     }
 }
 
+/* Products with the first reading at least the lag further on, if it isn't much more. */
+static void sum_lag(const struct rfade_pass *pass, struct rfade_range run, int lag,
+                    struct rfade_sampling_sums *sums)
+{
+    size_t other = run.from;
+    double unit_mm = RFADE_LAG_WAVELENGTHS * 1e-3 * (double)pass->wavelength_um;
+    int64_t lag_mm = (int64_t)round((lag + 1) * unit_mm);
+    int64_t slack_mm = pass->half_wave_mm;
+
+    for (size_t i = run.from; i < run.to; i++) {
+        int64_t weight_mm = pass->weight_mm[i];
+        int64_t apart_mm;
+
+        if (weight_mm == 0) {
+            continue;
+        }
+        while (other < run.to &&
+               (pass->readings[other].travel_mm < pass->readings[i].travel_mm + lag_mm ||
+                pass->weight_mm[other] == 0)) {
+            other++;
+        }
+        if (other == run.to) {
+            return;
+        }
+        apart_mm = pass->readings[other].travel_mm - pass->readings[i].travel_mm;
+        if (apart_mm <= lag_mm + slack_mm) {
+            sums->lag_product[lag] += weight_mm * pass->fading[i] * pass->fading[other];
+            sums->lag_distance[lag] += weight_mm * apart_mm;
+            sums->lag_mm[lag] += weight_mm;
+        }
+    }
+}
+
 /* First reading at or beyond a place. */
 static size_t place_index(const struct rfade_pass *pass, int64_t place_mm)
 {
@@ -129,4 +162,7 @@ void rfade_pass_sampling(const struct rfade_pass *pass, struct rfade_range run,
     sum_differences(pass, run, pass->half_wave_mm, &sums->near_square, &sums->near_mm);
     sum_differences(pass, run, 4 * pass->half_wave_mm, &sums->far_square, &sums->far_mm);
     sum_curvature(pass, run, sums);
+    for (int lag = 0; lag < RFADE_LAGS; lag++) {
+        sum_lag(pass, run, lag, sums);
+    }
 }

@@ -6,7 +6,7 @@
 #include "routefade/separate.h"
 #include "tally/checked.h"
 
-enum { NUMBERS = 19 + 2 * RFADE_SAMPLING_SCALES, NUMBER_BYTES = 8 };
+enum { NUMBERS = 19 + 2 * RFADE_SAMPLING_SCALES + 3 * RFADE_LAGS, NUMBER_BYTES = 8 };
 
 _Static_assert(sizeof(struct rfade_sampling_sums) == NUMBERS * sizeof(int64_t),
                "the sums are nothing but int64_t");

@@ -9,6 +9,7 @@
 #include <gsl/gsl_errno.h>
 #include <gsl/gsl_randist.h>
 #include <math.h>
+#include <stdbool.h>
 #include <string.h>
 
 #include "routefade/stretch.h"
@@ -128,32 +129,82 @@ static void nothing_uncertain_gives_no_width(void **state)
     assert_true(outage.high > outage.outage * 1.1);
 }
 
-enum { DRAWS = 200000 };
+enum { DRAWS = 20000, READINGS = 1000 };
 
-/* Draws the travel below the threshold as a Poisson number of exponential fades, with GSL's
- * generators, and asks which share of the draws the prediction interval leaves on each side. */
+/* Share of the readings that a signal which is in turn below and above, each for a time of
+ * exponential distribution, has below. */
+static double draw_share(gsl_rng *random, double outage, double fade_readings)
+{
+    double gap_readings = fade_readings * (1.0 - outage) / outage;
+    bool is_below = gsl_rng_uniform(random) < outage;
+    double place = 0.0;
+    int count = 0;
+    while (place < READINGS) {
+        double next =
+            place + gsl_ran_exponential(random, is_below ? fade_readings : gap_readings);
+        if (is_below)
+            count += (int)(fmin(ceil(next), READINGS) - ceil(place));
+        is_below = !is_below;
+        place = next;
+    }
+    return (double)count / READINGS;
+}
+
+/* GSL's generators draw the passes: which share does the interval leave on each side? A tail
+ * of a count holds at most 0.025; what the distribution supposes beside is of first order. */
 static void prediction_interval_holds_drawn_fades(void **state)
 {
     (void)state;
-    struct rfade_stretch stretch = rayleigh_stretch(level_track, 1);
-    stretch.level_uncertainty_db = 0.0;
-    struct rfade_stretch_outage outage;
-    assert_int_equal(rfade_stretch_outage(&stretch, -100.0, &outage), RFADE_OK);
-    double fades = outage.crossings_per_wavelength * stretch.length_wavelengths;
-    double length = outage.outage / fades;
+    const double thresholds_dbm[] = {-95.0, -100.0, -105.0};
     gsl_rng *random = gsl_rng_alloc(gsl_rng_mt19937);
-    int below = 0, above = 0;
-    for (int i = 0; i < DRAWS; i++) {
-        unsigned count = gsl_ran_poisson(random, fades);
-        double fraction = count ? gsl_ran_gamma(random, count, length) : 0.0;
-        below += fraction < outage.next_low;
-        above += fraction > outage.next_high;
+    for (size_t i = 0; i < sizeof thresholds_dbm / sizeof thresholds_dbm[0]; i++) {
+        struct rfade_stretch stretch = rayleigh_stretch(level_track, 1);
+        struct rfade_stretch_outage outage;
+        stretch.level_uncertainty_db = 0.0;
+        stretch.readings = READINGS;
+        assert_int_equal(rfade_stretch_outage(&stretch, thresholds_dbm[i], &outage), RFADE_OK);
+        double fades = outage.crossings_per_wavelength * stretch.length_wavelengths;
+        int below = 0, above = 0;
+        for (int j = 0; j < DRAWS; j++) {
+            double share = draw_share(random, outage.outage, READINGS * outage.outage / fades);
+            below += share < outage.next_low;
+            above += share > outage.next_high;
+        }
+        assert_near((double)below / DRAWS, 0.022, 0.008);
+        assert_near((double)above / DRAWS, 0.022, 0.008);
     }
     gsl_rng_free(random);
-    /* 0.025 on each side; four standard errors of the count. */
-    double error = 4.0 * sqrt(0.025 * 0.975 / DRAWS);
-    assert_near((double)below / DRAWS, 0.025, error);
-    assert_near((double)above / DRAWS, 0.025, error);
+}
+
+/* The slow variation of a ray's scatter widens the prediction, and moves level and K at once.
+ */
+static void slow_variation_widens_both_intervals(void **state)
+{
+    (void)state;
+    struct rfade_stretch stretch = rayleigh_stretch(level_track, 1);
+    struct rfade_stretch_outage without, with;
+    stretch.model = rfade_model(RFADE_RICE);
+    stretch.parameter = 4.0;
+    stretch.parameter_low = 3.5;
+    stretch.parameter_high = 4.6;
+    assert_int_equal(rfade_stretch_outage(&stretch, -100.0, &without), RFADE_OK);
+    stretch.slow_variance = 0.004;
+    assert_int_equal(rfade_stretch_outage(&stretch, -100.0, &with), RFADE_OK);
+    assert_near(with.outage, without.outage, 1e-15);
+    assert_true(with.low < without.low && with.high > without.high);
+    assert_true(with.next_high > without.next_high);
+}
+
+/* A calibration is shared by the track; fading averages out over the part that matters. */
+static void a_deep_part_is_less_certain(void **state)
+{
+    (void)state;
+    struct rfade_stretch stretch = rayleigh_stretch(stepped_track, 2);
+    struct rfade_stretch_outage shared, apart;
+    assert_int_equal(rfade_stretch_outage(&stretch, -110.0, &apart), RFADE_OK);
+    stretch.calibration_db = stretch.level_uncertainty_db;
+    assert_int_equal(rfade_stretch_outage(&stretch, -110.0, &shared), RFADE_OK);
+    assert_true(apart.low < shared.low && apart.high > shared.high);
 }
 
 static void rare_fades_may_not_come(void **state)
@@ -245,6 +296,8 @@ int main(void)
         cmocka_unit_test(interval_follows_the_mean_level),
         cmocka_unit_test(nothing_uncertain_gives_no_width),
         cmocka_unit_test(prediction_interval_holds_drawn_fades),
+        cmocka_unit_test(slow_variation_widens_both_intervals),
+        cmocka_unit_test(a_deep_part_is_less_certain),
         cmocka_unit_test(rare_fades_may_not_come),
         cmocka_unit_test(useless_stretches_are_refused),
         cmocka_unit_test(observed_share_splits_the_step),

@@ -282,7 +282,7 @@ static void sums_add_and_are_taken_away(void **state)
 static void sums_survive_their_byte_form(void **state)
 {
     struct rfade_sampling_sums sums = {
-        .readings = 0x0102, .standing = -2, .curvature_mm = {[3] = 9}};
+        .readings = 0x0102, .standing = -2, .lag_mm = {[RFADE_LAGS - 1] = 9}};
     const uint8_t start[] = {2,    1,    0,    0,    0,    0,    0,    0,
                              0xfe, 0xff, 0xff, 0xff, 0xff, 0xff, 0xff, 0xff};
     struct rfade_sampling_sums decoded;
