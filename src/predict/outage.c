@@ -37,7 +37,9 @@ static const double db_per_neper = 10.0 / M_LN10;
 static const double step_tolerance = 1e-9;
 /* Terms this far below the highest peak, in nepers, end a sum. */
 static const double negligible_exponent = 45.0;
-enum { HALVINGS_MAX = 12, BISECTIONS_MAX = 60, VALLEY_PARTS = 24 };
+/* Below, the tail is 0 many times over and rounding of the logarithms drowns its sum. */
+static const double log_vanishing = -1e5;
+enum { HALVINGS_MAX = 12, BISECTIONS_MAX = 60, VALLEY_PARTS = 24, POINTS_MAX = 1000000 };
 
 struct mixture;
 
@@ -165,8 +167,8 @@ static double sum_outward(const struct mixture *mixture, const struct peaks *pea
                           double first_db, double step_db, double limit_db, double *end_db)
 {
     double sum = 0.0;
-    for (size_t i = 0;; i++) {
-        const double at_db = first_db + (double)i * step_db;
+    for (int i = 0; i < POINTS_MAX; i++) {
+        const double at_db = first_db + i * step_db;
         const double relative = mixture->integrand(mixture, at_db).log_value - peaks->log_value;
         *end_db = at_db;
         if (!(relative > -negligible_exponent) || (at_db - limit_db) * step_db > 0.0) {
@@ -174,6 +176,7 @@ static double sum_outward(const struct mixture *mixture, const struct peaks *pea
         }
         sum += exp(relative);
     }
+    return NAN; /* agrees with nothing: no convergence */
 }
 
 /* Sum over the whole line at high peak + offset_db + any multiple of step_db. */
@@ -203,6 +206,10 @@ static enum rfade_status integrate(const struct mixture *mixture, double *log_ta
     find_peaks(mixture, &peaks);
     if (isnan(peaks.high_db)) {
         return RFADE_NO_CONVERGENCE;
+    }
+    if (peaks.log_value < log_vanishing) {
+        *log_tail = peaks.log_value;
+        return RFADE_OK;
     }
     double step_db = 0.5 * mixture->spread_db;
     double sum = sum_line(mixture, &peaks, 0.0, step_db);

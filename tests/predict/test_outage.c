@@ -135,6 +135,19 @@ static void outage_is_monotone(void **state)
     }
 }
 
+/*
+ * A Rayleigh tail at 900 dB above the mean, exp(-1e90), is out of reach of any logarithm's
+ * rounding; without fading against it the local mean decides: ln Q near -(x/sigma)^2/2.
+ */
+static void vanishing_tails_are_zero(void **state)
+{
+    (void)state;
+    const struct rfade_tails tails = outage(RFADE_RAYLEIGH, 0.0, 1.5, 900.0);
+    assert_true(tails.lower == 1.0 && tails.upper == 0.0);
+    const double expected = -0.5 * (900.0 / 1.5) * (900.0 / 1.5);
+    assert_true(tails.log_upper > 1.1 * expected && tails.log_upper < 0.9 * expected);
+}
+
 /* ln(10)/20 sigma^2, the mean of exp of a normal variable: 4.1446531... dB at 6 dB. */
 static void lognormal_mean_lies_above_its_median(void **state)
 {
@@ -178,6 +191,7 @@ int main(void)
         cmocka_unit_test(steady_signal_is_the_other_limit),
         cmocka_unit_test(outage_is_continuous_where_the_variable_changes),
         cmocka_unit_test(outage_is_monotone),
+        cmocka_unit_test(vanishing_tails_are_zero),
         cmocka_unit_test(lognormal_mean_lies_above_its_median),
         cmocka_unit_test(outside_the_domain_is_refused),
     };
