@@ -21,6 +21,8 @@ static const double k_max = 1e5;
 
 /* Where the forms for small K hand over to those for large K; both are good around it. */
 static const double large_k = 0.5;
+/* Below, deep in the lower tail, the form for small K is the good one at any K. */
+static const double small_z = 2.0;
 
 /* K and what follows from it alone. */
 struct rice {
@@ -83,13 +85,13 @@ static double tail_slope(const struct rice *rice, const struct point *point,
                          const struct rfade_bessel_pair *bessel)
 {
     const double k = rice->k;
-    if (k < large_k) {
+    if (k < large_k || rice->a * point->b < small_z) {
         return point->y * (k - (1.0 + k) * bessel->half_excess);
     }
     const double less_one = amplitude_less_one(rice, point);
     const double ratio = sqrt(1.0 + 1.0 / k);
     const double ratio_excess = 1.0 / (k * (ratio + 1.0));
-    return (1.0 + less_one) * (ratio_excess - less_one - ratio * bessel->complement);
+    return point->b / rice->scale * (ratio_excess - less_one - ratio * bessel->complement);
 }
 
 static double level_slope(double a, double b, double offset,

@@ -41,14 +41,6 @@ static const double negligible_exponent = 45.0;
 static const double log_vanishing = -1e5;
 enum { HALVINGS_MAX = 12, BISECTIONS_MAX = 60, VALLEY_PARTS = 24, POINTS_MAX = 1000000 };
 
-struct mixture;
-
-/* ln of an integrand, and its slope. */
-struct term {
-    double log_value;
-    double slope;
-};
-
 /* Of the integrand: the lowest and the highest peak, which may be one. */
 struct peaks {
     double low_db;
@@ -63,21 +55,14 @@ struct mixture {
     double x_db;
     bool is_upper;
     double spread_db; /* scale on which the integrand varies */
-    /* of the variable that it has been written in */
-    struct term (*integrand)(const struct mixture *mixture, double v_db);
+    /* its logarithm, of the variable that it has been written in */
+    double (*integrand)(const struct mixture *mixture, double v_db);
     double origin_db; /* the level u at which that variable is 0 */
 };
 
-/* Beyond the levels that a model takes. */
-static const struct term nothing = {-INFINITY, 0.0};
-
-/* ln of a tail and its slope, which is the density's share of it. */
-static struct term tail_term(const struct mixture *mixture, const struct rfade_tails *tails,
-                             double log_density)
+static double small_tail(const struct mixture *mixture, const struct rfade_tails *tails)
 {
-    const double log_tail = mixture->is_upper ? tails->log_upper : tails->log_lower;
-    const double share = exp(log_density - log_tail);
-    return (struct term){log_tail, mixture->is_upper ? -share : share};
+    return mixture->is_upper ? tails->log_upper : tails->log_lower;
 }
 
 static double log_shadowing_density(const struct mixture *mixture, double s_db)
@@ -86,42 +71,44 @@ static double log_shadowing_density(const struct mixture *mixture, double s_db)
     return -0.5 * z * z - log(mixture->shadowing_db * (M_SQRT2 * M_SQRTPI));
 }
 
-/* In v = u - x = -s, so that a narrow shadowing is not lost in the rounding of x. */
-static struct term over_shadowing(const struct mixture *mixture, double v_db)
+/* ln of the integrand, in v = u - x = -s, so that a narrow shadowing is not lost in the
+ * rounding of x; -infinity beyond the levels that the model takes. */
+static double over_shadowing(const struct mixture *mixture, double v_db)
 {
-    const double u_db = mixture->x_db + v_db;
     struct rfade_tails tails;
-    struct rfade_log_gradient density;
-    if (mixture->model->tails(mixture->parameter, u_db, &tails) != RFADE_OK ||
-        mixture->model->log_density(mixture->parameter, u_db, &density) != RFADE_OK) {
-        return nothing;
+    if (mixture->model->tails(mixture->parameter, mixture->x_db + v_db, &tails) != RFADE_OK) {
+        return -INFINITY;
     }
-    const struct term tail = tail_term(mixture, &tails, density.value);
-    const double variance = mixture->shadowing_db * mixture->shadowing_db;
-    return (struct term){tail.log_value + log_shadowing_density(mixture, v_db),
-                         tail.slope - v_db / variance};
+    return small_tail(mixture, &tails) + log_shadowing_density(mixture, v_db);
 }
 
-/* In u itself. */
-static struct term over_fading(const struct mixture *mixture, double u_db)
+/* Likewise in u itself. */
+static double over_fading(const struct mixture *mixture, double u_db)
 {
     const double s_db = mixture->x_db - u_db;
     struct rfade_tails tails;
     struct rfade_log_gradient density;
     if (mixture->model->log_density(mixture->parameter, u_db, &density) != RFADE_OK ||
         rfade_normal_tails(s_db / mixture->shadowing_db, &tails) != RFADE_OK) {
-        return nothing;
+        return -INFINITY;
     }
-    const struct term tail = tail_term(mixture, &tails, log_shadowing_density(mixture, s_db));
-    return (struct term){tail.log_value + density.value, -tail.slope - density.d_mean_db};
+    return small_tail(mixture, &tails) + density.value;
+}
+
+/* By a difference: where logarithms are huge, it is right when a slope is lost in rounding. */
+static bool rises_at(const struct mixture *mixture, double v_db)
+{
+    const double aside_db = 1e-2 * mixture->spread_db;
+    return mixture->integrand(mixture, v_db + aside_db) >
+           mixture->integrand(mixture, v_db - aside_db);
 }
 
 /* Near enough to the peak between two levels where the integrand rises and falls. */
 static double bisect_peak(const struct mixture *mixture, double low_db, double high_db)
 {
-    for (int i = 0; i < BISECTIONS_MAX && high_db - low_db > 1e-3 * mixture->spread_db; i++) {
+    for (int i = 0; i < BISECTIONS_MAX && high_db - low_db > 1e-2 * mixture->spread_db; i++) {
         const double middle_db = 0.5 * (low_db + high_db);
-        if (mixture->integrand(mixture, middle_db).slope > 0.0) {
+        if (rises_at(mixture, middle_db)) {
             low_db = middle_db;
         } else {
             high_db = middle_db;
@@ -147,12 +134,12 @@ static void find_peaks(const struct mixture *mixture, struct peaks *peaks)
         const int half = i > parts ? 1 : 0;
         const double share = (double)(i - half * parts) / parts;
         const double at_db = ends_db[half] + share * (ends_db[half + 1] - ends_db[half]);
-        const bool rises_here = mixture->integrand(mixture, at_db).slope > 0.0;
+        const bool rises_here = rises_at(mixture, at_db);
         if (rises && !rises_here) {
             peaks->high_db = bisect_peak(mixture, before_db, at_db);
             peaks->low_db = isnan(peaks->low_db) ? peaks->high_db : peaks->low_db;
             peaks->log_value =
-                fmax(peaks->log_value, mixture->integrand(mixture, peaks->high_db).log_value);
+                fmax(peaks->log_value, mixture->integrand(mixture, peaks->high_db));
         }
         rises = rises_here;
         before_db = at_db;
@@ -169,7 +156,7 @@ static double sum_outward(const struct mixture *mixture, const struct peaks *pea
     double sum = 0.0;
     for (int i = 0; i < POINTS_MAX; i++) {
         const double at_db = first_db + i * step_db;
-        const double relative = mixture->integrand(mixture, at_db).log_value - peaks->log_value;
+        const double relative = mixture->integrand(mixture, at_db) - peaks->log_value;
         *end_db = at_db;
         if (!(relative > -negligible_exponent) || (at_db - limit_db) * step_db > 0.0) {
             return sum;

@@ -53,8 +53,8 @@ static void interval_matches_random_points(void **state)
         const double expected = reference_number(&table, "ln_p");
         reference_assert_column(&table, "ln_p", result.value,
                                 fabs(expected) < 1.0 ? 1e-12 : 1e-12 / fmin(-expected, 700.0));
-        reference_assert_column(&table, "d_mean_db", result.d_mean_db, 1e-11);
-        reference_assert_column(&table, "d_parameter", result.d_parameter, 1e-11);
+        reference_assert_column(&table, "d_mean_db", result.d_mean_db, 1e-12);
+        reference_assert_column(&table, "d_parameter", result.d_parameter, 1e-12);
     }
     assert_int_equal(table.row_count, 500);
 }
