@@ -57,6 +57,7 @@ static enum rfade_status write_value(FILE *stream, const struct rfade_value *val
         (void)fprintf(stream, "%" PRId64, value->integer);
         return RFADE_OK;
     case RFADE_VALUE_NUMBER:
+    case RFADE_VALUE_LIMIT:
         rfade_number_exact(value->number, number);
         (void)fputs(number, stream);
         return RFADE_OK;

@@ -130,6 +130,7 @@ static json_t *from_value(const struct rfade_value *value)
     case RFADE_VALUE_INTEGER:
         return json_integer(value->integer);
     case RFADE_VALUE_NUMBER:
+    case RFADE_VALUE_LIMIT:
         return rfade_json_number(value->number);
     case RFADE_VALUE_MISSING:
         break;

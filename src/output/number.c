@@ -49,6 +49,23 @@ int rfade_number_place(double estimate, double low, double high, int fallback)
     return place < -300 ? fallback : (int)place;
 }
 
+int rfade_number_second_digit(double value, int place)
+{
+    if (value == 0 || !isfinite(value))
+        return place;
+    int second = (int)floor(log10(fabs(value))) - 1;
+    return second < place ? second : place;
+}
+
+void rfade_number_limit(double value, char text[RFADE_NUMBER_SIZE])
+{
+    double exponent = floor(log10(value));
+    if (value > 0 && pow(10, exponent) == value)
+        (void)snprintf(text, RFADE_NUMBER_SIZE, ">1e%d", (int)exponent);
+    else
+        (void)snprintf(text, RFADE_NUMBER_SIZE, ">%.6g", value);
+}
+
 /* "-0.00" is no number for people. */
 static void drop_sign_of_zero(char *text)
 {
@@ -62,6 +79,12 @@ void rfade_number_rounded(double value, int place, char text[RFADE_NUMBER_SIZE])
         return;
     if (fabs(value) >= 1e15) { /* more digits than a double holds */
         (void)snprintf(text, RFADE_NUMBER_SIZE, "%.6g", value);
+        return;
+    }
+    if (value != 0 && fabs(value) < 1e-3 && place < floor(log10(fabs(value)))) {
+        int digits = (int)floor(log10(fabs(value))) - place;
+        (void)snprintf(text, RFADE_NUMBER_SIZE, "%.*e",
+                       digits < MAX_DECIMALS ? digits : MAX_DECIMALS, value);
         return;
     }
     int decimals = place < 0 ? -place : 0;

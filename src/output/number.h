@@ -21,9 +21,15 @@ void rfade_number_exact(double value, char text[RFADE_NUMBER_SIZE]);
  */
 int rfade_number_place(double estimate, double low, double high, int fallback);
 
+/** The place, or the one of the value's own second significant digit where that is finer. */
+int rfade_number_second_digit(double value, int place);
+
+/** "more than this": ">1e5" of a power of ten, else ">" and up to six digits; finite only. */
+void rfade_number_limit(double value, char text[RFADE_NUMBER_SIZE]);
+
 /**
- * The number rounded to the decimal place 10^place, without exponent; "inf", "-inf", and
- * "-" for NaN. Never "-0".
+ * The number rounded to the decimal place 10^place; "inf", "-inf", and "-" for NaN. Never
+ * "-0". Without exponent, except below 0.001 where two digits or more are shown.
  */
 void rfade_number_rounded(double value, int place, char text[RFADE_NUMBER_SIZE]);
 

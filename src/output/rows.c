@@ -70,6 +70,7 @@ static bool type_fits(enum rfade_value_type type, enum rfade_column_kind kind)
     case RFADE_VALUE_INTEGER:
         return kind == RFADE_COLUMN_INTEGER;
     case RFADE_VALUE_NUMBER:
+    case RFADE_VALUE_LIMIT:
         return kind == RFADE_COLUMN_NUMBER || kind == RFADE_COLUMN_PROBABILITY;
     }
     return false;

@@ -34,7 +34,8 @@ struct rfade_column {
     int decimals; /**< NUMBER: digits after the point; PROBABILITY: significant digits; of a
                        value without an interval. 0 for a probability: 3 */
     bool interval_follows; /**< the next two columns are the ends of this one's interval: all
-                                three are rounded to the second digit of its half-width */
+                                three are rounded to the second digit of its half-width,
+                                with at least two significant digits of each end */
     bool shared_above; /**< where it is the same in every row, it stands once above the rows */
 };
 
@@ -42,7 +43,8 @@ enum rfade_value_type {
     RFADE_VALUE_MISSING,
     RFADE_VALUE_TEXT,
     RFADE_VALUE_INTEGER,
-    RFADE_VALUE_NUMBER
+    RFADE_VALUE_NUMBER,
+    RFADE_VALUE_LIMIT /**< a number at the end of what can be told apart: tables say ">" */
 };
 
 /** One field; all zero is a missing one. A text is borrowed during the call. */
@@ -71,6 +73,12 @@ static inline struct rfade_value rfade_value_number(double number)
 {
     struct rfade_value value = {
         .type = isnan(number) ? RFADE_VALUE_MISSING : RFADE_VALUE_NUMBER, .number = number};
+    return value;
+}
+
+static inline struct rfade_value rfade_value_limit(double number)
+{
+    struct rfade_value value = {.type = RFADE_VALUE_LIMIT, .number = number};
     return value;
 }
 

@@ -197,10 +197,13 @@ static size_t governing_column(const struct rfade_rows *rows, size_t column)
     return column;
 }
 
+/* A limit is no end of an interval that could be rounded by. */
 static double number_at(const struct rfade_rows *rows, size_t column)
 {
-    bool there = rows->values[column].type == RFADE_VALUE_NUMBER;
-    return there ? rows->values[column].number : NAN;
+    const struct rfade_value *value = &rows->values[column];
+    if (value->type == RFADE_VALUE_LIMIT)
+        return INFINITY;
+    return value->type == RFADE_VALUE_NUMBER ? value->number : NAN;
 }
 
 /* Decimal place of the last digit shown of a number. */
@@ -216,8 +219,12 @@ static int place_of(const struct rfade_rows *rows, size_t column)
     }
     if (!description->interval_follows || governing + 2 >= rows->column_count)
         return fallback;
-    return rfade_number_place(value, number_at(rows, governing + 1),
-                              number_at(rows, governing + 2), fallback);
+    double low = number_at(rows, governing + 1), high = number_at(rows, governing + 2);
+    int place = rfade_number_place(value, low, high, fallback);
+    /* A wide interval must not round an end to nothing; nor the estimate, unless it is the
+     * interval that says that it may be nothing. */
+    bool whole = column == governing && low < 0 && high > 0;
+    return whole ? place : rfade_number_second_digit(number_at(rows, column), place);
 }
 
 static char *cell_text(const struct rfade_rows *rows, size_t column)
@@ -235,6 +242,9 @@ static char *cell_text(const struct rfade_rows *rows, size_t column)
             rfade_probability_rounded(value->number, place_of(rows, column), number);
         else
             rfade_number_rounded(value->number, place_of(rows, column), number);
+        break;
+    case RFADE_VALUE_LIMIT:
+        rfade_number_limit(value->number, number);
         break;
     case RFADE_VALUE_MISSING:
         break;

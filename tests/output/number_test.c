@@ -97,6 +97,33 @@ static void rounded_keeps_the_place(void **state)
     assert_rounded(1e300, -2, "1e+300");
 }
 
+static void second_digit_is_the_value_s_own(void **state)
+{
+    (void)state;
+    assert_int_equal(rfade_number_second_digit(250.49, 3), 1);
+    assert_int_equal(rfade_number_second_digit(-250.49, 3), 1);
+    assert_int_equal(rfade_number_second_digit(250.49, -2), -2);
+    assert_int_equal(rfade_number_second_digit(0.05, 0), -3);
+    assert_int_equal(rfade_number_second_digit(0, 3), 3);
+    assert_int_equal(rfade_number_second_digit(INFINITY, 3), 3);
+    assert_int_equal(rfade_number_second_digit(NAN, 3), 3);
+    assert_rounded(250.49, 1, "250");
+    assert_rounded(3.14e-7, -8, "3.1e-07");
+    assert_rounded(-3.14e-7, -8, "-3.1e-07");
+}
+
+static void limit_says_more_than(void **state)
+{
+    (void)state;
+    char text[RFADE_NUMBER_SIZE];
+    rfade_number_limit(1e5, text);
+    assert_string_equal(text, ">1e5");
+    rfade_number_limit(10000, text);
+    assert_string_equal(text, ">1e4");
+    rfade_number_limit(30, text);
+    assert_string_equal(text, ">30");
+}
+
 static void assert_probability(double value, int place, const char *expected)
 {
     char text[RFADE_NUMBER_SIZE];
@@ -124,6 +151,8 @@ int main(void)
         cmocka_unit_test(exact_reads_back_to_the_same_double),
         cmocka_unit_test(place_is_the_second_digit_of_the_half_width),
         cmocka_unit_test(rounded_keeps_the_place),
+        cmocka_unit_test(second_digit_is_the_value_s_own),
+        cmocka_unit_test(limit_says_more_than),
         cmocka_unit_test(small_probability_never_reads_as_zero),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);

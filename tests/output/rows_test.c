@@ -79,6 +79,52 @@ static void table_aligns_and_rounds_to_the_interval(void **state)
                    "d               3  1230    700    1900         0\n");
 }
 
+static void table_keeps_two_digits_of_each_end(void **state)
+{
+    (void)state;
+    const struct sample samples[] = {
+        {"wide", 9, 312.4, 250.49, 1e5, 0.5},
+        {"open", 9, 0.514, 0, 512.3, 0.5},
+        {"none", 9, -0.003, -1.23, 1.17, 0.5},
+        {"near", 9, 0.52, 0.00012345, 3.1, 0.5},
+    };
+    assert_written(&rfade_rows_table, samples, 4,
+                   "channel  readings     k    k_low  k_high  outage\n"
+                   "wide            9   310      250  100000   0.500\n"
+                   "open            9  0.51        0     510   0.500\n"
+                   "none            9   0.0     -1.2     1.2   0.500\n"
+                   "near            9  0.52  1.2e-04     3.1   0.500\n");
+}
+
+/* An end at a limit says so to people; programs get the number. */
+static void only_the_table_marks_a_limit(void **state)
+{
+    (void)state;
+    static const char *const expected[] = {
+        "  k  k_low  k_high\n312    250    >1e5\n", "k,k_low,k_high\r\n312.4,250.49,100000\r\n",
+        "[\n{\"k\": 312.4, \"k_low\": 250.49, \"k_high\": 100000.0}\n]\n"};
+    const struct rfade_rows_format *const formats[] = {&rfade_rows_table, &rfade_rows_csv,
+                                                       &rfade_rows_json};
+    for (size_t i = 0; i < 3; i++) {
+        char *text = NULL;
+        size_t size = 0;
+        struct rfade_rows *rows = NULL;
+        struct rfade_error error;
+        FILE *stream = open_memstream(&text, &size);
+        const struct rfade_value values[] = {
+            rfade_value_number(312.4), rfade_value_number(250.49), rfade_value_limit(1e5)};
+        assert_int_equal(
+            rfade_rows_begin(formats[i], stream, NULL, columns + 2, 3, &rows, &error),
+            RFADE_OK);
+        assert_int_equal(rfade_rows_row(rows, values, &error), RFADE_OK);
+        assert_int_equal(rfade_rows_end(rows, &error), RFADE_OK);
+        rfade_rows_destroy(rows);
+        assert_int_equal(fclose(stream), 0);
+        assert_string_equal(text, expected[i]);
+        free(text);
+    }
+}
+
 static void table_of_no_rows_has_its_header(void **state)
 {
     (void)state;
@@ -295,6 +341,8 @@ int main(void)
 {
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(table_aligns_and_rounds_to_the_interval),
+        cmocka_unit_test(table_keeps_two_digits_of_each_end),
+        cmocka_unit_test(only_the_table_marks_a_limit),
         cmocka_unit_test(table_of_no_rows_has_its_header),
         cmocka_unit_test(table_says_once_what_all_rows_share_and_breaks_long_names),
         cmocka_unit_test(table_goes_on_past_its_page),
