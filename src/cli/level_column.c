@@ -171,6 +171,18 @@ static bool start_parser(struct reader *reader, const char *line, size_t size)
     return true;
 }
 
+/* The first line of some spreadsheets' files: sep= and the separator, quoted or not. */
+static bool is_separator_line(const char *line, size_t size)
+{
+    while (size > 0 && (line[size - 1] == '\n' || line[size - 1] == '\r'))
+        size--;
+    if (size >= 2 && line[0] == '"' && line[size - 1] == '"') {
+        line++;
+        size -= 2;
+    }
+    return size == 5 && strncasecmp(line, "sep=", 4) == 0;
+}
+
 static bool is_data(const char *line, size_t size)
 {
     size_t at = 0;
@@ -187,7 +199,7 @@ static void take_line(struct reader *reader, const char *line, size_t size)
         line += 3;
         size -= 3;
     }
-    if (!is_data(line, size))
+    if (!is_data(line, size) || (reader->line == 1 && is_separator_line(line, size)))
         return;
     if (!reader->parser_ready && !start_parser(reader, line, size)) {
         refuse(reader, RFADE_NO_MEMORY, NULL, "out of memory", NULL);

@@ -141,6 +141,8 @@ static void forms_of_one_column_agree(void **state)
     static const char *const tables[] = {
         "time,rssi,snr\n1,-80,3\n2,-85,4\n3,-91,5\n4,-84,6\n5,-88,7\n",
         "time;rssi\n1;-80\n2;-85\n3;-91\n4;-84\n5;-88\n",
+        "\"sep=;\"\r\ntime;rssi\r\n1;-80\r\n2;-85\r\n3;-91\r\n4;-84\r\n5;-88\r\n",
+        "sep=,\ntime,rssi\n1,-80\n2,-85\n3,-91\n4,-84\n5,-88\n",
         "\"a,b\"\trssi\nx\t-80\nx\t-85\nx\t-91\nx\t-84\nx\t-88\n",
     };
     json_t *first = ESTIMATED(inputs[0], "-", "--step-db", "1", "--independent");
@@ -230,6 +232,8 @@ static void what_can_not_be_read_is_refused_with_its_line(void **state)
     INPUT_REFUSED("", 1, "standard input: no levels in the file", "estimate", "-");
     INPUT_REFUSED("# only a note\n\n", 1, "standard input: no levels in the file", "estimate",
                   "-");
+    INPUT_REFUSED("-80\nsep=,\n", 1, "standard input:2: not a number: 'sep='", "estimate", "-",
+                  "--column", "1");
     INPUT_REFUSED("rssi\n", 1, "standard input: no levels in the file", "estimate", "-");
 }
 
