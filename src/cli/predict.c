@@ -10,7 +10,7 @@
 struct predict_options {
     bool unfaded, rayleigh;
     double rice_k, rice_k_db, nakagami_m;
-    double mean_snr_db, mean_ebn0_db, median_snr_db;
+    double mean_snr_db, median_snr_db;
     double shadowing_db;
     struct rfade_numbers threshold_db;
 };
@@ -20,7 +20,6 @@ static const struct predict_options defaults = {
     .rice_k_db = NAN,
     .nakagami_m = NAN,
     .mean_snr_db = NAN,
-    .mean_ebn0_db = NAN,
     .median_snr_db = NAN,
     .shadowing_db = NAN,
 };
@@ -38,14 +37,13 @@ static const struct rfade_option options[] = {
      "Nakagami fading, m"},
     {"mean-snr-db", "DB", RFADE_OPTION_NUMBER, TARGET(mean_snr_db), -300, 300, NULL,
      "mean SNR (Es/N0), dB of the mean power over everything, shadowing included"},
-    {"mean-ebn0-db", "DB", RFADE_OPTION_NUMBER, TARGET(mean_ebn0_db), -300, 300, NULL,
-     "mean Eb/N0; means something only with a modulation"},
     {"median-snr-db", "DB", RFADE_OPTION_NUMBER, TARGET(median_snr_db), -300, 300, NULL,
      "with --shadowing-db: median over the shadowing of the local mean SNR"},
     {"shadowing-db", "DB", RFADE_OPTION_NUMBER, TARGET(shadowing_db), 0, 30, NULL,
      "standard deviation of a lognormal local mean, default 0: none"},
     {"threshold-db", "DB", RFADE_OPTION_NUMBERS, TARGET(threshold_db), -300, 300, NULL,
-     "SNR below which the link is out; may be given several times"},
+     "Es/N0, dB, below which the link is out; may be given several times. The same option of "
+     "`outage` is SNR in the channel's bandwidth: its --threshold-esn0-db is this one"},
 };
 
 /* What was typed, made into numbers. */
@@ -83,10 +81,6 @@ static enum rfade_status take_snr(const struct predict_options *given, struct li
                                   struct rfade_error *error)
 {
     const struct rfade_command *command = &rfade_command_predict;
-    if (!isnan(given->mean_ebn0_db))
-        return rfade_error_set(error, RFADE_USAGE, "give the mean SNR with --mean-snr-db",
-                               "--mean-ebn0-db says nothing about a threshold in SNR without a "
-                               "modulation");
     if (isnan(given->mean_snr_db) == isnan(given->median_snr_db))
         return rfade_usage(error, command, "give one of --mean-snr-db, --median-snr-db");
     if (!isnan(given->median_snr_db) && isnan(given->shadowing_db))

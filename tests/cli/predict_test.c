@@ -255,14 +255,14 @@ static void what_makes_no_sense_is_refused(void **state)
             "--threshold-db", "0");
     REFUSED(2, "--median-snr-db needs --shadowing-db", "predict", "--rayleigh",
             "--median-snr-db", "9", "--threshold-db", "0");
-    REFUSED(2, "without a modulation; give the mean SNR with --mean-snr-db", "predict",
-            "--rayleigh", "--mean-ebn0-db", "9", "--threshold-db", "0");
     REFUSED(2, "give a --threshold-db", "predict", "--rayleigh", "--mean-snr-db", "9");
     REFUSED(2, "option --rice-k needs a number from 0", "predict", "--rice-k", "-1");
     REFUSED(2, "option --nakagami-m needs a number from 0.5", "predict", "--nakagami-m", "0.4");
     REFUSED(2, "option --shadowing-db needs a number from 0 to 30", "predict", "--shadowing-db",
             "31");
     REFUSED(2, "'predict' takes no argument 'x'", "predict", "--rayleigh", "x");
+    REFUSED(2, "unknown option '--mean-ebn0-db'", "predict", "--rayleigh", "--mean-ebn0-db",
+            "9");
     REFUSED(2, "unknown option '--branches'", "predict", "--rayleigh", "--branches", "2");
 }
 
