@@ -175,6 +175,55 @@ static enum rfade_status check_names(struct rfade_survey *survey,
     return status;
 }
 
+/* Refuses a number that no segment of the route, or of any route, has. */
+static enum rfade_status check_segment(struct rfade_survey *survey,
+                                       const struct rfade_segment_filter *filter,
+                                       struct rfade_error *error)
+{
+    if (filter->segment == 0)
+        return RFADE_OK;
+    int64_t ignored = 0;
+    bool found = false;
+    enum rfade_status status = rfade_survey_integer(
+        survey, &ignored, &found, error,
+        "SELECT 1 FROM segment JOIN route USING (route_id)"
+        " WHERE segment.number = ?1 AND (?2 IS NULL OR route.name = ?2) LIMIT 1",
+        "it", filter->segment, filter->route);
+    if (status == RFADE_OK && !found)
+        return rfade_error_set(
+            error, RFADE_INPUT, "see `routefade route` for how many segments a route has",
+            "there is no segment %lld on %s%s", (long long)filter->segment,
+            filter->route ? "route " : "any route", filter->route ? filter->route : "");
+    return status;
+}
+
+enum rfade_status rfade_results_current(struct rfade_survey *survey, bool *current,
+                                        struct rfade_error *error)
+{
+    int64_t same = 0;
+    bool fitted = false;
+    *current = false;
+    enum rfade_status status =
+        rfade_survey_integer(survey, &same, &fitted, error,
+                             "SELECT analysed.generation = generation.current"
+                             " FROM analysed JOIN generation USING (only)",
+                             "");
+    if (status == RFADE_OK && !fitted)
+        return rfade_error_set(error, RFADE_NO_DATA, "run `routefade fit`",
+                               "nothing in the survey has been fitted yet");
+    *current = same != 0;
+    return status;
+}
+
+enum rfade_status rfade_readings_without_level(struct rfade_survey *survey, int64_t *count,
+                                               struct rfade_error *error)
+{
+    bool found = false;
+    *count = 0;
+    return rfade_survey_integer(survey, count, &found, error,
+                                "SELECT count(*) FROM reading WHERE level_cdb IS NULL", "");
+}
+
 enum rfade_status rfade_results_read(struct rfade_survey *survey,
                                      const struct rfade_segment_filter *filter,
                                      struct rfade_segment_results *results,
@@ -183,6 +232,8 @@ enum rfade_status rfade_results_read(struct rfade_survey *survey,
     *results = (struct rfade_segment_results){NULL, 0};
     sqlite3_stmt *statement = NULL;
     enum rfade_status status = check_names(survey, filter, error);
+    if (status == RFADE_OK)
+        status = check_segment(survey, filter, error);
     if (status == RFADE_OK)
         status = rfade_survey_prepare(survey, &statement, error, ROWS_SQL, "tttidd",
                                       filter->route, filter->channel, filter->campaign,

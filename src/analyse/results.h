@@ -70,8 +70,19 @@ struct rfade_segment_results {
 };
 
 /**
- * All results that pass the filter. A name in the filter that the survey doesn't hold is
- * refused with the names that it does hold.
+ * Whether the results stand for the survey as it is now.
+ * @return RFADE_NO_DATA if nothing was fitted yet
+ */
+enum rfade_status rfade_results_current(struct rfade_survey *survey, bool *current,
+                                        struct rfade_error *error);
+
+/** How many readings carry SNR alone, which no result is made from. Reads all of them. */
+enum rfade_status rfade_readings_without_level(struct rfade_survey *survey, int64_t *count,
+                                               struct rfade_error *error);
+
+/**
+ * All results that pass the filter. A name, or a number of a segment, in the filter that the
+ * survey doesn't hold is refused.
  */
 enum rfade_status rfade_results_read(struct rfade_survey *survey,
                                      const struct rfade_segment_filter *filter,

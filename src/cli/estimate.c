@@ -6,8 +6,8 @@
 #include <stdlib.h>
 #include <string.h>
 
-#include "cli/command.h"
 #include "cli/level_column.h"
+#include "cli/segment_rows.h"
 #include "output/json.h"
 
 struct estimate_options {
@@ -140,9 +140,9 @@ static enum rfade_status write_fit(struct rfade_rows *rows, const struct rfade_f
         rfade_value_number(fit->mean_power_low_db),
         rfade_value_number(fit->mean_power_high_db),
         rfade_value_text(model->parameter_name),
-        rfade_value_number(fit->parameter),
-        rfade_value_number(fit->parameter_low),
-        rfade_value_number(fit->parameter_high),
+        rfade_parameter_value(model, fit->parameter),
+        rfade_parameter_value(model, fit->parameter_low),
+        rfade_parameter_value(model, fit->parameter_high),
         rfade_value_number(fit->log_likelihood),
         rfade_value_number(fit->aic),
         rfade_value_number(fit->weight),

@@ -41,9 +41,9 @@ static void parameter_values(const struct rfade_segment_result *row, enum rfade_
         values[i] = rfade_value_missing();
     if (!fit || !rfade_result_resolved(row))
         return;
-    values[0] = rfade_value_number(fit->parameter);
-    values[1] = rfade_value_number(fit->parameter_low);
-    values[2] = rfade_value_number(fit->parameter_high);
+    values[0] = rfade_parameter_value(fit->model, fit->parameter);
+    values[1] = rfade_parameter_value(fit->model, fit->parameter_low);
+    values[2] = rfade_parameter_value(fit->model, fit->parameter_high);
 }
 
 static void row_values(const struct rfade_segment_result *row, struct rfade_value *values)
@@ -103,7 +103,8 @@ static enum rfade_status run_fading(struct rfade_run *run, struct rfade_error *e
 {
     const struct fading_options *asked = run->options;
     struct rfade_segment_results results;
-    enum rfade_status status = rfade_segment_read(run, &asked->segments, &results, error);
+    enum rfade_status status =
+        rfade_segment_read(run, &rfade_command_fading, &asked->segments, &results, error);
     if (status != RFADE_OK)
         return status;
     struct rfade_segment_rank *ranks = malloc((results.count + 1) * sizeof *ranks);

@@ -1,5 +1,8 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
+#include <inttypes.h>
+
 #include "analyse/analyse.h"
+#include "analyse/results.h"
 #include "cli/command.h"
 
 struct fit_options {
@@ -48,6 +51,20 @@ static enum rfade_status print_summary(const struct rfade_run *run,
     return status;
 }
 
+/* Counting goes through all readings: only after a run that made something. */
+static enum rfade_status tell_unused(const struct rfade_run *run, struct rfade_survey *survey,
+                                     struct rfade_error *error)
+{
+    int64_t count = 0;
+    if (run->common->quiet)
+        return RFADE_OK;
+    enum rfade_status status = rfade_readings_without_level(survey, &count, error);
+    if (status == RFADE_OK && count > 0)
+        (void)fprintf(run->notes, "%" PRId64 " readings carry SNR alone and were not used\n",
+                      count);
+    return status;
+}
+
 static enum rfade_status run_fit(struct rfade_run *run, struct rfade_error *error)
 {
     const struct fit_options *asked = run->options;
@@ -60,6 +77,8 @@ static enum rfade_status run_fit(struct rfade_run *run, struct rfade_error *erro
         rfade_survey_open(run->common->survey, RFADE_SURVEY_WRITE, &survey, error);
     if (status == RFADE_OK)
         status = rfade_analyse(survey, &settings, asked->all, &summary, error);
+    if (status == RFADE_OK && !summary.nothing_new)
+        status = tell_unused(run, survey, error);
     rfade_survey_close(survey);
     if (status == RFADE_OK && summary.nothing_new && !run->common->quiet)
         (void)fputs("nothing new since the last fit\n", run->notes);

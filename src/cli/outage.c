@@ -36,6 +36,7 @@ static const struct rfade_column own_columns[] = {
     {"observed", RFADE_COLUMN_PROBABILITY, 3, false, false},
     {"observed_low", RFADE_COLUMN_PROBABILITY, 3, false, false},
     {"observed_high", RFADE_COLUMN_PROBABILITY, 3, false, false},
+    {"sampling", RFADE_COLUMN_TEXT, 0, false, false},
 };
 enum { OWN_COLUMNS = sizeof own_columns / sizeof own_columns[0] };
 enum { COLUMNS = RFADE_SEGMENT_COLUMNS + 1 + OWN_COLUMNS };
@@ -118,13 +119,19 @@ static enum rfade_status answer_rows(struct rfade_segment_results *results,
     return RFADE_OK;
 }
 
-/* Ranked by the interval's better end, so that a bad guess from few readings is not first. */
+/* Ranked by the interval's better end, so that a bad guess from few readings is not first.
+ * Where nothing was predicted, what was observed speaks for itself. */
 static void rank_rows(const struct rfade_segment_results *results, const struct answer *answers,
                       bool by_estimate, struct rfade_segment_rank *ranks)
 {
-    for (size_t i = 0; i < results->count; i++)
-        ranks[i] = (struct rfade_segment_rank){i, by_estimate ? answers[i].outage.outage
-                                                              : answers[i].outage.low};
+    for (size_t i = 0; i < results->count; i++) {
+        const struct rfade_stretch_outage *predicted = &answers[i].outage;
+        const struct rfade_observed *observed = &answers[i].observed;
+        double badness = by_estimate ? predicted->outage : predicted->low;
+        if (isnan(badness))
+            badness = by_estimate ? observed->fraction : observed->low;
+        ranks[i] = (struct rfade_segment_rank){i, badness};
+    }
 }
 
 static void row_values(const struct rfade_segment_result *row,
@@ -142,6 +149,7 @@ static void row_values(const struct rfade_segment_result *row,
     own[6] = rfade_value_number(answer->observed.fraction);
     own[7] = rfade_value_number(answer->observed.low);
     own[8] = rfade_value_number(answer->observed.high);
+    own[9] = rfade_value_text(row->sampling);
 }
 
 static enum rfade_status
@@ -203,7 +211,7 @@ static enum rfade_status run_outage(struct rfade_run *run, struct rfade_error *e
     if (status != RFADE_OK)
         return status;
     struct rfade_segment_results results;
-    status = rfade_segment_read(run, &asked->segments, &results, error);
+    status = rfade_segment_read(run, &rfade_command_outage, &asked->segments, &results, error);
     if (status == RFADE_OK)
         status = show_outage(run, asked, &threshold, &results, error);
     rfade_results_clear(&results);
@@ -218,7 +226,10 @@ const struct rfade_command rfade_command_outage = {
         "confidence interval of that probability. next_low and next_high are the 95 % "
         "prediction interval of the fraction that one more pass observes. observed is the "
         "fraction of the travel that was below; its bounds differ where a quantisation step or "
-        "a censored reading straddles the threshold. A predicted outage is no safety case.",
+        "a censored reading straddles the threshold. Thresholds in SNR are taken from the "
+        "level less the channel's noise floor; logged SNR is not used yet. A predicted outage "
+        "is "
+        "no safety case.",
     .options = options,
     .option_count = sizeof options / sizeof options[0],
     .defaults = &defaults,

@@ -32,7 +32,37 @@ void rfade_segment_values(const struct rfade_segment_result *row, struct rfade_v
     values[9] = rfade_value_text(fit && fit->model ? fit->model->name : NULL);
 }
 
+struct rfade_value rfade_parameter_value(const struct rfade_model *model, double parameter)
+{
+    return model->parameter_name && parameter >= model->parameter_max
+               ? rfade_value_limit(parameter)
+               : rfade_value_number(parameter);
+}
+
+static enum rfade_status check_options(const struct rfade_command *command,
+                                       const struct rfade_segment_options *options,
+                                       struct rfade_error *error)
+{
+    if (options->from_m >= options->to_m)
+        return rfade_usage(error, command, "--from-m must lie below --to-m");
+    if (options->by_estimate && options->worst == 0)
+        return rfade_usage(error, command, "--by-estimate needs --worst");
+    return RFADE_OK;
+}
+
+/* Results that are older than the survey are still shown, but not without a word. */
+static enum rfade_status tell_age(const struct rfade_run *run, struct rfade_survey *survey,
+                                  struct rfade_error *error)
+{
+    bool current = false;
+    enum rfade_status status = rfade_results_current(survey, &current, error);
+    if (status == RFADE_OK && !current && !run->common->quiet)
+        (void)fputs("the survey changed since the last fit: run `routefade fit`\n", run->notes);
+    return status;
+}
+
 enum rfade_status rfade_segment_read(const struct rfade_run *run,
+                                     const struct rfade_command *command,
                                      const struct rfade_segment_options *options,
                                      struct rfade_segment_results *results,
                                      struct rfade_error *error)
@@ -47,8 +77,11 @@ enum rfade_status rfade_segment_read(const struct rfade_run *run,
         .to_m = options->to_m,
     };
     struct rfade_survey *survey = NULL;
-    enum rfade_status status =
-        rfade_survey_open(run->common->survey, RFADE_SURVEY_READ, &survey, error);
+    enum rfade_status status = check_options(command, options, error);
+    if (status == RFADE_OK)
+        status = rfade_survey_open(run->common->survey, RFADE_SURVEY_READ, &survey, error);
+    if (status == RFADE_OK)
+        status = tell_age(run, survey, error);
     if (status == RFADE_OK)
         status = rfade_results_read(survey, &filter, results, error);
     rfade_survey_close(survey);

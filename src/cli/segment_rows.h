@@ -78,11 +78,19 @@ extern const struct rfade_column rfade_segment_columns[RFADE_SEGMENT_COLUMNS];
 /** Fills the first RFADE_SEGMENT_COLUMNS values of a row; borrowed from it. */
 void rfade_segment_values(const struct rfade_segment_result *row, struct rfade_value *values);
 
-/** Opens the run's survey for reading and reads the rows that the options ask for. */
+/**
+ * Opens the run's survey for reading and reads the rows that the options ask for. A note says
+ * if the survey changed since they were made.
+ * @return RFADE_USAGE (options that contradict each other) | RFADE_NO_DATA (no fit yet) | ...
+ */
 enum rfade_status rfade_segment_read(const struct rfade_run *run,
+                                     const struct rfade_command *command,
                                      const struct rfade_segment_options *options,
                                      struct rfade_segment_results *results,
                                      struct rfade_error *error);
+
+/** A model's parameter; one at the end of the model's domain may well be larger. */
+struct rfade_value rfade_parameter_value(const struct rfade_model *model, double parameter);
 
 /** A row's place in the output: the larger, the worse; NaN goes last. */
 struct rfade_segment_rank {
