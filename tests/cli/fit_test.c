@@ -145,9 +145,8 @@ static void assert_columns(const char *expected, char *csv, json_t *rows)
     assert_int_equal(strncmp(csv + strlen(expected), "\r\n", 2), 0);
     json_object_foreach(json_array_get(rows, 0), name, value)
     {
-        if (names[0])
-            (void)strcat(names, ",");
-        (void)strcat(names, name);
+        size_t used = strlen(names);
+        (void)snprintf(names + used, sizeof names - used, "%s%s", used ? "," : "", name);
     }
     assert_string_equal(names, expected);
     free(csv);
