@@ -50,17 +50,6 @@ static enum rfade_status check_options(const struct rfade_command *command,
     return RFADE_OK;
 }
 
-/* Results that are older than the survey are still shown, but not without a word. */
-static enum rfade_status tell_age(const struct rfade_run *run, struct rfade_survey *survey,
-                                  struct rfade_error *error)
-{
-    bool current = false;
-    enum rfade_status status = rfade_results_current(survey, &current, error);
-    if (status == RFADE_OK && !current && !run->common->quiet)
-        (void)fputs("the survey changed since the last fit: run `routefade fit`\n", run->notes);
-    return status;
-}
-
 enum rfade_status rfade_segment_read(const struct rfade_run *run,
                                      const struct rfade_command *command,
                                      const struct rfade_segment_options *options,
@@ -77,14 +66,18 @@ enum rfade_status rfade_segment_read(const struct rfade_run *run,
         .to_m = options->to_m,
     };
     struct rfade_survey *survey = NULL;
+    bool current = false;
     enum rfade_status status = check_options(command, options, error);
     if (status == RFADE_OK)
         status = rfade_survey_open(run->common->survey, RFADE_SURVEY_READ, &survey, error);
     if (status == RFADE_OK)
-        status = tell_age(run, survey, error);
+        status = rfade_results_current(survey, &current, error);
     if (status == RFADE_OK)
         status = rfade_results_read(survey, &filter, results, error);
     rfade_survey_close(survey);
+    /* Results that are older than the survey are still shown, but not without a word. */
+    if (status == RFADE_OK && !current && !run->common->quiet)
+        (void)fputs("the survey changed since the last fit: run `routefade fit`\n", run->notes);
     return status;
 }
 

@@ -352,6 +352,7 @@ static void results_older_than_the_survey_are_told(void **state)
     SAID(note, "fading", "--survey", fixture->survey);
     SAID(note, "outage", "--threshold-dbm", "-105", "--survey", fixture->survey);
     SAID("", "fading", "--quiet", "--survey", fixture->survey);
+    REFUSED(1, "no route 'moor'", "fading", "--route", "moor", "--survey", fixture->survey);
     SAID("", "fit", "--survey", fixture->survey);
     SAID("", "fading", "--survey", fixture->survey);
 }
