@@ -73,6 +73,21 @@ RFADE_API enum rfade_status rfade_stretch_outage(const struct rfade_stretch *str
                                                  struct rfade_stretch_outage *result);
 
 /**
+ * The same where several models were fitted: the outage is the preferred one's, the intervals
+ * those of the models' weighted mean distribution [Hoeting, Madigan, Raftery and Volinsky
+ * 1999, eq. 1; weights of Akaike: Burnham and Anderson 2002, section 4.3]. Models that fit
+ * about equally well may differ by orders in the deepest fades.
+ * @param stretches  [count], alike but for model, parameters and offset
+ * @param weights    [count], >= 0
+ * @param preferred  index of the preferred model
+ * @return as above; RFADE_DOMAIN for more stretches than there are models, too
+ */
+RFADE_API enum rfade_status rfade_stretch_outage_mixed(const struct rfade_stretch *stretches,
+                                                       const double *weights, size_t count,
+                                                       size_t preferred, double threshold_dbm,
+                                                       struct rfade_stretch_outage *result);
+
+/**
  * Level crossings per wavelength of travel, in one direction, of a level x_db about the mean
  * power: isotropic scatter, direct ray across the road. The rate in time is this times
  * speed / wavelength. [Rice 1948; Yacoub, Bautista and Guedes 1999, eq. 17 for Nakagami]

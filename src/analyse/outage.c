@@ -1,6 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include <gsl/gsl_math.h>
 #include <math.h>
+#include <stdbool.h>
 #include <stdlib.h>
 
 #include "analyse/results.h"
@@ -8,6 +9,9 @@
 
 /* d(dB)/d(relative power) */
 static const double DB_PER_NEPER_OF_POWER = 10.0 / M_LN10;
+
+/* A model that is less likely than that moves no end of an interval. */
+static const double WEIGHT_MIN = 1e-3;
 
 /* Mean and standard deviation of the measured local mean, dB. */
 static void track_moments(const struct rfade_tally_cell *cells, size_t count, double *mean_dbm,
@@ -83,34 +87,47 @@ static double slow_variance(const struct rfade_segment_result *row, double pass_
     return excess > 0.0 ? excess : 0.0;
 }
 
+/* Fits beside the preferred one count by their Akaike weight. */
 static enum rfade_status predicted(struct rfade_segment_result *row,
-                                   const struct rfade_stored_fit *fit, double threshold_dbm,
-                                   double confidence, struct rfade_stretch_outage *outage)
+                                   const struct rfade_stored_fit *preferred,
+                                   double threshold_dbm, double confidence,
+                                   struct rfade_stretch_outage *outage)
 {
+    struct rfade_stretch stretches[RFADE_MODEL_COUNT];
+    double weights[RFADE_MODEL_COUNT];
     struct rfade_local_mean *track = NULL;
-    size_t count = 0;
-    enum rfade_status status = local_mean_track(row, &track, &count);
-    if (status == RFADE_OK) {
-        double passes = (double)row->passes;
-        double pass_wavelengths = row->travel_m / row->wavelength_m / passes;
-        struct rfade_stretch stretch = {
+    size_t track_count = 0, count = 0, place = 0;
+    double passes = (double)row->passes;
+    double pass_wavelengths = row->travel_m / row->wavelength_m / passes;
+    enum rfade_status status = local_mean_track(row, &track, &track_count);
+    double slow = slow_variance(row, pass_wavelengths);
+    for (size_t i = 0; i < row->fit_count && count < RFADE_MODEL_COUNT; i++) {
+        const struct rfade_stored_fit *fit = &row->fits[i];
+        bool usable = fit->model && fit->model->id != RFADE_LOGNORMAL;
+        if (fit != preferred && !(usable && fit->weight > WEIGHT_MIN))
+            continue;
+        place = fit == preferred ? count : place;
+        weights[count] = isfinite(fit->weight) ? fit->weight : 1.0;
+        stretches[count++] = (struct rfade_stretch){
             .model = fit->model,
             .parameter = fit->parameter,
             .parameter_low = fit->parameter_low,
             .parameter_high = fit->parameter_high,
             .offset_db = fit->offset_db,
             .track = track,
-            .track_count = count,
+            .track_count = track_count,
             .length_wavelengths = pass_wavelengths,
             .passes = passes,
             .level_uncertainty_db = row->level_uncertainty_db,
             .calibration_db = calibration_db(row),
-            .slow_variance = slow_variance(row, pass_wavelengths),
+            .slow_variance = slow,
             .readings = (double)rfade_tally_readings(row->level) / passes,
             .confidence = confidence,
         };
-        status = rfade_stretch_outage(&stretch, threshold_dbm, outage);
     }
+    if (status == RFADE_OK)
+        status =
+            rfade_stretch_outage_mixed(stretches, weights, count, place, threshold_dbm, outage);
     free(track);
     return status;
 }

@@ -67,6 +67,19 @@ static enum rfade_status level_moments(struct rfade_tally *levels, struct level_
 }
 
 /*
+ * How much rounding to a step raises a mean power: a = ln(10)/20 step gives sinh(a)/a, to
+ * second order.
+ */
+static double rounding_db(const struct rfade_sampling_sums *sums)
+{
+    if (sums->updates <= 0)
+        return 0.0;
+    double step_db2 = 1e-4 * (double)sums->step_square_cdb2 / (double)sums->updates;
+    double a = 0.5 / DB_PER_NEPER_OF_POWER;
+    return DB_PER_NEPER_OF_POWER * a * a * step_db2 / 6.0;
+}
+
+/*
  * Standard deviation of the local mean along the track that was driven. Its variance is that
  * of the measured means, less their noise, plus what the window smooths away: over a window w
  * and to second order that is w^2/12 of the mean squared slope, as much as the variance within
@@ -74,17 +87,21 @@ static enum rfade_status level_moments(struct rfade_tally *levels, struct level_
  * dB, and so shows in the mean of the fast fading [delta method].
  *
  * The measured variance has an error by the noise itself, 2 noise^2 over the number n of
- * windows side by side, and by its product with the track, 4 track noise over n.
+ * windows side by side, by its product with the track, 4 track noise over n, and by what the
+ * window does at the segment's ends and beyond second order, of the size of what it smooths
+ * away.
  */
 static void local_sigma(const struct rfade_pool *pool,
                         const struct rfade_analysis_settings *settings, double variance_db2,
                         double offset_db, struct rfade_pool_result *result)
 {
     double noise_db2 = result->window_noise_db * result->window_noise_db;
-    double within_db2 = fmax(0.0, -2.0 * DB_PER_NEPER_OF_POWER * offset_db);
+    double within_db2 =
+        fmax(0.0, -2.0 * DB_PER_NEPER_OF_POWER * (offset_db + rounding_db(&pool->sampling)));
     double track_db2 = fmax(0.0, variance_db2 - noise_db2) + within_db2;
     double windows = pool->travel_m / (settings->window_wavelengths * pool->wavelength_m);
-    double error_db2 = sqrt((4.0 * track_db2 + 2.0 * noise_db2) * noise_db2 / windows);
+    double error_db2 = sqrt((4.0 * track_db2 + 2.0 * noise_db2) * noise_db2 / windows +
+                            within_db2 * within_db2);
     double reach_db2 = gsl_cdf_ugaussian_Pinv(0.5 + 0.5 * settings->confidence) * error_db2;
     result->local_sigma_db = sqrt(track_db2);
     result->local_sigma_low_db = sqrt(fmax(0.0, track_db2 - reach_db2));

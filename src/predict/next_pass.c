@@ -87,7 +87,8 @@ static void find_ends(const struct rfade_next_pass *next, double tail, double re
     struct node nodes[NODES];
     bool low_found = false;
     for (int i = 0; i < NODES; i++) {
-        double outage = probability_of(next->log_odds + next->log_odds_deviation * NODE[i]);
+        double deviation = NODE[i] < 0 ? next->deviation_below : next->deviation_above;
+        double outage = probability_of(next->log_odds + deviation * NODE[i]);
         /* Shallow fades are longer as they are more: both as the root of the outage. */
         nodes[i] = make_node(outage, fade * sqrt(outage / centre), readings);
     }
@@ -110,7 +111,11 @@ void rfade_next_pass_interval(const struct rfade_next_pass *next, double confide
 {
     /* Far beyond one half it is the gaps between fades that are rare. */
     struct rfade_next_pass rare = *next;
-    rare.log_odds = -fabs(next->log_odds);
+    if (next->log_odds > 0) {
+        rare.log_odds = -next->log_odds;
+        rare.deviation_below = next->deviation_above;
+        rare.deviation_above = next->deviation_below;
+    }
     double fade = 0.5 * next->variance / probability_of(rare.log_odds);
     double enough = fmin(fmax(MANY_READINGS, ceil(READINGS_A_FADE / fade)), MOST_READINGS);
     double readings = next->readings > 0 ? fmin(round(next->readings), enough) : enough;

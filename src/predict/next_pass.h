@@ -4,10 +4,11 @@
 #define ROUTEFADE_PREDICT_NEXT_PASS_H
 
 struct rfade_next_pass {
-    double log_odds;           /**< of the outage */
-    double log_odds_deviation; /**< of its uncertainty */
-    double variance;           /**< of the share of travel in fades, given the outage; > 0 */
-    double readings;           /**< of the pass; 0: as good as continuous */
+    double log_odds;        /**< of the outage */
+    double deviation_below; /**< of its uncertainty, on either side */
+    double deviation_above;
+    double variance; /**< of the share of travel in fades, given the outage; > 0 */
+    double readings; /**< of the pass; 0: as good as continuous */
 };
 
 /** Equal-tailed prediction interval of the share. */

@@ -17,6 +17,9 @@
 /* d(dB)/d(relative power) */
 static const double DB_PER_NEPER_OF_POWER = 10.0 / M_LN10;
 
+/* Of the ends of an interval, as log odds. */
+static const double END_ACCURACY = 1e-7;
+
 /* Probability, and its complement, averaged over the track. */
 struct average {
     double lower;
@@ -187,15 +190,19 @@ static bool valid(const struct rfade_stretch *stretch)
            stretch->confidence < 1 && isfinite(stretch->offset_db);
 }
 
-enum rfade_status rfade_stretch_outage(const struct rfade_stretch *stretch,
-                                       double threshold_dbm,
-                                       struct rfade_stretch_outage *result)
+/* What one model says: log odds of the outage and its ends, and the next pass's variance. */
+struct verdict {
+    double outage;
+    double crossings;
+    double centre;
+    double low;
+    double high;
+    double variance;
+};
+
+static enum rfade_status judge(const struct rfade_stretch *stretch, double threshold_dbm,
+                               double quantile, struct verdict *verdict)
 {
-    *result = (struct rfade_stretch_outage){NAN, NAN, NAN, NAN, NAN, NAN};
-    if (!valid(stretch) || isnan(threshold_dbm))
-        return RFADE_DOMAIN;
-    if (stretch->track_count == 0)
-        return RFADE_NO_DATA;
     struct average average;
     struct track_means means;
     enum rfade_status status =
@@ -204,31 +211,119 @@ enum rfade_status rfade_stretch_outage(const struct rfade_stretch *stretch,
         status = average_means(stretch, threshold_dbm, &means);
     if (status != RFADE_OK)
         return status;
-    result->outage = average.lower;
-    result->crossings_per_wavelength = means.crossings;
-
     double centre = log_odds(&average);
-    double quantile = gsl_cdf_ugaussian_Pinv(0.5 + 0.5 * stretch->confidence);
-    double low = NAN, high = NAN;
-    if (!isfinite(centre)) { /* no doubt at this precision: 0 or 1 */
+    *verdict = (struct verdict){.outage = average.lower,
+                                .crossings = means.crossings,
+                                .centre = centre,
+                                .low = centre,
+                                .high = centre,
+                                .variance = 2.0 * means.lengths / stretch->length_wavelengths +
+                                            means.slow_response * means.slow_response *
+                                                stretch->slow_variance};
+    if (!isfinite(centre)) /* no doubt at this precision: 0 or 1 */
+        return RFADE_OK;
+    return confidence_ends(
+        stretch, threshold_dbm, centre, quantile * level_error_db(stretch, &means),
+        together(stretch, &average, &means, quantile), &verdict->low, &verdict->high);
+}
+
+/* A model's distribution of the log odds: normal, with a width of its own on either side. */
+static double verdict_cdf(const struct verdict *verdict, double quantile, double place)
+{
+    double end = place < verdict->centre ? verdict->centre - verdict->low
+                                         : verdict->high - verdict->centre;
+    if (!(end > 0.0))
+        return place < verdict->centre ? 0.0 : 1.0;
+    return gsl_cdf_ugaussian_P((place - verdict->centre) * quantile / end);
+}
+
+/* The place where the models' weighted mean distribution reaches a probability. */
+static double mixed_end(const struct verdict *verdicts, const double *weights, size_t count,
+                        double quantile, double probability)
+{
+    double low = INFINITY, high = -INFINITY, total = 0.0;
+    for (size_t i = 0; i < count; i++) {
+        low = fmin(low, 3.0 * verdicts[i].low - 2.0 * verdicts[i].centre);
+        high = fmax(high, 3.0 * verdicts[i].high - 2.0 * verdicts[i].centre);
+        total += weights[i];
+    }
+    while (high - low > END_ACCURACY) {
+        double middle = 0.5 * (low + high), sum = 0.0;
+        for (size_t i = 0; i < count; i++)
+            sum += weights[i] / total * verdict_cdf(&verdicts[i], quantile, middle);
+        if (sum < probability)
+            low = middle;
+        else
+            high = middle;
+    }
+    return 0.5 * (low + high);
+}
+
+/* Puts the models together; those with an outage of 0 or 1 at this precision stand aside. */
+static void mix(const struct verdict *verdicts, const double *weights, size_t count,
+                double quantile, double tail, struct verdict *result)
+{
+    struct verdict some[RFADE_MODEL_COUNT];
+    double some_weights[RFADE_MODEL_COUNT];
+    size_t kept = 0;
+    for (size_t i = 0; i < count; i++) {
+        if (weights[i] > 0.0 && isfinite(verdicts[i].low) && isfinite(verdicts[i].high)) {
+            some[kept] = verdicts[i];
+            some_weights[kept++] = weights[i];
+        }
+    }
+    if (kept < 2)
+        return;
+    result->low = fmin(result->centre, mixed_end(some, some_weights, kept, quantile, tail));
+    result->high =
+        fmax(result->centre, mixed_end(some, some_weights, kept, quantile, 1.0 - tail));
+}
+
+enum rfade_status rfade_stretch_outage_mixed(const struct rfade_stretch *stretches,
+                                             const double *weights, size_t count,
+                                             size_t preferred, double threshold_dbm,
+                                             struct rfade_stretch_outage *result)
+{
+    *result = (struct rfade_stretch_outage){NAN, NAN, NAN, NAN, NAN, NAN};
+    struct verdict verdicts[RFADE_MODEL_COUNT];
+    if (isnan(threshold_dbm) || count > RFADE_MODEL_COUNT || preferred >= count)
+        return RFADE_DOMAIN;
+    double confidence = stretches[preferred].confidence;
+    double tail = 0.5 * (1.0 - confidence);
+    double quantile = gsl_cdf_ugaussian_Qinv(tail);
+    for (size_t i = 0; i < count; i++) {
+        if (!valid(&stretches[i]) || !(weights[i] >= 0.0))
+            return RFADE_DOMAIN;
+        if (stretches[i].track_count == 0)
+            return RFADE_NO_DATA;
+        enum rfade_status status = judge(&stretches[i], threshold_dbm, quantile, &verdicts[i]);
+        if (status != RFADE_OK)
+            return status;
+    }
+    struct verdict all = verdicts[preferred];
+    result->outage = all.outage;
+    result->crossings_per_wavelength = all.crossings;
+    if (!isfinite(all.centre)) {
         result->low = result->high = result->outage;
         result->next_low = result->next_high = result->outage;
         return RFADE_OK;
     }
-    status = confidence_ends(stretch, threshold_dbm, centre,
-                             quantile * level_error_db(stretch, &means),
-                             together(stretch, &average, &means, quantile), &low, &high);
-    if (status != RFADE_OK)
-        return status;
-    result->low = probability_of(low);
-    result->high = probability_of(high);
-
-    struct rfade_next_pass next = {
-        .log_odds = centre,
-        .log_odds_deviation = 0.5 * (high - low) / quantile,
-        .variance = 2.0 * means.lengths / stretch->length_wavelengths +
-                    means.slow_response * means.slow_response * stretch->slow_variance,
-        .readings = stretch->readings};
-    rfade_next_pass_interval(&next, stretch->confidence, &result->next_low, &result->next_high);
+    mix(verdicts, weights, count, quantile, tail, &all);
+    result->low = probability_of(all.low);
+    result->high = probability_of(all.high);
+    struct rfade_next_pass next = {.log_odds = all.centre,
+                                   .deviation_below = (all.centre - all.low) / quantile,
+                                   .deviation_above = (all.high - all.centre) / quantile,
+                                   .variance = all.variance,
+                                   .readings = stretches[preferred].readings};
+    rfade_next_pass_interval(&next, confidence, &result->next_low, &result->next_high);
     return RFADE_OK;
+}
+
+enum rfade_status rfade_stretch_outage(const struct rfade_stretch *stretch,
+                                       double threshold_dbm,
+                                       struct rfade_stretch_outage *result)
+{
+    const double alone = 1.0;
+    return rfade_stretch_outage_mixed(stretch, &alone, 1, 0, threshold_dbm, result);
 }

@@ -207,6 +207,34 @@ static void a_deep_part_is_less_certain(void **state)
     assert_true(apart.low < shared.low && apart.high > shared.high);
 }
 
+/* Two models that fit as well, apart in the deep: the interval reaches from one's to the
+ * other's; a model without weight changes nothing. */
+static void models_are_mixed_by_weight(void **state)
+{
+    (void)state;
+    struct rfade_stretch pair[2] = {rayleigh_stretch(level_track, 1),
+                                    rayleigh_stretch(level_track, 1)};
+    const double even[] = {0.5, 0.5}, one[] = {1.0, 0.0};
+    struct rfade_stretch_outage rice, nakagami, mixed;
+    pair[0].model = rfade_model(RFADE_RICE);
+    pair[0].parameter = pair[0].parameter_low = pair[0].parameter_high = 10.0;
+    pair[1].model = rfade_model(RFADE_NAKAGAMI);
+    pair[1].parameter = pair[1].parameter_low = pair[1].parameter_high = 121.0 / 21.0;
+    assert_int_equal(rfade_stretch_outage(&pair[0], -100.0, &rice), RFADE_OK);
+    assert_int_equal(rfade_stretch_outage(&pair[1], -100.0, &nakagami), RFADE_OK);
+    assert_true(nakagami.high < rice.low);
+    assert_int_equal(rfade_stretch_outage_mixed(pair, even, 2, 0, -100.0, &mixed), RFADE_OK);
+    assert_near(mixed.outage, rice.outage, 1e-15);
+    assert_true(mixed.low > nakagami.low && mixed.low < nakagami.outage);
+    assert_true(mixed.high < rice.high && mixed.high > rice.outage);
+    assert_int_equal(rfade_stretch_outage_mixed(pair, one, 2, 0, -100.0, &mixed), RFADE_OK);
+    assert_near(mixed.low, rice.low, 1e-12);
+    assert_near(mixed.high, rice.high, 1e-12);
+    assert_int_equal(rfade_stretch_outage_mixed(pair, even, 2, 2, -100.0, &mixed),
+                     RFADE_DOMAIN);
+    assert_true(isnan(mixed.outage));
+}
+
 static void rare_fades_may_not_come(void **state)
 {
     (void)state;
@@ -298,6 +326,7 @@ int main(void)
         cmocka_unit_test(prediction_interval_holds_drawn_fades),
         cmocka_unit_test(slow_variation_widens_both_intervals),
         cmocka_unit_test(a_deep_part_is_less_certain),
+        cmocka_unit_test(models_are_mixed_by_weight),
         cmocka_unit_test(rare_fades_may_not_come),
         cmocka_unit_test(useless_stretches_are_refused),
         cmocka_unit_test(observed_share_splits_the_step),

@@ -15,8 +15,8 @@
 #include "statistics/count.h"
 
 static const char *const measure_names[MEASURE_COUNT] = {
-    "K",         "m",      "mean-power", "local-mean", "local-sigma", "outage-5", "outage-10",
-    "outage-15", "same-5", "same-10",    "same-15",    "next-5",      "next-10",  "next-15"};
+    "K",      "m",       "local-mean", "local-sigma", "outage-5", "outage-10", "outage-15",
+    "same-5", "same-10", "same-15",    "next-5",      "next-10",  "next-15"};
 
 static const struct circumstances base = {.k = 0.0,
                                           .ray_angle_deg = 90.0,

@@ -248,9 +248,6 @@ static void note_local_mean(const struct rfade_pool_result *result, const struct
                             struct outcome *outcome)
 {
     double reach_db = 1.959963984540054 * result->level_uncertainty_db;
-    outcome->intervals[MEASURE_MEAN_POWER] =
-        (struct interval){truth->mean_power_dbm, result->mean_power_dbm,
-                          result->mean_power_dbm - reach_db, result->mean_power_dbm + reach_db};
     outcome->intervals[MEASURE_LOCAL_MEAN] =
         (struct interval){truth->local_mean_dbm, result->local_mean_dbm,
                           result->local_mean_dbm - reach_db, result->local_mean_dbm + reach_db};

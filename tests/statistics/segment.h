@@ -35,7 +35,6 @@ extern const double threshold_db[THRESHOLDS];
 enum measure {
     MEASURE_K,
     MEASURE_M,
-    MEASURE_MEAN_POWER,
     MEASURE_LOCAL_MEAN,
     MEASURE_LOCAL_SIGMA,
     MEASURE_OUTAGE,                             /**< the stretch's true probability */
