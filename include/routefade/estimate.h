@@ -29,6 +29,13 @@ struct rfade_bin {
 };
 
 /**
+ * Uncensored readings that a fit needs. The bias of m from n of them, about 3 m / n [Choi and
+ * Wette 1969], is then three quarters of its standard error m sqrt(2 / n); at half as many it
+ * exceeds it, and no interval, weight or goodness would mean what it says.
+ */
+enum { RFADE_FIT_READINGS_MIN = 8 };
+
+/**
  * One fitted model. Intervals come from the profile likelihood, its fall scaled by the
  * design effect of the parameter's own score [Rotnitzky and Jewell 1990] and held against
  * Student's t with the degrees of freedom of the blocks. An interval is one-sided, at the
@@ -88,9 +95,10 @@ struct rfade_estimate {
  * than it at 5 % (choice.c). Goodness is a chi-square test with the covariance of the class
  * weights [Rao and Scott 1981] (goodness.c).
  * @param bins  in any order
- * @return RFADE_OK | RFADE_DOMAIN (a bin or setting out of range) | RFADE_NO_DATA (no bins,
- *         or all of them censored) | RFADE_NO_CONVERGENCE | RFADE_NO_MEMORY; on failure
- *         fit_count counts the fits that were finished
+ * @return RFADE_OK | RFADE_DOMAIN (a bin or setting out of range) | RFADE_NO_DATA (fewer
+ *         than RFADE_FIT_READINGS_MIN uncensored: no fits, every figure NaN) |
+ *         RFADE_NO_CONVERGENCE | RFADE_NO_MEMORY; on failure fit_count counts the fits that
+ *         were finished
  * Accuracy: the maximum to about 1e-8 of the parameter, the log-likelihood to 1e-11
  * relative; ends of intervals to 1e-3 of their distance, from more than 120 bins to 5e-3.
  */
@@ -98,7 +106,10 @@ RFADE_API enum rfade_status rfade_estimate_bins(const struct rfade_bin *bins, si
                                                 const struct rfade_estimate_settings *settings,
                                                 struct rfade_estimate *result);
 
-/** Maximum likelihood fit of one model, with intervals; goodness and weight stay NaN. */
+/**
+ * Maximum likelihood fit of one model, with intervals; goodness and weight stay NaN. Returns
+ * as rfade_estimate_bins; on RFADE_NO_DATA every figure is NaN.
+ */
 RFADE_API enum rfade_status rfade_fit_bins(const struct rfade_model *model,
                                            const struct rfade_bin *bins, size_t bin_count,
                                            const struct rfade_estimate_settings *settings,
@@ -134,8 +145,9 @@ struct rfade_column_estimate {
  * stands for all below floor + step/2, one at or above the ceiling for all above
  * ceiling - step/2, any other for level - step/2 to level + step/2 (step 0: itself).
  * @return RFADE_OK | RFADE_DOMAIN (a level that isn't finite, a floor not below the ceiling,
- *         a negative step, a confidence not in (0, 1)) | RFADE_NO_DATA (nothing, or nothing
- *         but censored readings) | RFADE_NO_CONVERGENCE | RFADE_NO_MEMORY
+ *         a negative step, a confidence not in (0, 1)) | RFADE_NO_DATA (fewer than
+ *         RFADE_FIT_READINGS_MIN that aren't censored; step and censored counts are set) |
+ *         RFADE_NO_CONVERGENCE | RFADE_NO_MEMORY
  */
 RFADE_API enum rfade_status rfade_estimate_column(const double *levels_dbm, size_t count,
                                                   const struct rfade_column_settings *settings,

@@ -191,6 +191,19 @@ static enum rfade_status check_options(const struct estimate_options *given,
     return RFADE_OK;
 }
 
+static enum rfade_status refuse_levels(enum rfade_status status,
+                                       const struct rfade_column_estimate *result, size_t count,
+                                       struct rfade_error *error)
+{
+    if (status == RFADE_NO_DATA)
+        return rfade_error_set(
+            error, status, "give more levels, or check --floor-dbm and --ceiling-dbm",
+            "too few readings for a fit: %zu between floor and ceiling; at least %d",
+            count - result->below_floor - result->above_ceiling, RFADE_FIT_READINGS_MIN);
+    return rfade_error_set(error, status, "check --unit and --step-db",
+                           "%zu levels can't be fitted: %s", count, rfade_status_text(status));
+}
+
 static enum rfade_status run_estimate(struct rfade_run *run, struct rfade_error *error)
 {
     const struct estimate_options *given = run->options;
@@ -212,10 +225,8 @@ static enum rfade_status run_estimate(struct rfade_run *run, struct rfade_error 
     status = rfade_estimate_column(levels_dbm, count, &settings, &result);
     free(levels_dbm);
     if (status != RFADE_OK) {
-        (void)rfade_error_set(error, status, "give more levels, or check --unit and --step-db",
-                              "%zu levels can't be fitted: %s", count,
-                              rfade_status_text(status));
-        rfade_error_at(error, path, 0);
+        (void)refuse_levels(status, &result, count, error);
+        rfade_error_at(error, strcmp(path, "-") == 0 ? "standard input" : path, 0);
         return status;
     }
     if (run->common->format == &rfade_rows_json)

@@ -63,7 +63,8 @@ enum rfade_status rfade_bins_moments(const struct rfade_bin *bins, size_t bin_co
         moments->step_min_db = fmin(moments->step_min_db, width);
         sum_db += bins[i].weight * db_of(&bins[i]);
     }
-    if (!(moments->uncensored > 0.0)) {
+    /* The weights of a tally sum to a count but for rounding. */
+    if (moments->uncensored < RFADE_FIT_READINGS_MIN * (1.0 - 1e-9)) {
         return RFADE_NO_DATA;
     }
     /* Powers relative to the mean of dB, so that neither overflows nor vanishes. */

@@ -22,7 +22,7 @@ struct rfade_bin_moments {
  */
 double rfade_bin_power(const struct rfade_bin *bin, double reference_db);
 
-/** RFADE_DOMAIN for a bin that isn't one; RFADE_NO_DATA if nothing is left uncensored. */
+/** RFADE_DOMAIN for a bin that isn't one; RFADE_NO_DATA if too few are uncensored for a fit. */
 enum rfade_status rfade_bins_moments(const struct rfade_bin *bins, size_t bin_count,
                                      struct rfade_bin_moments *moments);
 

@@ -121,8 +121,8 @@ static void the_object_has_the_agreed_keys(void **state)
 static void means_of_power_and_of_db_differ(void **state)
 {
     (void)state;
-    json_t *document =
-        ESTIMATED("-80\n-90\n-80\n-90\n", "-", "--step-db", "1", "--independent");
+    json_t *document = ESTIMATED("-80\n-90\n-80\n-90\n-80\n-90\n-80\n-90\n", "-", "--step-db",
+                                 "1", "--independent");
     assert_true(fabs(number_of(document, "mean_of_db_dbm") + 85) < 1e-9);
     assert_true(fabs(number_of(document, "mean_power_dbm") - 10 * log10(5.5e-9)) < 1e-9);
     json_decref(document);
@@ -133,17 +133,19 @@ static void forms_of_one_column_agree(void **state)
 {
     (void)state;
     static const char *const inputs[] = {
-        "-80\n-85\n-91\n-84\n-88\n",
-        "rssi\r\n-80\r\n-85\r\n\r\n-91\r\n-84\r\n-88",
-        "# a note\n-80\n-85\n# another\n-91\n-84\n-88\n",
-        "\xEF\xBB\xBFlevel\n\"-80\"\n -85 \n-91\n-84\n-88\n",
+        "-80\n-85\n-91\n-84\n-88\n-86\n-90\n-83\n",
+        "rssi\r\n-80\r\n-85\r\n\r\n-91\r\n-84\r\n-88\r\n-86\r\n-90\r\n-83",
+        "# a note\n-80\n-85\n# another\n-91\n-84\n-88\n-86\n-90\n-83\n",
+        "\xEF\xBB\xBFlevel\n\"-80\"\n -85 \n-91\n-84\n-88\n-86\n-90\n-83\n",
     };
     static const char *const tables[] = {
-        "time,rssi,snr\n1,-80,3\n2,-85,4\n3,-91,5\n4,-84,6\n5,-88,7\n",
-        "time;rssi\n1;-80\n2;-85\n3;-91\n4;-84\n5;-88\n",
-        "\"sep=;\"\r\ntime;rssi\r\n1;-80\r\n2;-85\r\n3;-91\r\n4;-84\r\n5;-88\r\n",
-        "sep=,\ntime,rssi\n1,-80\n2,-85\n3,-91\n4,-84\n5,-88\n",
-        "\"a,b\"\trssi\nx\t-80\nx\t-85\nx\t-91\nx\t-84\nx\t-88\n",
+        "time,rssi,snr\n1,-80,3\n2,-85,4\n3,-91,5\n4,-84,6\n5,-88,7\n6,-86,8\n7,-90,9\n8,-83,"
+        "9\n",
+        "time;rssi\n1;-80\n2;-85\n3;-91\n4;-84\n5;-88\n6;-86\n7;-90\n8;-83\n",
+        "\"sep=;\"\r\ntime;rssi\r\n1;-80\r\n2;-85\r\n3;-91\r\n4;-84\r\n5;-88\r\n"
+        "6;-86\r\n7;-90\r\n8;-83\r\n",
+        "sep=,\ntime,rssi\n1,-80\n2,-85\n3,-91\n4,-84\n5,-88\n6,-86\n7,-90\n8,-83\n",
+        "\"a,b\"\trssi\nx\t-80\nx\t-85\nx\t-91\nx\t-84\nx\t-88\nx\t-86\nx\t-90\nx\t-83\n",
     };
     json_t *first = ESTIMATED(inputs[0], "-", "--step-db", "1", "--independent");
     for (size_t i = 1; i < sizeof inputs / sizeof inputs[0]; i++) {
@@ -167,10 +169,12 @@ static void forms_of_one_column_agree(void **state)
 static void units_are_converted(void **state)
 {
     (void)state;
-    json_t *power = ESTIMATED("1\n10\n100\n1\n10\n", "-", "--unit", "mw", "--step-db", "0");
-    json_t *level = ESTIMATED("0\n10\n20\n0\n10\n", "-", "--step-db", "0");
-    json_t *amplitude = ESTIMATED("1\n3.1622776601683795\n10\n1\n3.1622776601683795\n", "-",
-                                  "--unit", "amplitude", "--step-db", "0");
+    json_t *power = ESTIMATED("1\n10\n100\n1\n10\n1\n10\n100\n1\n10\n", "-", "--unit", "mw",
+                              "--step-db", "0");
+    json_t *level = ESTIMATED("0\n10\n20\n0\n10\n0\n10\n20\n0\n10\n", "-", "--step-db", "0");
+    json_t *amplitude = ESTIMATED("1\n3.1622776601683795\n10\n1\n3.1622776601683795\n"
+                                  "1\n3.1622776601683795\n10\n1\n3.1622776601683795\n",
+                                  "-", "--unit", "amplitude", "--step-db", "0");
     double mean_dbm = number_of(level, "mean_power_dbm");
     assert_true(fabs(mean_dbm - 10 * log10(24.4)) < 1e-9);
     assert_true(fabs(number_of(power, "mean_power_dbm") - mean_dbm) < 1e-9);
@@ -234,6 +238,10 @@ static void what_can_not_be_read_is_refused_with_its_line(void **state)
                   "-");
     INPUT_REFUSED("-80\nsep=,\n", 1, "standard input:2: not a number: 'sep='", "estimate", "-",
                   "--column", "1");
+    INPUT_REFUSED("-80\n-85\n", 1,
+                  "standard input: too few readings for a fit: 2 between floor and ceiling; "
+                  "at least 8; give more levels",
+                  "estimate", "-");
     INPUT_REFUSED("rssi\n", 1, "standard input: no levels in the file", "estimate", "-");
 }
 

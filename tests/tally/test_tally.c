@@ -1,5 +1,5 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-/** @file tally_test.c  Tallies add, merge and come back from bytes exactly. */
+/** @file test_tally.c  Tallies add, merge and come back from bytes exactly. */
 #include <setjmp.h>
 #include <stdarg.h>
 #include <stddef.h>

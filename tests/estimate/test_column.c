@@ -1,5 +1,5 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-/** @file estimate_column_test.c  Columns of levels: steps, clipping, correlation, refusals. */
+/** @file test_column.c  Columns of levels: steps, clipping, correlation, refusals. */
 #include <math.h>
 #include <setjmp.h>
 #include <stdarg.h>
@@ -45,18 +45,18 @@ static void steps_are_found(void **state)
 static void given_step_is_kept(void **state)
 {
     (void)state;
-    const double levels_dbm[] = {-90, -92, -88, -94, -90, -88};
+    const double levels_dbm[] = {-90, -92, -88, -94, -90, -88, -92, -90};
     struct rfade_column_settings settings = PLAIN;
     struct rfade_column_estimate found;
     struct rfade_column_estimate given;
-    assert_int_equal(rfade_estimate_column(levels_dbm, 6, &PLAIN, &found), RFADE_OK);
+    assert_int_equal(rfade_estimate_column(levels_dbm, 8, &PLAIN, &found), RFADE_OK);
     settings.step_db = 1.0;
-    assert_int_equal(rfade_estimate_column(levels_dbm, 6, &settings, &given), RFADE_OK);
+    assert_int_equal(rfade_estimate_column(levels_dbm, 8, &settings, &given), RFADE_OK);
     assert_true(found.step_db == 2.0 && given.step_db == 1.0);
     /* Intervals half as wide are about half as likely, each. */
     double difference =
         found.estimate.fits[0].log_likelihood - given.estimate.fits[0].log_likelihood;
-    assert_true(fabs(difference - 6.0 * log(2.0)) < 0.1);
+    assert_true(fabs(difference - 8.0 * log(2.0)) < 0.1);
 }
 
 /*
@@ -195,26 +195,42 @@ static void assert_refused(const double *levels_dbm, size_t count,
     assert_true(isnan(result.estimate.mean_power_db));
 }
 
+/* Readings at the floor don't count: they say little about the shape of the fading. */
+static void too_few_readings_are_refused(void **state)
+{
+    (void)state;
+    const double levels_dbm[] = {-90, -91, -93, -91, -88, -95, -90, -89, -100, -100};
+    const struct rfade_column_settings floored = {1, -100, NAN, true, 0.95};
+    struct rfade_column_estimate result;
+    for (size_t count = 1; count < 8; count++) {
+        assert_refused(levels_dbm, count, PLAIN, RFADE_NO_DATA);
+        assert_refused(levels_dbm + 10 - count, count, floored, RFADE_NO_DATA);
+    }
+    assert_int_equal(rfade_estimate_column(levels_dbm, 8, &PLAIN, &result), RFADE_OK);
+    assert_int_equal(rfade_estimate_column(levels_dbm, 10, &floored, &result), RFADE_OK);
+    assert_refused(levels_dbm + 1, 9, floored, RFADE_NO_DATA);
+}
+
 static void what_cannot_be_fitted_is_refused(void **state)
 {
     (void)state;
-    const double levels_dbm[] = {-90, -91, -93, -91};
+    const double levels_dbm[] = {-90, -91, -93, -91, -90, -91, -93, -91};
     const double broken_dbm[] = {-90, NAN, -93, -91};
     const double endless_dbm[] = {-90, -INFINITY, -93, -91};
     assert_refused(levels_dbm, 0, PLAIN, RFADE_NO_DATA);
     assert_refused(broken_dbm, 4, PLAIN, RFADE_DOMAIN);
     assert_refused(endless_dbm, 4, PLAIN, RFADE_DOMAIN);
-    assert_refused(levels_dbm, 4, (struct rfade_column_settings){NAN, -85, NAN, true, 0.95},
+    assert_refused(levels_dbm, 8, (struct rfade_column_settings){NAN, -85, NAN, true, 0.95},
                    RFADE_NO_DATA);
-    assert_refused(levels_dbm, 4, (struct rfade_column_settings){NAN, NAN, -95, true, 0.95},
+    assert_refused(levels_dbm, 8, (struct rfade_column_settings){NAN, NAN, -95, true, 0.95},
                    RFADE_NO_DATA);
-    assert_refused(levels_dbm, 4, (struct rfade_column_settings){NAN, -90, -90, true, 0.95},
+    assert_refused(levels_dbm, 8, (struct rfade_column_settings){NAN, -90, -90, true, 0.95},
                    RFADE_DOMAIN);
-    assert_refused(levels_dbm, 4, (struct rfade_column_settings){-1, NAN, NAN, true, 0.95},
+    assert_refused(levels_dbm, 8, (struct rfade_column_settings){-1, NAN, NAN, true, 0.95},
                    RFADE_DOMAIN);
-    assert_refused(levels_dbm, 4, (struct rfade_column_settings){NAN, NAN, NAN, true, 1.0},
+    assert_refused(levels_dbm, 8, (struct rfade_column_settings){NAN, NAN, NAN, true, 1.0},
                    RFADE_DOMAIN);
-    assert_refused(levels_dbm, 4, (struct rfade_column_settings){NAN, NAN, NAN, true, 0.0},
+    assert_refused(levels_dbm, 8, (struct rfade_column_settings){NAN, NAN, NAN, true, 0.0},
                    RFADE_DOMAIN);
 }
 
@@ -227,6 +243,7 @@ int main(void)
         cmocka_unit_test(aic_and_weights_of_independent_readings),
         cmocka_unit_test(repeated_readings_are_counted_once),
         cmocka_unit_test(fading_within_a_step_is_at_the_upper_end),
+        cmocka_unit_test(too_few_readings_are_refused),
         cmocka_unit_test(what_cannot_be_fitted_is_refused),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);

@@ -1,6 +1,6 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /**
- * @file recovery_test.c  Parameters come back from independent draws without bias and as
+ * @file test_recovery.c  Parameters come back from independent draws without bias and as
  * sharply as the Cramer-Rao bound allows; tests keep their error rates. Short form.
  *
  * Bounds: standard deviation of the parameter from one reading, mean power unknown too. For

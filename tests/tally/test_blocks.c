@@ -1,5 +1,5 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-/** @file blocks_test.c  Block products against sums worked out from their definition. */
+/** @file test_blocks.c  Block products against sums worked out from their definition. */
 #include <setjmp.h>
 #include <stdarg.h>
 #include <stddef.h>

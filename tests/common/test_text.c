@@ -52,17 +52,6 @@ static void printable_replaces_control_characters(void **state)
     assert_printable("\xC2\xA0", "\xC2\xA0");
 }
 
-static void cut_never_splits_a_character(void **state)
-{
-    (void)state;
-    assert_int_equal(rfade_text_cut("abc", 5), 3);
-    assert_int_equal(rfade_text_cut("abc", 2), 2);
-    assert_int_equal(rfade_text_cut("a\xE2\x82\xAC", 4), 4);
-    assert_int_equal(rfade_text_cut("a\xE2\x82\xAC", 3), 1);
-    assert_int_equal(rfade_text_cut("a\xE2\x82\xAC", 2), 1);
-    assert_int_equal(rfade_text_cut("\xE2\x82\xAC", 0), 0);
-}
-
 static void numbers_are_read_whole(void **state)
 {
     (void)state;
@@ -92,7 +81,6 @@ int main(void)
         cmocka_unit_test(printable_keeps_utf8),
         cmocka_unit_test(printable_replaces_what_is_no_utf8),
         cmocka_unit_test(printable_replaces_control_characters),
-        cmocka_unit_test(cut_never_splits_a_character),
         cmocka_unit_test(numbers_are_read_whole),
         cmocka_unit_test(other_texts_are_no_numbers),
     };

@@ -1,5 +1,5 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-/** @file estimate_bins_test.c  Fits on tallies: readings' own bounds, window, robustness. */
+/** @file test_bins.c  Fits on tallies: readings' own bounds, window, robustness. */
 #include <gsl/gsl_randist.h>
 #include <math.h>
 #include <setjmp.h>
@@ -176,6 +176,10 @@ static void bins_that_are_none_are_refused(void **state)
     narrowed.narrowing = 1.0;
     assert_int_equal(rfade_estimate_bins(&good, 1, &narrowed, &result), RFADE_DOMAIN);
     assert_int_equal(rfade_estimate_bins(&good, 0, &PLAIN, &result), RFADE_NO_DATA);
+    assert_int_equal(rfade_estimate_bins(&good, 1, &PLAIN, &result), RFADE_NO_DATA);
+    assert_int_equal(rfade_fit_bins(rfade_model(RFADE_RICE), &good, 1, &PLAIN, &fit),
+                     RFADE_NO_DATA);
+    assert_true(isnan(fit.mean_power_low_db) && isnan(fit.parameter));
 }
 
 /* A level of any kind, wild ones included. */
@@ -226,16 +230,17 @@ static void every_sample_is_fitted(void **state)
                                                  trial % 5 == 0 ? 3.0 : NAN, trial % 2 == 0,
                                                  0.95};
         struct rfade_column_estimate result;
+        size_t between = 0;
         for (size_t i = 0; i < count; i++) {
             double level_db = draw_anything_db(generator, trial % 7 % 4, parameter);
             levels_dbm[i] = step_db > 0.0 ? quantise_db(level_db, step_db) : level_db;
+            bool clipped =
+                levels_dbm[i] <= settings.floor_dbm || levels_dbm[i] >= settings.ceiling_dbm;
+            between += clipped ? 0 : 1;
         }
         enum rfade_status status = rfade_estimate_column(levels_dbm, count, &settings, &result);
-        if (status == RFADE_OK) {
-            assert_sound(&result.estimate);
-        } else {
-            assert_int_equal(status, RFADE_NO_DATA); /* all censored */
-        }
+        assert_int_equal(status, between < RFADE_FIT_READINGS_MIN ? RFADE_NO_DATA : RFADE_OK);
+        assert_sound(&result.estimate);
     }
     gsl_rng_free(generator);
 }

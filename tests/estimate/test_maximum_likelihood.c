@@ -1,6 +1,6 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /**
- * @file maximum_likelihood_test.c  Fits against maximum likelihood by scipy and mpmath
+ * @file test_maximum_likelihood.c  Fits against maximum likelihood by scipy and mpmath
  * (tests/reference/mle.tsv, mle_censored.tsv; their heads say how they were made).
  */
 #include <math.h>
