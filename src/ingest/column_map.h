@@ -58,7 +58,7 @@
  *
  *     x_column = easting       a grid by its EPSG code: x the easting, y the northing
  *     y_column = northing
- *     epsg = 32651
+ *     epsg = 32631
  *
  *     x_column = x             metres east (x) and north (y) of an origin
  *     y_column = y
@@ -126,8 +126,5 @@ enum rfade_status rfade_column_map_parse(const char *text, size_t text_size, con
                                          struct rfade_column_map **map,
                                          struct rfade_error *error);
 void rfade_column_map_destroy(struct rfade_column_map *map); /* NULL is harmless */
-
-/** The name it was read under. Valid until the map is destroyed. */
-const char *rfade_column_map_name(const struct rfade_column_map *map);
 
 #endif

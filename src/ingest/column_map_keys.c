@@ -385,7 +385,7 @@ static const struct rfade_map_key keys[] = {
     {"position", "longitude_column", set_longitude_column, MAP(position), position_remedy},
     {"position", "x_column", set_x_column, MAP(position), position_remedy},
     {"position", "y_column", set_y_column, MAP(position), position_remedy},
-    {"position", "epsg", set_epsg, MAP(position.epsg), "an EPSG code such as 32651"},
+    {"position", "epsg", set_epsg, MAP(position.epsg), "an EPSG code such as 32631"},
     {"position", "origin_latitude", set_origin_latitude, MAP(position), degrees_remedy},
     {"position", "origin_longitude", set_origin_longitude, MAP(position), degrees_remedy},
     {"position", "latitude", set_latitude, MAP(position), degrees_remedy},
