@@ -58,17 +58,6 @@ void rfade_text_printable(char *text)
     *to = '\0';
 }
 
-size_t rfade_text_cut(const char *text, size_t limit)
-{
-    size_t length = strnlen(text, limit + 1);
-    if (length <= limit)
-        return length;
-    length = limit;
-    while (length > 0 && ((unsigned char)text[length] & 0xC0) == 0x80)
-        length--;
-    return length;
-}
-
 bool rfade_text_to_double(const char *text, double *value)
 {
     *value = NAN;

@@ -12,9 +12,6 @@
  */
 void rfade_text_printable(char *text);
 
-/** Number of leading bytes of `text` (at most `limit`) that don't cut a UTF-8 character. */
-size_t rfade_text_cut(const char *text, size_t limit);
-
 /**
  * Reads a whole text as a number with a decimal point, blanks around it allowed. False for
  * anything else: empty, trailing letters, hexadecimal, nan, inf.

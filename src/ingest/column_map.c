@@ -39,11 +39,6 @@ void rfade_column_map_destroy(struct rfade_column_map *map)
     free(map);
 }
 
-const char *rfade_column_map_name(const struct rfade_column_map *map)
-{
-    return map->name;
-}
-
 struct rfade_level_map *rfade_column_map_add_level(struct rfade_column_map *map,
                                                    const char *channel)
 {

@@ -210,14 +210,3 @@ bool rfade_track_at(const struct rfade_track *track, int64_t time_us, int64_t *c
     *travel_mm = track->direction * (*chainage_mm - track->start_mm);
     return true;
 }
-
-bool rfade_track_stands(const struct rfade_track *track, int64_t time_us)
-{
-    size_t after = node_after(track, (double)(time_us - track->origin_us) * 1e-6);
-    if (after == 0)
-        return track->nodes[0].standing;
-    if (after == track->count)
-        return track->nodes[track->count - 1].standing;
-    return track->nodes[after - 1].standing && track->nodes[after].standing &&
-           !track->nodes[after].after_gap;
-}

@@ -52,7 +52,4 @@ int64_t rfade_track_end_us(const struct rfade_track *track);
 bool rfade_track_at(const struct rfade_track *track, int64_t time_us, int64_t *chainage_mm,
                     int64_t *travel_mm);
 
-/** Whether the vehicle was found standing at that time. */
-bool rfade_track_stands(const struct rfade_track *track, int64_t time_us);
-
 #endif

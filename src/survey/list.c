@@ -6,37 +6,6 @@
 
 #include "survey/rows.h"
 
-static void read_campaign(sqlite3_stmt *statement, void *row)
-{
-    struct rfade_campaign *campaign = row;
-    campaign->campaign_id = sqlite3_column_int64(statement, 0);
-    rfade_name_copy(campaign->name, statement, 1);
-    campaign->reading_count = sqlite3_column_int64(statement, 2);
-    campaign->start_us = sqlite3_column_int64(statement, 3);
-    campaign->end_us = sqlite3_column_int64(statement, 4);
-}
-
-enum rfade_status rfade_survey_campaigns(struct rfade_survey *survey,
-                                         struct rfade_campaign **campaigns, size_t *count,
-                                         struct rfade_error *error)
-{
-    *campaigns = NULL;
-    *count = 0;
-    sqlite3_stmt *statement = NULL;
-    enum rfade_status status = rfade_survey_prepare(
-        survey, &statement, error,
-        "SELECT campaign_id, name, total(reading_count), min(start_us), max(end_us) "
-        "FROM campaign LEFT JOIN extent USING (campaign_id) GROUP BY campaign_id ORDER BY name",
-        "");
-    if (status != RFADE_OK)
-        return status;
-    void *rows = NULL;
-    status = rfade_rows_read(survey, statement, sizeof **campaigns, read_campaign, &rows, count,
-                             error);
-    *campaigns = rows;
-    return status;
-}
-
 static void read_logger_file(sqlite3_stmt *statement, void *row)
 {
     struct rfade_logger_file *file = row;
@@ -54,10 +23,6 @@ static void read_logger_file(sqlite3_stmt *statement, void *row)
     file->refused_count = sqlite3_column_int64(statement, 8);
 }
 
-#define SELECT_LOGGER_FILE                                                                     \
-    "SELECT logger_file_id, sha256, name, size_bytes, line_count, reading_count, fix_count, "  \
-    "differing_fix_count, refused_count FROM logger_file "
-
 enum rfade_status rfade_survey_logger_files(struct rfade_survey *survey,
                                             struct rfade_logger_file **files, size_t *count,
                                             struct rfade_error *error)
@@ -66,32 +31,16 @@ enum rfade_status rfade_survey_logger_files(struct rfade_survey *survey,
     *count = 0;
     sqlite3_stmt *statement = NULL;
     enum rfade_status status = rfade_survey_prepare(
-        survey, &statement, error, SELECT_LOGGER_FILE "ORDER BY name, sha256", "");
+        survey, &statement, error,
+        "SELECT logger_file_id, sha256, name, size_bytes, line_count, reading_count, fix_count,"
+        " differing_fix_count, refused_count FROM logger_file ORDER BY name, sha256",
+        "");
     if (status != RFADE_OK)
         return status;
     void *rows = NULL;
     status = rfade_rows_read(survey, statement, sizeof **files, read_logger_file, &rows, count,
                              error);
     *files = rows;
-    return status;
-}
-
-enum rfade_status rfade_survey_logger_file(struct rfade_survey *survey,
-                                           const unsigned char sha256[32],
-                                           struct rfade_logger_file *file, bool *found,
-                                           struct rfade_error *error)
-{
-    *file = (struct rfade_logger_file){0};
-    *found = false;
-    sqlite3_stmt *statement = NULL;
-    enum rfade_status status =
-        rfade_survey_prepare(survey, &statement, error, SELECT_LOGGER_FILE "WHERE sha256 = ?1",
-                             "b", (const void *)sha256, (size_t)32);
-    if (status == RFADE_OK)
-        status = rfade_survey_step(survey, statement, found, error);
-    if (status == RFADE_OK && *found)
-        read_logger_file(statement, file);
-    sqlite3_finalize(statement);
     return status;
 }
 

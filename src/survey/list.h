@@ -7,14 +7,6 @@
 
 #include "survey/name.h"
 
-struct rfade_campaign {
-    int64_t campaign_id;
-    char name[RFADE_NAME_SIZE];
-    int64_t reading_count;
-    int64_t start_us; /**< of its first reading; 0 if it has none */
-    int64_t end_us;
-};
-
 struct rfade_logger_file {
     int64_t logger_file_id;
     unsigned char sha256[32];
@@ -57,21 +49,10 @@ struct rfade_survey_counts {
     int64_t size_bytes;        /**< of the survey file */
 };
 
-/** By name. */
-enum rfade_status rfade_survey_campaigns(struct rfade_survey *survey,
-                                         struct rfade_campaign **campaigns, size_t *count,
-                                         struct rfade_error *error);
-
 /** By name and SHA-256. */
 enum rfade_status rfade_survey_logger_files(struct rfade_survey *survey,
                                             struct rfade_logger_file **files, size_t *count,
                                             struct rfade_error *error);
-
-/** The file of these bytes; *found false if it isn't in the survey. */
-enum rfade_status rfade_survey_logger_file(struct rfade_survey *survey,
-                                           const unsigned char sha256[32],
-                                           struct rfade_logger_file *file, bool *found,
-                                           struct rfade_error *error);
 
 /** By names of vehicle, channel and campaign: the order doesn't depend on ids. */
 enum rfade_status rfade_survey_streams(struct rfade_survey *survey,

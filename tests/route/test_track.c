@@ -75,6 +75,7 @@ static struct quality judge(const struct drive *drive)
         int64_t time_us = 1700000000000000 + (int64_t)i * 10000;
         assert_true(rfade_track_at(track, time_us, &chainage_mm, &travel_mm));
         assert_true(travel_mm >= previous_mm);
+        bool stands = travel_mm == previous_mm;
         previous_mm = travel_mm;
         if (first_mm < 0)
             first_mm = travel_mm;
@@ -82,7 +83,6 @@ static struct quality judge(const struct drive *drive)
         quality.worst_m = fmax(quality.worst_m, fabs(error_m));
         quality.rms_m += error_m * error_m;
         count++;
-        bool stands = rfade_track_stands(track, time_us);
         if (t > stand_s && t < stand_s + 30) {
             if (stand_from_mm < 0)
                 stand_from_mm = travel_mm;

@@ -352,12 +352,6 @@ static void streams_and_counts_are_listed(void **state)
     assert_int_equal(counts.channels, 2);
     assert_int_equal(counts.generation, generation + 1);
     assert_int_equal(counts.fitted_generation, 0);
-    struct rfade_campaign *campaigns = NULL;
-    assert_int_equal(rfade_survey_campaigns(fixture->survey, &campaigns, &count, &error),
-                     RFADE_OK);
-    assert_int_equal(count, 1);
-    assert_int_equal(campaigns[0].reading_count, 3);
-    free(campaigns);
     struct rfade_logger_file *files = NULL;
     assert_int_equal(rfade_survey_logger_files(fixture->survey, &files, &count, &error),
                      RFADE_OK);
