@@ -6,6 +6,7 @@
 #include <string.h>
 
 #include "estimate/classes.h"
+#include "model/model.h"
 
 /* Below this many bins a shorter form gains nothing. */
 enum { SHORTEN_MIN = 120 };
@@ -20,11 +21,10 @@ static const double CELLS_MAX = 600.0;
 static const double CELLS_GROWTH_FROM = 2000.0; /* bins */
 
 static const double CDB_PER_DB = 100.0;
-static const double DB_PER_NEPER_OF_POWER = 4.342944819032518; /* 10 / ln 10 */
 
 static double linear(double db)
 {
-    return exp(db / DB_PER_NEPER_OF_POWER);
+    return exp(db / RFADE_DB_PER_NEPER_OF_POWER);
 }
 
 double rfade_bin_power(const struct rfade_bin *bin, double reference_db)
@@ -37,7 +37,7 @@ double rfade_bin_power(const struct rfade_bin *bin, double reference_db)
  * value is one neper of power (4.34 dB) less than the bound. */
 static double db_of(const struct rfade_bin *bin)
 {
-    return rfade_bin_place(bin) - (isinf(bin->low_db) ? DB_PER_NEPER_OF_POWER : 0.0);
+    return rfade_bin_place(bin) - (isinf(bin->low_db) ? RFADE_DB_PER_NEPER_OF_POWER : 0.0);
 }
 
 static bool bin_valid(const struct rfade_bin *bin)
@@ -78,7 +78,7 @@ enum rfade_status rfade_bins_moments(const struct rfade_bin *bins, size_t bin_co
         sum[1] += bins[i].weight * deviation * deviation;
     }
     moments->normalised_variance = sum[1] / moments->readings;
-    moments->mean_power_db = moments->mean_of_db + DB_PER_NEPER_OF_POWER * log(mean);
+    moments->mean_power_db = moments->mean_of_db + RFADE_DB_PER_NEPER_OF_POWER * log(mean);
     return RFADE_OK;
 }
 
@@ -210,7 +210,8 @@ enum rfade_status rfade_bins_shorten(const struct rfade_bin *bins, size_t bin_co
                                      const double *edges_db, struct rfade_bin **shorter,
                                      size_t *shorter_count)
 {
-    double deviation_db = DB_PER_NEPER_OF_POWER * fmin(sqrt(moments->normalised_variance), 1.0);
+    double deviation_db =
+        RFADE_DB_PER_NEPER_OF_POWER * fmin(sqrt(moments->normalised_variance), 1.0);
     double cells = CELLS_MIN * sqrt(fmax(1.0, (double)bin_count / CELLS_GROWTH_FROM));
     double cell_db = deviation_db / fmin(cells, CELLS_MAX);
     enum rfade_status status = RFADE_OK;

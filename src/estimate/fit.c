@@ -6,6 +6,7 @@
 #include <string.h>
 
 #include "estimate/profile.h"
+#include "model/model.h"
 
 /* Starts this far inside the range, so that a boundary is met only if the readings say so. */
 static const double START_INSIDE = 0.05;
@@ -21,7 +22,6 @@ static const double SPREAD_INSIDE = 1e-8;
  * other interval by the mean alone.
  */
 static const double RESOLVED_SHARE = 1.0 / 30.0;
-static const double DB_PER_NEPER_OF_POWER = 4.342944819032518; /* 10 / ln 10 */
 
 double rfade_deviate(double probability, double degrees_of_freedom)
 {
@@ -40,7 +40,7 @@ static void set_range(const struct rfade_problem *problem, struct rfade_sample *
     sample->spread_min = fmin(ends[0], ends[1]) + SPREAD_INSIDE;
     sample->spread_max = fmax(ends[0], ends[1]) - SPREAD_INSIDE;
     if (problem->step_min_db > 0.0) {
-        double deviation = RESOLVED_SHARE * problem->step_min_db / DB_PER_NEPER_OF_POWER;
+        double deviation = RESOLVED_SHARE * problem->step_min_db / RFADE_DB_PER_NEPER_OF_POWER;
         sample->spread_max = fmin(sample->spread_max, -2.0 * log(deviation));
     }
 }
