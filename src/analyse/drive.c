@@ -15,7 +15,7 @@ static enum rfade_status make_tracks(const struct rfade_analysis_settings *setti
     how.gap_s = settings->fix_gap_s;
     drive->tracks = calloc(drive->pass_count + 1, sizeof(struct rfade_track *));
     if (!drive->tracks)
-        return rfade_error_set(error, RFADE_NO_MEMORY, "", "out of memory");
+        return rfade_error_no_memory(error);
     enum rfade_status status = RFADE_OK;
     for (size_t i = 0; i < drive->pass_count && status == RFADE_OK; i++)
         status = rfade_track_create(positions, matches, count, &drive->passes[i], &how,
@@ -41,7 +41,7 @@ enum rfade_status rfade_drive_make(struct rfade_survey *survey,
         goto out;
     matches = malloc((count + 1) * sizeof *matches);
     if (!matches) {
-        status = rfade_error_set(error, RFADE_NO_MEMORY, "", "out of memory");
+        status = rfade_error_no_memory(error);
         goto out;
     }
     status = rfade_match_positions(route->matcher, positions, count, matches, &drive->passes,

@@ -14,11 +14,6 @@ struct group {
     int64_t campaign_id;
 };
 
-static enum rfade_status out_of_memory(struct rfade_error *error)
-{
-    return rfade_error_set(error, RFADE_NO_MEMORY, "", "out of memory");
-}
-
 static void read_group(sqlite3_stmt *statement, void *row)
 {
     *(struct group *)row =
@@ -192,7 +187,7 @@ static enum rfade_status store_result(struct rfade_survey *survey, const struct 
     if (status == RFADE_OK)
         status = rfade_tally_encode(pool->local_mean, &local_mean, &local_mean_size);
     if (status != RFADE_OK) {
-        status = out_of_memory(error);
+        status = rfade_error_no_memory(error);
         goto out;
     }
     status = rfade_survey_run(
@@ -227,7 +222,7 @@ static enum rfade_status fit_group(struct rfade_survey *survey,
     struct rfade_pool pool;
     struct rfade_pool_result result;
     if (rfade_pool_create(&pool) != RFADE_OK)
-        return out_of_memory(error);
+        return rfade_error_no_memory(error);
     enum rfade_status status = fill_pool(survey, group, &pool, error);
     if (status == RFADE_OK)
         status = count_passes(survey, group, &pool.passes, error);

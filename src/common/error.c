@@ -23,6 +23,11 @@ enum rfade_status rfade_error_set(struct rfade_error *error, enum rfade_status s
     return status;
 }
 
+enum rfade_status rfade_error_no_memory(struct rfade_error *error)
+{
+    return rfade_error_set(error, RFADE_NO_MEMORY, "close other programs", "memory ran out");
+}
+
 void rfade_error_at(struct rfade_error *error, const char *file, size_t line)
 {
     if (!error)

@@ -33,6 +33,9 @@ enum rfade_status rfade_error_set(struct rfade_error *error, enum rfade_status s
 enum rfade_status rfade_error_system(struct rfade_error *error, const char *file,
                                      int errno_value, const char *remedy, const char *what);
 
+/** Memory that ran out: RFADE_NO_MEMORY, with what the user can do. */
+enum rfade_status rfade_error_no_memory(struct rfade_error *error);
+
 /** Names the file and line of an error that is already filled. */
 void rfade_error_at(struct rfade_error *error, const char *file, size_t line);
 

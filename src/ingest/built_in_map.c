@@ -222,7 +222,7 @@ enum rfade_status rfade_built_in_map(const char *head, size_t head_size,
     fill(made, &roles);
 out:
     if (status == RFADE_NO_MEMORY)
-        rfade_error_set(error, status, NULL, "no memory for a column map");
+        rfade_error_no_memory(error);
     if (status == RFADE_OK)
         *map = made;
     else

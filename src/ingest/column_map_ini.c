@@ -185,7 +185,7 @@ enum rfade_status rfade_column_map_parse(const char *text, size_t text_size, con
 {
     *map = rfade_column_map_create(name);
     if (!*map)
-        return rfade_error_set(error, RFADE_NO_MEMORY, NULL, "no memory for a column map");
+        return rfade_error_no_memory(error);
     struct reading reading = {.at = text, .end = text + text_size, .map = *map, .error = error};
     int bad_line = ini_parse_stream(next_line, &reading, take_key, &reading);
     if (bad_line > 0 && reading.status == RFADE_OK) {
@@ -194,8 +194,7 @@ enum rfade_status rfade_column_map_parse(const char *text, size_t text_size, con
                "not a line of a column map, in", (*map)->name);
     }
     if (bad_line < 0 && reading.status == RFADE_OK)
-        reading.status =
-            rfade_error_set(error, RFADE_NO_MEMORY, NULL, "no memory for a column map");
+        reading.status = rfade_error_no_memory(error);
     if (reading.status == RFADE_OK)
         reading.status = rfade_column_map_check(*map, error);
     if (reading.status != RFADE_OK) {
@@ -219,7 +218,7 @@ enum rfade_status rfade_column_map_read(const char *path, struct rfade_column_ma
     }
     text = malloc(MOST_MAP_SIZE + 1);
     if (!text) {
-        status = rfade_error_set(error, RFADE_NO_MEMORY, NULL, "no memory for a column map");
+        status = rfade_error_no_memory(error);
         goto out;
     }
     size_t size = fread(text, 1, MOST_MAP_SIZE + 1, file);

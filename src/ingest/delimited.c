@@ -136,7 +136,7 @@ rfade_delimited_read(struct rfade_line_reader *lines, const struct rfade_column_
         goto out;
     delimited.tracks = rfade_tracks_create(&map->position, sink);
     if (!delimited.tracks) {
-        status = rfade_error_set(error, RFADE_NO_MEMORY, NULL, "no memory for positions");
+        status = rfade_error_no_memory(error);
         goto out;
     }
     status = read_lines(&delimited, lines, error);

@@ -351,7 +351,7 @@ enum rfade_status rfade_layout_create(const struct rfade_column_map *map, const 
         status = look_at_rows(look, error);
 out:
     if (status == RFADE_NO_MEMORY)
-        rfade_error_set(error, status, NULL, "no memory for the layout of a file");
+        rfade_error_no_memory(error);
     if (status == RFADE_OK)
         *layout = made;
     else

@@ -97,7 +97,7 @@ static enum rfade_status open_source(struct rfade_log_source *source, struct rfa
         return unreadable(errno, error);
     source->stream = gzdopen(source->descriptor, "rb");
     if (!source->stream)
-        return rfade_error_set(error, RFADE_NO_MEMORY, NULL, "no memory for a file");
+        return rfade_error_no_memory(error);
     source->descriptor = -1;
     (void)gzbuffer(source->stream, RFADE_BLOCK_SIZE);
     return RFADE_OK;
@@ -118,7 +118,7 @@ enum rfade_status rfade_log_source_open(const char *path, struct rfade_log_sourc
         memcpy(made->path, path, length);
         status = open_source(made, error);
     } else {
-        rfade_error_set(error, status, NULL, "no memory for a file");
+        rfade_error_no_memory(error);
     }
     if (status == RFADE_OK) {
         *source = made;
@@ -271,7 +271,7 @@ enum rfade_status rfade_ingest(struct rfade_log_source *source,
     struct rfade_byte_source bytes = {source, read_bytes};
     struct rfade_line_reader *lines = rfade_line_reader_create(&bytes);
     if (!lines)
-        return rfade_error_set(error, RFADE_NO_MEMORY, NULL, "no memory for a file");
+        return rfade_error_no_memory(error);
     enum rfade_status status =
         ingest(source, lines, maps, map_count, names, sink, summary, error);
     rfade_line_reader_destroy(lines);

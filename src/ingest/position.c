@@ -55,7 +55,7 @@ static enum rfade_status open_grid(struct rfade_position_converter *converter,
     (void)snprintf(code, sizeof code, "EPSG:%d", converter->map->epsg);
     converter->context = proj_context_create();
     if (!converter->context)
-        return rfade_error_set(error, RFADE_NO_MEMORY, NULL, "no memory for a grid");
+        return rfade_error_no_memory(error);
     proj_log_level(converter->context, PJ_LOG_NONE);
     (void)proj_context_set_enable_network(converter->context, 0);
     if (!is_projected(converter->context, code))
@@ -75,7 +75,7 @@ enum rfade_status rfade_position_converter_create(const struct rfade_position_ma
     *converter = NULL;
     struct rfade_position_converter *made = calloc(1, sizeof *made);
     if (!made)
-        return rfade_error_set(error, RFADE_NO_MEMORY, NULL, "no memory for positions");
+        return rfade_error_no_memory(error);
     made->map = map;
     geod_init(&made->ellipsoid, 6378137, 1 / 298.257223563); /* WGS 84 */
     enum rfade_status status =

@@ -88,7 +88,7 @@ enum rfade_status rfade_row_maker_create(const struct rfade_column_map *map,
     *maker = NULL;
     struct rfade_row_maker *made = calloc(1, sizeof *made);
     if (!made)
-        return rfade_error_set(error, RFADE_NO_MEMORY, NULL, "no memory for rows");
+        return rfade_error_no_memory(error);
     made->map = map;
     made->layout = layout;
     made->time_reader.format = &map->time;
@@ -96,7 +96,7 @@ enum rfade_status rfade_row_maker_create(const struct rfade_column_map *map,
     made->names = rfade_name_table_create();
     enum rfade_status status = RFADE_OK;
     if (!made->splitter || !made->names)
-        status = rfade_error_set(error, RFADE_NO_MEMORY, NULL, "no memory for rows");
+        status = rfade_error_no_memory(error);
     if (status == RFADE_OK)
         status = settle_names(made, names, error);
     if (status == RFADE_OK)

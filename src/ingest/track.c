@@ -199,7 +199,7 @@ enum rfade_status rfade_tracks_add(struct rfade_tracks *tracks,
 {
     struct vehicle_track *track = find(tracks, fix->vehicle);
     if (!track)
-        return rfade_error_set(error, RFADE_NO_MEMORY, NULL, "no memory for a vehicle's track");
+        return rfade_error_no_memory(error);
     enum rfade_status status = RFADE_OK;
     if (track->waiting.any && same_place(&track->waiting.first, fix)) {
         track->waiting.latest = *fix;

@@ -25,11 +25,6 @@ static void cut(struct rfade_path_list *list, size_t count)
         free(list->paths[--list->count]);
 }
 
-static enum rfade_status no_memory(struct rfade_error *error)
-{
-    return rfade_error_set(error, RFADE_NO_MEMORY, NULL, "no memory for the names of files");
-}
-
 /* Takes the path over, also on failure. */
 static enum rfade_status append(struct rfade_path_list *list, char *path,
                                 struct rfade_error *error)
@@ -44,7 +39,7 @@ static enum rfade_status append(struct rfade_path_list *list, char *path,
     }
     if (!path || list->count == list->capacity) {
         free(path);
-        return no_memory(error);
+        return rfade_error_no_memory(error);
     }
     list->paths[list->count++] = path;
     return RFADE_OK;

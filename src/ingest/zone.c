@@ -140,7 +140,7 @@ enum rfade_status rfade_zone_from_tzif(const unsigned char *bytes, size_t size,
     *zone = NULL;
     struct rfade_zone *made = calloc(1, sizeof *made);
     if (!made)
-        return rfade_error_set(error, RFADE_NO_MEMORY, NULL, "no memory for a time zone");
+        return rfade_error_no_memory(error);
     if (!take_file(made, bytes, size)) {
         rfade_zone_destroy(made);
         return rfade_error_set(error, RFADE_INPUT, name_remedy, "not a usable time zone file");
@@ -179,7 +179,7 @@ static enum rfade_status read_named(const char *name, struct rfade_zone **zone,
     enum rfade_status status = RFADE_OK;
     unsigned char *bytes = malloc(MOST_FILE_SIZE);
     if (!bytes) {
-        status = rfade_error_set(error, RFADE_NO_MEMORY, NULL, "no memory for a time zone");
+        status = rfade_error_no_memory(error);
         goto out;
     }
     size_t size = fread(bytes, 1, MOST_FILE_SIZE, file);
@@ -237,7 +237,7 @@ enum rfade_status rfade_zone_create(const char *name, struct rfade_zone **zone,
         return read_named(name, zone, error);
     *zone = calloc(1, sizeof **zone);
     if (!*zone)
-        return rfade_error_set(error, RFADE_NO_MEMORY, NULL, "no memory for a time zone");
+        return rfade_error_no_memory(error);
     (*zone)->first_offset_s = offset_s;
     return RFADE_OK;
 }

@@ -221,8 +221,7 @@ enum rfade_status rfade_driven_line(const struct rfade_position *positions, size
     free(raw);
     if (!complete) {
         free(line);
-        return rfade_error_set(error, RFADE_NO_MEMORY, "close other programs",
-                               "memory ran out");
+        return rfade_error_no_memory(error);
     }
     *places = line;
     *place_count = used;

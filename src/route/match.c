@@ -55,11 +55,6 @@ struct rfade_match_settings rfade_match_defaults(void)
         .corridor_m = 30, .away_s = 60, .turn_m = 50, .fastest_m_s = 100};
 }
 
-static enum rfade_status no_memory(struct rfade_error *error)
-{
-    return rfade_error_set(error, RFADE_NO_MEMORY, "close other programs", "memory ran out");
-}
-
 enum rfade_status rfade_matcher_create(const struct rfade_route *route,
                                        const struct rfade_match_settings *settings,
                                        struct rfade_matcher **matcher,
@@ -72,12 +67,12 @@ enum rfade_status rfade_matcher_create(const struct rfade_route *route,
                                "a setting of matching is not above 0");
     struct rfade_matcher *made = calloc(1, sizeof *made);
     if (!made)
-        return no_memory(error);
+        return rfade_error_no_memory(error);
     made->settings = *settings;
     made->index = rfade_leg_index_create(route, settings->corridor_m);
     if (!made->index) {
         rfade_matcher_destroy(made);
-        return no_memory(error);
+        return rfade_error_no_memory(error);
     }
     *matcher = made;
     return RFADE_OK;
@@ -296,7 +291,7 @@ static enum rfade_status find_passes(const struct rfade_matcher *matcher,
             continue;
         if (first != SIZE_MAX && restarts[i]) {
             if (!cut_turns(matches, first, last, matcher->settings.turn_m, list))
-                return no_memory(error);
+                return rfade_error_no_memory(error);
             first = SIZE_MAX;
         }
         if (first == SIZE_MAX)
@@ -304,7 +299,7 @@ static enum rfade_status find_passes(const struct rfade_matcher *matcher,
         last = i;
     }
     if (first != SIZE_MAX && !cut_turns(matches, first, last, matcher->settings.turn_m, list))
-        return no_memory(error);
+        return rfade_error_no_memory(error);
     return RFADE_OK;
 }
 
@@ -343,7 +338,7 @@ enum rfade_status rfade_match_positions(const struct rfade_matcher *matcher,
     bool *restarts = calloc(count + 1, sizeof *restarts);
     if (!position_states || !restarts ||
         !find_states(matcher, positions, count, &states, position_states, &last)) {
-        status = no_memory(error);
+        status = rfade_error_no_memory(error);
         goto out;
     }
     trace_back(&states, position_states, &last, count, matches, restarts);

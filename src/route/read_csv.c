@@ -140,8 +140,7 @@ enum rfade_status rfade_line_from_csv(const char *name, const char *text, size_t
     struct csv_parser parser;
     if (!reading || csv_init(&parser, CSV_APPEND_NULL) != 0) {
         free(reading);
-        return rfade_error_set(error, RFADE_NO_MEMORY, "close other programs",
-                               "memory ran out");
+        return rfade_error_no_memory(error);
     }
     char separator = find_separator(text);
     csv_set_delim(&parser, (unsigned char)separator);

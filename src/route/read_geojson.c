@@ -108,8 +108,7 @@ static enum rfade_status read_coordinates(sqlite3 *database, const char *text, s
                 text, size);
     if (!statement || sqlite3_bind_text(statement, 2, path, -1, SQLITE_STATIC) != SQLITE_OK) {
         sqlite3_finalize(statement);
-        return rfade_error_set(error, RFADE_NO_MEMORY, "close other programs",
-                               "memory ran out");
+        return rfade_error_no_memory(error);
     }
     int code = SQLITE_DONE;
     while (status == RFADE_OK && (code = sqlite3_step(statement)) == SQLITE_ROW) {
@@ -142,8 +141,7 @@ enum rfade_status rfade_line_from_geojson(const char *name, const char *text, si
     enum rfade_status status;
     if (sqlite3_open_v2(":memory:", &database, SQLITE_OPEN_READWRITE | SQLITE_OPEN_NOMUTEX,
                         NULL) != SQLITE_OK)
-        status =
-            rfade_error_set(error, RFADE_NO_MEMORY, "close other programs", "memory ran out");
+        status = rfade_error_no_memory(error);
     else
         status = find_coordinates(database, text, size, &path, error);
     if (status == RFADE_OK)

@@ -24,8 +24,7 @@ enum rfade_status rfade_place_list_add(struct rfade_place_list *list,
         size_t capacity = list->capacity ? list->capacity * 2 : 256;
         struct rfade_place *grown = realloc(list->all, capacity * sizeof *grown);
         if (!grown)
-            return rfade_error_set(error, RFADE_NO_MEMORY, "close other programs",
-                                   "memory ran out");
+            return rfade_error_no_memory(error);
         list->all = grown;
         list->capacity = capacity;
     }
@@ -66,8 +65,11 @@ static enum rfade_status slurp(const char *path, char **text, size_t *size,
     size_t got = read ? fread(read, 1, (size_t)about.st_size, file) : 0;
     bool failed = ferror(file) != 0;
     (void)fclose(file);
-    if (!read)
-        return fail(path, RFADE_NO_MEMORY, "close other programs", "memory ran out", error);
+    if (!read) {
+        (void)rfade_error_no_memory(error);
+        rfade_error_at(error, path, 0);
+        return RFADE_NO_MEMORY;
+    }
     if (failed) {
         free(read);
         return fail(path, RFADE_STORAGE, remedy, "the file can't be read", error);

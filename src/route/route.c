@@ -110,7 +110,7 @@ enum rfade_status rfade_route_create(const struct rfade_place *places, size_t co
 
 no_memory:
     rfade_route_destroy(made);
-    return rfade_error_set(error, RFADE_NO_MEMORY, "close other programs", "memory ran out");
+    return rfade_error_no_memory(error);
 }
 
 double rfade_route_length_m(const struct rfade_route *route)

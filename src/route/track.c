@@ -180,7 +180,7 @@ enum rfade_status rfade_track_create(const struct rfade_position *positions,
 
 no_memory:
     rfade_track_destroy(made);
-    return rfade_error_set(error, RFADE_NO_MEMORY, "close other programs", "memory ran out");
+    return rfade_error_no_memory(error);
 }
 
 int64_t rfade_track_start_us(const struct rfade_track *track)

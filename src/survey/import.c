@@ -58,11 +58,6 @@ struct rfade_import {
     struct rfade_import_counts counts;
 };
 
-static enum rfade_status out_of_memory(struct rfade_error *error)
-{
-    return rfade_error_set(error, RFADE_NO_MEMORY, "close other programs", "memory ran out");
-}
-
 static void free_import(struct rfade_import *import)
 {
     while (import->streams) {
@@ -179,7 +174,7 @@ enum rfade_status rfade_import_begin(struct rfade_survey *survey, const char *na
     struct rfade_import *begun = calloc(1, sizeof *begun);
     if (!begun) {
         rfade_survey_rollback(survey);
-        return out_of_memory(error);
+        return rfade_error_no_memory(error);
     }
     begun->survey = survey;
     begun->last_stream = &begun->streams;
@@ -311,7 +306,7 @@ static enum rfade_status find_stream(struct rfade_import *import,
         }
     struct stream *made = calloc(1, sizeof *made);
     if (!made)
-        return out_of_memory(error);
+        return rfade_error_no_memory(error);
     enum rfade_status status = name_stream(import, made, reading, error);
     if (status != RFADE_OK) {
         free(made);
@@ -362,7 +357,7 @@ static enum rfade_status take_reading(void *context, const struct rfade_ingest_r
     if (status != RFADE_OK)
         return status;
     if (!make_room(stream))
-        return out_of_memory(error);
+        return rfade_error_no_memory(error);
     if (stream->count > 0 && reading->time_us < stream->readings[stream->count - 1].time_us)
         stream->sorted = false;
     stream->readings[stream->count] = (struct rfade_batch_reading){
@@ -392,7 +387,7 @@ static enum rfade_status find_fix_vehicle(struct rfade_import *import, const cha
         return status;
     struct fix_vehicle *made = calloc(1, sizeof *made);
     if (!made)
-        return out_of_memory(error);
+        return rfade_error_no_memory(error);
     status =
         rfade_name_add(import->survey, RFADE_NAMED_VEHICLE, name, &made->vehicle_id, error);
     if (status != RFADE_OK) {

@@ -107,8 +107,7 @@ static enum rfade_status append_rows(struct rfade_survey *survey, sqlite3_stmt *
         if (time_us < from_us || time_us > to_us)
             continue;
         if (!make_room(entries))
-            return rfade_error_set(error, RFADE_NO_MEMORY, "fit shorter time ranges",
-                                   "memory ran out");
+            return rfade_error_no_memory(error);
         if (entries->count > 0 && time_us < entries->all[entries->count - 1].time_us)
             entries->sorted = false;
         entries->all[entries->count] = (struct entry){
@@ -235,8 +234,7 @@ static enum rfade_status merge(struct entries *entries, struct rfade_survey_read
     size_t kept = keep_each_once(entries->all, entries->count);
     struct rfade_survey_reading *made = malloc(kept * sizeof *made);
     if (!made)
-        return rfade_error_set(error, RFADE_NO_MEMORY, "fit shorter time ranges",
-                               "memory ran out");
+        return rfade_error_no_memory(error);
     for (size_t i = 0; i < kept; i++)
         made[i] = (struct rfade_survey_reading){.time_us = entries->all[i].time_us,
                                                 .level_cdb = entries->all[i].level_cdb,

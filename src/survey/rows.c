@@ -26,8 +26,7 @@ enum rfade_status rfade_rows_read(struct rfade_survey *survey, sqlite3_stmt *sta
             capacity = capacity ? capacity * 2 : 16;
             char *grown = realloc(read, capacity * row_size);
             if (!grown) {
-                status = rfade_error_set(error, RFADE_NO_MEMORY, "close other programs",
-                                         "memory ran out");
+                status = rfade_error_no_memory(error);
                 break;
             }
             read = grown;

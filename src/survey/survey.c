@@ -169,8 +169,7 @@ enum rfade_status rfade_survey_open_as(const char *path, enum rfade_survey_mode 
     struct rfade_survey *opened = calloc(1, sizeof *opened);
     if (!opened || !(opened->path = plain_path(path))) {
         free(opened);
-        return rfade_error_set(error, RFADE_NO_MEMORY, "close other programs",
-                               "memory ran out");
+        return rfade_error_no_memory(error);
     }
     if (sqlite3_open_v2(opened->path, &opened->database, flags[mode] | SQLITE_OPEN_NOMUTEX,
                         NULL) != SQLITE_OK ||

@@ -50,6 +50,17 @@ static void error_cuts_long_text(void **state)
     assert_int_equal(strlen(error.file), sizeof error.file - 1);
 }
 
+static void memory_that_ran_out_has_a_remedy(void **state)
+{
+    (void)state;
+    struct rfade_error error;
+    assert_int_equal(rfade_error_no_memory(&error), RFADE_NO_MEMORY);
+    assert_int_equal(error.status, RFADE_NO_MEMORY);
+    assert_string_equal(error.what, "memory ran out");
+    assert_string_not_equal(error.remedy, "");
+    assert_int_equal(rfade_error_no_memory(NULL), RFADE_NO_MEMORY);
+}
+
 static void error_of_the_system_says_why(void **state)
 {
     (void)state;
@@ -77,6 +88,7 @@ int main(void)
         cmocka_unit_test(error_keeps_what_remedy_and_status),
         cmocka_unit_test(error_shows_no_escapes),
         cmocka_unit_test(error_cuts_long_text),
+        cmocka_unit_test(memory_that_ran_out_has_a_remedy),
         cmocka_unit_test(error_of_the_system_says_why),
         cmocka_unit_test(no_error_wanted_is_harmless),
     };
