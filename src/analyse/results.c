@@ -89,7 +89,7 @@ static enum rfade_status check_row(const struct rfade_segment_result *row,
                                    struct rfade_error *error)
 {
     if (!row->route || !row->channel || !row->campaign || !row->sampling)
-        return rfade_error_set(error, RFADE_NO_MEMORY, "", "out of memory");
+        return rfade_error_no_memory(error);
     if (!row->level || !row->local_mean)
         return rfade_error_set(error, RFADE_STORAGE, "run `routefade fit --all`",
                                "a stored tally of route %s, segment %lld can't be read",

@@ -113,7 +113,7 @@ static enum rfade_status run_fading(struct rfade_run *run, struct rfade_error *e
         size_t count = rfade_segment_order(&asked->segments, ranks, results.count);
         status = print_rows(run, &results, ranks, count, error);
     } else {
-        status = rfade_error_set(error, RFADE_NO_MEMORY, "", "out of memory");
+        status = rfade_error_no_memory(error);
     }
     free(ranks);
     rfade_results_clear(&results);

@@ -190,7 +190,7 @@ static enum rfade_status prepare(struct job *job, const struct import_options *g
     /* NOLINTNEXTLINE(bugprone-sizeof-expression): an array of pointers */
     job->maps = calloc(given->columns.count + 1, sizeof *job->maps);
     if (status == RFADE_OK && !job->maps)
-        status = rfade_error_set(error, RFADE_NO_MEMORY, NULL, "out of memory");
+        status = rfade_error_no_memory(error);
     for (size_t i = 0; status == RFADE_OK && i < given->columns.count; i++) {
         status = rfade_column_map_read(given->columns.items[i], &job->maps[i], error);
         job->map_count = i + 1;

@@ -64,7 +64,7 @@ static enum rfade_status add_text(const struct parse *parse, struct rfade_texts 
 {
     void *items = (void *)texts->items;
     if (!grow(&items, texts->count, sizeof *texts->items))
-        return rfade_error_set(parse->error, RFADE_NO_MEMORY, NULL, "out of memory");
+        return rfade_error_no_memory(parse->error);
     texts->items = (const char **)items;
     texts->items[texts->count++] = text;
     return RFADE_OK;
@@ -132,7 +132,7 @@ static enum rfade_status add_numbers(const struct parse *parse,
             return status;
         void *items = numbers->items;
         if (!grow(&items, numbers->count, sizeof *numbers->items))
-            return rfade_error_set(parse->error, RFADE_NO_MEMORY, NULL, "out of memory");
+            return rfade_error_no_memory(parse->error);
         numbers->items = items;
         numbers->items[numbers->count++] = number;
     }
@@ -272,7 +272,7 @@ enum rfade_status rfade_options_parse(int argc, char *const *argv,
     enum rfade_status status = RFADE_OK;
     struct option *table = library_table(&parse);
     if (!table)
-        return rfade_error_set(error, RFADE_NO_MEMORY, NULL, "out of memory");
+        return rfade_error_no_memory(error);
     opterr = 0;
     optind = 0; /* starts over, and reads the "-" below anew */
     /* "-": arguments come in order, whatever POSIXLY_CORRECT says; ":": a missing value is

@@ -150,7 +150,7 @@ static enum rfade_status write_json(const struct rfade_run *run, const struct li
                       "outage", rfade_json_number(outage));
         if (json_array_append_new(outages, entry) != 0) {
             json_decref(outages);
-            return rfade_error_set(error, RFADE_NO_MEMORY, NULL, "out of memory");
+            return rfade_error_no_memory(error);
         }
     }
     json_t *document = json_pack("{s:o, s:o, s:o}", "fading", fading_json(link), "mean_snr_db",

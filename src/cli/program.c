@@ -78,7 +78,7 @@ static enum rfade_status run_command(const struct rfade_command *command, int ar
     struct rfade_common_options common = rfade_common_option_defaults();
     void *options = malloc(command->options_size ? command->options_size : 1);
     if (!options)
-        return rfade_error_set(error, RFADE_NO_MEMORY, NULL, "out of memory");
+        return rfade_error_no_memory(error);
     if (command->options_size > 0)
         memcpy(options, command->defaults, command->options_size);
     const struct rfade_option_group groups[] = {

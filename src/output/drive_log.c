@@ -175,7 +175,7 @@ enum rfade_status rfade_drive_log_write(FILE *stream, const char *stream_name,
                             .whole_ms = all_whole_ms(log)};
     writer.generator = gsl_rng_alloc(gsl_rng_mt19937);
     if (!writer.generator)
-        return rfade_error_set(error, RFADE_NO_MEMORY, NULL, "out of memory");
+        return rfade_error_no_memory(error);
     gsl_rng_set(writer.generator, (unsigned long)(log->seed & 0xFFFFFFFFu));
     write_head(&writer);
     for (size_t i = 0; i < log->count && !ferror(stream); i++)

@@ -84,7 +84,7 @@ enum rfade_status rfade_rows_begin(const struct rfade_rows_format *format, FILE 
     *rows = NULL;
     struct rfade_rows *made = calloc(1, sizeof *made);
     if (!made)
-        return rfade_error_set(error, RFADE_NO_MEMORY, NULL, "out of memory");
+        return rfade_error_no_memory(error);
     *made = (struct rfade_rows){.format = format,
                                 .stream = stream,
                                 .stream_name = stream_name,
@@ -120,7 +120,7 @@ static enum rfade_status take_value(struct rfade_rows *rows, size_t column,
         return RFADE_OK;
     rows->texts[column] = strdup(value->text);
     if (!rows->texts[column])
-        return rfade_error_set(error, RFADE_NO_MEMORY, NULL, "out of memory");
+        return rfade_error_no_memory(error);
     rfade_text_printable(rows->texts[column]);
     rows->values[column].text = rows->texts[column];
     return RFADE_OK;
