@@ -81,6 +81,39 @@ static void parts_add_up_to_the_whole(void **state)
     }
 }
 
+/* Steepest is the density of Rice half way up to the steady amplitude, 6 dB down. */
+static void rice_intervals_across_the_steepest_level_add_up(void **state)
+{
+    (void)state;
+    for (int k_step = 0; k_step < 12; k_step++) {
+        const struct example example = {RFADE_RICE, 3.0 * pow(1.6, k_step)};
+        for (int low_step = 0; low_step < 24; low_step++) {
+            const double low_db = -46.0 + 1.7 * low_step;
+            for (int width_step = 0; width_step < 16; width_step++) {
+                const double high_db = low_db + 6.0 + 2.3 * width_step;
+                const double middle_db = 0.5 * (low_db + high_db);
+                const double whole = interval(&example, low_db, high_db).value;
+                const double sum = exp(interval(&example, low_db, middle_db).value - whole) +
+                                   exp(interval(&example, middle_db, high_db).value - whole);
+                assert_true(fabs(sum - 1.0) < 3e-13 + 1e-15 * fabs(whole));
+            }
+        }
+    }
+}
+
+/* P -> (1+K) exp(-K) y deep down, so d ln P/dK -> 1/(1+K) - 1 = -K/(1+K). */
+static void rice_slope_is_right_in_the_deepest_fades(void **state)
+{
+    (void)state;
+    const double ks[] = {1e-6, 0.1, 0.49, 0.51, 4.0, 105.0, 3e3, 1e5};
+    for (size_t i = 0; i < sizeof ks / sizeof ks[0]; i++) {
+        const struct example example = {RFADE_RICE, ks[i]};
+        const double expected = -ks[i] / (1.0 + ks[i]);
+        const double slope = interval(&example, -INFINITY, -300.0).d_parameter;
+        assert_true(fabs(slope / expected - 1.0) < 1e-14);
+    }
+}
+
 /* Everything below and everything above is all there is, with slopes that cancel. */
 static void censored_halves_are_the_tails(void **state)
 {
@@ -270,6 +303,8 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(interval_matches_random_points),
         cmocka_unit_test(parts_add_up_to_the_whole),
+        cmocka_unit_test(rice_intervals_across_the_steepest_level_add_up),
+        cmocka_unit_test(rice_slope_is_right_in_the_deepest_fades),
         cmocka_unit_test(censored_halves_are_the_tails),
         cmocka_unit_test(slopes_match_differences),
         cmocka_unit_test(rice_slope_is_right_at_and_near_zero),

@@ -13,6 +13,7 @@
 #include "routefade/special.h"
 #include "special/gamma_tails.h"
 #include "special/marcum.h"
+#include "special/tails.h"
 #include "support/reference_table.h"
 
 static const double tail_accuracy = 1e-12;
@@ -210,6 +211,21 @@ static void tails_are_monotone(void **state)
     }
 }
 
+/* mpmath 1.2.1, 40 digits: exp(-x^2/2) of the doubles nearest to these. */
+static void half_square_keeps_its_digits(void **state)
+{
+    (void)state;
+    const double values[][2] = {
+        {0.1, 0.9950124791926823128},       {1.7, 0.23574607655586354858},
+        {10.3, 9.1801379509591616524e-24},  {37.219, 1.5700892913396165983e-301},
+        {37.4, 1.8328429210730634544e-304},
+    };
+    for (size_t i = 0; i < sizeof values / sizeof values[0]; i++) {
+        assert_true(fabs(rfade_exp_half_square(values[i][0]) / values[i][1] - 1.0) < 5e-16);
+    }
+    assert_true(rfade_exp_half_square(1e200) == 0.0);
+}
+
 int main(void)
 {
     gsl_set_error_handler_off();
@@ -223,6 +239,7 @@ int main(void)
         cmocka_unit_test(tails_are_continuous_where_the_side_changes),
         cmocka_unit_test(gamma_is_continuous_where_the_series_ends),
         cmocka_unit_test(tails_are_monotone),
+        cmocka_unit_test(half_square_keeps_its_digits),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
