@@ -188,6 +188,14 @@ RFADE_API double rfade_window_narrowing(double window_wavelengths, double k,
                                         const struct rfade_ray *ray);
 
 /**
+ * What the same dividing takes away from ln E[y] - E[ln y], from which maximum likelihood
+ * finds Nakagami's m [Thom 1958]: cov(y, d) - var(d)/2, d the window's mean less 1.
+ * Domain, failure and accuracy as above.
+ */
+RFADE_API double rfade_window_log_narrowing(double window_wavelengths, double k,
+                                            const struct rfade_ray *ray);
+
+/**
  * Variance of the mean power over a stretch, relative to the mean power squared:
  * (2/L) integral from 0 to L of (1 - u/L) [J0(2 pi u)^2 + 2K J0(2 pi u) cos(2 pi u c)] du
  * over (1 + K)^2, c the cosine of the ray's direction, under Rice fading with isotropic

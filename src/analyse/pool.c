@@ -2,7 +2,9 @@
 #include "analyse/pool.h"
 
 #include <gsl/gsl_cdf.h>
+#include <gsl/gsl_errno.h>
 #include <gsl/gsl_math.h>
+#include <gsl/gsl_sf_psi.h>
 #include <math.h>
 #include <stdlib.h>
 
@@ -196,6 +198,29 @@ static double slow_variance(const struct rfade_pool *pool, double k,
     return fmax(0.0, excess) / passes;
 }
 
+/*
+ * The estimate takes one narrowing for all models, that of the power's variance. Of
+ * Nakagami's m the window narrows less: ln m - psi(m) falls short by the log narrowing, and m
+ * is too large by as much over psi'(m) - 1/m.
+ */
+static void correct_nakagami(double narrowing, double log_narrowing, struct rfade_fit *fit)
+{
+    if (fit->model != RFADE_NAKAGAMI || fit->at_upper_boundary || !isfinite(log_narrowing))
+        return;
+    gsl_sf_result slope;
+    double m = fit->parameter;
+    double most = rfade_model(fit->model)->parameter_max;
+    /* Beyond m of about 100 the two narrowings are the same, and psi' - 1/m cancels. */
+    if (!(m > 0.0 && m < 100.0) || gsl_sf_psi_1_e(m, &slope) != GSL_SUCCESS)
+        return;
+    double own = log_narrowing / (m * slope.val - 1.0);
+    double ratio = (1.0 - own) / (1.0 - narrowing);
+    fit->parameter = fmin(ratio * m, most);
+    fit->parameter_low = ratio * fit->parameter_low;
+    fit->parameter_high =
+        fit->parameter_high < most ? fmin(ratio * fit->parameter_high, most) : most;
+}
+
 static enum rfade_status fit_fading(struct rfade_pool *pool,
                                     const struct rfade_analysis_settings *settings,
                                     struct rfade_pool_result *result)
@@ -217,8 +242,12 @@ static enum rfade_status fit_fading(struct rfade_pool *pool,
             rfade_window_narrowing(settings->window_wavelengths, narrowed.parameter, &ray);
         status = rfade_estimate_bins(bins, bin_count, &how, &result->estimate);
         double slow = slow_variance(pool, narrowed.parameter, &ray);
-        for (size_t i = 0; i < result->estimate.fit_count && status == RFADE_OK; i++)
+        double log_narrowing =
+            rfade_window_log_narrowing(settings->window_wavelengths, narrowed.parameter, &ray);
+        for (size_t i = 0; i < result->estimate.fit_count && status == RFADE_OK; i++) {
+            correct_nakagami(how.narrowing, log_narrowing, &result->estimate.fits[i]);
             widen(settings, slow, &result->estimate.fits[i]);
+        }
     }
     result->fitted = status == RFADE_OK;
     free(bins);

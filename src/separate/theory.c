@@ -161,3 +161,18 @@ double rfade_window_narrowing(double window_wavelengths, double k, const struct 
             (1.0 + variance) * mean_variance) /
            variance;
 }
+
+/* ln E[x] = -cov(y, d) + var(d) and E[ln x] = E[ln y] + var(d)/2 to the same order. */
+double rfade_window_log_narrowing(double window_wavelengths, double k,
+                                  const struct rfade_ray *ray)
+{
+    struct lag_means half;
+    double s = 1.0 / (1.0 + k);
+
+    if (!valid(window_wavelengths, 4.0, 2.0 * followed_wavelengths, k) ||
+        !lag_means(0.5 * window_wavelengths, ray, &half)) {
+        return NAN;
+    }
+    return 2.0 * k * s * s * half.plain[0] + s * s * half.plain[1] -
+           0.5 * rfade_stretch_mean_variance(window_wavelengths, k, ray);
+}

@@ -66,6 +66,20 @@ static void narrowing_matches_quadrature(void **state)
     }
 }
 
+/* Without a ray cov(y, d) is the mean of J0^2, which follows from the narrowing above, 4 times
+ * it less twice the variance. */
+static void log_narrowing_follows_from_the_other_two(void **state)
+{
+    double variance = 0.0181957970790985;
+    double covariance = 0.25 * (0.039460401065434 + 2.0 * variance);
+
+    (void)state;
+    assert_true(
+        fabs(rfade_window_log_narrowing(40.0, 0.0, &ACROSS) / (covariance - 0.5 * variance) -
+             1.0) < 1e-11);
+    assert_true(isnan(rfade_window_log_narrowing(3.9, 0.0, &ACROSS)));
+}
+
 struct angled_row {
     double length_wavelengths;
     double k;
@@ -250,6 +264,7 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(variance_of_a_stretch_matches_quadrature),
         cmocka_unit_test(narrowing_matches_quadrature),
+        cmocka_unit_test(log_narrowing_follows_from_the_other_two),
         cmocka_unit_test(a_ray_at_an_angle_matches_quadrature),
         cmocka_unit_test(lags_tell_the_rays_direction),
         cmocka_unit_test(nothing_known_is_a_ray_across),

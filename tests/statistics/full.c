@@ -26,17 +26,31 @@ static const struct circumstances base = {.k = 0.0,
                                           .decorrelation_m = 60.0,
                                           .shadowing = RFADE_SHADOWING_SMOOTH,
                                           .segment_m = 100.0,
+                                          .margin_windows = 2.0,
                                           .passes = 1};
 
 static const double ks[] = {0.0, 1.0, 4.0, 10.0};
 static const double angles_deg[] = {90.0, 0.0};
 
-enum { VARIATIONS = 8, CELLS = 4 * 2 * VARIATIONS };
+/* Exponential shadowing: K 1, 4, 10 and decorrelation 20, 60 m, after the others. */
+enum {
+    VARIATIONS = 8,
+    SMOOTH_CELLS = 4 * 2 * VARIATIONS,
+    EXPONENTIAL_CELLS = 3 * 2,
+    CELLS = SMOOTH_CELLS + EXPONENTIAL_CELLS
+};
 
 /* Each K and direction of the ray with the base and with one thing changed. */
 static struct circumstances cell(int index)
 {
     struct circumstances it = base;
+    if (index >= SMOOTH_CELLS) {
+        it.shadowing = RFADE_SHADOWING_EXPONENTIAL;
+        it.margin_windows = 20.0;
+        it.k = ks[1 + (index - SMOOTH_CELLS) % 3];
+        it.decorrelation_m = index - SMOOTH_CELLS < 3 ? 20.0 : 60.0;
+        return it;
+    }
     it.k = ks[index / VARIATIONS % 4];
     it.ray_angle_deg = angles_deg[index / VARIATIONS / 4];
     switch (index % VARIATIONS) {
@@ -97,6 +111,25 @@ static void print_measure(const struct circumstances *it, int measure,
     printf("\n");
 }
 
+/* K of the segments called resolved is to be right in the middle. */
+static bool run_exponential(int index, int64_t segments)
+{
+    struct circumstances it = cell(index);
+    struct count count;
+    if (!count_segments(&it, segments, 1 + (uint64_t)index * 100000, &count)) {
+        return false;
+    }
+    double ratio = count.k_count > 0 ? count_median_k(&count) / it.k : 1.0;
+    bool right = count.k_count < segments / 10 || (ratio >= 0.9 && ratio <= 1.1);
+    printf("cell %d: exponential, K %g D %g: resolved %" PRId64 " inseparable %" PRId64
+           "; median K of resolved over truth %.3f%s\n",
+           index, it.k, it.decorrelation_m, count.resolved, count.inseparable, ratio,
+           right ? "" : " FAIL");
+    fflush(stdout);
+    count_clear(&count);
+    return right;
+}
+
 static bool run_cell(int index, int64_t segments)
 {
     struct circumstances it = cell(index);
@@ -143,7 +176,7 @@ int main(int count, char **values)
     bool good = segments > 0 && first >= 0;
     gsl_set_error_handler_off();
     for (int i = first; i < first + cells && i < CELLS; i++) {
-        good &= run_cell(i, segments);
+        good &= i < SMOOTH_CELLS ? run_cell(i, segments) : run_exponential(i, segments);
     }
     return good ? EXIT_SUCCESS : EXIT_FAILURE;
 }

@@ -20,10 +20,9 @@ static const double confidence = 0.95;
 
 enum { PASSES_MAX = 16 };
 
-/* Two windows of road before and behind the segment, so that no window is cut. */
-static double margin_m(void)
+static double margin_m(const struct circumstances *circumstances)
 {
-    return 2.0 * 40.0 * speed_of_light_m_s / carrier_hz;
+    return circumstances->margin_windows * 40.0 * speed_of_light_m_s / carrier_hz;
 }
 
 /* One pass: readings, and which of them lie in the segment. */
@@ -34,17 +33,18 @@ struct pass {
 
 static bool in_segment(const struct circumstances *circumstances, double distance_m)
 {
-    return distance_m >= margin_m() && distance_m < margin_m() + circumstances->segment_m;
+    return distance_m >= margin_m(circumstances) &&
+           distance_m < margin_m(circumstances) + circumstances->segment_m;
 }
 
 static bool drive(const struct circumstances *circumstances, uint64_t seed, bool shadowed,
                   double standstill_s, struct pass *pass)
 {
-    double middle_m = margin_m() + 0.5 * circumstances->segment_m;
+    double middle_m = margin_m(circumstances) + 0.5 * circumstances->segment_m;
     double spacing_m = circumstances->spacing_wavelengths * speed_of_light_m_s / carrier_hz;
     struct rfade_drive_settings settings = {
         .seed = seed,
-        .length_m = circumstances->segment_m + 2.0 * margin_m(),
+        .length_m = circumstances->segment_m + 2.0 * margin_m(circumstances),
         .carrier_hz = carrier_hz,
         .speed_m_s = speed_m_s,
         .rate_hz = speed_m_s / spacing_m,
@@ -153,7 +153,7 @@ static struct rfade_track_reading logged(const struct circumstances *circumstanc
 {
     double step_db = circumstances->step_db;
     double level_dbm = step_db * round(reading->power_dbm / step_db);
-    double from_m = margin_m();
+    double from_m = margin_m(circumstances);
     double to_m = from_m + circumstances->segment_m;
     int32_t segment = reading->distance_m < from_m ? 0 : reading->distance_m < to_m ? 1 : 2;
     if (level_dbm < least_dbm) {

@@ -23,6 +23,8 @@ struct circumstances {
     double decorrelation_m;
     enum rfade_shadowing shadowing;
     double segment_m;
+    double margin_windows; /**< road before and behind it: 2, so that no window is cut, or 20,
+                                the neighbourhood that the label is judged by */
     int passes;
     double standstill_s; /**< at the middle of the segment; 0: none */
 };

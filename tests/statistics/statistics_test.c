@@ -24,6 +24,7 @@ static const struct circumstances base = {.k = 4.0,
                                           .decorrelation_m = 60.0,
                                           .shadowing = RFADE_SHADOWING_SMOOTH,
                                           .segment_m = 100.0,
+                                          .margin_windows = 2.0,
                                           .passes = 1};
 
 /* Four standard errors of a share of 95 % below it: with 60 segments, 84 %. */
