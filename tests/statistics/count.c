@@ -7,12 +7,27 @@
 #include <math.h>
 #include <stdlib.h>
 
+/* Quantile of the beta distribution by halves: gsl_cdf_beta_Pinv gives NaN for some counts of
+ * several hundred (GSL 2.7.1). */
+static double beta_quantile(double probability, double first, double second)
+{
+    double low = 0.0, high = 1.0;
+    for (int i = 0; i < 50; i++) {
+        double middle = 0.5 * (low + high);
+        if (gsl_cdf_beta_P(middle, first, second) < probability) {
+            low = middle;
+        } else {
+            high = middle;
+        }
+    }
+    return 0.5 * (low + high);
+}
+
 void share_ends(const struct share *share, double *low, double *high)
 {
-    double hits = (double)share->hits, trials = (double)share->trials;
-    *low = share->hits == 0 ? 0.0 : gsl_cdf_beta_Pinv(0.025, hits, trials - hits + 1.0);
-    *high = share->hits == share->trials ? 1.0
-                                         : gsl_cdf_beta_Pinv(0.975, hits + 1.0, trials - hits);
+    double hits = (double)share->hits, missed = (double)(share->trials - share->hits);
+    *low = share->hits == 0 ? 0.0 : beta_quantile(0.025, hits, missed + 1.0);
+    *high = share->hits == share->trials ? 1.0 : beta_quantile(0.975, hits + 1.0, missed);
 }
 
 bool share_excludes(const struct share *share, double low, double high)
