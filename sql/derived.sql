@@ -15,6 +15,13 @@ CREATE TABLE trace (
     located_count INTEGER NOT NULL,   -- with a place on the route
     step_db REAL NOT NULL,            -- the channel's, or found in the data
     step_found INTEGER NOT NULL CHECK (step_found IN (0, 1)),
+    -- Levels as logged. A reading at or below the floor stands for all below it; NULL: none.
+    floor_dbm REAL,
+    floor_source TEXT CHECK (floor_source IN ('channel', 'pile-up', 'noise', 'lost')),
+    ceiling_dbm REAL,
+    ceiling_source TEXT CHECK (ceiling_source IN ('channel', 'pile-up')),
+    lost_count INTEGER,     -- sequence numbers missing; NULL: the log has none
+    missing_count INTEGER,  -- without them, by a regular interval; NULL: it isn't regular
     wavelength_m REAL NOT NULL,
     fingerprint BLOB NOT NULL
 ) STRICT;

@@ -95,6 +95,8 @@ CREATE TABLE reading (
     offset_us INTEGER NOT NULL, -- from the extent's start_us
     level_cdb INTEGER,
     snr_cdb INTEGER,
+    -- Sequence numbers missing since the reading before in the file; NULL: not known.
+    lost_before INTEGER CHECK (lost_before >= 0),
     CHECK (level_cdb IS NOT NULL OR snr_cdb IS NOT NULL)
 ) STRICT;
 

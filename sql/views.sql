@@ -15,6 +15,7 @@ SELECT
                   (extent.start_us + reading.offset_us) % 1000000) AS time_utc,
     reading.level_cdb / 100.0 AS level_dbm,
     reading.snr_cdb / 100.0 AS snr_db,
+    reading.lost_before,
     logger_file.name AS logger_file
 FROM extent
 JOIN reading ON reading.reading_id BETWEEN extent.first_reading_id

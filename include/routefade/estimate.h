@@ -153,6 +153,15 @@ RFADE_API enum rfade_status rfade_estimate_column(const double *levels_dbm, size
                                                   const struct rfade_column_settings *settings,
                                                   struct rfade_column_estimate *result);
 
+/**
+ * Quantisation step of a receiver, found from its readings: the largest of the usual steps
+ * (3, 2, 1, 0.5, 0.25, ... 0.01 dB) of which all readings are whole multiples, counted from
+ * one of them; above 1 dB only where the level changes at least 30 times. Readings that are
+ * all the same tell their own last decimal, up to 1 dB. 0: on no grid of 0.01 dB.
+ * @param levels_dbm  [count], in the order they were read
+ */
+RFADE_API double rfade_find_step_db(const double *levels_dbm, size_t count);
+
 #ifdef __cplusplus
 }
 #endif

@@ -5,6 +5,7 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "survey/channel.h"
 #include "survey/rows.h"
 
 static const char *const ROWS_SQL =
@@ -25,10 +26,6 @@ static const char *const FITS_SQL =
     "SELECT model, preferred, offset_db, parameter, parameter_low, parameter_high, weight,"
     " goodness_p FROM fit WHERE fading_id = ?1 ORDER BY model";
 
-/* Boltzmann's constant (SI, exact) times 290 K, in mW/Hz: the usual reference temperature of
- * a noise figure (IEEE Std 161). */
-static const double THERMAL_MW_PER_HZ = 1.380649e-23 * 290.0 * 1e3;
-
 static char *column_text(sqlite3_stmt *statement, int column)
 {
     const unsigned char *text = sqlite3_column_text(statement, column);
@@ -42,13 +39,6 @@ static struct rfade_tally *column_tally(sqlite3_stmt *statement, int column)
     const void *bytes = sqlite3_column_blob(statement, column);
     size_t size = (size_t)sqlite3_column_bytes(statement, column);
     return rfade_tally_decode(bytes, size, &tally) == RFADE_OK ? tally : NULL;
-}
-
-static double noise_floor(double told_dbm, double bandwidth_hz, double noise_figure_db)
-{
-    if (!isnan(told_dbm))
-        return told_dbm;
-    return 10.0 * log10(THERMAL_MW_PER_HZ * bandwidth_hz) + noise_figure_db;
 }
 
 /* Members that could not be had stay NULL; check_row tells. */
@@ -75,9 +65,9 @@ static void read_row(sqlite3_stmt *statement, void *row)
         .local_sigma_high_db = rfade_column_real(statement, 17),
         .window_noise_db = rfade_column_real(statement, 18),
         .level_uncertainty_db = rfade_column_real(statement, 19),
-        .noise_floor_dbm =
-            noise_floor(rfade_column_real(statement, 20), rfade_column_real(statement, 21),
-                        rfade_column_real(statement, 22)),
+        .noise_floor_dbm = rfade_noise_floor_dbm(rfade_column_real(statement, 20),
+                                                 rfade_column_real(statement, 21),
+                                                 rfade_column_real(statement, 22)),
         .bandwidth_hz = rfade_column_real(statement, 21),
         .symbol_rate_hz = rfade_column_real(statement, 23),
         .level = column_tally(statement, 24),

@@ -11,6 +11,7 @@ struct rfade_analysis_settings rfade_analysis_defaults(void)
         .block_wavelengths = 10.0,
         .gap_s = 30.0,
         .fix_gap_s = 30.0,
+        .noise_margin_db = 3.0,
         .confidence = 0.95,
     };
 }
@@ -23,5 +24,6 @@ void rfade_analysis_settings_fingerprint(const struct rfade_analysis_settings *s
     rfade_fingerprint_number(writer, settings->block_wavelengths);
     rfade_fingerprint_number(writer, settings->gap_s);
     rfade_fingerprint_number(writer, settings->fix_gap_s);
+    rfade_fingerprint_number(writer, settings->noise_margin_db);
     rfade_fingerprint_number(writer, settings->confidence);
 }

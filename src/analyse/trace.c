@@ -4,6 +4,7 @@
 #include <math.h>
 #include <stdlib.h>
 
+#include "analyse/losses.h"
 #include "analyse/receiver.h"
 #include "ingest/sink.h"
 #include "routefade/separate.h"
@@ -15,6 +16,12 @@ static const double LIGHT_M_S = 299792458.0;
 static double wavelength_m(const struct rfade_channel *channel)
 {
     return LIGHT_M_S / channel->carrier_hz;
+}
+
+static double noise_dbm(const struct rfade_channel *channel)
+{
+    return rfade_noise_floor_dbm(channel->noise_floor_dbm, channel->bandwidth_hz,
+                                 channel->noise_figure_db);
 }
 
 enum rfade_status rfade_trace_fingerprint(const struct rfade_trace_work *work,
@@ -45,6 +52,7 @@ enum rfade_status rfade_trace_fingerprint(const struct rfade_trace_work *work,
     rfade_fingerprint_number(&writer, work->channel->step_db);
     rfade_fingerprint_number(&writer, work->channel->floor_dbm);
     rfade_fingerprint_number(&writer, work->channel->ceiling_dbm);
+    rfade_fingerprint_number(&writer, noise_dbm(work->channel));
     rfade_fingerprint_number(&writer, work->calibration ? work->calibration->offset_db : NAN);
     rfade_fingerprint_number(
         &writer, work->calibration ? work->calibration->offset_uncertainty_db : NAN);
@@ -58,24 +66,49 @@ struct making {
     const struct rfade_drive *drive;
     const struct rfade_fingerprint *fingerprint;
     struct rfade_trace_receiver known;
-    struct rfade_track_reading *located; /* room for a whole trace */
+    const struct rfade_survey_reading *readings; /* lost ones put in */
+    size_t count;
+    struct rfade_track_reading *located; /* room for all of them */
 };
 
-static enum rfade_status store_trace(const struct making *making,
-                                     const struct rfade_survey_reading *readings, size_t count,
-                                     size_t repeated, size_t located_count, int64_t *trace_id,
-                                     struct rfade_error *error)
+/* What is stored of a trace beside what it is made with. */
+struct trace_row {
+    int64_t start_us;
+    int64_t end_us;
+    int64_t reading_count;
+    int64_t repeated_count;
+    int64_t located_count;
+    int64_t lost_count;    /* negative: not known */
+    int64_t missing_count; /* negative: not known */
+};
+
+/* SQLite stores a NaN as NULL. */
+static double limit_dbm(const struct rfade_trace_receiver *known, int32_t limit_cdb,
+                        enum rfade_limit_source source)
+{
+    return source == RFADE_LIMIT_NONE ? NAN : (limit_cdb - known->offset_cdb) / 100.0;
+}
+
+static enum rfade_status store_trace(const struct making *making, const struct trace_row *row,
+                                     int64_t *trace_id, struct rfade_error *error)
 {
     const struct rfade_trace_work *work = making->work;
+    const struct rfade_trace_receiver *known = &making->known;
     enum rfade_status status = rfade_survey_run(
         work->survey, error,
         "INSERT INTO trace (route_id, vehicle_id, channel_id, campaign_id, start_us, end_us,"
-        " reading_count, repeated_count, located_count, step_db, step_found, wavelength_m,"
-        " fingerprint) VALUES (?1, ?2, ?3, ?4, ?5, ?6, ?7, ?8, ?9, ?10, ?11, ?12, ?13)",
-        "iiiiiiiiididb", work->route->row.route_id, work->outing->vehicle_id,
-        work->stream->channel_id, work->stream->campaign_id, readings[0].time_us,
-        readings[count - 1].time_us, (int64_t)count, (int64_t)repeated, (int64_t)located_count,
-        making->known.receiver.step_cdb / 100.0, (int64_t)making->known.step_found,
+        " reading_count, repeated_count, located_count, step_db, step_found, floor_dbm,"
+        " floor_source, ceiling_dbm, ceiling_source, lost_count, missing_count, wavelength_m,"
+        " fingerprint) VALUES (?1, ?2, ?3, ?4, ?5, ?6, ?7, ?8, ?9, ?10, ?11, ?12, ?13, ?14,"
+        " ?15, iif(?16 < 0, NULL, ?16), iif(?17 < 0, NULL, ?17), ?18, ?19)",
+        "iiiiiiiiididtdtiidb", work->route->row.route_id, work->outing->vehicle_id,
+        work->stream->channel_id, work->stream->campaign_id, row->start_us, row->end_us,
+        row->reading_count, row->repeated_count, row->located_count,
+        known->receiver.step_cdb / 100.0, (int64_t)known->step_found,
+        limit_dbm(known, known->reported.floor_cdb, known->floor_source),
+        rfade_limit_source_name(known->floor_source),
+        limit_dbm(known, known->reported.ceiling_cdb, known->ceiling_source),
+        rfade_limit_source_name(known->ceiling_source), row->lost_count, row->missing_count,
         wavelength_m(work->channel), (const void *)making->fingerprint->bytes,
         sizeof making->fingerprint->bytes);
     *trace_id = sqlite3_last_insert_rowid(rfade_survey_database(work->survey));
@@ -180,21 +213,21 @@ static size_t first_at(const struct rfade_survey_reading *readings, size_t count
 }
 
 /* The readings of a trace that lie on one pass, with their place. */
-static size_t locate(const struct making *making, const struct rfade_survey_reading *readings,
-                     size_t count, size_t pass, struct rfade_track_reading *located)
+static size_t locate(const struct making *making, size_t pass)
 {
+    const struct rfade_survey_reading *readings = making->readings;
     int64_t start_us = 0, end_us = 0;
     rfade_drive_pass_times(making->drive, pass, &start_us, &end_us);
-    size_t end = first_at(readings, count, end_us), found = 0;
-    for (size_t i = first_at(readings, count, start_us); i < end; i++) {
+    size_t end = first_at(readings, making->count, end_us), found = 0;
+    for (size_t i = first_at(readings, making->count, start_us); i < end; i++) {
         int64_t chainage_mm = 0, travel_mm = 0;
         if (!rfade_track_at(making->drive->tracks[pass], readings[i].time_us, &chainage_mm,
                             &travel_mm))
             continue;
-        located[found++] = (struct rfade_track_reading){
+        making->located[found++] = (struct rfade_track_reading){
             .time_us = readings[i].time_us,
             .travel_mm = travel_mm,
-            .level_cdb = readings[i].level_cdb + making->known.offset_cdb,
+            .level_cdb = rfade_trace_level_cdb(&making->known, readings[i].level_cdb),
             .segment =
                 rfade_route_work_segment(making->work->route, (double)chainage_mm / 1000.0),
         };
@@ -202,32 +235,88 @@ static size_t locate(const struct making *making, const struct rfade_survey_read
     return found;
 }
 
-static enum rfade_status make_trace(const struct making *making,
-                                    const struct rfade_survey_reading *readings, size_t count,
-                                    size_t repeated, struct rfade_error *error)
+static enum rfade_status store_passes(const struct making *making, struct trace_row *row,
+                                      struct rfade_error *error)
 {
-    size_t passes = making->drive->pass_count, located_count = 0;
+    size_t passes = making->drive->pass_count;
     for (size_t pass = 0; pass < passes; pass++)
-        located_count += locate(making, readings, count, pass, making->located);
+        row->located_count += (int64_t)locate(making, pass);
     int64_t trace_id = 0;
-    enum rfade_status status =
-        store_trace(making, readings, count, repeated, located_count, &trace_id, error);
+    enum rfade_status status = store_trace(making, row, &trace_id, error);
     for (size_t pass = 0; pass < passes && status == RFADE_OK; pass++) {
-        size_t located = locate(making, readings, count, pass, making->located);
+        size_t located = locate(making, pass);
         if (located > 0)
             status = separate_pass(making, trace_id, pass, making->located, located, error);
     }
     return status;
 }
 
-/* Rows that carry SNR alone say nothing of the level. */
+/* A run of readings without a gap; `stream` is what all the stream's traces share. */
+static enum rfade_status make_trace(const struct making *stream,
+                                    const struct rfade_survey_reading *readings, size_t count,
+                                    size_t repeated, struct rfade_error *error)
+{
+    struct making making = *stream;
+    struct rfade_survey_reading *filled = NULL;
+    struct trace_row row = {
+        .start_us = readings[0].time_us,
+        .end_us = readings[count - 1].time_us,
+        .reading_count = (int64_t)count,
+        .repeated_count = (int64_t)repeated,
+        .lost_count = rfade_count_lost(readings, count),
+        .missing_count = -1,
+    };
+    if (row.lost_count > 0)
+        rfade_trace_receiver_losing(&making.known, readings, count);
+    enum rfade_status status = rfade_fill_losses(
+        readings, count, making.known.reported.floor_cdb - making.known.offset_cdb, &filled,
+        &making.count, error);
+    if (status == RFADE_OK && row.lost_count < 0)
+        status = rfade_count_missing(readings, count, &row.missing_count, error);
+    making.readings = filled;
+    making.located = malloc((making.count + 1) * sizeof *making.located);
+    if (!making.located && status == RFADE_OK)
+        status = rfade_error_set(error, RFADE_NO_MEMORY, "", "out of memory");
+    if (status == RFADE_OK)
+        status = store_passes(&making, &row, error);
+    free(making.located);
+    free(filled);
+    return status;
+}
+
+/* Rows that carry SNR alone say nothing of the level; what was lost before them was lost. */
 static size_t keep_levels(struct rfade_survey_reading *readings, size_t count)
 {
     size_t kept = 0;
-    for (size_t i = 0; i < count; i++)
-        if (readings[i].level_cdb != RFADE_NO_VALUE_CDB)
-            readings[kept++] = readings[i];
+    int32_t lost = 0;
+    for (size_t i = 0; i < count; i++) {
+        bool known = readings[i].lost_before != RFADE_LOST_UNKNOWN;
+        lost = known ? lost + readings[i].lost_before : 0;
+        if (readings[i].level_cdb == RFADE_NO_VALUE_CDB)
+            continue;
+        readings[kept] = readings[i];
+        if (known)
+            readings[kept].lost_before = lost;
+        kept++;
+        lost = 0;
+    }
     return kept;
+}
+
+static enum rfade_status make_traces(const struct making *stream,
+                                     const struct rfade_survey_reading *readings, size_t count,
+                                     size_t repeated, struct rfade_error *error)
+{
+    enum rfade_status status = RFADE_OK;
+    int64_t gap_us = llround(stream->work->settings->gap_s * 1e6);
+    for (size_t first = 0; first < count && status == RFADE_OK;) {
+        size_t end = first + 1;
+        while (end < count && readings[end].time_us - readings[end - 1].time_us <= gap_us)
+            end++;
+        status = make_trace(stream, readings + first, end - first, first ? 0 : repeated, error);
+        first = end;
+    }
+    return status;
 }
 
 enum rfade_status rfade_trace_make(const struct rfade_trace_work *work,
@@ -244,25 +333,13 @@ enum rfade_status rfade_trace_make(const struct rfade_trace_work *work,
     if (status != RFADE_OK)
         return status;
     count = keep_levels(readings, count);
-    struct making making = {
-        .work = work,
-        .drive = drive,
-        .fingerprint = fingerprint,
-        .known = rfade_trace_receiver(work->channel, work->calibration, readings, count),
-        .located = malloc((count + 1) * sizeof *making.located),
-    };
-    if (!making.located)
-        status = rfade_error_set(error, RFADE_NO_MEMORY, "", "out of memory");
-    int64_t gap_us = llround(work->settings->gap_s * 1e6);
-    for (size_t first = 0; first < count && status == RFADE_OK;) {
-        size_t end = first + 1;
-        while (end < count && readings[end].time_us - readings[end - 1].time_us <= gap_us)
-            end++;
-        status =
-            make_trace(&making, readings + first, end - first, first ? 0 : repeated, error);
-        first = end;
-    }
-    free(making.located);
+    struct making stream = {.work = work, .drive = drive, .fingerprint = fingerprint};
+    status = rfade_trace_receiver(work->channel, work->calibration, work->settings, readings,
+                                  count, &stream.known);
+    if (status == RFADE_OK)
+        status = make_traces(&stream, readings, count, repeated, error);
+    else
+        status = rfade_error_set(error, status, "", "out of memory");
     free(readings);
     return status;
 }

@@ -4,15 +4,17 @@
 #include "analyse/analyse.h"
 #include "analyse/results.h"
 #include "cli/command.h"
+#include "cli/found.h"
 
 struct fit_options {
     bool all;
     double window_wavelengths;
     double gap_s;
+    double noise_margin_db;
 };
 
 static const struct fit_options defaults = {
-    .all = false, .window_wavelengths = 40, .gap_s = 30};
+    .all = false, .window_wavelengths = 40, .gap_s = 30, .noise_margin_db = 3};
 
 static const struct rfade_option options[] = {
     {"all", NULL, RFADE_OPTION_FLAG, offsetof(struct fit_options, all), 0, 0, NULL,
@@ -22,6 +24,10 @@ static const struct rfade_option options[] = {
      "window of travel of the local mean, in wavelengths (40)"},
     {"gap-s", "T", RFADE_OPTION_NUMBER, offsetof(struct fit_options, gap_s), 0.001, 86400, NULL,
      "a longer gap between readings ends a trace, in seconds (30)"},
+    {"noise-margin-db", "DB", RFADE_OPTION_NUMBER,
+     offsetof(struct fit_options, noise_margin_db), 0, 40, NULL,
+     "where the channel's noise is known its power is taken off each level, and levels less "
+     "than this above it count as below it (3; 0: levels are of the signal alone)"},
 };
 
 static const struct rfade_column columns[] = {
@@ -71,6 +77,7 @@ static enum rfade_status run_fit(struct rfade_run *run, struct rfade_error *erro
     struct rfade_analysis_settings settings = rfade_analysis_defaults();
     settings.window_wavelengths = asked->window_wavelengths;
     settings.gap_s = asked->gap_s;
+    settings.noise_margin_db = asked->noise_margin_db;
     struct rfade_survey *survey = NULL;
     struct rfade_analysis_summary summary;
     enum rfade_status status =
@@ -79,6 +86,8 @@ static enum rfade_status run_fit(struct rfade_run *run, struct rfade_error *erro
         status = rfade_analyse(survey, &settings, asked->all, &summary, error);
     if (status == RFADE_OK && !summary.nothing_new)
         status = tell_unused(run, survey, error);
+    if (status == RFADE_OK && !summary.nothing_new && !run->common->quiet)
+        status = rfade_note_gaps(survey, run->notes, error);
     rfade_survey_close(survey);
     if (status == RFADE_OK && summary.nothing_new && !run->common->quiet)
         (void)fputs("nothing new since the last fit\n", run->notes);

@@ -3,6 +3,7 @@
 #include <stdlib.h>
 
 #include "cli/command.h"
+#include "cli/found.h"
 #include "output/json.h"
 #include "output/utc.h"
 #include "survey/list.h"
@@ -14,6 +15,8 @@ struct holdings {
     size_t stream_count;
     struct rfade_logger_file *files;
     size_t file_count;
+    struct rfade_stream_found *found;
+    size_t found_count;
 };
 
 static enum rfade_status read_holdings(struct rfade_survey *survey, struct holdings *holdings,
@@ -26,6 +29,8 @@ static enum rfade_status read_holdings(struct rfade_survey *survey, struct holdi
     if (status == RFADE_OK)
         status =
             rfade_survey_logger_files(survey, &holdings->files, &holdings->file_count, error);
+    if (status == RFADE_OK)
+        status = rfade_survey_found(survey, &holdings->found, &holdings->found_count, error);
     return status;
 }
 
@@ -125,6 +130,22 @@ static json_t *file_json(const struct rfade_logger_file *file)
                      (json_int_t)file->fix_count, "refused", (json_int_t)file->refused_count);
 }
 
+static json_t *count_json(int64_t count)
+{
+    return count < 0 ? json_null() : json_integer((json_int_t)count);
+}
+
+static json_t *found_json(const struct rfade_stream_found *found)
+{
+    return json_pack(
+        "{s:o, s:o, s:o, s:o, s:o, s:o, s:o, s:o}", "vehicle", rfade_json_text(found->vehicle),
+        "channel", rfade_json_text(found->channel), "campaign",
+        rfade_json_text(found->campaign), "step_db", rfade_json_number(found->step_db),
+        "floor_dbm", rfade_json_number(found->floor_dbm), "ceiling_dbm",
+        rfade_json_number(found->ceiling_dbm), "lost", count_json(found->lost_count), "missing",
+        count_json(found->missing_count));
+}
+
 /* Appends to an array; NULL once anything has failed. */
 static json_t *append(json_t *array, json_t *element)
 {
@@ -139,14 +160,16 @@ static json_t *append(json_t *array, json_t *element)
 static enum rfade_status write_json(const struct rfade_run *run,
                                     const struct holdings *holdings, struct rfade_error *error)
 {
-    json_t *streams = json_array(), *files = json_array();
+    json_t *streams = json_array(), *files = json_array(), *found = json_array();
     for (size_t i = 0; i < holdings->stream_count; i++)
         streams = append(streams, stream_json(&holdings->streams[i]));
+    for (size_t i = 0; i < holdings->found_count; i++)
+        found = append(found, found_json(&holdings->found[i]));
     for (size_t i = 0; i < holdings->file_count; i++)
         files = append(files, file_json(&holdings->files[i]));
-    json_t *document =
-        rfade_json_join(counts_json(&holdings->counts),
-                        json_pack("{s:o, s:o}", "streams", streams, "files", files));
+    json_t *document = rfade_json_join(
+        counts_json(&holdings->counts),
+        json_pack("{s:o, s:o, s:o}", "streams", streams, "files", files, "found", found));
     return rfade_json_document(run->output, NULL, document, error);
 }
 
@@ -164,9 +187,12 @@ static enum rfade_status run_status(struct rfade_run *run, struct rfade_error *e
         if (run->common->format == &rfade_rows_table)
             write_summary(run->output, &holdings.counts);
         status = write_streams(run, &holdings, error);
+        if (status == RFADE_OK && run->common->format == &rfade_rows_table)
+            rfade_write_found(run->output, holdings.found, holdings.found_count);
     }
     free(holdings.streams);
     free(holdings.files);
+    free(holdings.found);
     rfade_survey_close(survey);
     return status;
 }

@@ -6,7 +6,6 @@
 #include "estimate/bins.h"
 #include "estimate/classes.h"
 #include "estimate/estimate.h"
-#include "estimate/step.h"
 
 /* More blocks than this tell nothing new; fewer make a variance too uncertain. */
 enum { BLOCKS_MAX = 1000 };

@@ -1,5 +1,5 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-#include "estimate/step.h"
+#include "routefade/estimate.h"
 
 #include <math.h>
 #include <stdbool.h>
@@ -7,6 +7,12 @@
 
 /* Steps that receivers report in, centi-dB. */
 static const int64_t USUAL_STEPS_CDB[] = {300, 200, 100, 50, 25, 20, 10, 5, 2, 1};
+
+/*
+ * n changes of level in steps of 1 dB are all even by chance once in 2^n times; under 30 of
+ * them a step above 1 dB is not believed.
+ */
+enum { CHANGES_FOR_COARSE = 30, NO_CHANGE_NEEDED_CDB = 100 };
 
 /*
  * A decimal with two places differs from its double by at most 2^-53 of itself; levels in
@@ -39,7 +45,9 @@ static bool to_cdb(double level_dbm, int64_t *level_cdb)
 double rfade_find_step_db(const double *levels_dbm, size_t count)
 {
     int64_t first = 0;
+    int64_t before = 0;
     int64_t divisor = 0;
+    size_t changes = 0;
     for (size_t i = 0; i < count; i++) {
         int64_t level = 0;
         if (!to_cdb(levels_dbm[i], &level)) {
@@ -50,6 +58,8 @@ double rfade_find_step_db(const double *levels_dbm, size_t count)
         }
         int64_t apart = level > first ? level - first : first - level;
         divisor = greatest_common_divisor(divisor, apart);
+        changes += i > 0 && level != before;
+        before = level;
     }
     if (divisor == 0) {
         /* One value only: its own last decimal is all there is, up to 1 dB. */
@@ -57,7 +67,9 @@ double rfade_find_step_db(const double *levels_dbm, size_t count)
     }
     size_t steps = sizeof USUAL_STEPS_CDB / sizeof *USUAL_STEPS_CDB;
     for (size_t i = 0; i < steps; i++) {
-        if (divisor % USUAL_STEPS_CDB[i] == 0) {
+        bool believed =
+            changes >= CHANGES_FOR_COARSE || USUAL_STEPS_CDB[i] <= NO_CHANGE_NEEDED_CDB;
+        if (believed && divisor % USUAL_STEPS_CDB[i] == 0) {
             return (double)USUAL_STEPS_CDB[i] / 100.0;
         }
     }

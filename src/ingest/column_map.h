@@ -78,6 +78,16 @@
  *     column = speed
  *     unit = km/h              km/h | m/s | mph | knots
  *
+ *     [sequence]               numbers that go up by one from packet to packet of a vehicle on
+ *     column = packet          a channel: each that is missing becomes a reading below the
+ *     modulus = 65536          receiver's floor, at the place where it was lost. Give it only
+ *                              where a packet gets lost for a weak signal, not for collisions
+ *                              or a busy logger. `modulus`: how many numbers there are before
+ *                              they begin again at 0 (at least 16); without it they never do.
+ *                              A number further on than 1001, or than half the modulus, or
+ *                              one that falls, is a restart. A row's number counts even if
+ *                              its level is empty or refused
+ *
  *     [vehicle]                each of these three by `name` or by `column`; vehicle and
  *     name = spreader-07       campaign may also be given on the command line. Names stay
  *     [campaign]               text: 0007 keeps its zeros

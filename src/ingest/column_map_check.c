@@ -103,6 +103,14 @@ static struct finding check_speed(struct rfade_column_map *map)
     return fine;
 }
 
+static struct finding check_sequence(struct rfade_column_map *map)
+{
+    if (map->sequence_line > 0 && !rfade_column_given(&map->sequence_column))
+        return (struct finding){map->sequence_line, "the sequence number needs a column",
+                                "add `column = ...` to its [sequence] section"};
+    return fine;
+}
+
 static struct finding check_named(const struct rfade_named *named)
 {
     bool name = named->name[0] != '\0';
@@ -156,7 +164,7 @@ static struct finding check_header(struct rfade_column_map *map)
                  is_name(&map->subsecond_column) || is_name(&map->position.first) ||
                  is_name(&map->position.second) || is_name(&map->speed_column) ||
                  is_name(&map->vehicle.column) || is_name(&map->channel.column) ||
-                 is_name(&map->campaign.column);
+                 is_name(&map->campaign.column) || is_name(&map->sequence_column);
     for (size_t i = 0; i < map->level_count && !names; i++)
         names = is_name(&map->levels[i].level.column) || is_name(&map->levels[i].snr.column);
     if (names)
@@ -169,8 +177,8 @@ enum rfade_status rfade_column_map_check(struct rfade_column_map *map,
                                          struct rfade_error *error)
 {
     static struct finding (*const checks[])(struct rfade_column_map *) = {
-        check_file,  check_time,   check_position, check_speed,
-        check_names, check_levels, check_header};
+        check_file,     check_time,  check_position, check_speed,
+        check_sequence, check_names, check_levels,   check_header};
     for (size_t i = 0; i < sizeof checks / sizeof checks[0]; i++) {
         struct finding found = checks[i](map);
         if (!found.what)

@@ -63,9 +63,10 @@ static void note_section_line(struct reading *reading)
     const struct {
         const char *section;
         size_t *line;
-    } lines[] = {{"time", &map->time_line},       {"position", &map->position.line},
-                 {"speed", &map->speed_line},     {"vehicle", &map->vehicle.line},
-                 {"channel", &map->channel.line}, {"campaign", &map->campaign.line}};
+    } lines[] = {{"time", &map->time_line},        {"position", &map->position.line},
+                 {"speed", &map->speed_line},      {"sequence", &map->sequence_line},
+                 {"vehicle", &map->vehicle.line},  {"channel", &map->channel.line},
+                 {"campaign", &map->campaign.line}};
     for (size_t i = 0; i < sizeof lines / sizeof lines[0]; i++)
         if (strcmp(lines[i].section, reading->section) == 0)
             *lines[i].line = reading->line;
@@ -74,8 +75,8 @@ static void note_section_line(struct reading *reading)
 /* `name` is what stands between the brackets. */
 static void begin_section(struct reading *reading, char *name)
 {
-    static const char remedy[] =
-        "sections are file, time, position, speed, vehicle, channel, campaign, level NAME";
+    static const char remedy[] = "sections are file, time, position, speed, sequence, vehicle, "
+                                 "channel, campaign, level NAME";
     reading->section[0] = '\0';
     reading->level = NULL;
     size_t length = strcspn(name, " \t");

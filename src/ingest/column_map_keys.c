@@ -9,6 +9,7 @@
 
 #include "common/text.h"
 #include "ingest/number.h"
+#include "ingest/sink.h"
 #include "ingest/time_text.h"
 
 static bool read_double(const char *value, double low, double high, double *number)
@@ -325,6 +326,11 @@ static bool set_sentinels(void *target, const char *value)
     return false;
 }
 
+static bool set_modulus(void *target, const char *value)
+{
+    return read_count(value, 16, (size_t)RFADE_MOST_SEQUENCE, target);
+}
+
 /* -140 .. -20 */
 static bool set_valid(void *target, const char *value)
 {
@@ -396,6 +402,9 @@ static const struct rfade_map_key keys[] = {
      "metres a second, from 1 to 20000"},
     {"speed", "column", set_column, MAP(speed_column), column_remedy},
     {"speed", "unit", set_speed_unit, MAP(speed_m_s_per_unit), "km/h, m/s, mph or knots"},
+    {"sequence", "column", set_column, MAP(sequence_column), column_remedy},
+    {"sequence", "modulus", set_modulus, MAP(sequence_modulus),
+     "the number of different numbers, such as 65536"},
     {"vehicle", "name", set_name, MAP(vehicle.name), name_remedy},
     {"vehicle", "column", set_column, MAP(vehicle.column), column_remedy},
     {"channel", "name", set_name, MAP(channel.name), name_remedy},

@@ -116,6 +116,9 @@ struct rfade_column_map {
     struct rfade_column speed_column;
     double speed_m_s_per_unit; /**< NaN: not given */
     size_t speed_line;
+    struct rfade_column sequence_column;
+    size_t sequence_modulus; /**< 0: numbers never begin anew */
+    size_t sequence_line;
     struct rfade_named vehicle;
     struct rfade_named channel;
     struct rfade_named campaign;

@@ -59,6 +59,36 @@ static void note_time(struct delimited *delimited, int64_t time_us)
     delimited->any_time = true;
 }
 
+/* What the readings of a row have in common; no level yet. */
+static struct rfade_ingest_reading row_reading(const struct delimited *delimited,
+                                               const struct rfade_row *row, const char *channel)
+{
+    return (struct rfade_ingest_reading){
+        .time_us = row->time_us,
+        .vehicle = row->vehicle,
+        .channel = channel,
+        .campaign = row->campaign,
+        .level_cdb = RFADE_NO_VALUE_CDB,
+        .snr_cdb = RFADE_NO_VALUE_CDB,
+        .numbered = row->numbered,
+        .sequence = row->sequence,
+        .modulus = (int64_t)delimited->map->sequence_modulus,
+    };
+}
+
+/* A number that came without a level that can be used was not lost. */
+static enum rfade_status emit_numbers(struct delimited *delimited, const struct rfade_row *row,
+                                      struct rfade_error *error)
+{
+    enum rfade_status status = RFADE_OK;
+    size_t count = row->numbered ? row->valueless_count : 0;
+    for (size_t i = 0; i < count && status == RFADE_OK; i++) {
+        struct rfade_ingest_reading reading = row_reading(delimited, row, row->valueless[i]);
+        status = delimited->sink->reading(delimited->sink->context, &reading, error);
+    }
+    return status;
+}
+
 static enum rfade_status emit(struct delimited *delimited, const struct rfade_row *row,
                               const struct rfade_line *line, struct rfade_error *error)
 {
@@ -71,8 +101,9 @@ static enum rfade_status emit(struct delimited *delimited, const struct rfade_ro
     }
     for (size_t i = 0; i < row->level_count && status == RFADE_OK; i++) {
         const struct rfade_row_level *level = &row->levels[i];
-        struct rfade_ingest_reading reading = {row->time_us,  row->vehicle,     level->channel,
-                                               row->campaign, level->level_cdb, level->snr_cdb};
+        struct rfade_ingest_reading reading = row_reading(delimited, row, level->channel);
+        reading.level_cdb = level->level_cdb;
+        reading.snr_cdb = level->snr_cdb;
         status = delimited->sink->reading(delimited->sink->context, &reading, error);
         summary->readings++;
     }
@@ -98,6 +129,8 @@ static enum rfade_status read_lines(struct delimited *delimited,
         delimited->summary->rows++;
         if (rfade_row_make(delimited->maker, &line, &row))
             status = emit(delimited, &row, &line, error);
+        if (status == RFADE_OK)
+            status = emit_numbers(delimited, &row, error);
         if (status == RFADE_OK && row.refused[0])
             status = refuse(delimited, &line, row.refused, error);
         if (status != RFADE_OK)

@@ -64,6 +64,8 @@ const struct rfade_column *rfade_map_column(const struct rfade_column_map *map, 
         return &map->channel.column;
     case RFADE_ROLE_CAMPAIGN:
         return &map->campaign.column;
+    case RFADE_ROLE_SEQUENCE:
+        return &map->sequence_column;
     default:
         break;
     }

@@ -252,6 +252,26 @@ static bool read_level(struct rfade_row_maker *maker, struct rfade_row *row, siz
     return !reason || refuse_value(row, "SNR", value, reason);
 }
 
+/* A number that can't be right is refused alone; the reading stays, without one. */
+static void read_sequence(struct rfade_row_maker *maker, struct rfade_row *row)
+{
+    static const struct rfade_sentinels none;
+    if (maker->slots[RFADE_ROLE_SEQUENCE] == RFADE_NO_SLOT)
+        return;
+    const struct rfade_field *value = field(maker, RFADE_ROLE_SEQUENCE);
+    size_t modulus = maker->map->sequence_modulus;
+    int64_t most = modulus > 0 ? (int64_t)modulus - 1 : RFADE_MOST_SEQUENCE;
+    struct rfade_decimal decimal;
+    enum rfade_number_kind kind = rfade_number_read(&none, maker->map->file.decimal_sign,
+                                                    value->text, value->size, &decimal);
+    if (kind == RFADE_NOTHING)
+        return;
+    row->numbered = kind == RFADE_NUMBER && rfade_decimal_scaled(&decimal, 0, &row->sequence) &&
+                    row->sequence >= 0 && row->sequence <= most;
+    if (!row->numbered)
+        (void)refuse_value(row, "sequence number", value, "can't be right; not used");
+}
+
 /* All levels; false if some were refused and none is left. */
 static bool read_levels(struct rfade_row_maker *maker, struct rfade_row *row,
                         const char *channel)
@@ -260,15 +280,16 @@ static bool read_levels(struct rfade_row_maker *maker, struct rfade_row *row,
     for (size_t i = 0; i < maker->map->level_count; i++) {
         struct rfade_row_level level = {0};
         const char *named = maker->map->levels[i].channel;
-        if (!read_level(maker, row, i, &level)) {
-            bad++;
-            continue;
-        }
-        if (level.level_cdb == RFADE_NO_VALUE_CDB && level.snr_cdb == RFADE_NO_VALUE_CDB) {
-            row->no_reading++;
-            continue;
-        }
         level.channel = named[0] ? named : channel;
+        bool good = read_level(maker, row, i, &level);
+        bool none =
+            level.level_cdb == RFADE_NO_VALUE_CDB && level.snr_cdb == RFADE_NO_VALUE_CDB;
+        bad += !good;
+        row->no_reading += good && none;
+        if (!good || none) {
+            row->valueless[row->valueless_count++] = level.channel;
+            continue;
+        }
         row->levels[row->level_count++] = level;
     }
     return bad == 0 || row->level_count > 0;
@@ -371,13 +392,18 @@ bool rfade_row_make(struct rfade_row_maker *maker, const struct rfade_line *line
     row->speed_m_s = NAN;
     row->level_count = 0;
     row->no_reading = 0;
+    row->numbered = false;
+    row->sequence = 0;
+    row->valueless_count = 0;
     row->refused[0] = '\0';
     if (!take_apart(maker, line, row) || !read_time(maker, row) ||
         !read_name(maker, row, maker->vehicle, RFADE_ROLE_VEHICLE, "vehicle", &row->vehicle) ||
         !read_name(maker, row, maker->channel, RFADE_ROLE_CHANNEL, "channel", &channel) ||
         !read_name(maker, row, maker->campaign, RFADE_ROLE_CAMPAIGN, "campaign",
-                   &row->campaign) ||
-        !read_levels(maker, row, channel))
+                   &row->campaign))
+        return false;
+    read_sequence(maker, row);
+    if (!read_levels(maker, row, channel))
         return false;
     read_place(maker, row);
     if (row->has_place)

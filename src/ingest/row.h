@@ -23,7 +23,12 @@ struct rfade_row {
     double speed_m_s; /**< NaN: none */
     size_t level_count;
     struct rfade_row_level levels[RFADE_MOST_LEVELS]; /**< those that can be used, or none */
-    size_t no_reading; /**< of these, how many say that there is none */
+    bool numbered;                                    /**< the row has a sequence number */
+    int64_t sequence;
+    /** Numbered levels that have no value, or were refused: their number is not lost. */
+    size_t valueless_count;
+    const char *valueless[RFADE_MOST_LEVELS]; /**< their channels */
+    size_t no_reading;                        /**< of these, how many say that there is none */
     char refused[256]; /**< what was refused of the row, a plain sentence; empty: nothing */
 };
 
@@ -40,7 +45,10 @@ enum rfade_status rfade_row_maker_create(const struct rfade_column_map *map,
                                          struct rfade_error *error);
 void rfade_row_maker_destroy(struct rfade_row_maker *maker); /* NULL is harmless */
 
-/** Whether anything of the line can be used; row->refused says what can't. */
+/**
+ * Whether anything of the line can be used, other than the numbers of `valueless` levels;
+ * row->refused says what can't.
+ */
 bool rfade_row_make(struct rfade_row_maker *maker, const struct rfade_line *line,
                     struct rfade_row *row);
 

@@ -6,6 +6,7 @@
 #ifndef ROUTEFADE_INGEST_SINK_H
 #define ROUTEFADE_INGEST_SINK_H
 
+#include <stdbool.h>
 #include <stddef.h>
 #include <stdint.h>
 
@@ -22,7 +23,13 @@ struct rfade_ingest_reading {
     const char *campaign;
     int32_t level_cdb; /**< centi-dBm, or RFADE_NO_VALUE_CDB */
     int32_t snr_cdb;   /**< centi-dB, or RFADE_NO_VALUE_CDB */
+    bool numbered;     /**< may then be without level and SNR: that number is not lost */
+    int64_t sequence;  /**< its number, [0, RFADE_MOST_SEQUENCE] */
+    int64_t modulus;   /**< of the numbers, which begin anew at 0; 0: they never do */
 };
+
+/** Numbers stay exact in whatever number format the log has. */
+#define RFADE_MOST_SEQUENCE ((int64_t)1 << 53)
 
 struct rfade_ingest_fix {
     int64_t time_us;

@@ -2,6 +2,7 @@
 #include "survey/batch.h"
 
 #include "ingest/sink.h"
+#include "survey/read.h"
 
 struct batch_table {
     sqlite3_vtab base;
@@ -22,7 +23,7 @@ static int batch_connect(sqlite3 *database, void *context, int argument_count,
     (void)message;
     int code =
         sqlite3_declare_vtab(database, "CREATE TABLE batch (reading_id, offset_us, level_cdb, "
-                                       "snr_cdb)");
+                                       "snr_cdb, lost_before)");
     if (code != SQLITE_OK)
         return code;
     struct batch_table *made = sqlite3_malloc(sizeof *made);
@@ -108,8 +109,12 @@ static int batch_column(sqlite3_vtab_cursor *cursor, sqlite3_context *context, i
     case 2:
         give_value(context, reading->level_cdb);
         break;
-    default:
+    case 3:
         give_value(context, reading->snr_cdb);
+        break;
+    default:
+        if (reading->lost_before != RFADE_LOST_UNKNOWN)
+            sqlite3_result_int(context, reading->lost_before);
         break;
     }
     return SQLITE_OK;

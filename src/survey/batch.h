@@ -7,6 +7,7 @@
 #define ROUTEFADE_SURVEY_BATCH_H
 
 #include <sqlite3.h>
+#include <stdbool.h>
 #include <stddef.h>
 #include <stdint.h>
 
@@ -14,6 +15,9 @@ struct rfade_batch_reading {
     int64_t time_us;
     int32_t level_cdb; /**< RFADE_NO_VALUE_CDB: NULL */
     int32_t snr_cdb;
+    int32_t lost_before; /**< RFADE_LOST_UNKNOWN: NULL */
+    bool numbered;       /**< `sequence` is its number */
+    int64_t sequence;
     uint32_t place; /**< in the batch, as it came: keeps sorting stable */
 };
 
@@ -24,7 +28,7 @@ struct rfade_batch {
 };
 
 /**
- * Registers the table rfade_batch (reading_id, offset_us, level_cdb, snr_cdb) on a
+ * Registers the table rfade_batch (reading_id, offset_us, level_cdb, snr_cdb, lost_before) on a
  * connection; it shows what `batch` holds when it is read. `batch` must stay where it is
  * until _unregister. @return an SQLite result code
  */

@@ -28,6 +28,16 @@ static const struct field fields[] = {
 };
 enum { FIELD_COUNT = sizeof fields / sizeof fields[0] };
 
+/* Boltzmann's constant (SI, exact) times 290 K, in mW/Hz. */
+static const double THERMAL_MW_PER_HZ = 1.380649e-23 * 290.0 * 1e3;
+
+double rfade_noise_floor_dbm(double told_dbm, double bandwidth_hz, double noise_figure_db)
+{
+    if (!isnan(told_dbm))
+        return told_dbm;
+    return 10.0 * log10(THERMAL_MW_PER_HZ * bandwidth_hz) + noise_figure_db;
+}
+
 static double field_get(const struct rfade_channel *channel, const struct field *field)
 {
     return *(const double *)((const char *)channel + field->offset);

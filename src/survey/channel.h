@@ -20,6 +20,12 @@ struct rfade_channel {
     double ceiling_dbm;     /**< highest, > floor_dbm */
 };
 
+/**
+ * Noise power in the bandwidth: what was told, else kTB at 290 K, the reference temperature of
+ * a noise figure (IEEE Std 161), and the noise figure. NaN: not known.
+ */
+double rfade_noise_floor_dbm(double told_dbm, double bandwidth_hz, double noise_figure_db);
+
 /** Nothing told. */
 struct rfade_channel rfade_channel_undescribed(void);
 

@@ -26,10 +26,11 @@ static const struct {
                "JOIN logger_file USING (logger_file_id) JOIN vehicle USING (vehicle_id) "
                "JOIN channel USING (channel_id) JOIN campaign USING (campaign_id) "
                "ORDER BY sha256, ordinal"},
-    {"reading", "SELECT sha256, ordinal, offset_us, level_cdb, snr_cdb FROM extent "
-                "JOIN logger_file USING (logger_file_id) JOIN reading ON reading_id BETWEEN "
-                "first_reading_id AND first_reading_id + extent.reading_count - 1 "
-                "ORDER BY sha256, ordinal, reading_id"},
+    {"reading",
+     "SELECT sha256, ordinal, offset_us, level_cdb, snr_cdb, lost_before FROM extent "
+     "JOIN logger_file USING (logger_file_id) JOIN reading ON reading_id BETWEEN "
+     "first_reading_id AND first_reading_id + extent.reading_count - 1 "
+     "ORDER BY sha256, ordinal, reading_id"},
     {"route", "SELECT * FROM route ORDER BY name"},
     {"route_point", "SELECT route.name AS route, route_point.* FROM route_point "
                     "JOIN route USING (route_id) ORDER BY route, ordinal"},

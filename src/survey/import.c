@@ -7,6 +7,7 @@
 #include "survey/batch.h"
 #include "survey/layout.h"
 #include "survey/name.h"
+#include "survey/sequence.h"
 
 enum {
     EXTENT_READINGS = 65536,
@@ -30,6 +31,7 @@ struct stream {
     uint32_t count;
     uint32_t capacity;
     bool sorted;
+    struct rfade_sequence sequence; /* up to the last extent */
 };
 
 struct fix_vehicle {
@@ -100,8 +102,8 @@ static enum rfade_status prepare_statements(struct rfade_import *import,
          "INSERT INTO extent (logger_file_id, vehicle_id, channel_id, campaign_id, ordinal, "
          "first_reading_id, reading_count, start_us, end_us) VALUES (?,?,?,?,?,?,?,?,?)"},
         {&import->insert_readings,
-         "INSERT INTO reading (reading_id, offset_us, level_cdb, snr_cdb) "
-         "SELECT reading_id, offset_us, level_cdb, snr_cdb FROM rfade_batch"},
+         "INSERT INTO reading (reading_id, offset_us, level_cdb, snr_cdb, lost_before) "
+         "SELECT reading_id, offset_us, level_cdb, snr_cdb, lost_before FROM rfade_batch"},
         {&import->insert_fix,
          "INSERT INTO fix (vehicle_id, time_us, logger_file_id, latitude_deg, longitude_deg, "
          "speed_m_s) VALUES (?,?,?,?,?,?) "
@@ -198,14 +200,34 @@ static int by_time_and_place(const void *left, const void *right)
     return a->place < b->place ? -1 : a->place > b->place;
 }
 
+/* Counts what was lost before each reading; what came without level and SNR only told its
+ * number. */
+static void settle(struct stream *stream)
+{
+    uint32_t kept = 0;
+    if (!stream->sorted)
+        qsort(stream->readings, stream->count, sizeof *stream->readings, by_time_and_place);
+    for (uint32_t i = 0; i < stream->count; i++) {
+        struct rfade_batch_reading reading = stream->readings[i];
+        int32_t lost =
+            rfade_sequence_lost(&stream->sequence, reading.numbered, reading.sequence);
+        if (reading.level_cdb == RFADE_NO_VALUE_CDB && reading.snr_cdb == RFADE_NO_VALUE_CDB)
+            continue;
+        reading.lost_before = lost;
+        stream->readings[kept++] = reading;
+    }
+    stream->count = kept;
+    stream->sorted = true;
+}
+
 /* Makes an extent of what a stream has gathered. */
 static enum rfade_status flush(struct rfade_import *import, struct stream *stream,
                                struct rfade_error *error)
 {
+    import->buffered -= stream->count;
+    settle(stream);
     if (stream->count == 0)
         return RFADE_OK;
-    if (!stream->sorted)
-        qsort(stream->readings, stream->count, sizeof *stream->readings, by_time_and_place);
     const struct rfade_batch_reading *first = &stream->readings[0];
     const struct rfade_batch_reading *last = &stream->readings[stream->count - 1];
     const int64_t values[] = {
@@ -224,9 +246,7 @@ static enum rfade_status flush(struct rfade_import *import, struct stream *strea
     status = run_bound(import, import->insert_readings, error);
     import->counts.extents++;
     import->next_reading_id += stream->count;
-    import->buffered -= stream->count;
     stream->count = 0;
-    stream->sorted = true;
     return status;
 }
 
@@ -351,7 +371,9 @@ static enum rfade_status take_reading(void *context, const struct rfade_ingest_r
 {
     struct rfade_import *import = context;
     struct stream *stream = NULL;
-    if (reading->level_cdb == RFADE_NO_VALUE_CDB && reading->snr_cdb == RFADE_NO_VALUE_CDB)
+    bool valued =
+        reading->level_cdb != RFADE_NO_VALUE_CDB || reading->snr_cdb != RFADE_NO_VALUE_CDB;
+    if (!valued && !reading->numbered)
         return rfade_error_set(error, RFADE_DOMAIN, "", "a reading without level and SNR");
     enum rfade_status status = find_stream(import, reading, &stream, error);
     if (status != RFADE_OK)
@@ -364,11 +386,14 @@ static enum rfade_status take_reading(void *context, const struct rfade_ingest_r
         .time_us = reading->time_us,
         .level_cdb = reading->level_cdb,
         .snr_cdb = reading->snr_cdb,
+        .numbered = reading->numbered,
+        .sequence = reading->sequence,
         .place = stream->count,
     };
+    stream->sequence.modulus = reading->modulus;
     stream->count++;
     import->buffered++;
-    import->counts.readings++;
+    import->counts.readings += valued;
     if (stream->count == EXTENT_READINGS)
         return flush(import, stream, error);
     if (import->buffered >= BUFFERED_READINGS)

@@ -84,6 +84,49 @@ enum rfade_status rfade_survey_streams(struct rfade_survey *survey,
     return status;
 }
 
+static void read_found(sqlite3_stmt *statement, void *row)
+{
+    struct rfade_stream_found *found = row;
+    rfade_name_copy(found->vehicle, statement, 0);
+    rfade_name_copy(found->channel, statement, 1);
+    rfade_name_copy(found->campaign, statement, 2);
+    found->reading_count = sqlite3_column_int64(statement, 3);
+    found->step_db = rfade_column_real(statement, 4);
+    found->floor_dbm = rfade_column_real(statement, 5);
+    found->ceiling_dbm = rfade_column_real(statement, 6);
+    found->lost_count = sqlite3_column_int64(statement, 7);
+    found->missing_count = sqlite3_column_int64(statement, 8);
+}
+
+enum rfade_status rfade_survey_found(struct rfade_survey *survey,
+                                     struct rfade_stream_found **found, size_t *count,
+                                     struct rfade_error *error)
+{
+    *found = NULL;
+    *count = 0;
+    sqlite3_stmt *statement = NULL;
+    /* A trace stands once for each route, with the same readings. */
+    enum rfade_status status = rfade_survey_prepare(
+        survey, &statement, error,
+        "SELECT vehicle.name, channel.name, campaign.name, sum(reading_count), "
+        "max(CASE WHEN step_found THEN made.step_db END), "
+        "max(CASE floor_source WHEN 'pile-up' THEN made.floor_dbm END), "
+        "min(CASE ceiling_source WHEN 'pile-up' THEN made.ceiling_dbm END), "
+        "ifnull(sum(lost_count), -1), ifnull(sum(missing_count), -1) FROM "
+        "(SELECT * FROM trace GROUP BY vehicle_id, channel_id, campaign_id, start_us) AS made "
+        "JOIN vehicle USING (vehicle_id) JOIN channel USING (channel_id) "
+        "JOIN campaign USING (campaign_id) GROUP BY vehicle_id, channel_id, campaign_id "
+        "ORDER BY vehicle.name, channel.name, campaign.name",
+        "");
+    if (status != RFADE_OK)
+        return status;
+    void *rows = NULL;
+    status =
+        rfade_rows_read(survey, statement, sizeof **found, read_found, &rows, count, error);
+    *found = rows;
+    return status;
+}
+
 enum rfade_status rfade_survey_count(struct rfade_survey *survey,
                                      struct rfade_survey_counts *counts,
                                      struct rfade_error *error)

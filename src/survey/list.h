@@ -33,6 +33,19 @@ struct rfade_stream {
     int64_t end_us;
 };
 
+/** What the last fit found in the data of a stream, over its traces. NaN, -1: nothing. */
+struct rfade_stream_found {
+    char vehicle[RFADE_NAME_SIZE];
+    char channel[RFADE_NAME_SIZE];
+    char campaign[RFADE_NAME_SIZE];
+    int64_t reading_count; /**< each once */
+    double step_db;        /**< the coarsest of those found */
+    double floor_dbm;      /**< the highest level that readings pile up at from below */
+    double ceiling_dbm;    /**< the lowest that they pile up at from above */
+    int64_t lost_count;    /**< by sequence number; -1: there are no numbers */
+    int64_t missing_count; /**< by a regular interval; -1: it isn't regular, or numbered */
+};
+
 struct rfade_survey_counts {
     int64_t logger_files;
     int64_t campaigns;
@@ -58,6 +71,11 @@ enum rfade_status rfade_survey_logger_files(struct rfade_survey *survey,
 enum rfade_status rfade_survey_streams(struct rfade_survey *survey,
                                        struct rfade_stream **streams, size_t *count,
                                        struct rfade_error *error);
+
+/** By names; streams along no route have none. */
+enum rfade_status rfade_survey_found(struct rfade_survey *survey,
+                                     struct rfade_stream_found **found, size_t *count,
+                                     struct rfade_error *error);
 
 enum rfade_status rfade_survey_count(struct rfade_survey *survey,
                                      struct rfade_survey_counts *counts,

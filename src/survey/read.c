@@ -14,6 +14,7 @@ struct entry {
     int64_t time_us;
     int32_t level_cdb;
     int32_t snr_cdb;
+    int32_t lost_before;
     uint32_t file;
     uint32_t place;
 };
@@ -94,6 +95,13 @@ static int32_t column_cdb(sqlite3_stmt *statement, int column)
                : sqlite3_column_int(statement, column);
 }
 
+static int32_t column_lost(sqlite3_stmt *statement, int column)
+{
+    return sqlite3_column_type(statement, column) == SQLITE_NULL
+               ? RFADE_LOST_UNKNOWN
+               : sqlite3_column_int(statement, column);
+}
+
 /* Appends the rows of a prepared SELECT that fall in the time range. */
 static enum rfade_status append_rows(struct rfade_survey *survey, sqlite3_stmt *statement,
                                      const struct extent_row *extent, uint32_t file,
@@ -114,6 +122,7 @@ static enum rfade_status append_rows(struct rfade_survey *survey, sqlite3_stmt *
             .time_us = time_us,
             .level_cdb = column_cdb(statement, 1),
             .snr_cdb = column_cdb(statement, 2),
+            .lost_before = column_lost(statement, 3),
             .file = file,
             .place = (uint32_t)entries->count,
         };
@@ -130,7 +139,7 @@ static enum rfade_status read_extents(struct rfade_survey *survey,
     sqlite3_stmt *statement = NULL;
     enum rfade_status status =
         rfade_survey_prepare(survey, &statement, error,
-                             "SELECT offset_us, level_cdb, snr_cdb FROM reading "
+                             "SELECT offset_us, level_cdb, snr_cdb, lost_before FROM reading "
                              "WHERE reading_id BETWEEN ?1 AND ?2 ORDER BY reading_id",
                              "");
     uint32_t file = 0;
@@ -173,6 +182,18 @@ static bool same_value(const struct entry *a, const struct entry *b)
     return a->level_cdb == b->level_cdb && a->snr_cdb == b->snr_cdb;
 }
 
+/* An extract of a log lacks what the log itself has: the fewest losses that a file knows of
+ * are those of the reading. */
+static int32_t fewest_lost(const struct entry *same, size_t count)
+{
+    int32_t fewest = RFADE_LOST_UNKNOWN;
+    for (size_t i = 0; i < count; i++)
+        if (same[i].lost_before != RFADE_LOST_UNKNOWN &&
+            (fewest == RFADE_LOST_UNKNOWN || same[i].lost_before < fewest))
+            fewest = same[i].lost_before;
+    return fewest;
+}
+
 /* Of entries with one time and value, by file: moves those of the file that has most of them
  * (the first of equals) to `to`. Returns how many. */
 static size_t keep_fullest_file(const struct entry *same, size_t count, struct entry *to)
@@ -187,7 +208,10 @@ static size_t keep_fullest_file(const struct entry *same, size_t count, struct e
             best_count = end - from;
         }
     }
+    int32_t lost_before = fewest_lost(same, count);
     memmove(to, same + best, best_count * sizeof *to);
+    if (best_count == 1)
+        to->lost_before = lost_before;
     return best_count;
 }
 
@@ -238,7 +262,8 @@ static enum rfade_status merge(struct entries *entries, struct rfade_survey_read
     for (size_t i = 0; i < kept; i++)
         made[i] = (struct rfade_survey_reading){.time_us = entries->all[i].time_us,
                                                 .level_cdb = entries->all[i].level_cdb,
-                                                .snr_cdb = entries->all[i].snr_cdb};
+                                                .snr_cdb = entries->all[i].snr_cdb,
+                                                .lost_before = entries->all[i].lost_before};
     *readings = made;
     *count = kept;
     *repeated = entries->count - kept;

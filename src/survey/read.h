@@ -15,7 +15,11 @@ struct rfade_survey_reading {
     int64_t time_us;
     int32_t level_cdb; /**< as logged, without calibration; RFADE_NO_VALUE_CDB: none */
     int32_t snr_cdb;
+    int32_t lost_before; /**< numbers missing since the reading before; RFADE_LOST_UNKNOWN */
 };
+
+/** The log has no sequence numbers, or they began anew. */
+enum { RFADE_LOST_UNKNOWN = -1 };
 
 /**
  * The readings of one vehicle, channel and campaign with from_us <= time <= to_us, merged on

@@ -45,18 +45,31 @@ static void steps_are_found(void **state)
 static void given_step_is_kept(void **state)
 {
     (void)state;
-    const double levels_dbm[] = {-90, -92, -88, -94, -90, -88, -92, -90};
+    const double some_dbm[] = {-90, -92, -88, -94, -90, -88};
+    double levels_dbm[60];
+    for (int i = 0; i < 60; i++) {
+        levels_dbm[i] = some_dbm[i % 6];
+    }
     struct rfade_column_settings settings = PLAIN;
     struct rfade_column_estimate found;
     struct rfade_column_estimate given;
-    assert_int_equal(rfade_estimate_column(levels_dbm, 8, &PLAIN, &found), RFADE_OK);
+    assert_int_equal(rfade_estimate_column(levels_dbm, 60, &PLAIN, &found), RFADE_OK);
     settings.step_db = 1.0;
-    assert_int_equal(rfade_estimate_column(levels_dbm, 8, &settings, &given), RFADE_OK);
+    assert_int_equal(rfade_estimate_column(levels_dbm, 60, &settings, &given), RFADE_OK);
     assert_true(found.step_db == 2.0 && given.step_db == 1.0);
     /* Intervals half as wide are about half as likely, each. */
     double difference =
         found.estimate.fits[0].log_likelihood - given.estimate.fits[0].log_likelihood;
-    assert_true(fabs(difference - 8.0 * log(2.0)) < 0.1);
+    assert_true(fabs(difference - 60.0 * log(2.0)) < 1.0);
+}
+
+/* Six levels that are all even may be chance; the step is then no coarser than 1 dB. */
+static void few_changes_make_no_coarse_step(void **state)
+{
+    (void)state;
+    const double levels_dbm[] = {-90, -92, -88, -94, -90, -88};
+    assert_true(rfade_find_step_db(levels_dbm, 6) == 1.0);
+    assert_true(rfade_find_step_db(levels_dbm, 1) == 1.0);
 }
 
 /*
@@ -239,6 +252,7 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(steps_are_found),
         cmocka_unit_test(given_step_is_kept),
+        cmocka_unit_test(few_changes_make_no_coarse_step),
         cmocka_unit_test(ceiling_gives_the_censored_exponential_estimate),
         cmocka_unit_test(aic_and_weights_of_independent_readings),
         cmocka_unit_test(repeated_readings_are_counted_once),

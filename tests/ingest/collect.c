@@ -24,6 +24,9 @@ static enum rfade_status keep_reading(void *context, const struct rfade_ingest_r
         kept->time_us = reading->time_us;
         kept->level_cdb = reading->level_cdb;
         kept->snr_cdb = reading->snr_cdb;
+        kept->numbered = reading->numbered;
+        kept->sequence = reading->sequence;
+        kept->modulus = reading->modulus;
         (void)snprintf(kept->vehicle, sizeof kept->vehicle, "%s", reading->vehicle);
         (void)snprintf(kept->channel, sizeof kept->channel, "%s", reading->channel);
         (void)snprintf(kept->campaign, sizeof kept->campaign, "%s", reading->campaign);

@@ -14,6 +14,9 @@ struct collected_reading {
     char campaign[32];
     int32_t level_cdb;
     int32_t snr_cdb;
+    bool numbered;
+    int64_t sequence;
+    int64_t modulus;
 };
 
 struct collected_refusal {

@@ -61,6 +61,46 @@ static void names_stand_in_columns_and_stay_text(void **state)
     assert_string_equal(got.readings[1].channel, "7");
 }
 
+#define NUMBERED "[time]\ncolumn = time\n[level 457]\ncolumn = a\n[sequence]\ncolumn = n\n"
+
+static void packets_carry_their_number(void **state)
+{
+    (void)state;
+    collect_text(&got, NUMBERED "modulus = 256\n",
+                 "time,n,a\n1768508100,254,-80\n1768508101,,-81\n1768508102,256,-82\n"
+                 "1768508103,1.0,-83\n1768508104,-1,-84\n");
+    const bool numbered[] = {true, false, false, true, false};
+    const int64_t numbers[] = {254, 0, 0, 1, 0};
+    assert_int_equal(got.reading_count, 5);
+    assert_int_equal(got.refusal_count, 2); /* 256 and -1; their levels are kept */
+    assert_non_null(strstr(got.refusals[0].reason, "sequence number '256'"));
+    for (size_t i = 0; i < 5; i++) {
+        assert_int_equal(got.readings[i].numbered, numbered[i]);
+        if (numbered[i])
+            assert_int_equal(got.readings[i].sequence, numbers[i]);
+        assert_int_equal(got.readings[i].modulus, 256);
+        assert_int_equal(got.readings[i].level_cdb, -8000 - 100 * (int32_t)i);
+    }
+}
+
+/* A packet that came without a level, or with one that can't be right, was not lost. */
+static void numbers_without_a_level_are_told(void **state)
+{
+    (void)state;
+    collect_text(&got, NUMBERED,
+                 "time,n,a\n1768508100,7,-80\n1768508101,8,\n1768508102,9,cold\n"
+                 "1768508103,10,-83\n");
+    assert_int_equal(got.status, RFADE_OK);
+    assert_int_equal(got.reading_count, 4);
+    assert_int_equal(got.summary.readings, 2);
+    assert_one_refusal(&got, 4, "cold");
+    for (int64_t i = 0; i < 4; i++) {
+        assert_int_equal(got.readings[i].sequence, 7 + i);
+        assert_string_equal(got.readings[i].channel, "457");
+        assert_int_equal(got.readings[i].level_cdb == RFADE_NO_VALUE_CDB, i == 1 || i == 2);
+    }
+}
+
 static void a_channel_that_nobody_names_has_the_default(void **state)
 {
     (void)state;
@@ -615,6 +655,8 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(the_built_in_map_reads_a_plain_log),
         cmocka_unit_test(names_stand_in_columns_and_stay_text),
+        cmocka_unit_test(packets_carry_their_number),
+        cmocka_unit_test(numbers_without_a_level_are_told),
         cmocka_unit_test(a_channel_that_nobody_names_has_the_default),
         cmocka_unit_test(a_log_without_vehicle_is_refused),
         cmocka_unit_test(separators_are_found),

@@ -8,7 +8,7 @@ static const char *const ground =
     "INSERT INTO channel (channel_id, name) VALUES (1, 'salt');"
     "INSERT INTO logger_file VALUES (1, zeroblob(32), 'a.csv', 10, 1, 1, 1, 0, 0);"
     "INSERT INTO extent VALUES (1, 1, 1, 1, 1, 0, 1, 1, 1000, 1000);"
-    "INSERT INTO reading VALUES (1, 0, -9000, NULL);"
+    "INSERT INTO reading VALUES (1, 0, -9000, NULL, NULL);"
     "INSERT INTO route VALUES (1, 'R3', 1000, 100, 30);"
     "INSERT INTO segment VALUES (1, 1, 1, 0, 100);";
 
@@ -67,10 +67,11 @@ static const char *const refused[] = {
     "INSERT INTO extent VALUES (2, 1, 1, 1, 1, 0, 2, 0, 0, 0)",
     "INSERT INTO extent VALUES (2, 1, 1, 1, 1, 0, 2, 65537, 0, 0)",
     "INSERT INTO extent VALUES (2, 1, 1, 1, 1, 0, 2, 1, 1, 0)",
-    "INSERT INTO reading VALUES (2, NULL, -9000, NULL)",
-    "INSERT INTO reading VALUES (2, 0, NULL, NULL)",
-    "INSERT INTO reading VALUES (2, 0, -90.5, NULL)",
-    "INSERT INTO reading VALUES (1, 0, -9000, NULL)",
+    "INSERT INTO reading VALUES (2, NULL, -9000, NULL, NULL)",
+    "INSERT INTO reading VALUES (2, 0, NULL, NULL, NULL)",
+    "INSERT INTO reading VALUES (2, 0, -90.5, NULL, NULL)",
+    "INSERT INTO reading VALUES (1, 0, -9000, NULL, NULL)",
+    "INSERT INTO reading VALUES (2, 0, -9000, NULL, -1)",
     "INSERT INTO route VALUES (2, 'R3', 1000, 100, 30)",
     "INSERT INTO route VALUES (2, '', 1000, 100, 30)",
     "INSERT INTO route VALUES (2, 'R4', 0, 100, 30)",
@@ -115,7 +116,7 @@ static void the_edges_are_inside(void **state)
         "INSERT INTO fix VALUES (1, -1, 1, -90, -180, 0)",
         "INSERT INTO fix VALUES (1, 0, 1, 90, 180, NULL)",
         "INSERT INTO extent VALUES (2, 1, 1, 1, 1, 1, 2, 65536, 0, 0)",
-        "INSERT INTO reading VALUES (2, 0, NULL, 100)",
+        "INSERT INTO reading VALUES (2, 0, NULL, 100, NULL)",
         "INSERT INTO refused_line VALUES (1, 1, 'why', zeroblob(200))",
     };
     struct rfade_error error = {0};
