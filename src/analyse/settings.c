@@ -11,7 +11,7 @@ struct rfade_analysis_settings rfade_analysis_defaults(void)
         .block_wavelengths = 10.0,
         .gap_s = 30.0,
         .fix_gap_s = 30.0,
-        .noise_margin_db = 3.0,
+        .noise_margin_db = 0.0,
         .confidence = 0.95,
     };
 }

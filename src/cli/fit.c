@@ -14,7 +14,7 @@ struct fit_options {
 };
 
 static const struct fit_options defaults = {
-    .all = false, .window_wavelengths = 40, .gap_s = 30, .noise_margin_db = 3};
+    .all = false, .window_wavelengths = 40, .gap_s = 30, .noise_margin_db = 0};
 
 static const struct rfade_option options[] = {
     {"all", NULL, RFADE_OPTION_FLAG, offsetof(struct fit_options, all), 0, 0, NULL,
@@ -26,8 +26,9 @@ static const struct rfade_option options[] = {
      "a longer gap between readings ends a trace, in seconds (30)"},
     {"noise-margin-db", "DB", RFADE_OPTION_NUMBER,
      offsetof(struct fit_options, noise_margin_db), 0, 40, NULL,
-     "where the channel's noise is known its power is taken off each level, and levels less "
-     "than this above it count as below it (3; 0: levels are of the signal alone)"},
+     "the levels include the noise: take it off where the channel's noise is known, and count "
+     "levels less than this above it as below it, for instance 3 (0: levels are of the signal "
+     "alone)"},
 };
 
 static const struct rfade_column columns[] = {

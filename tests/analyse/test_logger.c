@@ -396,7 +396,8 @@ static void noise_and_limits_go_together(void **state)
     (void)state;
     struct rfade_survey_reading readings[64] = {{0}};
     struct rfade_channel told = rfade_channel_undescribed();
-    const struct rfade_analysis_settings settings = rfade_analysis_defaults();
+    struct rfade_analysis_settings settings = rfade_analysis_defaults();
+    settings.noise_margin_db = 3.0;
     for (int i = 0; i < 64; i++)
         readings[i].level_cdb = -11000 + 100 * i;
     told.noise_floor_dbm = -110.0;
