@@ -11,6 +11,7 @@
 #include <gsl/gsl_cdf.h>
 #include <math.h>
 #include <stdbool.h>
+#include <stddef.h>
 
 /* Uncertainty of the outage: nodes of the five-point Gauss-Hermite rule [AMS 55, table
  * 25.10], for the normal distribution. */
@@ -92,15 +93,16 @@ static void find_ends(const struct rfade_next_pass *next, double tail, double re
         /* Shallow fades are longer as they are more: both as the root of the outage. */
         nodes[i] = make_node(outage, fade * sqrt(outage / centre), readings);
     }
-    for (double n = 0.0; n <= readings; n += 1.0) {
+    size_t last = (size_t)readings;
+    for (size_t n = 0; n <= last; n++) {
         double sum = 0.0;
         for (int i = 0; i < NODES; i++)
-            sum += NODE_WEIGHT[i] * next_below(&nodes[i], n);
+            sum += NODE_WEIGHT[i] * next_below(&nodes[i], (double)n);
         if (!low_found && sum > tail) {
-            *low = n;
+            *low = (double)n;
             low_found = true;
         }
-        *high = n;
+        *high = (double)n;
         if (sum >= 1.0 - tail)
             return;
     }
