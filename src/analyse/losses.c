@@ -33,7 +33,7 @@ enum rfade_status rfade_fill_losses(const struct rfade_survey_reading *readings,
     *filled_count = 0;
     *filled = malloc((count + (size_t)(lost > 0 ? lost : 0) + 1) * sizeof **filled);
     if (!*filled)
-        return rfade_error_set(error, RFADE_NO_MEMORY, "", "out of memory");
+        return rfade_error_no_memory(error);
     for (size_t i = 0; i < count; i++) {
         int64_t between = lost_between(readings, i);
         for (int64_t n = 1; n <= between; n++) {
@@ -62,14 +62,14 @@ enum rfade_status rfade_count_missing(const struct rfade_survey_reading *reading
     *missing = -1;
     if (count < LEAST_FOR_INTERVAL)
         return RFADE_OK;
-    size_t gaps = count - 1, regular = 0;
+    size_t gaps = count - 1, middle = gaps / 2, regular = 0;
     int64_t *gaps_us = malloc(gaps * sizeof *gaps_us);
     if (!gaps_us)
-        return rfade_error_set(error, RFADE_NO_MEMORY, "", "out of memory");
+        return rfade_error_no_memory(error);
     for (size_t i = 0; i < gaps; i++)
         gaps_us[i] = readings[i + 1].time_us - readings[i].time_us;
     qsort(gaps_us, gaps, sizeof *gaps_us, by_value);
-    double median_us = (double)gaps_us[gaps / 2];
+    double median_us = (double)gaps_us[middle];
     int64_t left_out = 0;
     for (size_t i = 0; i < gaps && median_us > 0.0; i++) {
         double intervals = (double)gaps_us[i] / median_us;

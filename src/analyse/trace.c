@@ -266,19 +266,20 @@ static enum rfade_status make_trace(const struct making *stream,
         .lost_count = rfade_count_lost(readings, count),
         .missing_count = -1,
     };
-    if (row.lost_count > 0)
+    int32_t lost_cdb = 0; /* asked for only where something was lost; then there is a floor */
+    if (row.lost_count > 0) {
         rfade_trace_receiver_losing(&making.known, readings, count);
-    enum rfade_status status = rfade_fill_losses(
-        readings, count, making.known.reported.floor_cdb - making.known.offset_cdb, &filled,
-        &making.count, error);
+        lost_cdb = making.known.reported.floor_cdb - making.known.offset_cdb;
+    }
+    enum rfade_status status =
+        rfade_fill_losses(readings, count, lost_cdb, &filled, &making.count, error);
     if (status == RFADE_OK && row.lost_count < 0)
         status = rfade_count_missing(readings, count, &row.missing_count, error);
     making.readings = filled;
     making.located = malloc((making.count + 1) * sizeof *making.located);
-    if (!making.located && status == RFADE_OK)
-        status = rfade_error_set(error, RFADE_NO_MEMORY, "", "out of memory");
     if (status == RFADE_OK)
-        status = store_passes(&making, &row, error);
+        status =
+            making.located ? store_passes(&making, &row, error) : rfade_error_no_memory(error);
     free(making.located);
     free(filled);
     return status;

@@ -34,8 +34,10 @@ void rfade_command_help(FILE *stream, const struct rfade_command *command)
     (void)fprintf(stream, "Usage: routefade %s [OPTION]...%s%s\n\nTo %s.\n", command->name,
                   command->arguments ? " " : "", command->arguments ? command->arguments : "",
                   command->summary);
-    if (command->details)
-        (void)fprintf(stream, "\n%s\n", command->details);
+    if (command->details) {
+        (void)fputc('\n', stream);
+        rfade_help_text(stream, command->details, 0);
+    }
     if (command->option_count > 0)
         (void)fputs("\nOptions:\n", stream);
     rfade_options_help(stream, command->options, command->option_count);

@@ -10,6 +10,8 @@
 
 #include "common/text.h"
 
+enum { HELP_WIDTH = 80 };
+
 /* What getopt_long returns for the option number 0: above every character. */
 enum { FIRST_OPTION = 1000 };
 
@@ -309,14 +311,43 @@ void rfade_options_clear(const struct rfade_option_group *groups, size_t group_c
     }
 }
 
+void rfade_help_text(FILE *stream, const char *text, size_t indent)
+{
+    size_t column = 0;
+    for (const char *word = text + strspn(text, " \n"); *word;) {
+        size_t length = strcspn(word, " \n");
+        if (column > 0 && column + 1 + length > HELP_WIDTH) {
+            (void)fputc('\n', stream);
+            column = 0;
+        }
+        if (column == 0)
+            (void)fprintf(stream, "%*s", (int)indent, "");
+        else
+            (void)fputc(' ', stream);
+        column = (column == 0 ? indent : column + 1) + length;
+        (void)fwrite(word, 1, length, stream);
+        word += length;
+        word += strspn(word, " \n");
+    }
+    (void)fputc('\n', stream);
+}
+
+static void option_help(FILE *stream, const struct rfade_option *option)
+{
+    char text[512];
+    (void)snprintf(text, sizeof text, "%s", option->help);
+    for (size_t k = 0; option->choice && option->choice(k); k++) {
+        size_t used = strlen(text);
+        (void)snprintf(text + used, sizeof text - used, "%s%s", k ? ", " : ": ",
+                       option->choice(k));
+    }
+    (void)fprintf(stream, "  --%s%s%s\n", option->name, option->argument ? " " : "",
+                  option->argument ? option->argument : "");
+    rfade_help_text(stream, text, 6);
+}
+
 void rfade_options_help(FILE *stream, const struct rfade_option *options, size_t count)
 {
-    for (size_t i = 0; i < count; i++) {
-        (void)fprintf(stream, "  --%s%s%s\n      %s", options[i].name,
-                      options[i].argument ? " " : "",
-                      options[i].argument ? options[i].argument : "", options[i].help);
-        for (size_t k = 0; options[i].choice && options[i].choice(k); k++)
-            (void)fprintf(stream, "%s%s", k ? ", " : ": ", options[i].choice(k));
-        (void)fputc('\n', stream);
-    }
+    for (size_t i = 0; i < count; i++)
+        option_help(stream, &options[i]);
 }

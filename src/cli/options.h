@@ -66,6 +66,10 @@ enum rfade_status rfade_options_parse(int argc, char *const *argv,
 /** Frees the lists that parsing made. */
 void rfade_options_clear(const struct rfade_option_group *groups, size_t group_count);
 
+/** Writes a text in lines of at most 80 characters, each indented; line ends in it are blanks.
+ */
+void rfade_help_text(FILE *stream, const char *text, size_t indent);
+
 /** Writes the table's help, one option a paragraph. */
 void rfade_options_help(FILE *stream, const struct rfade_option *options, size_t count);
 

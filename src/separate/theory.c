@@ -124,12 +124,12 @@ double rfade_stretch_mean_variance(double length_wavelengths, double k,
                                    const struct rfade_ray *ray)
 {
     struct lag_means means;
-    double s = 1.0 / (1.0 + k);
 
     if (!valid(length_wavelengths, 1e-9, 1e12, k) ||
         !lag_means(length_wavelengths, ray, &means)) {
         return NAN;
     }
+    double s = 1.0 / (1.0 + k);
     return 2.0 * k * s * s * means.falling[0] + s * s * means.falling[1];
 }
 
@@ -142,9 +142,6 @@ double rfade_stretch_mean_variance(double length_wavelengths, double k,
 double rfade_window_narrowing(double window_wavelengths, double k, const struct rfade_ray *ray)
 {
     struct lag_means half;
-    double s = 1.0 / (1.0 + k);
-    double a = k * s;
-    double variance = s * s * (1.0 + 2.0 * k);
     double with_mean;
     double square_with_mean;
     double mean_variance;
@@ -153,6 +150,9 @@ double rfade_window_narrowing(double window_wavelengths, double k, const struct 
         !lag_means(0.5 * window_wavelengths, ray, &half)) {
         return NAN;
     }
+    double s = 1.0 / (1.0 + k);
+    double a = k * s;
+    double variance = s * s * (1.0 + 2.0 * k);
     mean_variance = rfade_stretch_mean_variance(window_wavelengths, k, ray);
     with_mean = 2.0 * a * s * half.plain[0] + s * s * half.plain[1];
     square_with_mean = (4.0 * a * a * s + 8.0 * a * s * s) * half.plain[0] +
@@ -167,12 +167,12 @@ double rfade_window_log_narrowing(double window_wavelengths, double k,
                                   const struct rfade_ray *ray)
 {
     struct lag_means half;
-    double s = 1.0 / (1.0 + k);
 
     if (!valid(window_wavelengths, 4.0, 2.0 * followed_wavelengths, k) ||
         !lag_means(0.5 * window_wavelengths, ray, &half)) {
         return NAN;
     }
+    double s = 1.0 / (1.0 + k);
     return 2.0 * k * s * s * half.plain[0] + s * s * half.plain[1] -
            0.5 * rfade_stretch_mean_variance(window_wavelengths, k, ray);
 }

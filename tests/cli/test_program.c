@@ -46,6 +46,30 @@ static void help_names_every_command_and_the_cautions(void **state)
     program_clear(&program);
 }
 
+/* The longest line, in bytes. */
+static size_t longest_line(const char *text)
+{
+    size_t longest = 0;
+    for (const char *line = text; *line;) {
+        size_t length = strcspn(line, "\n");
+        longest = length > longest ? length : longest;
+        line += length + (line[length] == '\n');
+    }
+    return longest;
+}
+
+/* Makes every run of blanks and line ends one blank, so that broken lines can be searched. */
+static void join_lines(char *text)
+{
+    char *to = text;
+    for (const char *from = text; *from; from++)
+        if (strchr(" \n", *from) == NULL)
+            *to++ = *from;
+        else if (to == text || to[-1] != ' ')
+            *to++ = ' ';
+    *to = '\0';
+}
+
 static void help_of_each_command_names_its_options_and_the_cautions(void **state)
 {
     (void)state;
@@ -57,6 +81,8 @@ static void help_of_each_command_names_its_options_and_the_cautions(void **state
         assert_string_equal(program.errors, "");
         assert_non_null(strstr(program.output, command->summary));
         assert_cautions(program.output);
+        assert_true(longest_line(program.output) <= 88); /* the cautions' widest */
+        join_lines(program.output);
         for (size_t k = 0; k < command->option_count; k++) {
             assert_non_null(strstr(program.output, command->options[k].name));
             assert_non_null(strstr(program.output, command->options[k].help));
