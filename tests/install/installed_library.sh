@@ -28,7 +28,7 @@ cc -std=c17 "$source/consumer.c" $(pkg-config --cflags routefade) "$libraries/li
     -lgsl -lgslcblas -lm -o "$stage/static"
 expect "$stage/static"
 
-cmake -S "$source/consumer" -B "$stage/cmake" -DCMAKE_PREFIX_PATH="$stage" >/dev/null
+cmake -S "$source/consumer" -B "$stage/cmake" -G Ninja -DCMAKE_PREFIX_PATH="$stage" >/dev/null
 cmake --build "$stage/cmake" >/dev/null
 expect "$stage/cmake/consumer"
 
