@@ -23,6 +23,7 @@
 #include <stdbool.h>
 #include <stddef.h>
 
+#include "model/model.h"
 #include "special/tails.h"
 
 static const double shadowing_max_db = 30.0;
@@ -31,7 +32,6 @@ static const double threshold_max_db = 1000.0;
 static const double peak_margin_db = 10.0 * 30.0;
 /* Where the slope of ln f of Rice is greatest, at large K: half the steady amplitude. */
 static const double rice_steepest_db = -6.0;
-static const double db_per_neper = 10.0 / M_LN10;
 
 /* Two steps that agree to here leave about the square of it. */
 static const double step_tolerance = 1e-9;
@@ -252,7 +252,7 @@ enum rfade_status rfade_outage(const struct rfade_model *model, double parameter
     /* the spread of the level is near that of the power, in nepers, as long as both are small
      */
     const double fading_db =
-        db_per_neper * fmin(sqrt(model->normalised_variance(parameter)), 1.0);
+        RFADE_DB_PER_NEPER_OF_POWER * fmin(sqrt(model->normalised_variance(parameter)), 1.0);
     struct mixture mixture = {
         .model = model,
         .parameter = parameter,
@@ -268,5 +268,5 @@ enum rfade_status rfade_outage(const struct rfade_model *model, double parameter
 
 double rfade_lognormal_mean_over_median_db(double sigma_db)
 {
-    return 0.5 * sigma_db * sigma_db / db_per_neper;
+    return 0.5 * sigma_db * sigma_db / RFADE_DB_PER_NEPER_OF_POWER;
 }

@@ -6,11 +6,10 @@
  */
 #include "predict/response.h"
 
-#include <gsl/gsl_math.h>
 #include <gsl/gsl_sf_bessel.h>
 #include <math.h>
 
-static const double DB_PER_NEPER_OF_POWER = 10.0 / M_LN10;
+#include "model/model.h"
 
 /* Below it I1(ab)/a is taken at its limit b/2. */
 static const double LEAST_RAY = 1e-6;
@@ -34,6 +33,6 @@ enum rfade_status rfade_response(const struct rfade_model *model, double paramet
         return status;
     response->level = exp(density.value);
     response->slow = model->id == RFADE_RICE ? rice_slow_response(parameter, x_db)
-                                             : DB_PER_NEPER_OF_POWER * response->level;
+                                             : RFADE_DB_PER_NEPER_OF_POWER * response->level;
     return RFADE_OK;
 }

@@ -7,15 +7,12 @@
 #include "routefade/stretch.h"
 
 #include <gsl/gsl_cdf.h>
-#include <gsl/gsl_math.h>
 #include <math.h>
 #include <stdbool.h>
 
+#include "model/model.h"
 #include "predict/next_pass.h"
 #include "predict/response.h"
-
-/* d(dB)/d(relative power) */
-static const double DB_PER_NEPER_OF_POWER = 10.0 / M_LN10;
 
 /* Of the ends of an interval, as log odds. */
 static const double END_ACCURACY = 1e-7;
@@ -154,7 +151,7 @@ static double together(const struct rfade_stretch *stretch, const struct average
 {
     double reach = quantile * sqrt(stretch->slow_variance / stretch->passes) /
                    (average->lower * average->upper);
-    double level = reach * DB_PER_NEPER_OF_POWER * means->response;
+    double level = reach * RFADE_DB_PER_NEPER_OF_POWER * means->response;
     double parameter = reach * means->slow_response - level;
     return 2.0 * level * fmax(parameter, 0.0);
 }
