@@ -174,6 +174,40 @@ RFADE_API struct rfade_ray rfade_ray_from_lags(const struct rfade_sampling_sums 
                                                double k);
 
 /**
+ * Means of J0(2 pi u) cos(2 pi u c), for the ray from each direction, and of J0(2 pi u)^2 over
+ * lags u from 0 to a length: all that the variances below need, whatever K and the ray.
+ */
+struct rfade_lag_means {
+    double length_wavelengths;
+    double plain_ray[RFADE_RAY_DIRECTIONS]; /**< up to 1000 wavelengths */
+    double plain_scatter;
+    double falling_ray[RFADE_RAY_DIRECTIONS]; /**< with weight 2 (1 - u/length) */
+    double falling_scatter;
+};
+
+/**
+ * @param length_wavelengths  [1e-9, 1e12]
+ * @return RFADE_OK | RFADE_DOMAIN | RFADE_NO_MEMORY
+ * Accuracy: 1e-13 absolute up to 1000 wavelengths; beyond as the stretch's mean variance.
+ */
+RFADE_API enum rfade_status rfade_lag_means(double length_wavelengths,
+                                            struct rfade_lag_means *means);
+
+/** rfade_stretch_mean_variance over the means' length. */
+RFADE_API double rfade_lag_mean_variance(const struct rfade_lag_means *stretch, double k,
+                                         const struct rfade_ray *ray);
+
+struct rfade_narrowing {
+    double power; /**< rfade_window_narrowing */
+    double log;   /**< rfade_window_log_narrowing */
+};
+
+/** Both narrowings from the lag means over a window and over half of it; NaN for a bad K. */
+RFADE_API struct rfade_narrowing rfade_lag_narrowing(const struct rfade_lag_means *window,
+                                                     const struct rfade_lag_means *half,
+                                                     double k, const struct rfade_ray *ray);
+
+/**
  * Share of the power's normalised variance that dividing by the local mean of a centred
  * window takes away, under Rice fading with isotropic scatter [Clarke 1968]: to first order
  * in 1/window, third moments included. Not the same as var(window mean)/var(power): for

@@ -8,8 +8,31 @@
 #include <math.h>
 #include <stdlib.h>
 
+/* A pass without travel tells no mean. */
+static const double LEAST_WAVELENGTHS = 1e-3;
+
 /* d(dB)/d(relative power) */
 static const double DB_PER_NEPER_OF_POWER = 10.0 / M_LN10;
+
+/* Means over lags that a pool's variances are made of. */
+struct lags {
+    struct rfade_lag_means window;
+    struct rfade_lag_means half_window;
+    struct rfade_lag_means pass;
+};
+
+static enum rfade_status find_lags(const struct rfade_pool *pool,
+                                   const struct rfade_analysis_settings *settings,
+                                   struct lags *lags)
+{
+    double pass_wavelengths = pool->travel_m / pool->wavelength_m / (double)pool->passes;
+    enum rfade_status status = rfade_lag_means(settings->window_wavelengths, &lags->window);
+    if (status == RFADE_OK)
+        status = rfade_lag_means(0.5 * settings->window_wavelengths, &lags->half_window);
+    if (status == RFADE_OK)
+        status = rfade_lag_means(fmax(pass_wavelengths, LEAST_WAVELENGTHS), &lags->pass);
+    return status;
+}
 
 enum rfade_status rfade_pool_create(struct rfade_pool *pool)
 {
@@ -122,13 +145,13 @@ static const struct rfade_fit *rice_fit(const struct rfade_pool_result *result)
 
 static void judge_local_mean(struct rfade_pool *pool,
                              const struct rfade_analysis_settings *settings,
-                             const struct level_moments *track,
+                             const struct lags *lags, const struct level_moments *track,
                              struct rfade_pool_result *result)
 {
     const struct rfade_fit *rice = rice_fit(result);
     double k = rice ? rice->parameter : 0.0;
     struct rfade_ray ray = rfade_ray_from_lags(&pool->sampling, k);
-    double window_variance = rfade_stretch_mean_variance(settings->window_wavelengths, k, &ray);
+    double window_variance = rfade_lag_mean_variance(&lags->window, k, &ray);
     result->window_noise_db = DB_PER_NEPER_OF_POWER * sqrt(window_variance);
     /* The mean of dB of a noisy power lies below the dB of its mean, to first order by half
      * its relative variance. What the local mean does within its window, and beyond the
@@ -139,8 +162,7 @@ static void judge_local_mean(struct rfade_pool *pool,
     local_sigma(pool, settings, track->variance_db2, rice ? rice->mean_power_db : 0.0, result);
 
     double passes = (double)pool->passes;
-    double pass_wavelengths = pool->travel_m / pool->wavelength_m / passes;
-    double mean_variance = rfade_stretch_mean_variance(pass_wavelengths, k, &ray) / passes;
+    double mean_variance = rfade_lag_mean_variance(&lags->pass, k, &ray) / passes;
     double fading_db2 = DB_PER_NEPER_OF_POWER * DB_PER_NEPER_OF_POWER * mean_variance;
     if (result->fitted)
         result->effective_count =
@@ -187,14 +209,12 @@ static void widen(const struct rfade_analysis_settings *settings, double slow_va
 }
 
 /* Relative variance of the passes' mean power beyond that under a ray across the road. */
-static double slow_variance(const struct rfade_pool *pool, double k,
+static double slow_variance(const struct lags *lags, double passes, double k,
                             const struct rfade_ray *ray)
 {
     struct rfade_ray across = rfade_ray_at(90.0);
-    double passes = (double)pool->passes;
-    double wavelengths = pool->travel_m / pool->wavelength_m / passes;
-    double excess = rfade_stretch_mean_variance(wavelengths, k, ray) -
-                    rfade_stretch_mean_variance(wavelengths, k, &across);
+    double excess = rfade_lag_mean_variance(&lags->pass, k, ray) -
+                    rfade_lag_mean_variance(&lags->pass, k, &across);
     return fmax(0.0, excess) / passes;
 }
 
@@ -223,7 +243,7 @@ static void correct_nakagami(double narrowing, double log_narrowing, struct rfad
 
 static enum rfade_status fit_fading(struct rfade_pool *pool,
                                     const struct rfade_analysis_settings *settings,
-                                    struct rfade_pool_result *result)
+                                    const struct lags *lags, struct rfade_pool_result *result)
 {
     struct rfade_bin *bins = NULL;
     size_t bin_count = 0;
@@ -238,14 +258,13 @@ static enum rfade_status fit_fading(struct rfade_pool *pool,
     status = rfade_fit_bins(rfade_model(RFADE_RICE), bins, bin_count, &plain, &narrowed);
     if (status == RFADE_OK) {
         struct rfade_ray ray = rfade_ray_from_lags(&pool->sampling, narrowed.parameter);
-        how.narrowing =
-            rfade_window_narrowing(settings->window_wavelengths, narrowed.parameter, &ray);
+        struct rfade_narrowing narrowing =
+            rfade_lag_narrowing(&lags->window, &lags->half_window, narrowed.parameter, &ray);
+        how.narrowing = narrowing.power;
         status = rfade_estimate_bins(bins, bin_count, &how, &result->estimate);
-        double slow = slow_variance(pool, narrowed.parameter, &ray);
-        double log_narrowing =
-            rfade_window_log_narrowing(settings->window_wavelengths, narrowed.parameter, &ray);
+        double slow = slow_variance(lags, (double)pool->passes, narrowed.parameter, &ray);
         for (size_t i = 0; i < result->estimate.fit_count && status == RFADE_OK; i++) {
-            correct_nakagami(how.narrowing, log_narrowing, &result->estimate.fits[i]);
+            correct_nakagami(how.narrowing, narrowing.log, &result->estimate.fits[i]);
             widen(settings, slow, &result->estimate.fits[i]);
         }
     }
@@ -269,15 +288,19 @@ enum rfade_status rfade_pool_evaluate(struct rfade_pool *pool,
                                          .effective_count = NAN,
                                          .level_uncertainty_db = NAN};
     bool seen = result->sampling == RFADE_RESOLVED || result->sampling == RFADE_INSEPARABLE;
+    struct lags lags;
+    enum rfade_status status = find_lags(pool, settings, &lags);
+    if (status != RFADE_OK)
+        return rfade_error_no_memory(error);
     if (seen) {
-        enum rfade_status status = fit_fading(pool, settings, result);
+        status = fit_fading(pool, settings, &lags, result);
         if (status != RFADE_OK && status != RFADE_NO_DATA)
             return rfade_error_set(error, status, "report it with the survey",
                                    "the fast fading of a segment can't be fitted: %s",
                                    rfade_status_text(status));
     }
     struct level_moments track, readings;
-    enum rfade_status status = level_moments(pool->local_mean, &track);
+    status = level_moments(pool->local_mean, &track);
     if (status == RFADE_OK)
         status = level_moments(pool->level, &readings);
     if (status != RFADE_OK)
@@ -285,6 +308,6 @@ enum rfade_status rfade_pool_evaluate(struct rfade_pool *pool,
                                rfade_status_text(status));
     result->mean_power_dbm = readings.mean_power_dbm;
     if (!isnan(track.mean_dbm))
-        judge_local_mean(pool, settings, &track, result);
+        judge_local_mean(pool, settings, &lags, &track, result);
     return RFADE_OK;
 }

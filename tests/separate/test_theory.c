@@ -183,6 +183,11 @@ static void outside_the_domain_is_nan(void **state)
     assert_true(isnan(rfade_window_narrowing(3.9, 1.0, &ACROSS)));
     assert_true(isnan(rfade_window_narrowing(2001.0, 1.0, &ACROSS)));
     assert_true(isnan(rfade_window_narrowing(40.0, NAN, &ACROSS)));
+
+    struct rfade_lag_means means;
+    assert_int_equal(rfade_lag_means(0.0, &means), RFADE_DOMAIN);
+    assert_true(isnan(means.length_wavelengths));
+    assert_int_equal(rfade_lag_means(NAN, &means), RFADE_DOMAIN);
 }
 
 /* A stretch that is next to nothing has the variance of the power itself. */
