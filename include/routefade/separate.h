@@ -20,18 +20,26 @@ extern "C" {
 #define RFADE_NO_FLOOR_CDB INT32_MIN
 #define RFADE_NO_CEILING_CDB INT32_MAX
 
+/** A reading without an SNR. */
+#define RFADE_NO_SNR_CDB INT32_MIN
+
 /** One located reading. */
 struct rfade_track_reading {
     int64_t time_us;
     int64_t travel_mm; /**< distance travelled along the pass; never falls; equal: standing */
     int32_t level_cdb;
     int32_t segment; /**< index of the segment that the reading lies in */
+    int32_t snr_cdb; /**< as logged, in the bandwidth, or RFADE_NO_SNR_CDB; not looked at where
+                          the receiver reports no SNR */
 };
 
 struct rfade_receiver {
-    int32_t step_cdb;    /**< quantisation step, >= 1 */
-    int32_t floor_cdb;   /**< readings at or below stand for all below floor + step/2 */
-    int32_t ceiling_cdb; /**< readings at or above stand for all from ceiling - step/2 up */
+    int32_t step_cdb;        /**< quantisation step, >= 1 */
+    int32_t floor_cdb;       /**< readings at or below stand for all below floor + step/2 */
+    int32_t ceiling_cdb;     /**< readings at or above stand for all from ceiling - step/2 up */
+    int32_t snr_step_cdb;    /**< quantisation step of the SNR; 0: it reports none */
+    int32_t snr_ceiling_cdb; /**< an SNR at or above stands for all above, and says nothing of
+                                  the noise; RFADE_NO_CEILING_CDB: none */
 };
 
 struct rfade_separate_settings {
@@ -126,6 +134,8 @@ struct rfade_traversal_tally {
     struct rfade_tally *fading;     /**< fast fading about its local mean; weights in mm */
     struct rfade_tally *level;      /**< absolute level; weights in mm */
     struct rfade_tally *local_mean; /**< local mean power, dBm, by 0.1 dB; weights in mm */
+    struct rfade_tally *snr;        /**< logged SNR, dB; weights in mm; empty without any */
+    struct rfade_tally *noise;      /**< level less SNR, dBm, by 0.1 dB; weights in mm */
     struct rfade_blocks blocks;
     struct rfade_sampling_sums sampling;
 };
@@ -143,7 +153,7 @@ struct rfade_separation {
  * reading enters it with the level that was reported. A run of readings in one segment makes
  * one traversal; the window reaches over the segment's ends, the blocks do not.
  * @param readings  [count], travel never falling; at most 1e10 mm of travel, levels within
- *                  240 dB of each other
+ *                  240 dB of each other, SNR within 10,000 dB of 0
  * @return RFADE_OK | RFADE_DOMAIN | RFADE_NO_DATA (no readings) | RFADE_NO_MEMORY |
  *         RFADE_OVERFLOW; on failure `result` is empty
  */

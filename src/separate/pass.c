@@ -7,6 +7,7 @@
 static const int64_t most_travel_mm = 10000000000; /* with these two the power sums */
 static const int32_t most_range_cdb = 24000;       /* stay below 2^128 */
 static const int32_t most_level_cdb = 1000000;
+static const int32_t most_snr_cdb = 1000000;
 static const double most_fading = 30.0;
 static const double power_unit = 16384.0; /* fixed point: resolution of the weakest level */
 
@@ -21,10 +22,19 @@ static bool valid_settings(const struct rfade_receiver *receiver,
     return within(settings->wavelength_m, 1e-3, 1e4) &&
            within(settings->window_wavelengths, 4.0, 2000.0) &&
            within(settings->block_wavelengths, 1.0, 1e5) &&
-           within(receiver->step_cdb, 1, 10000) && receiver->floor_cdb < receiver->ceiling_cdb;
+           within(receiver->step_cdb, 1, 10000) &&
+           receiver->floor_cdb < receiver->ceiling_cdb &&
+           within(receiver->snr_step_cdb, 0, 10000);
 }
 
-static bool valid_readings(const struct rfade_track_reading *readings, size_t count,
+static bool valid_snr(const struct rfade_receiver *receiver, int32_t snr_cdb)
+{
+    return receiver->snr_step_cdb == 0 || snr_cdb == RFADE_NO_SNR_CDB ||
+           within(snr_cdb, -most_snr_cdb, most_snr_cdb);
+}
+
+static bool valid_readings(const struct rfade_receiver *receiver,
+                           const struct rfade_track_reading *readings, size_t count,
                            int32_t *lowest_cdb)
 {
     int32_t highest_cdb = -most_level_cdb;
@@ -34,6 +44,7 @@ static bool valid_readings(const struct rfade_track_reading *readings, size_t co
         int32_t level_cdb = readings[i].level_cdb;
 
         if (!within(level_cdb, -most_level_cdb, most_level_cdb) ||
+            !valid_snr(receiver, readings[i].snr_cdb) ||
             readings[i].travel_mm < readings[i > 0 ? i - 1 : 0].travel_mm ||
             readings[i].travel_mm < 0 || readings[i].travel_mm > most_travel_mm) {
             return false;
@@ -159,7 +170,7 @@ enum rfade_status rfade_pass_create(struct rfade_pass *pass,
 
     *pass = (struct rfade_pass){.readings = readings, .count = count, .receiver = *receiver};
     if (!valid_settings(receiver, settings) ||
-        !valid_readings(readings, count, &pass->reference_cdb)) {
+        !valid_readings(receiver, readings, count, &pass->reference_cdb)) {
         return RFADE_DOMAIN;
     }
     pass->wavelength_um = (int64_t)round(1000.0 * wavelength_mm);

@@ -75,6 +75,10 @@ void rfade_pass_sampling(const struct rfade_pass *pass, struct rfade_range run,
 void rfade_pass_count_rows(const struct rfade_pass *pass, struct rfade_range run,
                            struct rfade_sampling_sums *sums);
 
+/** What a reading's SNR, where there is one, adds to the tallies of SNR and noise. */
+enum rfade_status rfade_pass_add_snr(const struct rfade_pass *pass, size_t i,
+                                     struct rfade_traversal_tally *traversal);
+
 /** Whether these rows repeat a level that is updated much more rarely. */
 bool rfade_sampling_is_held(const struct rfade_sampling_sums *sums, int64_t half_wave_mm);
 

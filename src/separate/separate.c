@@ -118,6 +118,9 @@ static enum rfade_status fill_traversal(const struct rfade_pass *pass, struct rf
         if (pass->weight_mm[i] > 0) {
             rfade_pass_window(pass, i, &window);
             status = add_reading(pass, i, window, traversal, blocks[block]);
+            if (status == RFADE_OK) {
+                status = rfade_pass_add_snr(pass, i, traversal);
+            }
         }
     }
     if (status == RFADE_OK) {
@@ -142,6 +145,12 @@ static enum rfade_status make_traversal(const struct rfade_pass *pass, struct rf
     }
     if (status == RFADE_OK) {
         status = rfade_tally_create(&traversal->local_mean);
+    }
+    if (status == RFADE_OK) {
+        status = rfade_tally_create(&traversal->snr);
+    }
+    if (status == RFADE_OK) {
+        status = rfade_tally_create(&traversal->noise);
     }
     if (status == RFADE_OK) {
         status = fill_traversal(pass, run, traversal);
@@ -217,6 +226,8 @@ void rfade_separation_clear(struct rfade_separation *separation)
         rfade_tally_destroy(separation->traversals[i].fading);
         rfade_tally_destroy(separation->traversals[i].level);
         rfade_tally_destroy(separation->traversals[i].local_mean);
+        rfade_tally_destroy(separation->traversals[i].snr);
+        rfade_tally_destroy(separation->traversals[i].noise);
     }
     free(separation->traversals);
     *separation = (struct rfade_separation){NULL, 0};

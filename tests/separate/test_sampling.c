@@ -61,8 +61,9 @@ static double share_of(enum rfade_sampling label, struct track track, double ste
 {
     const struct rfade_separate_settings settings = {
         wavelength_m, RFADE_DEFAULT_WINDOW_WAVELENGTHS, RFADE_DEFAULT_BLOCK_WAVELENGTHS};
-    const struct rfade_receiver receiver = {(int32_t)lround(100.0 * step_db),
-                                            RFADE_NO_FLOOR_CDB, RFADE_NO_CEILING_CDB};
+    const struct rfade_receiver receiver = {.step_cdb = (int32_t)lround(100.0 * step_db),
+                                            .floor_cdb = RFADE_NO_FLOOR_CDB,
+                                            .ceiling_cdb = RFADE_NO_CEILING_CDB};
     struct rfade_separation result;
     double labelled = 0.0;
     double segments;
@@ -169,7 +170,9 @@ static void held_levels_are_held(void **state)
 static void tallies_of_a_held_pass_count_updates(void **state)
 {
     const struct rfade_separate_settings how = {wavelength_m, 40.0, 10.0};
-    const struct rfade_receiver receiver = {100, RFADE_NO_FLOOR_CDB, RFADE_NO_CEILING_CDB};
+    const struct rfade_receiver receiver = {.step_cdb = 100,
+                                            .floor_cdb = RFADE_NO_FLOOR_CDB,
+                                            .ceiling_cdb = RFADE_NO_CEILING_CDB};
     struct rfade_drive_settings settings = road(0.15);
     struct rfade_separation result;
     struct track track;

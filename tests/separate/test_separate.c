@@ -75,6 +75,50 @@ static void four_readings_by_hand(void **state)
     assert_null(result.traversals);
 }
 
+/*
+ * Weights as above: 200, 500, 1300, 1000 mm. The first has no SNR, the third lies at the
+ * ceiling of 20 dB, whose interval begins at 19.5 dB, and tells nothing of the noise; the
+ * others say -70 - 15 = -85 dBm and -80 - 4 = -84 dBm.
+ */
+static void snr_and_noise_by_hand(void **state)
+{
+    struct rfade_track_reading readings[4];
+    const int32_t snr_cdb[] = {RFADE_NO_SNR_CDB, 1500, 2000, 400};
+    struct rfade_receiver receiver = open_receiver;
+    const struct rfade_tally_cell snr[] = {{{0, RFADE_ABOVE, 1950, 0}, 1300, 1},
+                                           {{100, RFADE_INTERVAL, 400, 0}, 1000, 1},
+                                           {{100, RFADE_INTERVAL, 1500, 0}, 500, 1}};
+    const struct rfade_tally_cell noise[] = {{{10, RFADE_INTERVAL, -8500, 0}, 500, 1},
+                                             {{10, RFADE_INTERVAL, -8400, 0}, 1000, 1}};
+    struct rfade_separation result;
+
+    (void)state;
+    for (size_t i = 0; i < 4; i++) {
+        readings[i] = four[i];
+        readings[i].snr_cdb = snr_cdb[i];
+    }
+    receiver.snr_step_cdb = 100;
+    receiver.snr_ceiling_cdb = 2000;
+    assert_int_equal(rfade_separate(readings, 4, &receiver, &metres, &result), RFADE_OK);
+    assert_cells(result.traversals[0].snr, snr, 3);
+    assert_cells(result.traversals[0].noise, noise, 2);
+    rfade_separation_clear(&result);
+
+    /* A reading at the floor says nothing of the noise either; its SNR counts. */
+    receiver.floor_cdb = -8000;
+    assert_int_equal(rfade_separate(readings, 4, &receiver, &metres, &result), RFADE_OK);
+    assert_cells(result.traversals[0].snr, snr, 3);
+    assert_cells(result.traversals[0].noise, noise, 1);
+    rfade_separation_clear(&result);
+
+    readings[1].snr_cdb = 1000001;
+    assert_int_equal(rfade_separate(readings, 4, &receiver, &metres, &result), RFADE_DOMAIN);
+    receiver.snr_step_cdb = 0; /* reports none: not looked at */
+    assert_int_equal(rfade_separate(readings, 4, &receiver, &metres, &result), RFADE_OK);
+    assert_cells(result.traversals[0].snr, NULL, 0);
+    rfade_separation_clear(&result);
+}
+
 static void windows_of_four_readings(void **state)
 {
     struct rfade_separation result;
@@ -401,6 +445,7 @@ int main(void)
 {
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(four_readings_by_hand),
+        cmocka_unit_test(snr_and_noise_by_hand),
         cmocka_unit_test(windows_of_four_readings),
         cmocka_unit_test(blocks_of_four_readings),
         cmocka_unit_test(a_long_gap_costs_nothing),
