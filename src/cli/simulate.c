@@ -142,6 +142,7 @@ static enum rfade_status write_drive(struct rfade_run *run, const struct line *l
         .second_readings = second,
         .count = count,
         .step_db = given->step_db,
+        .noise_dbm = given->noise_dbm,
         .start_us = start_us,
         .zone_minutes = (int)given->zone_minutes,
         .fix_interval_s = given->fix_interval_s,

@@ -19,6 +19,7 @@ const struct simulate_options rfade_simulate_defaults = {
     .step_db = 1,
     .floor_dbm = NAN,
     .ceiling_dbm = NAN,
+    .noise_dbm = NAN,
     .standstill_s = 30,
     .position_scatter_m = 0,
     .fix_interval_s = 1,
@@ -76,6 +77,8 @@ const struct rfade_option rfade_simulate_option_table[] = {
      "lower levels are reported as this one, default: no floor"},
     {"ceiling-dbm", "DBM", RFADE_OPTION_NUMBER, TARGET(ceiling_dbm), -300, 100, NULL,
      "higher levels are reported as this one, default: no ceiling"},
+    {"noise-dbm", "DBM", RFADE_OPTION_NUMBER, TARGET(noise_dbm), -300, 100, NULL,
+     "the comma layout gets a column of SNR: level less this noise"},
     {"standstill-at-m", "LIST", RFADE_OPTION_NUMBERS, TARGET(standstill_at_m), 0, 1e9, NULL,
      "places where the vehicle stands, in rising order"},
     {"standstill-s", "S", RFADE_OPTION_NUMBER, TARGET(standstill_s), 0, 1e6, NULL,
@@ -169,6 +172,8 @@ enum rfade_status rfade_simulate_options_check(const struct simulate_options *gi
     bool blanks = rfade_simulate_layout(given) == RFADE_LAYOUT_BLANKS;
     if (given->second_channel && !blanks)
         return rfade_usage(error, command, "--second-channel needs --layout blanks");
+    if (!isnan(given->noise_dbm) && rfade_simulate_layout(given) != RFADE_LAYOUT_COMMA)
+        return rfade_usage(error, command, "--noise-dbm needs --layout comma");
     if (!given->second_channel &&
         !(isnan(given->second_carrier_hz) && isnan(given->second_mean_level_dbm)))
         return rfade_usage(error, command,

@@ -14,7 +14,7 @@ struct simulate_options {
     double stretch_m, ray_angle_deg;
     double mean_level_dbm, shadowing_db, decorrelation_m;
     const char *shadowing;
-    double step_db, floor_dbm, ceiling_dbm;
+    double step_db, floor_dbm, ceiling_dbm, noise_dbm;
     struct rfade_numbers standstill_at_m;
     double standstill_s;
     double position_scatter_m, fix_interval_s;
@@ -27,7 +27,7 @@ struct simulate_options {
 };
 
 extern const struct simulate_options rfade_simulate_defaults;
-enum { RFADE_SIMULATE_OPTIONS = 30 };
+enum { RFADE_SIMULATE_OPTIONS = 31 };
 extern const struct rfade_option rfade_simulate_option_table[];
 
 /** Refuses options that don't go together. */

@@ -87,14 +87,17 @@ static void calendar(const struct writer *writer, int64_t us, const char *date_f
 static void comma_row(struct writer *writer, size_t index, char row[ROW_SIZE])
 {
     const struct rfade_drive_log *log = writer->log;
-    char date[16], clock[16], fraction[8], position[48] = ",";
+    char date[16], clock[16], fraction[8], position[48] = ",", snr[24] = "";
+    double level_dbm = log->readings[index].level_dbm;
     calendar(writer, time_us(log, index), "%Y-%m-%d", date, clock, fraction);
     if (writer->new_fix)
         (void)snprintf(position, sizeof position, "%.7f,%.7f", writer->fix.latitude_deg,
                        writer->fix.longitude_deg);
-    (void)snprintf(row, ROW_SIZE, "%sT%s.%sZ,%s,%.2f,%.64s,%.64s,%.*f\n", date, clock, fraction,
-                   position, log->readings[index].speed_m_s * 3.6, log->vehicle, log->channel,
-                   writer->level_decimals, log->readings[index].level_dbm);
+    if (!isnan(log->noise_dbm))
+        (void)snprintf(snr, sizeof snr, ",%.1f", level_dbm - log->noise_dbm);
+    (void)snprintf(row, ROW_SIZE, "%sT%s.%sZ,%s,%.2f,%.64s,%.64s,%.*f%s\n", date, clock,
+                   fraction, position, log->readings[index].speed_m_s * 3.6, log->vehicle,
+                   log->channel, writer->level_decimals, level_dbm, snr);
 }
 
 static void semicolon_row(struct writer *writer, size_t index, char row[ROW_SIZE])
@@ -133,8 +136,9 @@ static void write_head(const struct writer *writer)
     const struct rfade_drive_log *log = writer->log;
     switch (log->layout) {
     case RFADE_LAYOUT_COMMA:
-        (void)fputs("time,latitude,longitude,speed_kmh,vehicle,channel,rssi_dbm\n",
-                    writer->stream);
+        (void)fprintf(writer->stream,
+                      "time,latitude,longitude,speed_kmh,vehicle,channel,rssi_dbm%s\n",
+                      isnan(log->noise_dbm) ? "" : ",snr_db");
         break;
     case RFADE_LAYOUT_SEMICOLON:
         (void)fputs("local time;lat;lon;speed [km/h];rssi [dBm]\n", writer->stream);

@@ -32,6 +32,8 @@ struct rfade_drive_log {
     const struct rfade_drive_reading *second_readings; /**< as many; NULL: none */
     size_t count;
     double step_db;            /**< tells how many decimals a level has */
+    double noise_dbm;          /**< level less this is logged as SNR; NaN: no SNR;
+                                    RFADE_LAYOUT_COMMA only */
     int64_t start_us;          /**< time of the first reading, since 1970-01-01T00:00:00Z */
     int zone_minutes;          /**< east of UTC; RFADE_LAYOUT_SEMICOLON only */
     double fix_interval_s;     /**< a new position so often, > 0 */
