@@ -40,6 +40,8 @@ CREATE TABLE traversal (
     fading_tally BLOB NOT NULL,
     level_tally BLOB NOT NULL,
     local_mean_tally BLOB NOT NULL,
+    snr_tally BLOB NOT NULL,            -- as logged
+    noise_tally BLOB NOT NULL,          -- level less SNR
     blocks BLOB NOT NULL,
     sampling BLOB NOT NULL
 ) STRICT;
@@ -67,8 +69,10 @@ CREATE TABLE fading (
     local_sigma_high_db REAL,
     window_noise_db REAL,               -- standard deviation of that noise
     level_uncertainty_db REAL,          -- standard error of the mean level
+    noise_dbm REAL,                     -- dB of the mean noise power that was logged
     level_tally BLOB NOT NULL,
     local_mean_tally BLOB NOT NULL,
+    snr_tally BLOB NOT NULL,
     UNIQUE (segment_id, channel_id, campaign_id)
 ) STRICT;
 

@@ -47,7 +47,7 @@ static enum rfade_status prepare_traversals(struct rfade_survey *survey,
         survey, statement, error,
         "SELECT trace.fingerprint, traversal.start_us, traversal.end_us,"
         " traversal.reading_count, travel_m, level_uncertainty_db, wavelength_m,"
-        " fading_tally, level_tally, local_mean_tally, blocks, sampling"
+        " fading_tally, level_tally, local_mean_tally, snr_tally, noise_tally, blocks, sampling"
         " FROM traversal JOIN trace USING (trace_id)"
         " WHERE segment_id = ?1 AND channel_id = ?2 AND campaign_id = ?3"
         " ORDER BY trace.fingerprint, traversal.start_us, traversal.end_us",
@@ -99,23 +99,23 @@ static enum rfade_status merge_traversal(sqlite3_stmt *statement, struct rfade_p
     pool->travel_m += sqlite3_column_double(statement, 4);
     pool->calibration_db = fmax(pool->calibration_db, sqlite3_column_double(statement, 5));
     pool->wavelength_m = sqlite3_column_double(statement, 6);
-    enum rfade_status status = merge_tally(statement, 7, pool->fading);
-    if (status == RFADE_OK)
-        status = merge_tally(statement, 8, pool->level);
-    if (status == RFADE_OK)
-        status = merge_tally(statement, 9, pool->local_mean);
+    struct rfade_tally *const sums_of[] = {pool->fading, pool->level, pool->local_mean,
+                                           pool->snr, pool->noise};
+    enum rfade_status status = RFADE_OK;
+    for (int i = 0; i < (int)(sizeof sums_of / sizeof sums_of[0]) && status == RFADE_OK; i++)
+        status = merge_tally(statement, 7 + i, sums_of[i]);
     struct rfade_blocks blocks = {0};
-    const void *bytes = sqlite3_column_blob(statement, 10);
+    const void *bytes = sqlite3_column_blob(statement, 12);
     if (status == RFADE_OK)
         status =
-            rfade_blocks_decode(bytes, (size_t)sqlite3_column_bytes(statement, 10), &blocks);
+            rfade_blocks_decode(bytes, (size_t)sqlite3_column_bytes(statement, 12), &blocks);
     if (status == RFADE_OK)
         status = rfade_blocks_merge(&pool->blocks, &blocks, 1);
     struct rfade_sampling_sums sums = {0};
-    bytes = sqlite3_column_blob(statement, 11);
+    bytes = sqlite3_column_blob(statement, 13);
     if (status == RFADE_OK)
         status =
-            rfade_sampling_decode(bytes, (size_t)sqlite3_column_bytes(statement, 11), &sums);
+            rfade_sampling_decode(bytes, (size_t)sqlite3_column_bytes(statement, 13), &sums);
     if (status == RFADE_OK)
         status = rfade_sampling_merge(&pool->sampling, &sums, 1);
     return status;
@@ -181,11 +181,13 @@ static enum rfade_status store_result(struct rfade_survey *survey, const struct 
                                       const struct rfade_pool_result *result,
                                       struct rfade_error *error)
 {
-    uint8_t *level = NULL, *local_mean = NULL;
-    size_t level_size = 0, local_mean_size = 0;
-    enum rfade_status status = rfade_tally_encode(pool->level, &level, &level_size);
-    if (status == RFADE_OK)
-        status = rfade_tally_encode(pool->local_mean, &local_mean, &local_mean_size);
+    struct rfade_tally *const tallies[] = {pool->level, pool->local_mean, pool->snr};
+    enum { STORED = sizeof tallies / sizeof tallies[0] };
+    uint8_t *bytes[STORED] = {NULL};
+    size_t sizes[STORED] = {0};
+    enum rfade_status status = RFADE_OK;
+    for (size_t i = 0; i < STORED && status == RFADE_OK; i++)
+        status = rfade_tally_encode(tallies[i], &bytes[i], &sizes[i]);
     if (status != RFADE_OK) {
         status = rfade_error_no_memory(error);
         goto out;
@@ -195,21 +197,22 @@ static enum rfade_status store_result(struct rfade_survey *survey, const struct 
         "INSERT INTO fading (segment_id, channel_id, campaign_id, fingerprint, sampling,"
         " pass_count, reading_count, travel_m, wavelength_m, effective_count,"
         " mean_power_dbm, local_mean_dbm, local_sigma_db, local_sigma_low_db,"
-        " local_sigma_high_db, window_noise_db, level_uncertainty_db, level_tally,"
-        " local_mean_tally) VALUES (?1, ?2, ?3, ?4, ?5, ?6, ?7, ?8, ?9, ?10, ?11, ?12, ?13,"
-        " ?14, ?15, ?16, ?17, ?18, ?19)",
-        "iiibtiiddddddddddbb", group->segment_id, group->channel_id, group->campaign_id,
+        " local_sigma_high_db, window_noise_db, level_uncertainty_db, noise_dbm, level_tally,"
+        " local_mean_tally, snr_tally) VALUES (?1, ?2, ?3, ?4, ?5, ?6, ?7, ?8, ?9, ?10, ?11,"
+        " ?12, ?13, ?14, ?15, ?16, ?17, ?18, ?19, ?20, ?21)",
+        "iiibtiidddddddddddbbb", group->segment_id, group->channel_id, group->campaign_id,
         (const void *)fingerprint->bytes, sizeof fingerprint->bytes,
         rfade_sampling_name(result->sampling), pool->passes, pool->readings, pool->travel_m,
         pool->wavelength_m, result->effective_count, result->mean_power_dbm,
         result->local_mean_dbm, result->local_sigma_db, result->local_sigma_low_db,
         result->local_sigma_high_db, result->window_noise_db, result->level_uncertainty_db,
-        (const void *)level, level_size, (const void *)local_mean, local_mean_size);
+        result->noise_dbm, (const void *)bytes[0], sizes[0], (const void *)bytes[1], sizes[1],
+        (const void *)bytes[2], sizes[2]);
     if (status == RFADE_OK)
         status = store_fits(survey, group, result, error);
 out:
-    free(level);
-    free(local_mean);
+    for (size_t i = 0; i < STORED; i++)
+        free(bytes[i]);
     return status;
 }
 

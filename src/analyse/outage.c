@@ -13,6 +13,10 @@ static const double DB_PER_NEPER_OF_POWER = 10.0 / M_LN10;
 /* A model that is less likely than that moves no end of an interval. */
 static const double WEIGHT_MIN = 1e-3;
 
+/* Of the travel that has a level: with more than the odd reading without it, the logged SNR
+ * doesn't speak for the segment. */
+static const double SNR_SHARE = 0.99;
+
 /* Mean and standard deviation of the measured local mean, dB. */
 static void track_moments(const struct rfade_tally_cell *cells, size_t count, double *mean_dbm,
                           double *deviation_db)
@@ -132,7 +136,31 @@ static enum rfade_status predicted(struct rfade_segment_result *row,
     return status;
 }
 
-enum rfade_status rfade_result_outage(struct rfade_segment_result *row, double threshold_dbm,
+/* Weight in mm of all cells of a tally. */
+static double travel_mm(struct rfade_tally *tally)
+{
+    const struct rfade_tally_cell *cells = NULL;
+    size_t count = 0;
+    double sum = 0.0;
+    if (rfade_tally_cells(tally, &cells, &count) != RFADE_OK)
+        return 0.0;
+    for (size_t i = 0; i < count; i++)
+        sum += (double)cells[i].weight;
+    return sum;
+}
+
+/* Readings without SNR, and lost packets, are known by their level alone. */
+static enum rfade_status observe(struct rfade_segment_result *row,
+                                 const struct rfade_threshold *threshold,
+                                 struct rfade_observed *observed)
+{
+    if (!isnan(threshold->snr_db) && travel_mm(row->snr) >= SNR_SHARE * travel_mm(row->level))
+        return rfade_observed_below(row->snr, threshold->snr_db, observed);
+    return rfade_observed_below(row->level, threshold->level_dbm, observed);
+}
+
+enum rfade_status rfade_result_outage(struct rfade_segment_result *row,
+                                      const struct rfade_threshold *threshold,
                                       double confidence, struct rfade_stretch_outage *outage,
                                       struct rfade_observed *observed,
                                       struct rfade_error *error)
@@ -141,9 +169,9 @@ enum rfade_status rfade_result_outage(struct rfade_segment_result *row, double t
     const struct rfade_stored_fit *fit = rfade_result_preferred(row);
     enum rfade_status status = RFADE_OK;
     if (fit && fit->model)
-        status = predicted(row, fit, threshold_dbm, confidence, outage);
+        status = predicted(row, fit, threshold->level_dbm, confidence, outage);
     if (status == RFADE_OK)
-        status = rfade_observed_below(row->level, threshold_dbm, observed);
+        status = observe(row, threshold, observed);
     if (status == RFADE_NO_DATA) /* a vehicle that stood still travelled nothing */
         status = RFADE_OK;
     if (status != RFADE_OK)

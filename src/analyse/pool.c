@@ -42,6 +42,10 @@ enum rfade_status rfade_pool_create(struct rfade_pool *pool)
         status = rfade_tally_create(&pool->level);
     if (status == RFADE_OK)
         status = rfade_tally_create(&pool->local_mean);
+    if (status == RFADE_OK)
+        status = rfade_tally_create(&pool->snr);
+    if (status == RFADE_OK)
+        status = rfade_tally_create(&pool->noise);
     if (status != RFADE_OK)
         rfade_pool_clear(pool);
     return status;
@@ -52,6 +56,8 @@ void rfade_pool_clear(struct rfade_pool *pool)
     rfade_tally_destroy(pool->fading);
     rfade_tally_destroy(pool->level);
     rfade_tally_destroy(pool->local_mean);
+    rfade_tally_destroy(pool->snr);
+    rfade_tally_destroy(pool->noise);
     *pool = (struct rfade_pool){.wavelength_m = NAN};
 }
 
@@ -286,7 +292,8 @@ enum rfade_status rfade_pool_evaluate(struct rfade_pool *pool,
                                          .local_sigma_high_db = NAN,
                                          .window_noise_db = NAN,
                                          .effective_count = NAN,
-                                         .level_uncertainty_db = NAN};
+                                         .level_uncertainty_db = NAN,
+                                         .noise_dbm = NAN};
     bool seen = result->sampling == RFADE_RESOLVED || result->sampling == RFADE_INSEPARABLE;
     struct lags lags;
     enum rfade_status status = find_lags(pool, settings, &lags);
@@ -299,14 +306,17 @@ enum rfade_status rfade_pool_evaluate(struct rfade_pool *pool,
                                    "the fast fading of a segment can't be fitted: %s",
                                    rfade_status_text(status));
     }
-    struct level_moments track, readings;
+    struct level_moments track, readings, noise;
     status = level_moments(pool->local_mean, &track);
     if (status == RFADE_OK)
         status = level_moments(pool->level, &readings);
+    if (status == RFADE_OK)
+        status = level_moments(pool->noise, &noise);
     if (status != RFADE_OK)
         return rfade_error_set(error, status, "", "a local-mean tally can't be read: %s",
                                rfade_status_text(status));
     result->mean_power_dbm = readings.mean_power_dbm;
+    result->noise_dbm = noise.mean_power_dbm;
     if (!isnan(track.mean_dbm))
         judge_local_mean(pool, settings, &lags, &track, result);
     return RFADE_OK;

@@ -19,6 +19,8 @@ struct rfade_pool {
     struct rfade_tally *fading;
     struct rfade_tally *level;
     struct rfade_tally *local_mean;
+    struct rfade_tally *snr;   /**< as logged; empty where none was */
+    struct rfade_tally *noise; /**< level less SNR */
     struct rfade_blocks blocks;
     struct rfade_sampling_sums sampling;
     int64_t passes;
@@ -39,7 +41,8 @@ struct rfade_pool_result {
     double window_noise_db;
     double effective_count; /**< independent readings that would know the mean as well */
     double level_uncertainty_db;
-    bool fitted; /**< whether `estimate` holds fits of the fast fading */
+    double noise_dbm; /**< mean noise power by the logged SNR */
+    bool fitted;      /**< whether `estimate` holds fits of the fast fading */
     struct rfade_estimate estimate;
 };
 

@@ -6,6 +6,7 @@
 #include <stdlib.h>
 
 #include "analyse/clipping.h"
+#include "ingest/sink.h"
 #include "routefade/estimate.h"
 
 static int32_t to_cdb(double level_db)
@@ -25,6 +26,32 @@ static enum rfade_status find_step(const struct rfade_survey_reading *readings, 
     *step_cdb = to_cdb(rfade_find_step_db(levels_dbm, count));
     free(levels_dbm);
     return RFADE_OK;
+}
+
+/* Step and ceiling of the SNR, found as those of the level are; no SNR leaves a step of 0. */
+static enum rfade_status find_snr(const struct rfade_survey_reading *readings, size_t count,
+                                  struct rfade_receiver *receiver)
+{
+    struct rfade_survey_reading *ratios = malloc((count + 1) * sizeof *ratios);
+    size_t found = 0;
+    if (!ratios)
+        return RFADE_NO_MEMORY;
+    for (size_t i = 0; i < count; i++) {
+        if (readings[i].snr_cdb == RFADE_NO_VALUE_CDB)
+            continue;
+        ratios[found] = readings[i];
+        ratios[found++].level_cdb = readings[i].snr_cdb;
+    }
+    enum rfade_status status = RFADE_OK;
+    if (found > 0)
+        status = find_step(ratios, found, &receiver->snr_step_cdb);
+    if (status == RFADE_OK && found > 0) {
+        receiver->snr_step_cdb = receiver->snr_step_cdb > 0 ? receiver->snr_step_cdb : 1;
+        receiver->snr_ceiling_cdb =
+            rfade_find_clipping(ratios, found, receiver->snr_step_cdb).ceiling_cdb;
+    }
+    free(ratios);
+    return status;
 }
 
 static void set_limits(struct rfade_trace_receiver *known, const struct rfade_channel *channel,
@@ -109,7 +136,8 @@ enum rfade_status rfade_trace_receiver(const struct rfade_channel *channel,
     *known = (struct rfade_trace_receiver){
         .reported = {.step_cdb = 1,
                      .floor_cdb = RFADE_NO_FLOOR_CDB,
-                     .ceiling_cdb = RFADE_NO_CEILING_CDB},
+                     .ceiling_cdb = RFADE_NO_CEILING_CDB,
+                     .snr_ceiling_cdb = RFADE_NO_CEILING_CDB},
         .step_found = isnan(channel->step_db),
         .noise_dbm = NAN,
     };
@@ -122,6 +150,8 @@ enum rfade_status rfade_trace_receiver(const struct rfade_channel *channel,
         status = find_step(readings, count, &known->reported.step_cdb);
     else
         known->reported.step_cdb = to_cdb(channel->step_db);
+    if (status == RFADE_OK)
+        status = find_snr(readings, count, &known->reported);
     if (status != RFADE_OK)
         return status;
     struct rfade_clipping found =

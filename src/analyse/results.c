@@ -14,7 +14,7 @@ static const char *const ROWS_SQL =
     " effective_count, mean_power_dbm, local_mean_dbm, local_sigma_db, local_sigma_low_db,"
     " local_sigma_high_db, window_noise_db, level_uncertainty_db, channel.noise_floor_dbm,"
     " channel.bandwidth_hz, channel.noise_figure_db, channel.symbol_rate_hz,"
-    " fading.level_tally, fading.local_mean_tally"
+    " fading.noise_dbm, fading.level_tally, fading.local_mean_tally, fading.snr_tally"
     " FROM fading JOIN segment USING (segment_id) JOIN route USING (route_id)"
     " JOIN channel USING (channel_id) JOIN campaign USING (campaign_id)"
     " WHERE (?1 IS NULL OR route.name = ?1) AND (?2 IS NULL OR channel.name = ?2)"
@@ -41,6 +41,36 @@ static struct rfade_tally *column_tally(sqlite3_stmt *statement, int column)
     return rfade_tally_decode(bytes, size, &tally) == RFADE_OK ? tally : NULL;
 }
 
+const char *rfade_noise_source_name(enum rfade_noise_source source)
+{
+    static const char *const names[] = {NULL, "listed", "logged", "channel", "thermal"};
+    return names[source];
+}
+
+/* Noise that was measured on the way beats what is told of the channel, and that kTB. A list,
+ * which beats them all, is looked at later. */
+static void read_noise(sqlite3_stmt *statement, struct rfade_segment_result *row)
+{
+    double logged_dbm = rfade_column_real(statement, 24);
+    double told_dbm = rfade_column_real(statement, 20);
+    double thermal_dbm = rfade_noise_floor_dbm(NAN, rfade_column_real(statement, 21),
+                                               rfade_column_real(statement, 22));
+    const struct {
+        enum rfade_noise_source source;
+        double noise_dbm;
+    } known[] = {{RFADE_NOISE_LOGGED, logged_dbm},
+                 {RFADE_NOISE_CHANNEL, told_dbm},
+                 {RFADE_NOISE_THERMAL, thermal_dbm}};
+    row->noise_source = RFADE_NOISE_UNKNOWN;
+    row->noise_floor_dbm = NAN;
+    for (size_t i = sizeof known / sizeof known[0]; i-- > 0;) {
+        if (isnan(known[i].noise_dbm))
+            continue;
+        row->noise_source = known[i].source;
+        row->noise_floor_dbm = known[i].noise_dbm;
+    }
+}
+
 /* Members that could not be had stay NULL; check_row tells. */
 static void read_row(sqlite3_stmt *statement, void *row)
 {
@@ -65,14 +95,13 @@ static void read_row(sqlite3_stmt *statement, void *row)
         .local_sigma_high_db = rfade_column_real(statement, 17),
         .window_noise_db = rfade_column_real(statement, 18),
         .level_uncertainty_db = rfade_column_real(statement, 19),
-        .noise_floor_dbm = rfade_noise_floor_dbm(rfade_column_real(statement, 20),
-                                                 rfade_column_real(statement, 21),
-                                                 rfade_column_real(statement, 22)),
         .bandwidth_hz = rfade_column_real(statement, 21),
         .symbol_rate_hz = rfade_column_real(statement, 23),
-        .level = column_tally(statement, 24),
-        .local_mean = column_tally(statement, 25),
+        .level = column_tally(statement, 25),
+        .local_mean = column_tally(statement, 26),
+        .snr = column_tally(statement, 27),
     };
+    read_noise(statement, row);
 }
 
 static enum rfade_status check_row(const struct rfade_segment_result *row,
@@ -80,7 +109,7 @@ static enum rfade_status check_row(const struct rfade_segment_result *row,
 {
     if (!row->route || !row->channel || !row->campaign || !row->sampling)
         return rfade_error_no_memory(error);
-    if (!row->level || !row->local_mean)
+    if (!row->level || !row->local_mean || !row->snr)
         return rfade_error_set(error, RFADE_STORAGE, "run `routefade fit --all`",
                                "a stored tally of route %s, segment %lld can't be read",
                                row->route, (long long)row->segment);
@@ -123,6 +152,7 @@ static void clear_row(struct rfade_segment_result *row)
     free(row->fits);
     rfade_tally_destroy(row->level);
     rfade_tally_destroy(row->local_mean);
+    rfade_tally_destroy(row->snr);
 }
 
 void rfade_results_clear(struct rfade_segment_results *results)

@@ -33,6 +33,18 @@ struct rfade_stored_fit {
     double goodness_p;
 };
 
+/** Where a segment's noise comes from: measured noise beats computed noise. */
+enum rfade_noise_source {
+    RFADE_NOISE_UNKNOWN,
+    RFADE_NOISE_LISTED,  /**< measured, by place: `routefade noise` */
+    RFADE_NOISE_LOGGED,  /**< level less the logged SNR */
+    RFADE_NOISE_CHANNEL, /**< told of the channel */
+    RFADE_NOISE_THERMAL  /**< kTB at 290 K and the noise figure */
+};
+
+/** The word for a source; NULL for none. */
+const char *rfade_noise_source_name(enum rfade_noise_source source);
+
 /** One row of `fading` with its fits. Texts and tallies are owned by the row. */
 struct rfade_segment_result {
     int64_t fading_id;
@@ -55,11 +67,13 @@ struct rfade_segment_result {
     double local_sigma_high_db;
     double window_noise_db;
     double level_uncertainty_db;
-    double noise_floor_dbm; /**< the channel's, told or from bandwidth and noise figure */
+    double noise_floor_dbm; /**< in the bandwidth; NaN: not known */
+    enum rfade_noise_source noise_source;
     double bandwidth_hz;
     double symbol_rate_hz;
     struct rfade_tally *level;
     struct rfade_tally *local_mean;
+    struct rfade_tally *snr; /**< as logged; empty where none was */
     struct rfade_stored_fit *fits;
     size_t fit_count;
 };
@@ -100,8 +114,18 @@ const struct rfade_stored_fit *rfade_result_fit(const struct rfade_segment_resul
 /** Whether the fast fading was told apart, so that K and m may be shown. */
 bool rfade_result_resolved(const struct rfade_segment_result *row);
 
-/** Outage of a row at a level; NaN members where nothing was fitted. */
-enum rfade_status rfade_result_outage(struct rfade_segment_result *row, double threshold_dbm,
+/** A threshold as a level, and as the SNR it was given as: NaN for one given as a level. */
+struct rfade_threshold {
+    double level_dbm;
+    double snr_db;
+};
+
+/**
+ * Outage of a row at a threshold; NaN members where nothing was fitted. Observed is the logged
+ * SNR against a threshold in SNR where the log has it all along, else the level.
+ */
+enum rfade_status rfade_result_outage(struct rfade_segment_result *row,
+                                      const struct rfade_threshold *threshold,
                                       double confidence, struct rfade_stretch_outage *outage,
                                       struct rfade_observed *observed,
                                       struct rfade_error *error);

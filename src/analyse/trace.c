@@ -115,15 +115,16 @@ static enum rfade_status store_trace(const struct making *making, const struct t
     return status;
 }
 
-/* The byte forms of one traversal's tallies. */
+/* The byte forms of one traversal's tallies, blocks and sums. */
+enum { TALLIES = 5, BLOCKS = TALLIES, SAMPLING, ENCODED };
 struct encoded {
-    uint8_t *bytes[5];
-    size_t sizes[5];
+    uint8_t *bytes[ENCODED];
+    size_t sizes[ENCODED];
 };
 
 static void clear_encoded(struct encoded *encoded)
 {
-    for (size_t i = 0; i < 5; i++)
+    for (size_t i = 0; i < ENCODED; i++)
         free(encoded->bytes[i]);
 }
 
@@ -131,17 +132,18 @@ static enum rfade_status encode(const struct rfade_traversal_tally *traversal,
                                 struct encoded *encoded)
 {
     *encoded = (struct encoded){{NULL}, {0}};
-    struct rfade_tally *const tallies[] = {traversal->fading, traversal->level,
-                                           traversal->local_mean};
+    struct rfade_tally *const tallies[TALLIES] = {traversal->fading, traversal->level,
+                                                  traversal->local_mean, traversal->snr,
+                                                  traversal->noise};
     enum rfade_status status = RFADE_OK;
-    for (size_t i = 0; i < 3 && status == RFADE_OK; i++)
+    for (size_t i = 0; i < TALLIES && status == RFADE_OK; i++)
         status = rfade_tally_encode(tallies[i], &encoded->bytes[i], &encoded->sizes[i]);
     if (status == RFADE_OK)
-        status =
-            rfade_blocks_encode(&traversal->blocks, &encoded->bytes[3], &encoded->sizes[3]);
+        status = rfade_blocks_encode(&traversal->blocks, &encoded->bytes[BLOCKS],
+                                     &encoded->sizes[BLOCKS]);
     if (status == RFADE_OK)
-        status =
-            rfade_sampling_encode(&traversal->sampling, &encoded->bytes[4], &encoded->sizes[4]);
+        status = rfade_sampling_encode(&traversal->sampling, &encoded->bytes[SAMPLING],
+                                       &encoded->sizes[SAMPLING]);
     return status;
 }
 
@@ -159,18 +161,20 @@ static enum rfade_status store_traversal(const struct making *making, int64_t tr
     }
     status = rfade_survey_run(
         making->work->survey, error,
-        "INSERT INTO traversal (trace_id, segment_id, pass_start_us, start_us, end_us, "
-        "reading_count,"
-        " travel_m, level_uncertainty_db, fading_tally, level_tally, local_mean_tally, blocks,"
-        " sampling) VALUES (?1, ?2, ?3, ?4, ?5, ?6, ?7, ?8, ?9, ?10, ?11, ?12, ?13)",
-        "iiiiiiddbbbbb", trace_id, making->work->route->segments[traversal->segment].segment_id,
+        "INSERT INTO traversal (trace_id, segment_id, pass_start_us, start_us, end_us,"
+        " reading_count, travel_m, level_uncertainty_db, fading_tally, level_tally,"
+        " local_mean_tally, snr_tally, noise_tally, blocks, sampling)"
+        " VALUES (?1, ?2, ?3, ?4, ?5, ?6, ?7, ?8, ?9, ?10, ?11, ?12, ?13, ?14, ?15)",
+        "iiiiiiddbbbbbbb", trace_id,
+        making->work->route->segments[traversal->segment].segment_id,
         rfade_track_start_us(making->drive->tracks[pass]), traversal->first_time_us,
         traversal->last_time_us, traversal->sampling.readings,
         (double)traversal->sampling.travel_mm / 1000.0, making->known.uncertainty_db,
         (const void *)encoded.bytes[0], encoded.sizes[0], (const void *)encoded.bytes[1],
         encoded.sizes[1], (const void *)encoded.bytes[2], encoded.sizes[2],
         (const void *)encoded.bytes[3], encoded.sizes[3], (const void *)encoded.bytes[4],
-        encoded.sizes[4]);
+        encoded.sizes[4], (const void *)encoded.bytes[BLOCKS], encoded.sizes[BLOCKS],
+        (const void *)encoded.bytes[SAMPLING], encoded.sizes[SAMPLING]);
 out:
     clear_encoded(&encoded);
     return status;
@@ -230,6 +234,8 @@ static size_t locate(const struct making *making, size_t pass)
             .level_cdb = rfade_trace_level_cdb(&making->known, readings[i].level_cdb),
             .segment =
                 rfade_route_work_segment(making->work->route, (double)chainage_mm / 1000.0),
+            .snr_cdb = readings[i].snr_cdb == RFADE_NO_VALUE_CDB ? RFADE_NO_SNR_CDB
+                                                                 : readings[i].snr_cdb,
         };
     }
     return found;

@@ -36,6 +36,8 @@ static const struct rfade_column own_columns[] = {
     {"observed", RFADE_COLUMN_PROBABILITY, 3, false, false},
     {"observed_low", RFADE_COLUMN_PROBABILITY, 3, false, false},
     {"observed_high", RFADE_COLUMN_PROBABILITY, 3, false, false},
+    {"noise_dbm", RFADE_COLUMN_NUMBER, 1, false, false},
+    {"noise", RFADE_COLUMN_TEXT, 0, false, false},
     {"sampling", RFADE_COLUMN_TEXT, 0, false, false},
 };
 enum { OWN_COLUMNS = sizeof own_columns / sizeof own_columns[0] };
@@ -68,18 +70,19 @@ static enum rfade_status choose_threshold(const struct outage_options *asked,
     return RFADE_OK;
 }
 
-/* The received level of a threshold on this row's channel. */
-static enum rfade_status threshold_level(const struct rfade_segment_result *row,
-                                         const struct threshold *threshold, double *level_dbm,
-                                         struct rfade_error *error)
+/* The threshold on this row's channel, as a level and as SNR in the bandwidth. */
+static enum rfade_status threshold_here(const struct rfade_segment_result *row,
+                                        const struct threshold *threshold,
+                                        struct rfade_threshold *here, struct rfade_error *error)
 {
-    *level_dbm = threshold->value;
+    *here = (struct rfade_threshold){threshold->value, NAN};
     if (strcmp(threshold->column, "threshold_dbm") == 0)
         return RFADE_OK;
+    here->snr_db = threshold->value;
     if (strcmp(threshold->column, "threshold_esn0_db") == 0) {
         /* SNR in the bandwidth B is Es/N0 times symbol rate over B. */
-        *level_dbm += 10.0 * log10(row->symbol_rate_hz / row->bandwidth_hz);
-        if (isnan(*level_dbm))
+        here->snr_db += 10.0 * log10(row->symbol_rate_hz / row->bandwidth_hz);
+        if (isnan(here->snr_db))
             return rfade_error_set(error, RFADE_INPUT,
                                    "give them with `routefade channel NAME --bandwidth-hz B "
                                    "--symbol-rate-hz R`, or use --threshold-dbm",
@@ -87,8 +90,8 @@ static enum rfade_status threshold_level(const struct rfade_segment_result *row,
                                    "is unknown",
                                    row->channel);
     }
-    *level_dbm += row->noise_floor_dbm;
-    if (isnan(*level_dbm))
+    here->level_dbm = here->snr_db + row->noise_floor_dbm;
+    if (isnan(here->level_dbm))
         return rfade_error_set(error, RFADE_INPUT,
                                "give it with `routefade channel NAME --noise-floor-dbm N` (or "
                                "--bandwidth-hz and --noise-figure-db), or use --threshold-dbm",
@@ -107,11 +110,10 @@ static enum rfade_status answer_rows(struct rfade_segment_results *results,
                                      struct answer *answers, struct rfade_error *error)
 {
     for (size_t i = 0; i < results->count; i++) {
-        double level_dbm = NAN;
-        enum rfade_status status =
-            threshold_level(&results->rows[i], threshold, &level_dbm, error);
+        struct rfade_threshold here = {NAN, NAN};
+        enum rfade_status status = threshold_here(&results->rows[i], threshold, &here, error);
         if (status == RFADE_OK)
-            status = rfade_result_outage(&results->rows[i], level_dbm, confidence,
+            status = rfade_result_outage(&results->rows[i], &here, confidence,
                                          &answers[i].outage, &answers[i].observed, error);
         if (status != RFADE_OK)
             return status;
@@ -149,7 +151,9 @@ static void row_values(const struct rfade_segment_result *row,
     own[6] = rfade_value_number(answer->observed.fraction);
     own[7] = rfade_value_number(answer->observed.low);
     own[8] = rfade_value_number(answer->observed.high);
-    own[9] = rfade_value_text(row->sampling);
+    own[9] = rfade_value_number(row->noise_floor_dbm);
+    own[10] = rfade_value_text(rfade_noise_source_name(row->noise_source));
+    own[11] = rfade_value_text(row->sampling);
 }
 
 static enum rfade_status
@@ -226,10 +230,11 @@ const struct rfade_command rfade_command_outage = {
         "confidence interval of that probability. next_low and next_high are the 95 % "
         "prediction interval of the fraction that one more pass observes. observed is the "
         "fraction of the travel that was below; its bounds differ where a quantisation step or "
-        "a censored reading straddles the threshold. Thresholds in SNR are taken from the "
-        "level less the channel's noise floor; logged SNR is not used yet. A predicted outage "
-        "is "
-        "no safety case.",
+        "a censored reading straddles the threshold. A threshold in SNR is a level above "
+        "the noise; `noise` says where that comes from: listed (by `routefade noise`), logged "
+        "(level less logged SNR), channel (its noise floor) or thermal (290 K, bandwidth and "
+        "noise figure). Logged SNR, where there is one all along, is what observed counts. A "
+        "predicted outage is no safety case.",
     .options = options,
     .option_count = sizeof options / sizeof options[0],
     .defaults = &defaults,

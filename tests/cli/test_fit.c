@@ -161,7 +161,7 @@ static void assert_columns(const char *expected, char *csv, json_t *rows)
     "model,"
 #define OUTAGE_COLUMNS                                                                         \
     ",outage,outage_low,outage_high,next_low,next_high,observed,observed_low,observed_high,"   \
-    "sampling"
+    "noise_dbm,noise,sampling"
 
 static void columns_are_those_of_the_contract(void **state)
 {
@@ -211,6 +211,37 @@ static void thresholds_in_three_units_agree(void **state)
     SAID("", "channel", "telemetry", "--noise-floor-dbm", "-118", "--survey", fixture->survey);
     assert_same_threshold(fixture, "--threshold-db", "10", "-108");
     assert_same_threshold(fixture, "--threshold-esn0-db", "10", "-112.157");
+}
+
+/* The log says SNR over noise at -112 dBm: 7 dB of it is a level of -105 dBm, and the noise
+ * that is told of the channel, and kTB, stand back. */
+static void logged_snr_tells_the_noise(void **state)
+{
+    const struct fixture *fixture = *state;
+    char log[128];
+    (void)snprintf(log, sizeof log, "%s/snr.csv", fixture->folder);
+    SAID("", "simulate", "--length-m", "520", "--k", "0,6,0", "--stretch-m", "200",
+         "--mean-level-dbm", "-95", "--shadowing-db", "0", "--seed", "6", "--noise-dbm", "-112",
+         "--vehicle", "plough-3", "--channel", "telemetry", "--output", log);
+    SAID("", "import", log, "--survey", fixture->survey);
+    SAID("", "channel", "telemetry", "--carrier-hz", "457e6", "--bandwidth-hz", "12500",
+         "--noise-floor-dbm", "-118", "--survey", fixture->survey);
+    SAID("", "route", "valley", "--from-vehicle", "plough-3", "--survey", fixture->survey);
+    SAID("", "fit", "--survey", fixture->survey);
+    json_t *rows = JSON_OF("outage", "--threshold-db", "7", "--survey", fixture->survey);
+    json_t *levels = JSON_OF("outage", "--threshold-dbm", "-105", "--survey", fixture->survey);
+    assert_true(json_array_size(rows) >= 5);
+    for (size_t i = 0; i < json_array_size(rows); i++) {
+        assert_true(fabs(number_at(rows, i, "noise_dbm") + 112.0) < 0.05);
+        assert_string_equal(
+            json_string_value(json_object_get(json_array_get(rows, i), "noise")), "logged");
+        assert_true(fabs(number_at(rows, i, "outage") - number_at(levels, i, "outage")) <
+                    1e-2 * number_at(levels, i, "outage"));
+        assert_true(fabs(number_at(rows, i, "observed") - number_at(levels, i, "observed")) <
+                    1e-9);
+    }
+    json_decref(rows);
+    json_decref(levels);
 }
 
 /* Rayleigh: 1 - exp(-10^(-1)) = 0.0952 at 10 dB below the mean; the drive's mean is -95. */
@@ -381,6 +412,7 @@ int main(void)
         FITTED(fit_of_all_gives_the_same),
         FITTED(columns_are_those_of_the_contract),
         FITTED(thresholds_in_three_units_agree),
+        EMPTY(logged_snr_tells_the_noise),
         FITTED(outage_is_that_of_the_simulated_fading),
         FITTED(worst_is_ranked_by_the_better_end_or_the_estimate),
         FITTED(worst_keeps_what_could_not_be_predicted),

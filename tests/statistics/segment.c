@@ -306,7 +306,8 @@ static bool note_outages(const struct circumstances *circumstances,
         struct rfade_observed observed;
         struct rfade_error error;
         (void)true_outage(circumstances, &passes[circumstances->passes], level_dbm, &next);
-        if (rfade_result_outage(row, level_dbm, confidence, &found, &observed, &error) !=
+        const struct rfade_threshold threshold = {level_dbm, NAN};
+        if (rfade_result_outage(row, &threshold, confidence, &found, &observed, &error) !=
             RFADE_OK) {
             return false;
         }
