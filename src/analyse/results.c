@@ -6,6 +6,7 @@
 #include <string.h>
 
 #include "survey/channel.h"
+#include "survey/noise.h"
 #include "survey/rows.h"
 
 static const char *const ROWS_SQL =
@@ -102,6 +103,27 @@ static void read_row(sqlite3_stmt *statement, void *row)
         .snr = column_tally(statement, 27),
     };
     read_noise(statement, row);
+}
+
+/* Mean power of the listed noise over the part of the segment that the list covers: at least
+ * half of it, else the list does not speak for the segment. */
+static void take_listed_noise(const struct rfade_noise *list, size_t count,
+                              struct rfade_segment_result *row)
+{
+    double covered_m = 0.0, power = 0.0;
+    for (size_t i = 0; i < count; i++) {
+        double from_m = fmax(list[i].from_m, row->from_m);
+        double to_m = fmin(list[i].to_m, row->to_m);
+        if (to_m <= from_m || strcmp(list[i].channel, row->channel) != 0 ||
+            strcmp(list[i].route, row->route) != 0)
+            continue;
+        covered_m += to_m - from_m;
+        power += (to_m - from_m) * pow(10.0, list[i].noise_dbm / 10.0);
+    }
+    if (covered_m < 0.5 * (row->to_m - row->from_m))
+        return;
+    row->noise_source = RFADE_NOISE_LISTED;
+    row->noise_floor_dbm = 10.0 * log10(power / covered_m);
 }
 
 static enum rfade_status check_row(const struct rfade_segment_result *row,
@@ -251,6 +273,8 @@ enum rfade_status rfade_results_read(struct rfade_survey *survey,
 {
     *results = (struct rfade_segment_results){NULL, 0};
     sqlite3_stmt *statement = NULL;
+    struct rfade_noise *noise = NULL;
+    size_t noise_count = 0;
     enum rfade_status status = check_names(survey, filter, error);
     if (status == RFADE_OK)
         status = check_segment(survey, filter, error);
@@ -261,11 +285,16 @@ enum rfade_status rfade_results_read(struct rfade_survey *survey,
     if (status == RFADE_OK)
         status = rfade_rows_read(survey, statement, sizeof *results->rows, read_row,
                                  (void **)&results->rows, &results->count, error);
+    if (status == RFADE_OK)
+        status = rfade_survey_noise(survey, &noise, &noise_count, error);
     for (size_t i = 0; i < results->count && status == RFADE_OK; i++) {
         status = check_row(&results->rows[i], error);
         if (status == RFADE_OK)
+            take_listed_noise(noise, noise_count, &results->rows[i]);
+        if (status == RFADE_OK)
             status = read_fits(survey, &results->rows[i], error);
     }
+    free(noise);
     if (status != RFADE_OK)
         rfade_results_clear(results);
     return status;

@@ -79,6 +79,7 @@ extern const struct rfade_command rfade_command_estimate;
 extern const struct rfade_command rfade_command_fading;
 extern const struct rfade_command rfade_command_fit;
 extern const struct rfade_command rfade_command_import;
+extern const struct rfade_command rfade_command_noise;
 extern const struct rfade_command rfade_command_outage;
 extern const struct rfade_command rfade_command_predict;
 extern const struct rfade_command rfade_command_route;

@@ -11,6 +11,7 @@ static const struct rfade_command *const commands[] = {
     &rfade_command_channel,
     &rfade_command_vehicle,
     &rfade_command_route,
+    &rfade_command_noise,
     &rfade_command_fit,
     &rfade_command_fading,
     &rfade_command_outage,

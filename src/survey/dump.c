@@ -36,6 +36,9 @@ static const struct {
                     "JOIN route USING (route_id) ORDER BY route, ordinal"},
     {"segment", "SELECT route.name AS route, segment.* FROM segment "
                 "JOIN route USING (route_id) ORDER BY route, number"},
+    {"noise", "SELECT route.name AS route, channel.name AS channel, noise.* FROM noise "
+              "JOIN route USING (route_id) JOIN channel USING (channel_id) "
+              "ORDER BY route, channel, from_m"},
     {"trace", "SELECT route.name AS route, vehicle.name AS vehicle, channel.name AS channel, "
               "campaign.name AS campaign, trace.* FROM trace JOIN route USING (route_id) "
               "JOIN vehicle USING (vehicle_id) JOIN channel USING (channel_id) "

@@ -18,7 +18,7 @@
 
 enum {
     RFADE_APPLICATION_ID = 0x52666465, /**< "Rfde" */
-    RFADE_SCHEMA_VERSION = 1,
+    RFADE_SCHEMA_VERSION = 2,
     RFADE_PAGE_SIZE = 16384
 };
 

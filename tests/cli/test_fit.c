@@ -198,6 +198,20 @@ static void assert_same_threshold(const struct fixture *fixture, const char *opt
     json_decref(expected);
 }
 
+/* A threshold in SNR is that in level on segment 1. */
+static void assert_same_first_segment(const struct fixture *fixture, const char *snr_db,
+                                      const char *level_dbm)
+{
+    json_t *rows = JSON_OF("outage", "--threshold-db", snr_db, "--segment", "1", "--survey",
+                           fixture->survey);
+    json_t *levels = JSON_OF("outage", "--threshold-dbm", level_dbm, "--segment", "1",
+                             "--survey", fixture->survey);
+    assert_true(number_at(rows, 0, "outage") > 0.0);
+    assert_true(fabs(number_at(rows, 0, "outage") - number_at(levels, 0, "outage")) < 1e-12);
+    json_decref(rows);
+    json_decref(levels);
+}
+
 /* By hand: thermal noise at 290 K is -173.975 dBm/Hz (Boltzmann's constant of the SI, 2019);
  * with 12.5 kHz (40.969 dB) and 6 dB of noise figure the floor is -127.006 dBm. At 4800 Bd
  * the SNR in 12.5 kHz is Es/N0 less 4.157 dB. */
@@ -242,6 +256,45 @@ static void logged_snr_tells_the_noise(void **state)
     }
     json_decref(rows);
     json_decref(levels);
+}
+
+#define ASSERT_NOISE_REFUSED(what) REFUSED(1, what, "noise", list, "--survey", fixture->survey)
+
+/* The list covers the first segment whole at -110 dBm; of the second 60 m, of which 20 m are
+ * at -110 and 40 m at -107 dBm: 10 log10(mean power) is -107.79 dBm; of the third 40 m. */
+static void listed_noise_beats_all_other(void **state)
+{
+    const struct fixture *fixture = *state;
+    SAID("", "channel", "telemetry", "--noise-floor-dbm", "-118", "--survey", fixture->survey);
+    const char *list = file_create(fixture->folder, "noise.csv",
+                                   "# measured by night\nchannel,route,noise_dbm,from_m,to_m\n"
+                                   "telemetry,fen,-110,0,120\ntelemetry,fen,-107,120,160\n"
+                                   "telemetry,fen,-90,260,300\n");
+    SAID("", "noise", list, "--survey", fixture->survey);
+    json_t *rows = JSON_OF("outage", "--threshold-db", "5", "--survey", fixture->survey);
+    assert_true(fabs(number_at(rows, 0, "noise_dbm") + 110.0) < 1e-9);
+    assert_true(fabs(number_at(rows, 1, "noise_dbm") + 107.79) < 5e-3);
+    assert_true(fabs(number_at(rows, 2, "noise_dbm") + 118.0) < 1e-9);
+    json_decref(rows);
+    assert_same_first_segment(fixture, "5", "-105");
+
+    list = file_create(fixture->folder, "noise.csv",
+                       "route,channel,from_m,to_m,noise_dbm\nfen,telemetry,0,120,-110\n"
+                       "fen,telemetry,100,130,-109\n");
+    ASSERT_NOISE_REFUSED("noise.csv:3: 100 to 130 m overlaps");
+    list = file_create(fixture->folder, "noise.csv",
+                       "route,channel,from_m,to_m,noise_dbm\nfen,telemetry,0,x,-110\n");
+    ASSERT_NOISE_REFUSED("noise.csv:2: not a number: 'x'");
+    list = file_create(fixture->folder, "noise.csv",
+                       "route,channel,from_m,to_m\nfen,telemetry,0,100\n");
+    ASSERT_NOISE_REFUSED("noise.csv:1: the header has no column 'noise_dbm'");
+    list = file_create(fixture->folder, "noise.csv",
+                       "route,channel,from_m,to_m,noise_dbm\nmoor,telemetry,0,100,-110\n");
+    ASSERT_NOISE_REFUSED("noise.csv:2: ");
+    rows = JSON_OF("noise", "--survey", fixture->survey); /* as before */
+    assert_int_equal(json_array_size(rows), 3);
+    assert_true(number_at(rows, 1, "from_m") == 120.0);
+    json_decref(rows);
 }
 
 /* Rayleigh: 1 - exp(-10^(-1)) = 0.0952 at 10 dB below the mean; the drive's mean is -95. */
@@ -413,6 +466,7 @@ int main(void)
         FITTED(columns_are_those_of_the_contract),
         FITTED(thresholds_in_three_units_agree),
         EMPTY(logged_snr_tells_the_noise),
+        FITTED(listed_noise_beats_all_other),
         FITTED(outage_is_that_of_the_simulated_fading),
         FITTED(worst_is_ranked_by_the_better_end_or_the_estimate),
         FITTED(worst_keeps_what_could_not_be_predicted),

@@ -228,7 +228,8 @@ static void a_name_with_a_meaning_is_a_file(void **state)
     assert_int_equal(chdir(before), 0);
 }
 
-/* Version 2 of a layout that only this test has: a column more, and other results. */
+/* The next version of a layout that only this test has: a column more, and other results. */
+enum { NEXT = RFADE_SCHEMA_VERSION + 1, AFTER_NEXT };
 static const char add_column[] = "ALTER TABLE vehicle ADD COLUMN antenna TEXT;";
 static const char rebuild_table[] =
     "CREATE TABLE vehicle_new (vehicle_id INTEGER PRIMARY KEY, name TEXT NOT NULL UNIQUE, "
@@ -263,11 +264,12 @@ static void fill_one_calibration(const char *path)
 static void an_older_survey_is_migrated(void **state)
 {
     struct fixture *fixture = *state;
-    static const struct rfade_sql migrations[] = {{2, add_column, sizeof add_column - 1},
-                                                  {3, rebuild_table, sizeof rebuild_table - 1},
-                                                  {0, NULL, 0}};
+    static const struct rfade_sql migrations[] = {
+        {NEXT, add_column, sizeof add_column - 1},
+        {AFTER_NEXT, rebuild_table, sizeof rebuild_table - 1},
+        {0, NULL, 0}};
     static const struct rfade_sql results = {0, other_results, sizeof other_results - 1};
-    struct rfade_layout layout = later_layout(migrations, 3);
+    struct rfade_layout layout = later_layout(migrations, AFTER_NEXT);
     layout.derived = &results;
     fill_one_calibration(fixture->path);
     struct rfade_error error = {0};
@@ -286,7 +288,7 @@ static void an_older_survey_is_migrated(void **state)
     assert_int_equal(rfade_survey_open_as(fixture->path, RFADE_SURVEY_WRITE, &layout,
                                           &fixture->survey, &error),
                      RFADE_OK);
-    assert_int_equal(integer_of(fixture->survey, "PRAGMA user_version"), 3);
+    assert_int_equal(integer_of(fixture->survey, "PRAGMA user_version"), AFTER_NEXT);
     assert_int_equal(integer_of(fixture->survey, "SELECT mast_m = 2.5 FROM vehicle"), 1);
     /* What referred to the table that was made anew is still there, and keys hold again. */
     assert_int_equal(integer_of(fixture->survey, "SELECT count(*) FROM calibration"), 1);
@@ -303,17 +305,41 @@ static void an_older_survey_is_migrated(void **state)
                      RFADE_OK);
 }
 
+/* A survey of version 1 had no listed noise; migrated, it has the table of a new one. */
+static void a_survey_of_version_1_becomes_a_current_one(void **state)
+{
+    struct fixture *fixture = *state;
+    struct rfade_error error = {0};
+    struct rfade_survey *survey = open_new(fixture->path);
+    assert_int_equal(rfade_survey_execute(survey,
+                                          "CREATE TABLE kept AS SELECT sql FROM sqlite_schema "
+                                          "WHERE name = 'noise'; DROP TABLE noise; "
+                                          "PRAGMA user_version = 1;",
+                                          &error),
+                     RFADE_OK);
+    rfade_survey_close(survey);
+    assert_int_equal(
+        rfade_survey_open(fixture->path, RFADE_SURVEY_WRITE, &fixture->survey, &error),
+        RFADE_OK);
+    assert_int_equal(integer_of(fixture->survey, "PRAGMA user_version"), RFADE_SCHEMA_VERSION);
+    assert_int_equal(integer_of(fixture->survey, "SELECT count(*) FROM kept JOIN sqlite_schema "
+                                                 "USING (sql) WHERE name = 'noise'"),
+                     1);
+}
+
 static void a_failed_migration_changes_nothing(void **state)
 {
     struct fixture *fixture = *state;
-    static const struct rfade_sql failing[] = {
-        {2, add_column, sizeof add_column - 1}, {3, breaks, sizeof breaks - 1}, {0, NULL, 0}};
-    static const struct rfade_sql orphaning[] = {{2, orphans, sizeof orphans - 1},
-                                                 {0, NULL, 0}};
-    static const struct rfade_sql missing[] = {{2, add_column, sizeof add_column - 1},
+    static const struct rfade_sql failing[] = {{NEXT, add_column, sizeof add_column - 1},
+                                               {AFTER_NEXT, breaks, sizeof breaks - 1},
                                                {0, NULL, 0}};
-    const struct rfade_layout layouts[] = {later_layout(failing, 3), later_layout(orphaning, 2),
-                                           later_layout(missing, 3)};
+    static const struct rfade_sql orphaning[] = {{NEXT, orphans, sizeof orphans - 1},
+                                                 {0, NULL, 0}};
+    static const struct rfade_sql missing[] = {{NEXT, add_column, sizeof add_column - 1},
+                                               {0, NULL, 0}};
+    const struct rfade_layout layouts[] = {later_layout(failing, AFTER_NEXT),
+                                           later_layout(orphaning, NEXT),
+                                           later_layout(missing, AFTER_NEXT)};
     fill_one_calibration(fixture->path);
     size_t size = 0;
     char *bytes = read_file(fixture->path, &size);
@@ -503,6 +529,7 @@ int main(void)
         TEST(unreadable_and_unwritable_are_refused),
         TEST(a_name_with_a_meaning_is_a_file),
         TEST(an_older_survey_is_migrated),
+        TEST(a_survey_of_version_1_becomes_a_current_one),
         TEST(a_failed_migration_changes_nothing),
         TEST(results_of_another_version_are_made_again),
         TEST(an_abort_leaves_the_survey_as_it_was),
