@@ -27,7 +27,7 @@
 #include "special/tails.h"
 
 static const double shadowing_max_db = 30.0;
-static const double threshold_max_db = 1000.0;
+static const double threshold_max_db = RFADE_OUTAGE_LEVEL_LIMIT_DB;
 /* No peak lies further beyond the threshold or the mean: ten standard deviations. */
 static const double peak_margin_db = 10.0 * 30.0;
 /* Where the slope of ln f of Rice is greatest, at large K: half the steady amplitude. */
@@ -93,6 +93,18 @@ static double over_fading(const struct mixture *mixture, double u_db)
         return -INFINITY;
     }
     return small_tail(mixture, &tails) + density.value;
+}
+
+/* The density of the level: of both, in either variable. */
+static double over_density(const struct mixture *mixture, double v_db)
+{
+    const double s_db = (mixture->x_db - mixture->origin_db) - v_db;
+    struct rfade_log_gradient density;
+    if (mixture->model->log_density(mixture->parameter, mixture->origin_db + v_db, &density) !=
+        RFADE_OK) {
+        return -INFINITY;
+    }
+    return density.value + log_shadowing_density(mixture, s_db);
 }
 
 /* By a difference: where logarithms are huge, it is right when a slope is lost in rounding. */
@@ -233,27 +245,23 @@ static enum rfade_status integrate_small_tail(struct mixture *mixture,
     return RFADE_NO_CONVERGENCE;
 }
 
-enum rfade_status rfade_outage(const struct rfade_model *model, double parameter,
-                               double shadowing_db, double x_db, struct rfade_tails *result)
+/* Whether the arguments are such that there is an integral to take. */
+static bool valid(const struct rfade_model *model, double parameter, double shadowing_db)
 {
-    *result = rfade_tails_nan();
-    if (model == NULL || model->id == RFADE_LOGNORMAL || isnan(x_db) ||
-        !(shadowing_db >= 0.0 && shadowing_db <= shadowing_max_db)) {
-        return RFADE_DOMAIN;
-    }
-    if (shadowing_db == 0.0 || isinf(x_db)) {
-        return model->tails(parameter, x_db, result);
-    }
     struct rfade_tails probe;
-    const enum rfade_status status = model->tails(parameter, 0.0, &probe);
-    if (status != RFADE_OK || fabs(x_db) > threshold_max_db) {
-        return RFADE_DOMAIN;
-    }
+    return model != NULL && model->id != RFADE_LOGNORMAL && shadowing_db >= 0.0 &&
+           shadowing_db <= shadowing_max_db && model->tails(parameter, 0.0, &probe) == RFADE_OK;
+}
+
+/* With the variable that makes the narrower factor a density. */
+static struct mixture make_mixture(const struct rfade_model *model, double parameter,
+                                   double shadowing_db, double x_db)
+{
     /* the spread of the level is near that of the power, in nepers, as long as both are small
      */
     const double fading_db =
         RFADE_DB_PER_NEPER_OF_POWER * fmin(sqrt(model->normalised_variance(parameter)), 1.0);
-    struct mixture mixture = {
+    return (struct mixture){
         .model = model,
         .parameter = parameter,
         .shadowing_db = shadowing_db,
@@ -263,7 +271,42 @@ enum rfade_status rfade_outage(const struct rfade_model *model, double parameter
         .integrand = shadowing_db < fading_db ? over_shadowing : over_fading,
         .origin_db = shadowing_db < fading_db ? x_db : 0.0,
     };
+}
+
+enum rfade_status rfade_outage(const struct rfade_model *model, double parameter,
+                               double shadowing_db, double x_db, struct rfade_tails *result)
+{
+    *result = rfade_tails_nan();
+    if (isnan(x_db) || !valid(model, parameter, shadowing_db)) {
+        return RFADE_DOMAIN;
+    }
+    if (shadowing_db == 0.0 || isinf(x_db)) {
+        return model->tails(parameter, x_db, result);
+    }
+    if (fabs(x_db) > threshold_max_db) {
+        return RFADE_DOMAIN;
+    }
+    struct mixture mixture = make_mixture(model, parameter, shadowing_db, x_db);
     return integrate_small_tail(&mixture, result);
+}
+
+enum rfade_status rfade_outage_log_density(const struct rfade_model *model, double parameter,
+                                           double shadowing_db, double x_db,
+                                           double *log_density)
+{
+    *log_density = NAN;
+    if (!(fabs(x_db) <= threshold_max_db) || !valid(model, parameter, shadowing_db)) {
+        return RFADE_DOMAIN;
+    }
+    if (shadowing_db == 0.0) {
+        struct rfade_log_gradient gradient;
+        const enum rfade_status status = model->log_density(parameter, x_db, &gradient);
+        *log_density = gradient.value;
+        return status;
+    }
+    struct mixture mixture = make_mixture(model, parameter, shadowing_db, x_db);
+    mixture.integrand = over_density;
+    return integrate(&mixture, log_density);
 }
 
 double rfade_lognormal_mean_over_median_db(double sigma_db)

@@ -1,7 +1,7 @@
 # SPDX-License-Identifier: GPL-3.0-or-later
 """Random reference points for the special functions, the fading models and the outage.
 
-    python3 make_random.py marcum|gamma|ratio|psi|tails|interval|outage|valley > NAME_random.tsv
+    python3 make_random.py marcum|gamma|ratio|psi|tails|interval|outage|valley|quantile > NAME_random.tsv
 
 Integrals of the definitions with mpmath in 30-digit arithmetic: Gauss-Legendre panels of 40
 nodes, no longer than a sixth of the integrand's e-folding or its spread, from the greatest
@@ -285,7 +285,55 @@ def valley(count):
         print("rice", repr(k), repr(sigma), repr(x), nstr(total, 20), sep="\t")
 
 
-TABLES = {"valley": (valley, 30), "marcum": (marcum, 300), "gamma": (gamma, 300), "ratio": (ratio, 200),
+def level_integral(model, sigma, x, sign):
+    """Tail (sign 1: lower, -1: upper) or density (0) of shadowed fading at the level x."""
+    spread = sigma * sqrt(mpf(2))
+    if sign:
+        factor = lambda u: erfc(sign * (u - x) / spread) / 2
+        log_slope = lambda u: -model.slopes(u)[0] - sign * exp(-((u - x) / spread) ** 2) / (
+            spread * sqrt(pi)) / factor(u)
+    else:
+        factor = lambda u: exp(-((u - x) / spread) ** 2) / (spread * sqrt(pi))
+        log_slope = lambda u: -model.slopes(u)[0] - (u - x) / mpf(sigma) ** 2
+    low, high = mpf(-2000), mpf(300)
+    for _ in range(60):
+        middle = (low + high) / 2
+        low, high = (middle, high) if log_slope(middle) > 0 else (low, middle)
+    return integrate(lambda u: [model.density(u) * factor(u)], -inf, inf, low,
+                     min(model.spread, mpf(sigma)), log_slope)[0]
+
+
+def quantile(count):
+    """Levels of given probabilities: secant on ln tail until the 25th digit stands still."""
+    print("model\tparameter\tshadowing_db\tlower\tupper\tx_db\tln_density")
+    for i in range(count):
+        name = random.choice(["rayleigh", "rice", "nakagami"])
+        # one peak in every integral: no deep fades of strong direct rays here
+        parameter = {"rayleigh": 0.0, "rice": 10 ** random.uniform(-2, 0.6),
+                     "nakagami": 10 ** random.uniform(-0.3, 2)}[name]
+        model, sigma = MODELS[name](parameter), 10 ** random.uniform(-0.5, 1.2)
+        tail, sign = 10 ** random.uniform(-12, -0.31), 1 if i % 2 else -1
+        if i % 8 < 2:
+            tail = 10 ** random.uniform(-30, -12)
+        points = [mpf(-sign) * sigma, mpf(-sign) * 2 * sigma]
+        errors = [log(level_integral(model, sigma, x, sign) / tail) for x in points]
+        for _ in range(60):
+            step = -errors[-1] * (points[-1] - points[-2]) / (errors[-1] - errors[-2])
+            step = max(min(step, mpf(40)), mpf(-40))
+            points.append(points[-1] + step)
+            if abs(step) < mpf(10) ** -22 * (1 + abs(points[-1])):
+                break
+            errors.append(log(level_integral(model, sigma, points[-1], sign) / tail))
+        else:
+            raise ArithmeticError(f"{name} {parameter} {sigma} {tail}")
+        ends = (tail, 1 - mpf(tail)) if sign == 1 else (1 - mpf(tail), tail)
+        density = level_integral(model, sigma, points[-1], 0)
+        print(name, repr(parameter), repr(sigma),
+              *[repr(v) if isinstance(v, float) else nstr(v, 20) for v in ends],
+              nstr(points[-1], 20), nstr(log(density), 20), sep="\t")
+
+
+TABLES = {"quantile": (quantile, 60), "valley": (valley, 30), "marcum": (marcum, 300), "gamma": (gamma, 300), "ratio": (ratio, 200),
           "psi": (log_minus_psi, 100), "tails": (tails, 400), "interval": (interval, 500),
           "outage": (outage, 120)}
 
