@@ -4,27 +4,18 @@
 #include <string.h>
 
 #include "cli/segment_rows.h"
+#include "cli/threshold.h"
 
 struct outage_options {
     struct rfade_segment_options segments;
-    double threshold_db;
-    double threshold_esn0_db;
-    double threshold_dbm;
+    struct rfade_threshold_options threshold;
 };
 
 static const struct outage_options defaults = {.segments = RFADE_SEGMENT_DEFAULTS,
-                                               .threshold_db = NAN,
-                                               .threshold_esn0_db = NAN,
-                                               .threshold_dbm = NAN};
+                                               .threshold = RFADE_THRESHOLD_DEFAULTS};
 
 static const struct rfade_option options[] = {
-    {"threshold-db", "X", RFADE_OPTION_NUMBER, offsetof(struct outage_options, threshold_db),
-     -200, 200, NULL, "SNR in the channel's bandwidth, dB"},
-    {"threshold-esn0-db", "X", RFADE_OPTION_NUMBER,
-     offsetof(struct outage_options, threshold_esn0_db), -200, 200, NULL,
-     "Es/N0, dB: needs the channel's bandwidth and symbol rate"},
-    {"threshold-dbm", "X", RFADE_OPTION_NUMBER, offsetof(struct outage_options, threshold_dbm),
-     -300, 200, NULL, "received level, dBm"},
+    RFADE_THRESHOLD_OPTION_LINES(struct outage_options),
     RFADE_SEGMENT_OPTION_LINES(struct outage_options)};
 
 static const struct rfade_column own_columns[] = {
@@ -43,75 +34,20 @@ static const struct rfade_column own_columns[] = {
 enum { OWN_COLUMNS = sizeof own_columns / sizeof own_columns[0] };
 enum { COLUMNS = RFADE_SEGMENT_COLUMNS + 1 + OWN_COLUMNS };
 
-/* The threshold as the user gave it: its column's name and value. */
-struct threshold {
-    const char *column;
-    double value;
-};
-
-static enum rfade_status choose_threshold(const struct outage_options *asked,
-                                          struct threshold *threshold,
-                                          struct rfade_error *error)
-{
-    const struct threshold given[] = {{"threshold_db", asked->threshold_db},
-                                      {"threshold_esn0_db", asked->threshold_esn0_db},
-                                      {"threshold_dbm", asked->threshold_dbm}};
-    int count = 0;
-    for (size_t i = 0; i < sizeof given / sizeof given[0]; i++) {
-        if (isnan(given[i].value))
-            continue;
-        *threshold = given[i];
-        count++;
-    }
-    if (count != 1)
-        return rfade_usage(error, &rfade_command_outage,
-                           "exactly one of --threshold-db, --threshold-esn0-db and "
-                           "--threshold-dbm is needed");
-    return RFADE_OK;
-}
-
-/* The threshold on this row's channel, as a level and as SNR in the bandwidth. */
-static enum rfade_status threshold_here(const struct rfade_segment_result *row,
-                                        const struct threshold *threshold,
-                                        struct rfade_threshold *here, struct rfade_error *error)
-{
-    *here = (struct rfade_threshold){threshold->value, NAN};
-    if (strcmp(threshold->column, "threshold_dbm") == 0)
-        return RFADE_OK;
-    here->snr_db = threshold->value;
-    if (strcmp(threshold->column, "threshold_esn0_db") == 0) {
-        /* SNR in the bandwidth B is Es/N0 times symbol rate over B. */
-        here->snr_db += 10.0 * log10(row->symbol_rate_hz / row->bandwidth_hz);
-        if (isnan(here->snr_db))
-            return rfade_error_set(error, RFADE_INPUT,
-                                   "give them with `routefade channel NAME --bandwidth-hz B "
-                                   "--symbol-rate-hz R`, or use --threshold-dbm",
-                                   "channel %s has no bandwidth and symbol rate, so Es/N0 "
-                                   "is unknown",
-                                   row->channel);
-    }
-    here->level_dbm = here->snr_db + row->noise_floor_dbm;
-    if (isnan(here->level_dbm))
-        return rfade_error_set(error, RFADE_INPUT,
-                               "give it with `routefade channel NAME --noise-floor-dbm N` (or "
-                               "--bandwidth-hz and --noise-figure-db), or use --threshold-dbm",
-                               "channel %s has no noise floor, so SNR is unknown",
-                               row->channel);
-    return RFADE_OK;
-}
-
 struct answer {
     struct rfade_stretch_outage outage;
     struct rfade_observed observed;
 };
 
 static enum rfade_status answer_rows(struct rfade_segment_results *results,
-                                     const struct threshold *threshold, double confidence,
-                                     struct answer *answers, struct rfade_error *error)
+                                     const struct rfade_threshold_asked *threshold,
+                                     double confidence, struct answer *answers,
+                                     struct rfade_error *error)
 {
     for (size_t i = 0; i < results->count; i++) {
         struct rfade_threshold here = {NAN, NAN};
-        enum rfade_status status = threshold_here(&results->rows[i], threshold, &here, error);
+        enum rfade_status status =
+            rfade_threshold_here(&results->rows[i], threshold, &here, error);
         if (status == RFADE_OK)
             status = rfade_result_outage(&results->rows[i], &here, confidence,
                                          &answers[i].outage, &answers[i].observed, error);
@@ -137,8 +73,8 @@ static void rank_rows(const struct rfade_segment_results *results, const struct 
 }
 
 static void row_values(const struct rfade_segment_result *row,
-                       const struct threshold *threshold, const struct answer *answer,
-                       struct rfade_value *values)
+                       const struct rfade_threshold_asked *threshold,
+                       const struct answer *answer, struct rfade_value *values)
 {
     rfade_segment_values(row, values);
     struct rfade_value *own = values + RFADE_SEGMENT_COLUMNS;
@@ -158,7 +94,7 @@ static void row_values(const struct rfade_segment_result *row,
 
 static enum rfade_status
 print_rows(const struct rfade_run *run, const struct rfade_segment_results *results,
-           const struct threshold *threshold, const struct answer *answers,
+           const struct rfade_threshold_asked *threshold, const struct answer *answers,
            const struct rfade_segment_rank *ranks, size_t count, struct rfade_error *error)
 {
     struct rfade_column columns[COLUMNS];
@@ -183,7 +119,7 @@ print_rows(const struct rfade_run *run, const struct rfade_segment_results *resu
 
 static enum rfade_status show_outage(const struct rfade_run *run,
                                      const struct outage_options *asked,
-                                     const struct threshold *threshold,
+                                     const struct rfade_threshold_asked *threshold,
                                      struct rfade_segment_results *results,
                                      struct rfade_error *error)
 {
@@ -210,8 +146,9 @@ out:
 static enum rfade_status run_outage(struct rfade_run *run, struct rfade_error *error)
 {
     const struct outage_options *asked = run->options;
-    struct threshold threshold = {"threshold_dbm", NAN};
-    enum rfade_status status = choose_threshold(asked, &threshold, error);
+    struct rfade_threshold_asked threshold = {"threshold_dbm", NAN};
+    enum rfade_status status =
+        rfade_threshold_choose(&rfade_command_outage, &asked->threshold, &threshold, error);
     if (status != RFADE_OK)
         return status;
     struct rfade_segment_results results;
