@@ -33,6 +33,22 @@ json_t *rfade_json_text(const char *text)
     return made;
 }
 
+json_t *rfade_json_value(const struct rfade_value *value)
+{
+    switch (value->type) {
+    case RFADE_VALUE_TEXT:
+        return json_string(value->text);
+    case RFADE_VALUE_INTEGER:
+        return json_integer(value->integer);
+    case RFADE_VALUE_NUMBER:
+    case RFADE_VALUE_LIMIT:
+        return rfade_json_number(value->number);
+    case RFADE_VALUE_MISSING:
+        break;
+    }
+    return json_null();
+}
+
 json_t *rfade_json_join(json_t *object, json_t *part)
 {
     bool joined = object && part && json_object_update(object, part) == 0;
@@ -122,22 +138,6 @@ enum rfade_status rfade_json_document(FILE *stream, const char *stream_name, jso
     return rfade_stream_flush(stream, stream_name, error);
 }
 
-static json_t *from_value(const struct rfade_value *value)
-{
-    switch (value->type) {
-    case RFADE_VALUE_TEXT:
-        return json_string(value->text);
-    case RFADE_VALUE_INTEGER:
-        return json_integer(value->integer);
-    case RFADE_VALUE_NUMBER:
-    case RFADE_VALUE_LIMIT:
-        return rfade_json_number(value->number);
-    case RFADE_VALUE_MISSING:
-        break;
-    }
-    return json_null();
-}
-
 static enum rfade_status begin(struct rfade_rows *rows)
 {
     (void)fputc('[', rows->stream);
@@ -149,7 +149,8 @@ static enum rfade_status row(struct rfade_rows *rows)
     json_t *object = json_object();
     enum rfade_status status = object ? RFADE_OK : RFADE_NO_MEMORY;
     for (size_t i = 0; i < rows->column_count && status == RFADE_OK; i++)
-        if (json_object_set_new(object, rows->columns[i].name, from_value(&rows->values[i])))
+        if (json_object_set_new(object, rows->columns[i].name,
+                                rfade_json_value(&rows->values[i])))
             status = RFADE_NO_MEMORY;
     if (status == RFADE_OK) {
         (void)fputs(rows->row_count ? ",\n" : "\n", rows->stream);

@@ -7,12 +7,16 @@
 #include <stdio.h>
 
 #include "common/error.h"
+#include "output/rows.h"
 
 /** A number; null for NaN and the infinities, which JSON doesn't have. NULL: no memory. */
 json_t *rfade_json_number(double value);
 
 /** A text made printable; null for NULL. NULL: no memory. */
 json_t *rfade_json_text(const char *text);
+
+/** A field of a row, its text taken as it is. NULL: no memory. */
+json_t *rfade_json_value(const struct rfade_value *value);
 
 /**
  * Adds the members of `part` to `object`; takes both over. NULL if either is NULL or there

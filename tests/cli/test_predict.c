@@ -220,6 +220,73 @@ static void unfaded_is_steady_or_lognormal(void **state)
     json_decref(shadowed);
 }
 
+/* Where the table says that the outage is, its level is the quantile. */
+static void shadowed_quantile_matches_reference(void **state)
+{
+    (void)state;
+    struct reference_table table;
+    reference_open(&table, "composite_open.tsv");
+    for (int i = 0; reference_next(&table); i++) {
+        if (strcmp(reference_text(&table, "fading"), "Rayleigh") != 0 || i % 9 != 0)
+            continue; /* a run of the program each */
+        json_t *document = PREDICTED("--rayleigh", "--median-snr-db", "0", "--shadowing-db",
+                                     reference_text(&table, "sigma_dB"), "--probability",
+                                     reference_text(&table, "outage"));
+        const json_t *entry = json_array_get(json_object_get(document, "quantiles"), 0);
+        double expected = reference_number(&table, "outage");
+        assert_true(json_number_value(json_object_get(entry, "probability")) == expected);
+        reference_assert_close(&table, "snr_db",
+                               json_number_value(json_object_get(entry, "snr_db")),
+                               reference_number(&table, "x_dB"), 1e-10);
+        assert_int_equal(json_array_size(json_object_get(document, "outage")), 0);
+        json_decref(document);
+    }
+}
+
+/* Exponential power: -ln(0.99) of the mean; lognormal: AMS 55 table 26.1, P(1) = 0.84134 47460
+ * 68543; steady: the same everywhere. */
+static void quantiles_by_hand(void **state)
+{
+    (void)state;
+    json_t *document = PREDICTED("--rayleigh", "--mean-snr-db", "20", "--probability",
+                                 "0.01,0.5", "--threshold-db", "0");
+    const json_t *quantiles = json_object_get(document, "quantiles");
+    const json_t *entry = json_array_get(quantiles, 0);
+    assert_int_equal(json_array_size(quantiles), 2);
+    assert_true(fabs(json_number_value(json_object_get(entry, "snr_db")) -
+                     (20 + 10 * log10(-log1p(-0.01)))) < 1e-12);
+    assert_int_equal(json_array_size(json_object_get(document, "outage")), 1);
+    json_decref(document);
+    document = PREDICTED("--unfaded", "--median-snr-db", "10", "--shadowing-db", "4",
+                         "--probability", "0.841344746068543");
+    entry = json_array_get(json_object_get(document, "quantiles"), 0);
+    assert_true(fabs(json_number_value(json_object_get(entry, "snr_db")) - 14) < 1e-13);
+    json_decref(document);
+    document = PREDICTED("--unfaded", "--mean-snr-db", "7", "--probability", "0.2");
+    entry = json_array_get(json_object_get(document, "quantiles"), 0);
+    assert_true(json_number_value(json_object_get(entry, "snr_db")) == 7);
+    json_decref(document);
+}
+
+static void each_kind_of_answer_has_its_table(void **state)
+{
+    (void)state;
+    struct program program = {0};
+    RUN(&program, "predict", "--rayleigh", "--mean-snr-db", "20", "--threshold-db", "0",
+        "--probability", "0.5,0.01");
+    assert_int_equal(program.status, 0);
+    /* 10 log10(ln 2) = -1.592, 10 log10(-ln 0.99) = -19.978 */
+    assert_string_equal(
+        program.output,
+        "fading    parameter  mean_snr_db  shadowing_db  threshold_db    outage\n"
+        "rayleigh          -        20.00          0.00          0.00  0.009950\n"
+        "\n"
+        "fading    parameter  mean_snr_db  shadowing_db  probability  snr_db\n"
+        "rayleigh          -        20.00          0.00       0.5000   18.41\n"
+        "rayleigh          -        20.00          0.00      0.01000    0.02\n");
+    program_clear(&program);
+}
+
 static void table_and_csv_have_a_row_a_threshold(void **state)
 {
     (void)state;
@@ -255,7 +322,13 @@ static void what_makes_no_sense_is_refused(void **state)
             "--threshold-db", "0");
     REFUSED(2, "--median-snr-db needs --shadowing-db", "predict", "--rayleigh",
             "--median-snr-db", "9", "--threshold-db", "0");
-    REFUSED(2, "give a --threshold-db", "predict", "--rayleigh", "--mean-snr-db", "9");
+    REFUSED(2, "give a --threshold-db or a --probability", "predict", "--rayleigh",
+            "--mean-snr-db", "9");
+    REFUSED(2, "--format csv holds one kind of answer", "predict", "--rayleigh",
+            "--mean-snr-db", "9", "--threshold-db", "0", "--probability", "0.1", "--format",
+            "csv");
+    REFUSED(2, "option --probability needs a number from", "predict", "--probability", "0");
+    REFUSED(2, "option --probability needs a number from", "predict", "--probability", "1");
     REFUSED(2, "option --rice-k needs a number from 0", "predict", "--rice-k", "-1");
     REFUSED(2, "option --nakagami-m needs a number from 0.5", "predict", "--nakagami-m", "0.4");
     REFUSED(2, "option --shadowing-db needs a number from 0 to 30", "predict", "--shadowing-db",
@@ -276,6 +349,9 @@ int main(void)
         cmocka_unit_test(mean_and_median_differ_by_the_shadowing),
         cmocka_unit_test(rice_k_in_db_is_the_ratio),
         cmocka_unit_test(unfaded_is_steady_or_lognormal),
+        cmocka_unit_test(shadowed_quantile_matches_reference),
+        cmocka_unit_test(quantiles_by_hand),
+        cmocka_unit_test(each_kind_of_answer_has_its_table),
         cmocka_unit_test(table_and_csv_have_a_row_a_threshold),
         cmocka_unit_test(what_makes_no_sense_is_refused),
     };
