@@ -86,5 +86,6 @@ extern const struct rfade_command rfade_command_route;
 extern const struct rfade_command rfade_command_simulate;
 extern const struct rfade_command rfade_command_status;
 extern const struct rfade_command rfade_command_vehicle;
+extern const struct rfade_command rfade_command_withdraw;
 
 #endif

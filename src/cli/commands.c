@@ -19,6 +19,7 @@ static const struct rfade_command *const commands[] = {
     &rfade_command_estimate,
     &rfade_command_predict,
     &rfade_command_simulate,
+    &rfade_command_withdraw,
 };
 /* clang-format on */
 
