@@ -1,0 +1,35 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/* Error rates of a link: what the caller asks for, put together from averages. */
+#include <math.h>
+
+#include "predict/average.h"
+#include "predict/branches.h"
+
+enum rfade_status rfade_error_rates(const struct rfade_link *link,
+                                    const struct rfade_modulation *const *modulations,
+                                    size_t count, struct rfade_error_rate *rates)
+{
+    enum rfade_status status = count == 0 ? RFADE_DOMAIN : RFADE_OK;
+    for (size_t i = 0; i < count; i++) {
+        rates[i] = rfade_error_rate_nan();
+    }
+    for (size_t i = 0; i < count && status == RFADE_OK; i++) {
+        struct rfade_average average;
+        status = rfade_average_init(&average, link, modulations[i], 0.0);
+        if (status == RFADE_OK) {
+            status = rfade_average_at(&average, link->mean_snr_db, &rates[i]);
+        }
+        rfade_average_clear(&average);
+    }
+    return status;
+}
+
+enum rfade_status rfade_error_rate_unfaded(const struct rfade_link *link,
+                                           const struct rfade_modulation *modulation,
+                                           struct rfade_error_rate *rate)
+{
+    struct rfade_link unfaded = *link;
+    unfaded.model = NULL;
+    unfaded.shadowing_db = 0.0;
+    return rfade_error_rates(&unfaded, &modulation, 1, rate);
+}
