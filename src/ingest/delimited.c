@@ -1,23 +1,20 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include "ingest/delimited.h"
 
-#include <stdio.h>
-#include <stdlib.h>
 #include <string.h>
 
+#include "ingest/emit.h"
 #include "ingest/row.h"
-#include "ingest/track.h"
 
 struct delimited {
     const struct rfade_column_map *map;
     const struct rfade_layout *layout;
-    const struct rfade_sink *sink;
     struct rfade_ingest_summary *summary;
+    struct rfade_splitter *splitter;
+    struct rfade_row_values values;
     struct rfade_row_maker *maker;
-    struct rfade_tracks *tracks;
-    bool any_time;
-    size_t first_refused_line;
-    char first_refused[256];
+    struct rfade_emitter *emitter;
+    size_t last_size; /* of the last value of the row before */
 };
 
 /* Blank lines, comments, header lines and what the map skips. */
@@ -38,79 +35,39 @@ static bool is_no_row(const struct delimited *delimited, const struct rfade_line
            memcmp(line->text, layout->header, line->size) == 0;
 }
 
-static enum rfade_status refuse(struct delimited *delimited, const struct rfade_line *line,
-                                const char *reason, struct rfade_error *error)
+/*
+ * A last line without line end may have been cut off. It can be trusted if it has all values
+ * and the last one is not shorter than in the row before.
+ */
+static bool is_whole(struct delimited *delimited, const struct rfade_line *line)
 {
-    if (delimited->summary->refused++ == 0) {
-        delimited->first_refused_line = line->number;
-        (void)snprintf(delimited->first_refused, sizeof delimited->first_refused, "%s", reason);
-    }
-    struct rfade_ingest_refusal refusal = {line->number, reason, line->text, line->size};
-    return delimited->sink->refused(delimited->sink->context, &refusal, error);
+    size_t last_size = rfade_split_last_size(delimited->splitter);
+    bool whole = line->ended || last_size >= delimited->last_size;
+    delimited->last_size = last_size;
+    return whole;
 }
 
-static void note_time(struct delimited *delimited, int64_t time_us)
+static bool take_apart(struct delimited *delimited, const struct rfade_line *line,
+                       struct rfade_row *row)
 {
-    struct rfade_ingest_summary *summary = delimited->summary;
-    if (!delimited->any_time || time_us < summary->first_us)
-        summary->first_us = time_us;
-    if (!delimited->any_time || time_us > summary->last_us)
-        summary->last_us = time_us;
-    delimited->any_time = true;
-}
-
-/* What the readings of a row have in common; no level yet. */
-static struct rfade_ingest_reading row_reading(const struct delimited *delimited,
-                                               const struct rfade_row *row, const char *channel)
-{
-    return (struct rfade_ingest_reading){
-        .time_us = row->time_us,
-        .vehicle = row->vehicle,
-        .channel = channel,
-        .campaign = row->campaign,
-        .level_cdb = RFADE_NO_VALUE_CDB,
-        .snr_cdb = RFADE_NO_VALUE_CDB,
-        .numbered = row->numbered,
-        .sequence = row->sequence,
-        .modulus = (int64_t)delimited->map->sequence_modulus,
-    };
-}
-
-/* A number that came without a level that can be used was not lost. */
-static enum rfade_status emit_numbers(struct delimited *delimited, const struct rfade_row *row,
-                                      struct rfade_error *error)
-{
-    enum rfade_status status = RFADE_OK;
-    size_t count = row->numbered ? row->valueless_count : 0;
-    for (size_t i = 0; i < count && status == RFADE_OK; i++) {
-        struct rfade_ingest_reading reading = row_reading(delimited, row, row->valueless[i]);
-        status = delimited->sink->reading(delimited->sink->context, &reading, error);
-    }
-    return status;
-}
-
-static enum rfade_status emit(struct delimited *delimited, const struct rfade_row *row,
-                              const struct rfade_line *line, struct rfade_error *error)
-{
-    struct rfade_ingest_summary *summary = delimited->summary;
-    enum rfade_status status = RFADE_OK;
-    if (row->has_place) {
-        struct rfade_ingest_fix fix = {row->time_us, row->vehicle, row->latitude_deg,
-                                       row->longitude_deg, row->speed_m_s};
-        status = rfade_tracks_add(delimited->tracks, &fix, line, error);
-    }
-    for (size_t i = 0; i < row->level_count && status == RFADE_OK; i++) {
-        const struct rfade_row_level *level = &row->levels[i];
-        struct rfade_ingest_reading reading = row_reading(delimited, row, level->channel);
-        reading.level_cdb = level->level_cdb;
-        reading.snr_cdb = level->snr_cdb;
-        status = delimited->sink->reading(delimited->sink->context, &reading, error);
-        summary->readings++;
-    }
-    summary->no_reading += row->no_reading;
-    summary->no_position += row->no_place;
-    note_time(delimited, row->time_us);
-    return status;
+    const char *reason = rfade_split(delimited->splitter, line);
+    if (reason)
+        return rfade_row_refuse(row, "%s", reason);
+    size_t count = rfade_split_count(delimited->splitter);
+    size_t usual = delimited->layout->value_count;
+    size_t needed = delimited->layout->last_column;
+    bool trailing = count == usual + 1 && rfade_split_last_size(delimited->splitter) == 0;
+    if (count < needed)
+        return rfade_row_refuse(row, "the row has %zu values, and column %zu is needed", count,
+                                needed);
+    if (count != usual && !trailing && !delimited->map->file.ragged)
+        return rfade_row_refuse(
+            row, "the row has %zu values where most have %zu: columns may be shifted", count,
+            usual);
+    if (!is_whole(delimited, line))
+        return rfade_row_refuse(
+            row, "the file stops inside the line: its last value may be cut off");
+    return true;
 }
 
 static enum rfade_status read_lines(struct delimited *delimited,
@@ -126,33 +83,28 @@ static enum rfade_status read_lines(struct delimited *delimited,
         delimited->summary->lines++;
         if (is_no_row(delimited, &line))
             continue;
-        delimited->summary->rows++;
-        if (rfade_row_make(delimited->maker, &line, &row))
-            status = emit(delimited, &row, &line, error);
-        if (status == RFADE_OK)
-            status = emit_numbers(delimited, &row, error);
-        if (status == RFADE_OK && row.refused[0])
-            status = refuse(delimited, &line, row.refused, error);
+        rfade_row_begin(&row);
+        bool usable =
+            take_apart(delimited, &line, &row) && rfade_row_make(delimited->maker, &row);
+        status = rfade_emitter_row(delimited->emitter, &row, usable, &line, error);
         if (status != RFADE_OK)
             return status;
     }
 }
 
-/* A file out of which nothing came is of another kind than the map says. */
-static enum rfade_status check_yield(const struct delimited *delimited,
-                                     struct rfade_error *error)
+/* Asks the splitter for the columns that the file has, each at the place of its role. */
+static enum rfade_status want_columns(struct delimited *delimited, struct rfade_error *error)
 {
-    const struct rfade_ingest_summary *summary = delimited->summary;
-    if (summary->rows == 0)
-        return rfade_error_set(error, RFADE_INPUT, "check that the file is complete",
-                               "the file holds no row of data");
-    if (delimited->any_time)
-        return RFADE_OK;
-    enum rfade_status status = rfade_error_set(
-        error, RFADE_INPUT, "check that the column map describes this file",
-        "none of %zu rows can be used; the first: %s", summary->rows, delimited->first_refused);
-    rfade_error_at(error, NULL, delimited->first_refused_line);
-    return status;
+    delimited->splitter = rfade_splitter_create(&delimited->map->file);
+    if (!delimited->splitter)
+        return rfade_error_no_memory(error);
+    for (size_t role = 0; role < RFADE_MOST_ROLES; role++) {
+        size_t column = delimited->layout->columns[role];
+        if (column > 0)
+            delimited->values.by_role[role] = rfade_split_field(
+                delimited->splitter, rfade_splitter_want(delimited->splitter, column));
+    }
+    return RFADE_OK;
 }
 
 enum rfade_status
@@ -161,26 +113,18 @@ rfade_delimited_read(struct rfade_line_reader *lines, const struct rfade_column_
                      const struct rfade_sink *sink, struct rfade_ingest_summary *summary,
                      struct rfade_error *error)
 {
-    struct delimited delimited = {
-        .map = map, .layout = layout, .sink = sink, .summary = summary};
-    enum rfade_status status =
-        rfade_row_maker_create(map, layout, names, &delimited.maker, error);
-    if (status != RFADE_OK)
-        goto out;
-    delimited.tracks = rfade_tracks_create(&map->position, sink);
-    if (!delimited.tracks) {
-        status = rfade_error_no_memory(error);
-        goto out;
-    }
-    status = read_lines(&delimited, lines, error);
+    struct delimited delimited = {.map = map, .layout = layout, .summary = summary};
+    enum rfade_status status = want_columns(&delimited, error);
     if (status == RFADE_OK)
-        status = rfade_tracks_finish(delimited.tracks, error);
-    summary->fixes = rfade_tracks_fixes(delimited.tracks);
-    summary->refused += rfade_tracks_refused(delimited.tracks);
+        status = rfade_row_maker_create(map, &delimited.values, names, &delimited.maker, error);
     if (status == RFADE_OK)
-        status = check_yield(&delimited, error);
-out:
-    rfade_tracks_destroy(delimited.tracks);
+        status = rfade_emitter_create(map, sink, summary, &delimited.emitter, error);
+    if (status == RFADE_OK)
+        status = read_lines(&delimited, lines, error);
+    if (status == RFADE_OK)
+        status = rfade_emitter_finish(delimited.emitter, error);
+    rfade_emitter_destroy(delimited.emitter);
     rfade_row_maker_destroy(delimited.maker);
+    rfade_splitter_destroy(delimited.splitter);
     return status;
 }

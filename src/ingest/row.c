@@ -20,17 +20,14 @@ static const double most_speed_m_s = 1000.0 / 3.6;
 
 struct rfade_row_maker {
     const struct rfade_column_map *map;
-    const struct rfade_layout *layout;
-    struct rfade_splitter *splitter;
+    const struct rfade_row_values *values;
     struct rfade_name_table *names;
     struct rfade_position_converter *converter;
     struct rfade_time_reader time_reader;
     const char *vehicle; /* NULL: in a column */
     const char *channel;
     const char *campaign;
-    uint16_t slots[RFADE_MOST_ROLES];
-    size_t last_size; /* of the last value of the row before */
-    bool has_place;   /* a place was read, from these texts: rows repeat positions */
+    bool has_place; /* a place was read, from these texts: rows repeat positions */
     struct rfade_field first;
     struct rfade_field second;
     double latitude_deg;
@@ -41,7 +38,6 @@ void rfade_row_maker_destroy(struct rfade_row_maker *maker)
 {
     if (!maker)
         return;
-    rfade_splitter_destroy(maker->splitter);
     rfade_name_table_destroy(maker->names);
     rfade_position_converter_destroy(maker->converter);
     free(maker);
@@ -80,7 +76,7 @@ static enum rfade_status settle_names(struct rfade_row_maker *maker,
 }
 
 enum rfade_status rfade_row_maker_create(const struct rfade_column_map *map,
-                                         const struct rfade_layout *layout,
+                                         const struct rfade_row_values *values,
                                          const struct rfade_ingest_names *names,
                                          struct rfade_row_maker **maker,
                                          struct rfade_error *error)
@@ -90,12 +86,11 @@ enum rfade_status rfade_row_maker_create(const struct rfade_column_map *map,
     if (!made)
         return rfade_error_no_memory(error);
     made->map = map;
-    made->layout = layout;
+    made->values = values;
     made->time_reader.format = &map->time;
-    made->splitter = rfade_splitter_create(&map->file);
     made->names = rfade_name_table_create();
     enum rfade_status status = RFADE_OK;
-    if (!made->splitter || !made->names)
+    if (!made->names)
         status = rfade_error_no_memory(error);
     if (status == RFADE_OK)
         status = settle_names(made, names, error);
@@ -105,10 +100,6 @@ enum rfade_status rfade_row_maker_create(const struct rfade_column_map *map,
         rfade_row_maker_destroy(made);
         return status;
     }
-    for (size_t role = 0; role < RFADE_MOST_ROLES; role++)
-        made->slots[role] = layout->columns[role]
-                                ? rfade_splitter_want(made->splitter, layout->columns[role])
-                                : RFADE_NO_SLOT;
     *maker = made;
     return RFADE_OK;
 }
@@ -116,15 +107,11 @@ enum rfade_status rfade_row_maker_create(const struct rfade_column_map *map,
 static const struct rfade_field *field(const struct rfade_row_maker *maker, size_t role)
 {
     static const struct rfade_field absent;
-    uint16_t slot = maker->slots[role];
-    return slot == RFADE_NO_SLOT ? &absent : rfade_split_field(maker->splitter, slot);
+    const struct rfade_field *value = maker->values->by_role[role];
+    return value ? value : &absent;
 }
 
-/* Adds to what is refused, as far as there is room. False, so that callers can return it. */
-static bool refuse(struct rfade_row *row, const char *format, ...)
-    __attribute__((format(printf, 2, 3)));
-
-static bool refuse(struct rfade_row *row, const char *format, ...)
+bool rfade_row_refuse(struct rfade_row *row, const char *format, ...)
 {
     size_t used = strlen(row->refused);
     if (used > 0 && used + 2 < sizeof row->refused) {
@@ -143,39 +130,7 @@ static bool refuse(struct rfade_row *row, const char *format, ...)
 static bool refuse_value(struct rfade_row *row, const char *what,
                          const struct rfade_field *value, const char *reason)
 {
-    return refuse(row, "the %s '%.40s' %s", what, value->text, reason);
-}
-
-/*
- * A last line without line end may have been cut off. It can be trusted if it has all values
- * and the last one is not shorter than in the row before.
- */
-static bool is_whole(struct rfade_row_maker *maker, const struct rfade_line *line)
-{
-    size_t last_size = rfade_split_last_size(maker->splitter);
-    bool whole = line->ended || last_size >= maker->last_size;
-    maker->last_size = last_size;
-    return whole;
-}
-
-static bool take_apart(struct rfade_row_maker *maker, const struct rfade_line *line,
-                       struct rfade_row *row)
-{
-    const char *reason = rfade_split(maker->splitter, line);
-    if (reason)
-        return refuse(row, "%s", reason);
-    size_t count = rfade_split_count(maker->splitter);
-    size_t usual = maker->layout->value_count;
-    bool trailing = count == usual + 1 && rfade_split_last_size(maker->splitter) == 0;
-    if (count < maker->layout->last_column)
-        return refuse(row, "the row has %zu values, and column %zu is needed", count,
-                      maker->layout->last_column);
-    if (count != usual && !trailing && !maker->map->file.ragged)
-        return refuse(row, "the row has %zu values where most have %zu: columns may be shifted",
-                      count, usual);
-    if (!is_whole(maker, line))
-        return refuse(row, "the file stops inside the line: its last value may be cut off");
-    return true;
+    return rfade_row_refuse(row, "the %s '%.40s' %s", what, value->text, reason);
 }
 
 /* Whole units of a subsecond column, in microseconds. */
@@ -196,7 +151,7 @@ static bool read_time(struct rfade_row_maker *maker, struct rfade_row *row)
 {
     const struct rfade_field *value = field(maker, RFADE_ROLE_TIME);
     struct rfade_field joined;
-    if (maker->slots[RFADE_ROLE_DATE] != RFADE_NO_SLOT) {
+    if (maker->values->by_role[RFADE_ROLE_DATE]) {
         const struct rfade_field *date = field(maker, RFADE_ROLE_DATE);
         joined.cut = date->size + value->size + 1 >= sizeof joined.text;
         joined.size = 0;
@@ -212,7 +167,7 @@ static bool read_time(struct rfade_row_maker *maker, struct rfade_row *row)
     const char *reason = value->cut ? "is too long"
                                     : rfade_time_read(&maker->time_reader, value->text,
                                                       value->size, &row->time_us);
-    if (!reason && maker->slots[RFADE_ROLE_SUBSECOND] != RFADE_NO_SLOT) {
+    if (!reason && maker->values->by_role[RFADE_ROLE_SUBSECOND]) {
         int64_t subsecond_us = 0;
         reason = read_subsecond(maker, &subsecond_us);
         row->time_us += subsecond_us;
@@ -256,7 +211,7 @@ static bool read_level(struct rfade_row_maker *maker, struct rfade_row *row, siz
 static void read_sequence(struct rfade_row_maker *maker, struct rfade_row *row)
 {
     static const struct rfade_sentinels none;
-    if (maker->slots[RFADE_ROLE_SEQUENCE] == RFADE_NO_SLOT)
+    if (!maker->values->by_role[RFADE_ROLE_SEQUENCE])
         return;
     const struct rfade_field *value = field(maker, RFADE_ROLE_SEQUENCE);
     size_t modulus = maker->map->sequence_modulus;
@@ -359,9 +314,9 @@ static void read_place(struct rfade_row_maker *maker, struct rfade_row *row)
                                                 &row->latitude_deg, &row->longitude_deg);
     row->has_place = !reason;
     if (reason)
-        (void)refuse(row, "the position %.20s, %.20s %s; not used",
-                     field(maker, RFADE_ROLE_FIRST)->text,
-                     field(maker, RFADE_ROLE_SECOND)->text, reason);
+        (void)rfade_row_refuse(row, "the position %.20s, %.20s %s; not used",
+                               field(maker, RFADE_ROLE_FIRST)->text,
+                               field(maker, RFADE_ROLE_SECOND)->text, reason);
     remember_place(maker, row);
 }
 
@@ -382,10 +337,8 @@ static void read_speed(struct rfade_row_maker *maker, struct rfade_row *row)
     (void)refuse_value(row, "speed", value, "can't be right; not used");
 }
 
-bool rfade_row_make(struct rfade_row_maker *maker, const struct rfade_line *line,
-                    struct rfade_row *row)
+void rfade_row_begin(struct rfade_row *row)
 {
-    const char *channel = NULL;
     row->time_us = 0;
     row->has_place = false;
     row->no_place = false;
@@ -396,7 +349,12 @@ bool rfade_row_make(struct rfade_row_maker *maker, const struct rfade_line *line
     row->sequence = 0;
     row->valueless_count = 0;
     row->refused[0] = '\0';
-    if (!take_apart(maker, line, row) || !read_time(maker, row) ||
+}
+
+bool rfade_row_make(struct rfade_row_maker *maker, struct rfade_row *row)
+{
+    const char *channel = NULL;
+    if (!read_time(maker, row) ||
         !read_name(maker, row, maker->vehicle, RFADE_ROLE_VEHICLE, "vehicle", &row->vehicle) ||
         !read_name(maker, row, maker->channel, RFADE_ROLE_CHANNEL, "channel", &channel) ||
         !read_name(maker, row, maker->campaign, RFADE_ROLE_CAMPAIGN, "campaign",

@@ -1,5 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-/** @file row.h  One row of a delimited text file made a time, names, levels and a place. */
+/** @file row.h  One row of a log, its values taken apart, made a time, names, levels and a
+ * place.
+ */
 #ifndef ROUTEFADE_INGEST_ROW_H
 #define ROUTEFADE_INGEST_ROW_H
 
@@ -32,24 +34,35 @@ struct rfade_row {
     char refused[256]; /**< what was refused of the row, a plain sentence; empty: nothing */
 };
 
+/** Where the values of the row at hand stand, by role; NULL: the map has no such column. */
+struct rfade_row_values {
+    const struct rfade_field *by_role[RFADE_MOST_ROLES];
+};
+
 struct rfade_row_maker; /* opaque */
 
 /**
  * Refuses a map and names that don't say what vehicle or channel it is (RFADE_INPUT). Map,
- * layout and names are borrowed.
+ * values and names are borrowed; the fields that `values` points at change from row to row.
  */
 enum rfade_status rfade_row_maker_create(const struct rfade_column_map *map,
-                                         const struct rfade_layout *layout,
+                                         const struct rfade_row_values *values,
                                          const struct rfade_ingest_names *names,
                                          struct rfade_row_maker **maker,
                                          struct rfade_error *error);
 void rfade_row_maker_destroy(struct rfade_row_maker *maker); /* NULL is harmless */
 
+/** Empties a row, to be filled by _make or refused. */
+void rfade_row_begin(struct rfade_row *row);
+
+/** Adds to what is refused, as far as there is room. Returns false, for callers to return. */
+bool rfade_row_refuse(struct rfade_row *row, const char *format, ...)
+    __attribute__((format(printf, 2, 3)));
+
 /**
- * Whether anything of the line can be used, other than the numbers of `valueless` levels;
- * row->refused says what can't.
+ * Fills a row that was begun from the values. Whether anything of them can be used, other
+ * than the numbers of `valueless` levels; row->refused says what can't.
  */
-bool rfade_row_make(struct rfade_row_maker *maker, const struct rfade_line *line,
-                    struct rfade_row *row);
+bool rfade_row_make(struct rfade_row_maker *maker, struct rfade_row *row);
 
 #endif
