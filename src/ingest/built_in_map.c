@@ -13,6 +13,8 @@ static const char remedy[] =
     "give a column map with --columns FILE.ini, or a header with time and rssi_dbm, or time, "
     "latitude and longitude";
 
+static const char map_name[] = "the built-in column map";
+
 /* Names as rfade_plain_name makes them. */
 static const struct {
     const char *name;
@@ -171,30 +173,37 @@ static enum rfade_status check_roles(const struct roles *roles, struct rfade_err
     return RFADE_OK;
 }
 
-static void set_column(struct rfade_column *column, size_t number)
+/* A column by its number; by its path where the names are a JSON record's. */
+static void set_column(struct rfade_column *column, size_t number,
+                       const struct rfade_header *json)
 {
-    column->number = number;
+    if (json && number > 0)
+        (void)snprintf(column->name, sizeof column->name, "$.\"%.120s\"",
+                       json->names[number - 1]);
+    else
+        column->number = number;
 }
 
-static void fill(struct rfade_column_map *map, const struct roles *roles)
+static void fill(struct rfade_column_map *map, const struct roles *roles,
+                 const struct rfade_header *json)
 {
     const size_t *columns = roles->columns;
-    set_column(&map->time_column, columns[RFADE_ROLE_TIME]);
-    set_column(&map->vehicle.column, columns[RFADE_ROLE_VEHICLE]);
-    set_column(&map->channel.column, columns[RFADE_ROLE_CHANNEL]);
-    set_column(&map->campaign.column, columns[RFADE_ROLE_CAMPAIGN]);
+    set_column(&map->time_column, columns[RFADE_ROLE_TIME], json);
+    set_column(&map->vehicle.column, columns[RFADE_ROLE_VEHICLE], json);
+    set_column(&map->channel.column, columns[RFADE_ROLE_CHANNEL], json);
+    set_column(&map->campaign.column, columns[RFADE_ROLE_CAMPAIGN], json);
     if (columns[RFADE_ROLE_FIRST] && columns[RFADE_ROLE_SECOND]) {
         map->position.form = RFADE_POSITION_DEGREES;
-        set_column(&map->position.first, columns[RFADE_ROLE_FIRST]);
-        set_column(&map->position.second, columns[RFADE_ROLE_SECOND]);
+        set_column(&map->position.first, columns[RFADE_ROLE_FIRST], json);
+        set_column(&map->position.second, columns[RFADE_ROLE_SECOND], json);
     }
-    set_column(&map->speed_column, columns[RFADE_ROLE_SPEED]);
+    set_column(&map->speed_column, columns[RFADE_ROLE_SPEED], json);
     map->speed_m_s_per_unit = roles->metres ? 1 : 1000.0 / 3600;
     if (columns[RFADE_ROLE_LEVELS] == 0 && columns[RFADE_ROLE_LEVELS + 1] == 0)
         return;
     struct rfade_level_map *level = rfade_column_map_add_level(map, "");
-    set_column(&level->level.column, columns[RFADE_ROLE_LEVELS]);
-    set_column(&level->snr.column, columns[RFADE_ROLE_LEVELS + 1]);
+    set_column(&level->level.column, columns[RFADE_ROLE_LEVELS], json);
+    set_column(&level->snr.column, columns[RFADE_ROLE_LEVELS + 1], json);
 }
 
 enum rfade_status rfade_built_in_map(const char *head, size_t head_size,
@@ -205,7 +214,7 @@ enum rfade_status rfade_built_in_map(const char *head, size_t head_size,
     char separator = ',';
     enum rfade_status status = RFADE_NO_MEMORY;
     char *text = malloc(RFADE_LINE_SIZE + 1);
-    struct rfade_column_map *made = rfade_column_map_create("the built-in column map");
+    struct rfade_column_map *made = rfade_column_map_create(map_name);
     if (!text || !made)
         goto out;
     struct rfade_line line = first_line(head, head_size, text);
@@ -219,7 +228,7 @@ enum rfade_status rfade_built_in_map(const char *head, size_t head_size,
     made->time.decimal_sign = made->file.decimal_sign;
     made->file.header = RFADE_HEADER_LINE;
     made->file.header_line = line.number;
-    fill(made, &roles);
+    fill(made, &roles, NULL);
 out:
     if (status == RFADE_NO_MEMORY)
         rfade_error_no_memory(error);
@@ -229,4 +238,24 @@ out:
         rfade_column_map_destroy(made);
     free(text);
     return status;
+}
+
+enum rfade_status rfade_built_in_json_map(const struct rfade_header *header,
+                                          struct rfade_column_map **map,
+                                          struct rfade_error *error)
+{
+    struct roles roles = {0};
+    *map = NULL;
+    for (size_t i = 0; i < header->count; i++)
+        take_name(&roles, header->names[i], i + 1);
+    enum rfade_status status = check_roles(&roles, error);
+    if (status != RFADE_OK)
+        return status;
+    struct rfade_column_map *made = rfade_column_map_create(map_name);
+    if (!made)
+        return rfade_error_no_memory(error);
+    made->file.format = RFADE_FORMAT_JSON;
+    fill(made, &roles, header);
+    *map = made;
+    return RFADE_OK;
 }

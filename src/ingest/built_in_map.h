@@ -10,6 +10,7 @@
 #define ROUTEFADE_INGEST_BUILT_IN_MAP_H
 
 #include "ingest/column_map_parts.h"
+#include "ingest/fields.h"
 
 /**
  * Makes a map for a file from its first bytes: separator comma, semicolon, tab, pipe or
@@ -19,5 +20,10 @@
  */
 enum rfade_status rfade_built_in_map(const char *head, size_t head_size,
                                      struct rfade_column_map **map, struct rfade_error *error);
+
+/** As _map, from the names in the records of a JSON file. */
+enum rfade_status rfade_built_in_json_map(const struct rfade_header *header,
+                                          struct rfade_column_map **map,
+                                          struct rfade_error *error);
 
 #endif

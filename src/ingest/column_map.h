@@ -1,6 +1,6 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /**
- * @file column_map.h  What the columns of a delimited text file hold: a column map.
+ * @file column_map.h  What the columns of a log hold: a column map.
  *
  * THE MAP LANGUAGE
  *
@@ -14,6 +14,8 @@
  * name of digits alone stands in double quotes: column = "868".
  *
  *     [file]
+ *     format = delimited       delimited | json; the map is for files of that kind alone,
+ *                              which is told by their content
  *     separator = comma        comma | semicolon | tab | pipe | blanks | one character;
  *                              `blanks`: any run of blanks and tabs, those at the ends of a
  *                              line do not count
@@ -109,6 +111,21 @@
  *     snr_scale = 1            as for the level
  *     snr_offset = 0
  *     snr_no_reading = -99
+ *
+ * JSON
+ *
+ * With `format = json` a row is a record, and a column a path in it, as SQLite writes paths:
+ * time, rx.rssi, $.rx."signal to noise", $[2], $.list[#-1] (`$.` may be left out before a
+ * first name). Numbers may stand as texts. What is not there, and null, is empty; a record
+ * that has none of the columns says that nothing was received. The keys of [file] that say
+ * how lines are taken apart have no meaning, but for
+ *
+ *     [file]
+ *     format = json
+ *     records = $.packets[*]   where the records stand: $ is each value of the file (one a
+ * line, or one after another), $[*] each element of an array,
+ *                              $.runs[*].packets[*] those further inside; by default the
+ *                              elements, where the file is an array, else its values
  *
  * WHAT BECOMES OF A ROW
  *

@@ -3,6 +3,9 @@
 
 #include <math.h>
 
+#include "ingest/json_values.h"
+#include "ingest/layout.h"
+
 /* What is wrong and how to mend it; what is NULL if nothing is. */
 struct finding {
     size_t line;
@@ -160,16 +163,25 @@ static struct finding check_header(struct rfade_column_map *map)
 {
     if (map->file.header != RFADE_HEADER_NONE)
         return fine;
-    bool names = is_name(&map->time_column) || is_name(&map->date_column) ||
-                 is_name(&map->subsecond_column) || is_name(&map->position.first) ||
-                 is_name(&map->position.second) || is_name(&map->speed_column) ||
-                 is_name(&map->vehicle.column) || is_name(&map->channel.column) ||
-                 is_name(&map->campaign.column) || is_name(&map->sequence_column);
-    for (size_t i = 0; i < map->level_count && !names; i++)
-        names = is_name(&map->levels[i].level.column) || is_name(&map->levels[i].snr.column);
-    if (names)
-        return (struct finding){0, "a column is given by name, and the file has no header",
-                                "give every column by its number, the first being 1"};
+    for (size_t role = 0; role < RFADE_ROLE_LEVELS + 2 * map->level_count; role++)
+        if (is_name(rfade_map_column(map, role)))
+            return (struct finding){0, "a column is given by name, and the file has no header",
+                                    "give every column by its number, the first being 1"};
+    return fine;
+}
+
+static struct finding check_json(struct rfade_column_map *map)
+{
+    bool json = map->file.format == RFADE_FORMAT_JSON;
+    if (!json && map->file.records[0])
+        return (struct finding){0, "`records` is for JSON files", "add `format = json`"};
+    for (size_t role = 0; json && role < RFADE_ROLE_LEVELS + 2 * map->level_count; role++) {
+        const struct rfade_column *column = rfade_map_column(map, role);
+        if (rfade_column_given(column) &&
+            (column->number > 0 || !rfade_json_column_valid(column->name)))
+            return (struct finding){0, "a column of a JSON file is given by no path",
+                                    "give paths such as time, rx.rssi, $.rx.\"a b\" or $[0]"};
+    }
     return fine;
 }
 
@@ -177,8 +189,8 @@ enum rfade_status rfade_column_map_check(struct rfade_column_map *map,
                                          struct rfade_error *error)
 {
     static struct finding (*const checks[])(struct rfade_column_map *) = {
-        check_file,     check_time,  check_position, check_speed,
-        check_sequence, check_names, check_levels,   check_header};
+        check_file,  check_time,   check_position, check_speed, check_sequence,
+        check_names, check_levels, check_header,   check_json};
     for (size_t i = 0; i < sizeof checks / sizeof checks[0]; i++) {
         struct finding found = checks[i](map);
         if (!found.what)

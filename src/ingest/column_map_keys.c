@@ -8,6 +8,7 @@
 #include <string.h>
 
 #include "common/text.h"
+#include "ingest/json_path.h"
 #include "ingest/number.h"
 #include "ingest/sink.h"
 #include "ingest/time_text.h"
@@ -86,6 +87,21 @@ static bool set_separator(void *target, const char *value)
     else
         return false;
     return true;
+}
+
+static bool set_file_format(void *target, const char *value)
+{
+    static const char *const words[] = {"delimited", "json", "nmea", "gpx", NULL};
+    int word = find_word(words, value);
+    if (word >= 0)
+        *(enum rfade_log_format *)target = (enum rfade_log_format)word;
+    return word >= 0;
+}
+
+static bool set_records(void *target, const char *value)
+{
+    struct rfade_json_path path;
+    return copy_text(target, RFADE_NAME_SIZE, value) && rfade_json_path_read(target, &path);
 }
 
 static bool set_decimal(void *target, const char *value)
@@ -367,6 +383,9 @@ static const char offset_remedy[] = "give a number with a decimal point";
 #define LEVEL(part) offsetof(struct rfade_level_map, part)
 
 static const struct rfade_map_key keys[] = {
+    {"file", "format", set_file_format, MAP(file.format), "delimited, json, nmea or gpx"},
+    {"file", "records", set_records, MAP(file.records),
+     "the path of the records, such as $[*], $.packets[*] or $"},
     {"file", "separator", set_separator, MAP(file.separator),
      "comma, semicolon, tab, pipe, blanks, or one character"},
     {"file", "decimal", set_decimal, 0, "point or comma"},

@@ -91,8 +91,18 @@ enum rfade_header_form { RFADE_HEADER_FIRST, RFADE_HEADER_NONE, RFADE_HEADER_LIN
 /* Separators that are no character. */
 enum { RFADE_SEPARATOR_BLANKS = ' ' };
 
+/** How a file is read; told by its content. */
+enum rfade_log_format {
+    RFADE_FORMAT_DELIMITED,
+    RFADE_FORMAT_JSON,
+    RFADE_FORMAT_NMEA,
+    RFADE_FORMAT_GPX
+};
+
 struct rfade_file_map {
-    char separator; /**< RFADE_SEPARATOR_BLANKS: runs of blanks and tabs */
+    enum rfade_log_format format;  /**< that the map is for */
+    char records[RFADE_NAME_SIZE]; /**< path of a JSON file's records; empty: not given */
+    char separator;                /**< RFADE_SEPARATOR_BLANKS: runs of blanks and tabs */
     char decimal_sign;
     char comment; /**< '\0': none */
     char quote;   /**< '\0': none */

@@ -32,14 +32,15 @@ static const struct {
     {"\x1F\x8B", 2, {"compressed with gzip twice", "unpack it once"}},
     {"<?xml", 5, {"XML", "export the log as delimited text"}},
     {"<", 1, {"a markup file (HTML or XML)", "export the log as delimited text"}},
-    {"{", 1, {"JSON", "convert it to delimited text with one row a reading"}},
     {"$GP", 3, {"NMEA 0183", "give a log in delimited text"}},
     {"$GN", 3, {"NMEA 0183", "give a log in delimited text"}},
 };
 
-/* [ and then { or [ or a number's list: a time in brackets is followed by a digit and text. */
-static bool is_json_list(const char *head, size_t size)
+/* { or [ and then { or [ or a text: a time in brackets begins with a digit. */
+static bool is_json(const char *head, size_t size)
 {
+    if (size > 0 && head[0] == '{')
+        return true;
     if (size == 0 || head[0] != '[')
         return false;
     size_t i = 1;
@@ -58,25 +59,32 @@ static bool is_binary(const char *head, size_t size)
     return controls > 16 + size / TEXT_PER_CONTROL;
 }
 
+static size_t blanks(const char *head, size_t size)
+{
+    size_t count = 0;
+    while (count < size && head[count] && strchr(" \t\r\n", head[count]))
+        count++;
+    return count;
+}
+
 struct rfade_other_kind rfade_other_kind(const char *head, size_t size)
 {
-    const char *text = head;
-    size_t left = size;
-    while (left > 0 && strchr(" \t\r\n", *text)) {
-        text++;
-        left--;
-    }
+    const char *text = head + blanks(head, size);
+    size_t left = size - blanks(head, size);
     for (size_t i = 0; i < sizeof signatures / sizeof signatures[0]; i++)
         if (left >= signatures[i].size &&
             memcmp(text, signatures[i].magic, signatures[i].size) == 0)
             return signatures[i].kind;
-    if (is_json_list(text, left))
-        return (struct rfade_other_kind){"JSON",
-                                         "convert it to delimited text with one row a reading"};
     if (size > ARCHIVE_MAGIC_AT + 5 && memcmp(head + ARCHIVE_MAGIC_AT, "ustar", 5) == 0)
         return (struct rfade_other_kind){"a tar archive", "unpack it"};
     if (is_binary(head, size))
         return (struct rfade_other_kind){"binary, not text",
                                          "export the log as delimited text"};
     return (struct rfade_other_kind){NULL, NULL};
+}
+
+enum rfade_log_format rfade_log_format_of(const char *head, size_t size)
+{
+    size_t skipped = blanks(head, size);
+    return is_json(head + skipped, size - skipped) ? RFADE_FORMAT_JSON : RFADE_FORMAT_DELIMITED;
 }

@@ -11,37 +11,18 @@
 /* Rows looked at to learn how many values a row has and whether its time can be read. */
 enum { LOOKED_AT = 500 };
 
-/* The first bytes of a file, as a source of lines. */
-struct head {
-    const char *bytes;
-    size_t size;
-};
-
 struct look {
     const struct rfade_column_map *map;
     struct rfade_layout *layout;
     struct rfade_splitter *splitter;
     struct rfade_line_reader *reader;
-    struct head head;
+    struct rfade_byte_memory head;
     bool whole;
     struct rfade_line line;
     struct rfade_header header;
     char comment[RFADE_LINE_SIZE + 1]; /* latest comment line, which may be the header */
     size_t comment_size;
 };
-
-static enum rfade_status read_head(void *context, char *buffer, size_t capacity, size_t *size,
-                                   struct rfade_error *error)
-{
-    struct head *head = context;
-    (void)error;
-    *size = head->size < capacity ? head->size : capacity;
-    if (*size > 0)
-        memcpy(buffer, head->bytes, *size);
-    head->bytes += *size;
-    head->size -= *size;
-    return RFADE_OK;
-}
 
 const struct rfade_column *rfade_map_column(const struct rfade_column_map *map, size_t role)
 {
@@ -341,9 +322,9 @@ enum rfade_status rfade_layout_create(const struct rfade_column_map *map, const 
         goto out;
     look->map = map;
     look->layout = made;
-    look->head = (struct head){head, head_size};
+    look->head = (struct rfade_byte_memory){head, head_size};
     look->whole = whole;
-    struct rfade_byte_source source = {&look->head, read_head};
+    struct rfade_byte_source source = {&look->head, rfade_byte_memory_read};
     look->splitter = rfade_splitter_create(&map->file);
     look->reader = rfade_line_reader_create(&source);
     if (!look->splitter || !look->reader)

@@ -16,6 +16,19 @@ struct rfade_line_reader {
     char buffer[2 * RFADE_BLOCK_SIZE + 1];
 };
 
+enum rfade_status rfade_byte_memory_read(void *context, char *buffer, size_t capacity,
+                                         size_t *size, struct rfade_error *error)
+{
+    struct rfade_byte_memory *memory = context;
+    (void)error;
+    *size = memory->size < capacity ? memory->size : capacity;
+    if (*size > 0)
+        memcpy(buffer, memory->bytes, *size);
+    memory->bytes += *size;
+    memory->size -= *size;
+    return RFADE_OK;
+}
+
 struct rfade_line_reader *rfade_line_reader_create(const struct rfade_byte_source *source)
 {
     struct rfade_line_reader *reader = calloc(1, sizeof *reader);
@@ -123,4 +136,17 @@ enum rfade_status rfade_line_next(struct rfade_line_reader *reader, struct rfade
         line->size--;
     from[line->size] = '\n';
     return RFADE_OK;
+}
+
+enum rfade_status rfade_line_bytes(struct rfade_line_reader *reader, const char **bytes,
+                                   size_t *size, struct rfade_error *error)
+{
+    enum rfade_status status = rfade_line_peek(reader, bytes, size, error);
+    if (status == RFADE_OK && *size == 0 && !reader->at_end) {
+        status = fill(reader, error);
+        *bytes = reader->buffer;
+        *size = reader->end;
+    }
+    reader->start = reader->end;
+    return status;
 }

@@ -20,6 +20,15 @@ struct rfade_byte_source {
                               struct rfade_error *error);
 };
 
+/** Bytes in memory as a source: context of rfade_byte_memory_read, which uses them up. */
+struct rfade_byte_memory {
+    const char *bytes;
+    size_t size;
+};
+
+enum rfade_status rfade_byte_memory_read(void *context, char *buffer, size_t capacity,
+                                         size_t *size, struct rfade_error *error);
+
 /** One line, valid until the next is read. */
 struct rfade_line {
     const char *text; /**< without line end; text[size] is '\n' unless too_long */
@@ -48,5 +57,12 @@ enum rfade_status rfade_line_peek(struct rfade_line_reader *reader, const char *
  */
 enum rfade_status rfade_line_next(struct rfade_line_reader *reader, struct rfade_line *line,
                                   bool *more, struct rfade_error *error);
+
+/**
+ * The next bytes as they stand, without the byte-order mark, for formats that have no lines;
+ * not to be mixed with _next. *size is 0 at the end. Borrowed until the next call.
+ */
+enum rfade_status rfade_line_bytes(struct rfade_line_reader *reader, const char **bytes,
+                                   size_t *size, struct rfade_error *error);
 
 #endif

@@ -12,11 +12,11 @@
 #include <unistd.h>
 #include <zlib.h>
 
-#include "ingest/built_in_map.h"
 #include "ingest/delimited.h"
+#include "ingest/json.h"
 #include "ingest/kind.h"
-#include "ingest/layout.h"
 #include "ingest/lines.h"
+#include "ingest/map_choice.h"
 
 static const char read_remedy[] = "check the file's name, permissions and medium";
 
@@ -146,77 +146,6 @@ static enum rfade_status read_bytes(void *context, char *buffer, size_t capacity
                            "the gzip file is damaged or cut off");
 }
 
-/* What a file is read by. The map is owned only if it is the built-in one. */
-struct choice {
-    const struct rfade_column_map *map;
-    struct rfade_column_map *built_in;
-    struct rfade_layout *layout;
-};
-
-static void clear_choice(struct choice *choice)
-{
-    rfade_column_map_destroy(choice->built_in);
-    free(choice->layout);
-}
-
-/* Of the maps that fit, the one with most columns. RFADE_OK without a map if none fits: the
- * error is that of the first then. */
-static enum rfade_status choose_given(const struct rfade_column_map *const *maps,
-                                      size_t map_count, const char *head, size_t size,
-                                      bool whole, struct choice *choice,
-                                      struct rfade_error *error)
-{
-    const struct rfade_column_map *rival = NULL;
-    for (size_t i = 0; i < map_count; i++) {
-        struct rfade_layout *layout = NULL;
-        struct rfade_error misfit;
-        enum rfade_status status =
-            rfade_layout_create(maps[i], head, size, whole, &layout, &misfit);
-        if (status != RFADE_OK && i == 0)
-            rfade_error_set(error, status, misfit.remedy, "%s%s",
-                            map_count > 1 ? "none of the column maps fits: " : "", misfit.what);
-        if (status != RFADE_OK && status != RFADE_INPUT)
-            return status;
-        if (status != RFADE_OK)
-            continue;
-        if (choice->layout && choice->layout->column_count == layout->column_count)
-            rival = maps[i];
-        if (choice->layout && choice->layout->column_count >= layout->column_count) {
-            free(layout);
-            continue;
-        }
-        free(choice->layout);
-        choice->map = maps[i];
-        choice->layout = layout;
-        rival = NULL;
-    }
-    if (rival)
-        return rfade_error_set(error, RFADE_INPUT, "import the file with one of them alone",
-                               "two column maps fit equally well: %s and %s", choice->map->name,
-                               rival->name);
-    return RFADE_OK;
-}
-
-static enum rfade_status choose(const struct rfade_column_map *const *maps, size_t map_count,
-                                const char *head, size_t size, struct choice *choice,
-                                struct rfade_error *error)
-{
-    bool whole = size < RFADE_BLOCK_SIZE - 3; /* a byte-order mark may have gone */
-    enum rfade_status status = choose_given(maps, map_count, head, size, whole, choice, error);
-    if (status != RFADE_OK || choice->map)
-        return status;
-    struct rfade_error unsaid;
-    status = rfade_built_in_map(head, size, &choice->built_in, &unsaid);
-    if (status == RFADE_OK)
-        status =
-            rfade_layout_create(choice->built_in, head, size, whole, &choice->layout, &unsaid);
-    choice->map = choice->built_in;
-    /* A map that was given explains more than the one that was only tried. */
-    if (status != RFADE_OK && error && (map_count == 0 || status == RFADE_NO_MEMORY))
-        *error = unsaid;
-    return status;
-}
-
 /* A file that was written to while it was read is not the one that was hashed. */
 static enum rfade_status check_unchanged(const struct rfade_log_source *source,
                                          struct rfade_error *error)
@@ -230,17 +159,36 @@ static enum rfade_status check_unchanged(const struct rfade_log_source *source,
                            "the file changed while it was read");
 }
 
-static enum rfade_status ingest(struct rfade_log_source *source,
-                                struct rfade_line_reader *lines,
-                                const struct rfade_column_map *const *maps, size_t map_count,
-                                const struct rfade_ingest_names *names,
-                                const struct rfade_sink *sink,
-                                struct rfade_ingest_summary *summary, struct rfade_error *error)
+/* What there is to read, and by what map. */
+struct job {
+    struct rfade_line_reader *lines;
+    const struct rfade_column_map *const *maps;
+    size_t map_count;
+    const struct rfade_ingest_names *names;
+    const struct rfade_sink *sink;
+    struct rfade_ingest_summary *summary;
+};
+
+static enum rfade_status read_log(const struct job *job, const struct rfade_map_choice *choice,
+                                  struct rfade_error *error)
 {
-    struct choice choice = {0};
+    switch (choice->map->file.format) {
+    case RFADE_FORMAT_JSON:
+        return rfade_json_read(job->lines, choice->map, job->names, job->sink, job->summary,
+                               error);
+    default:
+        return rfade_delimited_read(job->lines, choice->map, choice->layout, job->names,
+                                    job->sink, job->summary, error);
+    }
+}
+
+/* Looks at the first bytes, and chooses the map. */
+static enum rfade_status recognise(const struct job *job, struct rfade_map_choice *choice,
+                                   struct rfade_error *error)
+{
     const char *head = NULL;
     size_t size = 0;
-    enum rfade_status status = rfade_line_peek(lines, &head, &size, error);
+    enum rfade_status status = rfade_line_peek(job->lines, &head, &size, error);
     if (status != RFADE_OK)
         return status;
     if (size == 0)
@@ -249,15 +197,24 @@ static enum rfade_status ingest(struct rfade_log_source *source,
     struct rfade_other_kind kind = rfade_other_kind(head, size);
     if (kind.what)
         return rfade_error_set(error, RFADE_INPUT, kind.remedy, "the file is %s", kind.what);
-    status = choose(maps, map_count, head, size, &choice, error);
+    bool whole = size < RFADE_BLOCK_SIZE - 3; /* a byte-order mark may have gone */
+    return rfade_map_choose(job->maps, job->map_count, rfade_log_format_of(head, size), head,
+                            size, whole, choice, error);
+}
+
+static enum rfade_status ingest(const struct rfade_log_source *source, const struct job *job,
+                                struct rfade_error *error)
+{
+    struct rfade_map_choice choice = {0};
+    enum rfade_status status = recognise(job, &choice, error);
     if (status == RFADE_OK) {
-        (void)snprintf(summary->map_name, sizeof summary->map_name, "%s", choice.map->name);
-        status =
-            rfade_delimited_read(lines, choice.map, choice.layout, names, sink, summary, error);
+        (void)snprintf(job->summary->map_name, sizeof job->summary->map_name, "%s",
+                       choice.map->name);
+        status = read_log(job, &choice, error);
     }
     if (status == RFADE_OK)
         status = check_unchanged(source, error);
-    clear_choice(&choice);
+    rfade_map_choice_clear(&choice);
     return status;
 }
 
@@ -272,8 +229,8 @@ enum rfade_status rfade_ingest(struct rfade_log_source *source,
     struct rfade_line_reader *lines = rfade_line_reader_create(&bytes);
     if (!lines)
         return rfade_error_no_memory(error);
-    enum rfade_status status =
-        ingest(source, lines, maps, map_count, names, sink, summary, error);
+    const struct job job = {lines, maps, map_count, names, sink, summary};
+    enum rfade_status status = ingest(source, &job, error);
     rfade_line_reader_destroy(lines);
     if (status != RFADE_OK && error && error->file[0] == '\0')
         rfade_error_at(error, source->path, error->line);

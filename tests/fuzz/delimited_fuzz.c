@@ -4,73 +4,14 @@
  * is in range, and every row is a reading, a position, or refused with a reason, or says
  * itself that there is nothing.
  */
-#include <math.h>
 #include <string.h>
 
 #include "ingest/built_in_map.h"
 #include "ingest/delimited.h"
 #include "ingest/kind.h"
 
+#include "checked_sink.h"
 #include "fuzz.h"
-
-struct bytes {
-    const char *at;
-    size_t left;
-};
-
-struct counts {
-    size_t readings, fixes, refused;
-};
-
-static enum rfade_status read_bytes(void *context, char *buffer, size_t capacity, size_t *size,
-                                    struct rfade_error *error)
-{
-    struct bytes *bytes = context;
-    (void)error;
-    *size = bytes->left < capacity ? bytes->left : capacity;
-    if (*size > 0)
-        memcpy(buffer, bytes->at, *size);
-    bytes->at += *size;
-    bytes->left -= *size;
-    return RFADE_OK;
-}
-
-static enum rfade_status take_reading(void *context, const struct rfade_ingest_reading *reading,
-                                      struct rfade_error *error)
-{
-    struct counts *counts = context;
-    (void)error;
-    counts->readings++;
-    FUZZ_REQUIRE(reading->time_us >= RFADE_EARLIEST_US);
-    FUZZ_REQUIRE(reading->vehicle[0] && reading->channel[0] && reading->campaign[0]);
-    FUZZ_REQUIRE(reading->level_cdb != RFADE_NO_VALUE_CDB ||
-                 reading->snr_cdb != RFADE_NO_VALUE_CDB);
-    FUZZ_REQUIRE(reading->level_cdb == RFADE_NO_VALUE_CDB ||
-                 (reading->level_cdb >= -20000 && reading->level_cdb <= 6000));
-    return RFADE_OK;
-}
-
-static enum rfade_status take_fix(void *context, const struct rfade_ingest_fix *fix,
-                                  struct rfade_error *error)
-{
-    struct counts *counts = context;
-    (void)error;
-    counts->fixes++;
-    FUZZ_REQUIRE(fix->latitude_deg >= -90 && fix->latitude_deg <= 90);
-    FUZZ_REQUIRE(fix->longitude_deg >= -180 && fix->longitude_deg < 180);
-    FUZZ_REQUIRE(isnan(fix->speed_m_s) || fix->speed_m_s >= 0);
-    return RFADE_OK;
-}
-
-static enum rfade_status take_refusal(void *context, const struct rfade_ingest_refusal *refusal,
-                                      struct rfade_error *error)
-{
-    struct counts *counts = context;
-    (void)error;
-    counts->refused++;
-    FUZZ_REQUIRE(refusal->line >= 1 && refusal->reason[0] != '\0');
-    return RFADE_OK;
-}
 
 static void read_with(const struct rfade_column_map *map, const char *text, size_t size)
 {
@@ -79,10 +20,10 @@ static void read_with(const struct rfade_column_map *map, const char *text, size
         FUZZ_REQUIRE(!layout);
         return;
     }
-    struct bytes bytes = {text, size};
-    struct rfade_byte_source source = {&bytes, read_bytes};
+    struct rfade_byte_memory bytes = {text, size};
+    struct rfade_byte_source source = {&bytes, rfade_byte_memory_read};
     struct counts counts = {0};
-    struct rfade_sink sink = {&counts, take_reading, take_fix, take_refusal};
+    struct rfade_sink sink = checked_sink(&counts);
     struct rfade_ingest_names names = {.vehicle = "fuzz"};
     struct rfade_ingest_summary summary = {0};
     struct rfade_line_reader *lines = rfade_line_reader_create(&source);
