@@ -62,6 +62,11 @@ char rfade_lower(char c)
     return lower[found - upper];
 }
 
+bool rfade_format_is_positions(enum rfade_log_format format)
+{
+    return format == RFADE_FORMAT_NMEA || format == RFADE_FORMAT_GPX;
+}
+
 bool rfade_column_given(const struct rfade_column *column)
 {
     return column->number > 0 || column->name[0] != '\0';

@@ -14,7 +14,7 @@
  * name of digits alone stands in double quotes: column = "868".
  *
  *     [file]
- *     format = delimited       delimited | json; the map is for files of that kind alone,
+ *     format = delimited       delimited | json | nmea | gpx; the map is for files of that kind alone,
  *                              which is told by their content
  *     separator = comma        comma | semicolon | tab | pipe | blanks | one character;
  *                              `blanks`: any run of blanks and tabs, those at the ends of a
@@ -126,6 +126,12 @@
  * line, or one after another), $[*] each element of an array,
  *                              $.runs[*].packets[*] those further inside; by default the
  *                              elements, where the file is an array, else its values
+ *
+ * NMEA 0183 AND GPX
+ *
+ * Such files give positions and need no map: their vehicle is the command line's. A map with
+ * `format = nmea` or `format = gpx` may say [vehicle] name, and of [position] held_s and
+ * max_speed; for NMEA files without RMC sentences also [time] date, the day of the first line.
  *
  * WHAT BECOMES OF A ROW
  *

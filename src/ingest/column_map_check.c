@@ -185,14 +185,33 @@ static struct finding check_json(struct rfade_column_map *map)
     return fine;
 }
 
+/* A map for files that hold positions alone. */
+static struct finding check_no_columns(struct rfade_column_map *map)
+{
+    bool any = map->level_count > 0 || map->channel.line > 0 || map->campaign.line > 0 ||
+               map->position.form != RFADE_POSITION_NONE ||
+               !isnan(map->position.latitude_deg) || map->position.epsg != 0;
+    for (size_t role = 0; role < RFADE_ROLE_LEVELS; role++)
+        any = any || rfade_column_given(rfade_map_column(map, role));
+    if (any)
+        return (struct finding){0, "NMEA and GPX files hold positions and have no columns",
+                                "give [vehicle] name, and of [position] held_s and max_speed "
+                                "alone"};
+    return fine;
+}
+
 enum rfade_status rfade_column_map_check(struct rfade_column_map *map,
                                          struct rfade_error *error)
 {
     static struct finding (*const checks[])(struct rfade_column_map *) = {
         check_file,  check_time,   check_position, check_speed, check_sequence,
-        check_names, check_levels, check_header,   check_json};
-    for (size_t i = 0; i < sizeof checks / sizeof checks[0]; i++) {
-        struct finding found = checks[i](map);
+        check_names, check_levels, check_header,   check_json,  NULL};
+    static struct finding (*const positions_checks[])(struct rfade_column_map *) = {
+        check_no_columns, check_names, NULL};
+    struct finding (*const *check)(struct rfade_column_map *) =
+        rfade_format_is_positions(map->file.format) ? positions_checks : checks;
+    for (; *check; check++) {
+        struct finding found = (*check)(map);
         if (!found.what)
             continue;
         enum rfade_status status =

@@ -146,6 +146,9 @@ struct rfade_level_map *rfade_column_map_add_level(struct rfade_column_map *map,
 /** An ASCII letter in lower case, whatever the locale; anything else as it is. */
 char rfade_lower(char c);
 
+/** NMEA and GPX: positions alone, and no columns. */
+bool rfade_format_is_positions(enum rfade_log_format format);
+
 bool rfade_column_given(const struct rfade_column *column);
 
 #endif

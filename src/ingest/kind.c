@@ -4,6 +4,8 @@
 #include <stdbool.h>
 #include <string.h>
 
+#include "ingest/nmea.h"
+
 /* One NUL or control byte in so many is damage; more is another kind of file. */
 enum { TEXT_PER_CONTROL = 20, ARCHIVE_MAGIC_AT = 257 };
 
@@ -32,8 +34,6 @@ static const struct {
     {"\x1F\x8B", 2, {"compressed with gzip twice", "unpack it once"}},
     {"<?xml", 5, {"XML", "export the log as delimited text"}},
     {"<", 1, {"a markup file (HTML or XML)", "export the log as delimited text"}},
-    {"$GP", 3, {"NMEA 0183", "give a log in delimited text"}},
-    {"$GN", 3, {"NMEA 0183", "give a log in delimited text"}},
 };
 
 /* { or [ and then { or [ or a text: a time in brackets begins with a digit. */
@@ -86,5 +86,7 @@ struct rfade_other_kind rfade_other_kind(const char *head, size_t size)
 enum rfade_log_format rfade_log_format_of(const char *head, size_t size)
 {
     size_t skipped = blanks(head, size);
-    return is_json(head + skipped, size - skipped) ? RFADE_FORMAT_JSON : RFADE_FORMAT_DELIMITED;
+    if (is_json(head + skipped, size - skipped))
+        return RFADE_FORMAT_JSON;
+    return rfade_nmea_is_log(head, size) ? RFADE_FORMAT_NMEA : RFADE_FORMAT_DELIMITED;
 }

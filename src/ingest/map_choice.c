@@ -28,6 +28,8 @@ static enum rfade_status fit(const struct rfade_column_map *map, const struct he
 {
     *layout = NULL;
     *columns = 0;
+    if (rfade_format_is_positions(head->format))
+        return RFADE_OK;
     if (head->format == RFADE_FORMAT_JSON)
         return rfade_json_fit(map, head->bytes, head->size, columns, error);
     enum rfade_status status =
@@ -85,6 +87,13 @@ static enum rfade_status choose_built_in(const struct head *head,
                                          struct rfade_error *error)
 {
     size_t columns = 0;
+    if (rfade_format_is_positions(head->format)) {
+        choice->map = choice->own = rfade_column_map_create("no column map");
+        if (!choice->own)
+            return rfade_error_no_memory(error);
+        choice->own->file.format = head->format;
+        return RFADE_OK;
+    }
     enum rfade_status status =
         head->format == RFADE_FORMAT_JSON
             ? rfade_json_built_in(head->bytes, head->size, &choice->own, error)

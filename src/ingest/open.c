@@ -17,6 +17,7 @@
 #include "ingest/kind.h"
 #include "ingest/lines.h"
 #include "ingest/map_choice.h"
+#include "ingest/nmea.h"
 
 static const char read_remedy[] = "check the file's name, permissions and medium";
 
@@ -176,6 +177,9 @@ static enum rfade_status read_log(const struct job *job, const struct rfade_map_
     case RFADE_FORMAT_JSON:
         return rfade_json_read(job->lines, choice->map, job->names, job->sink, job->summary,
                                error);
+    case RFADE_FORMAT_NMEA:
+        return rfade_nmea_read_log(job->lines, choice->map, job->names, job->sink, job->summary,
+                                   error);
     default:
         return rfade_delimited_read(job->lines, choice->map, choice->layout, job->names,
                                     job->sink, job->summary, error);

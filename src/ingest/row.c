@@ -54,6 +54,18 @@ static const char *fixed_name(const char *given, const struct rfade_named *named
     return rfade_column_given(&named->column) ? NULL : otherwise;
 }
 
+enum rfade_status rfade_row_vehicle(const struct rfade_column_map *map,
+                                    const struct rfade_ingest_names *names,
+                                    const char **vehicle, struct rfade_error *error)
+{
+    *vehicle = fixed_name(names ? names->vehicle : NULL, &map->vehicle, "");
+    if (!*vehicle || **vehicle)
+        return RFADE_OK;
+    return rfade_error_set(error, RFADE_INPUT,
+                           "give --vehicle NAME, or a [vehicle] section in the column map",
+                           "nothing says which vehicle the log is from");
+}
+
 static enum rfade_status settle_names(struct rfade_row_maker *maker,
                                       const struct rfade_ingest_names *names,
                                       struct rfade_error *error)
@@ -61,11 +73,9 @@ static enum rfade_status settle_names(struct rfade_row_maker *maker,
     static const struct rfade_ingest_names none;
     const struct rfade_column_map *map = maker->map;
     const struct rfade_ingest_names *given = names ? names : &none;
-    maker->vehicle = fixed_name(given->vehicle, &map->vehicle, "");
-    if (maker->vehicle && maker->vehicle[0] == '\0')
-        return rfade_error_set(error, RFADE_INPUT,
-                               "give --vehicle NAME, or a [vehicle] section in the column map",
-                               "nothing says which vehicle the log is from");
+    enum rfade_status status = rfade_row_vehicle(map, given, &maker->vehicle, error);
+    if (status != RFADE_OK)
+        return status;
     bool one_named = map->level_count == 1 && map->levels[0].channel[0];
     if (given->channel && (map->level_count > 1 || one_named))
         return rfade_error_set(error, RFADE_INPUT, "leave out --channel",

@@ -39,6 +39,14 @@ struct rfade_row_values {
     const struct rfade_field *by_role[RFADE_MOST_ROLES];
 };
 
+/**
+ * The vehicle by the names given or the map; NULL: it stands in a column. RFADE_INPUT if
+ * nothing says it.
+ */
+enum rfade_status rfade_row_vehicle(const struct rfade_column_map *map,
+                                    const struct rfade_ingest_names *names,
+                                    const char **vehicle, struct rfade_error *error);
+
 struct rfade_row_maker; /* opaque */
 
 /**

@@ -34,7 +34,8 @@ static void the_forms_say_the_same(void **state)
         "[" RECORD_0 "," RECORD_1 "]",
         "[\n    " RECORD_0 ", \n    " RECORD_1 "\n]\n",
         "\xEF\xBB\xBF \n[[],{\"a\":\"]\\\"\"}," RECORD_0 "," RECORD_1 "]",
-        "{\"rx\":\n{\"time\":1768508100.123456,\n\"rssi\":\"-80.25\",\"s n r\":7}}\n" RECORD_1,
+        ("{\"rx\":\n{\"time\":1768508100.123456,\n\"rssi\":\"-80.25\",\"s n "
+         "r\":7}}\n" RECORD_1),
     };
     for (size_t i = 0; i < sizeof logs / sizeof logs[0]; i++) {
         collect_text(&got, MAP, logs[i]);
@@ -140,7 +141,8 @@ static void records_of_no_use_are_refused_alone(void **state)
     }
 }
 
-/* Where each line is a value of its own, damage to brackets and quotes ends with the line. */
+/* Where each line is a value of its own, damage to brackets and quotes ends with the line.
+ */
 static void a_damaged_line_does_not_take_others_along(void **state)
 {
     (void)state;
@@ -201,7 +203,8 @@ static void a_map_that_does_not_fit_says_so(void **state)
         const char *what;
     } cases[] = {
         {MAP, "no record has a time"},
-        {"[file]\nformat = json\nrecords = $.packets[*]\n[time]\ncolumn = t\n[level]\ncolumn = "
+        {"[file]\nformat = json\nrecords = $.packets[*]\n[time]\ncolumn = "
+         "t\n[level]\ncolumn = "
          "l\n",
          "no record has a time"},
         {"[time]\ncolumn = t\n[level]\ncolumn = l\n", "does not say enough"},
