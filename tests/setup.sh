@@ -5,7 +5,8 @@
 set -eu
 
 packages="cmake ninja-build gcc libc6-dev pkg-config libcsv-dev libgsl-dev libsqlite3-dev
-libcmocka-dev libproj-dev proj-data libinih-dev zlib1g-dev libjansson-dev libmd-dev tzdata"
+libcmocka-dev libproj-dev proj-data libinih-dev zlib1g-dev libjansson-dev libexpat1-dev libmd-dev
+tzdata"
 
 missing=
 for package in $packages "$@"; do

@@ -14,18 +14,14 @@
  * name of digits alone stands in double quotes: column = "868".
  *
  *     [file]
- *     format = delimited       delimited | json | nmea | gpx; the map is for files of that kind alone,
- *                              which is told by their content
- *     separator = comma        comma | semicolon | tab | pipe | blanks | one character;
- *                              `blanks`: any run of blanks and tabs, those at the ends of a
- *                              line do not count
- *     decimal = point          point | comma
- *     header = yes             yes: the first line after those skipped; no: columns are given
- *                              by number; or the header's line number, from 1
- *     skip = 0                 lines at the top that are no data (a `sep=,` line is passed
- *                              over by itself)
- *     comment = #              lines that start so are no data; none: there are no comments
- *     quote = double           double | single | none; a quoted value ends on its own line
+ *     format = delimited       delimited | json | nmea | gpx; the map is for files of that kind
+ * alone, which is told by their content separator = comma        comma | semicolon | tab | pipe
+ * | blanks | one character; `blanks`: any run of blanks and tabs, those at the ends of a line
+ * do not count decimal = point          point | comma header = yes             yes: the first
+ * line after those skipped; no: columns are given by number; or the header's line number, from
+ * 1 skip = 0                 lines at the top that are no data (a `sep=,` line is passed over
+ * by itself) comment = #              lines that start so are no data; none: there are no
+ * comments quote = double           double | single | none; a quoted value ends on its own line
  *     rows = even              even: a row with another number of values than most rows have
  *                              is refused, since its columns may be shifted; ragged: rows may
  *                              be longer or shorter as long as the columns needed are there

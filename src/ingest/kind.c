@@ -4,6 +4,7 @@
 #include <stdbool.h>
 #include <string.h>
 
+#include "common/gpx.h"
 #include "ingest/nmea.h"
 
 /* One NUL or control byte in so many is damage; more is another kind of file. */
@@ -32,7 +33,7 @@ static const struct {
      4,
      {"compressed with zstd", "unpack it first, or compress it with gzip"}},
     {"\x1F\x8B", 2, {"compressed with gzip twice", "unpack it once"}},
-    {"<?xml", 5, {"XML", "export the log as delimited text"}},
+    {"<?xml", 5, {"XML and no GPX", "export the log as delimited text, or a track as GPX"}},
     {"<", 1, {"a markup file (HTML or XML)", "export the log as delimited text"}},
 };
 
@@ -67,10 +68,17 @@ static size_t blanks(const char *head, size_t size)
     return count;
 }
 
+static bool is_gpx(const char *text, size_t size)
+{
+    return size > 0 && *text == '<' && rfade_gpx_is_gpx(text, size);
+}
+
 struct rfade_other_kind rfade_other_kind(const char *head, size_t size)
 {
     const char *text = head + blanks(head, size);
     size_t left = size - blanks(head, size);
+    if (is_gpx(text, left))
+        return (struct rfade_other_kind){NULL, NULL};
     for (size_t i = 0; i < sizeof signatures / sizeof signatures[0]; i++)
         if (left >= signatures[i].size &&
             memcmp(text, signatures[i].magic, signatures[i].size) == 0)
@@ -88,5 +96,7 @@ enum rfade_log_format rfade_log_format_of(const char *head, size_t size)
     size_t skipped = blanks(head, size);
     if (is_json(head + skipped, size - skipped))
         return RFADE_FORMAT_JSON;
+    if (is_gpx(head + skipped, size - skipped))
+        return RFADE_FORMAT_GPX;
     return rfade_nmea_is_log(head, size) ? RFADE_FORMAT_NMEA : RFADE_FORMAT_DELIMITED;
 }

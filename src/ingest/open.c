@@ -13,6 +13,7 @@
 #include <zlib.h>
 
 #include "ingest/delimited.h"
+#include "ingest/gpx_track.h"
 #include "ingest/json.h"
 #include "ingest/kind.h"
 #include "ingest/lines.h"
@@ -180,10 +181,14 @@ static enum rfade_status read_log(const struct job *job, const struct rfade_map_
     case RFADE_FORMAT_NMEA:
         return rfade_nmea_read_log(job->lines, choice->map, job->names, job->sink, job->summary,
                                    error);
-    default:
+    case RFADE_FORMAT_GPX:
+        return rfade_gpx_track_read(job->lines, choice->map, job->names, job->sink,
+                                    job->summary, error);
+    case RFADE_FORMAT_DELIMITED:
         return rfade_delimited_read(job->lines, choice->map, choice->layout, job->names,
                                     job->sink, job->summary, error);
     }
+    return RFADE_DOMAIN;
 }
 
 /* Looks at the first bytes, and chooses the map. */

@@ -85,7 +85,7 @@ static enum rfade_status read_text(const char *path, const char *text, size_t si
                                    struct rfade_error *error)
 {
     static const char *const remedy =
-        "give a GeoJSON LineString, or text with latitude,longitude on each line";
+        "give a GeoJSON LineString, a GPX track, or text with latitude,longitude on each line";
     if (size >= 3 && memcmp(text, "\xEF\xBB\xBF", 3) == 0) { /* byte order mark */
         text += 3;
         size -= 3;
@@ -96,8 +96,7 @@ static enum rfade_status read_text(const char *path, const char *text, size_t si
     if (*start == '\0')
         return fail(path, RFADE_INPUT, remedy, "the file is empty", error);
     if (*start == '<')
-        return fail(path, RFADE_INPUT, remedy, "this is XML, not a line that can be read",
-                    error);
+        return rfade_line_from_gpx(path, text, size, places, count, error);
     if (*start == '{' || *start == '[')
         return rfade_line_from_geojson(path, text, size, places, count, error);
     return rfade_line_from_csv(path, text, size, places, count, error);

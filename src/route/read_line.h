@@ -1,5 +1,5 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-/** @file read_line.h  A reference line out of a file: GeoJSON or delimited text. */
+/** @file read_line.h  A reference line out of a file: GeoJSON, GPX or delimited text. */
 #ifndef ROUTEFADE_ROUTE_READ_LINE_H
 #define ROUTEFADE_ROUTE_READ_LINE_H
 
@@ -13,6 +13,9 @@
  *
  * GeoJSON (RFC 7946): a LineString, a Feature of one, or a FeatureCollection of one such
  * Feature; elevations are left out. Anything else is refused by its type.
+ *
+ * GPX 1.1: the points of its one track, its segments joined; of a file without a track those
+ * of its one route. Several are refused.
  *
  * Text: latitude and longitude in decimal degrees, one place a line, separated by comma,
  * semicolon or tab (with semicolon or tab the decimal sign may be a comma). A header with the

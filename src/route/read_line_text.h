@@ -12,6 +12,9 @@ enum rfade_status rfade_line_from_csv(const char *name, const char *text, size_t
 enum rfade_status rfade_line_from_geojson(const char *name, const char *text, size_t size,
                                           struct rfade_place **places, size_t *count,
                                           struct rfade_error *error);
+enum rfade_status rfade_line_from_gpx(const char *name, const char *text, size_t size,
+                                      struct rfade_place **places, size_t *count,
+                                      struct rfade_error *error);
 
 /** Places that grow. */
 struct rfade_place_list {

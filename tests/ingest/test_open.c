@@ -104,7 +104,7 @@ static void files_of_another_kind_are_refused_whole(void **state)
          6, "xz"},
         {"BZh91AY", 7, "bzip2"},
         {"\x28\xB5\x2F\xFD\x24", 5, "zstd"},
-        {"<?xml version=\"1.0\"?><gpx/>", 27, "XML"},
+        {"<?xml version=\"1.0\"?><kml/>", 27, "XML"},
         {"<html></html>", 13, "markup"},
         {"\x01\x02\x03\x04\x05\x06\x07\x01\x02\x03\x04\x05\x06\x07\x01\x02\x03\x04\x05\x06", 20,
          "binary"},

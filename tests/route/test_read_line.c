@@ -90,6 +90,36 @@ static void geojson_lines_are_read(void **state)
     }
 }
 
+#define TRACK_POINT(latitude, longitude)                                                       \
+    "<trkpt lat=\"" latitude "\" lon=\"" longitude "\"><ele>3</ele></trkpt>"
+#define ROUTE_POINT(latitude, longitude) "<rtept lat='" latitude "' lon='" longitude "'/>"
+
+static void gpx_lines_are_read(void **state)
+{
+    (void)state;
+    static const char *const texts[] = {
+        "<?xml version=\"1.0\" encoding=\"UTF-8\"?>\n<gpx version=\"1.1\" "
+        "xmlns=\"http://www.topografix.com/GPX/1/1\"><wpt lat=\"1\" lon=\"2\"/>"
+        "<rte>" ROUTE_POINT("1", "2") "</rte><trk><trkseg>" TRACK_POINT(
+            "51.25", "7.5") "</trkseg><trkseg>" TRACK_POINT("-33.125",
+                                                            "-70.0625") "</trkseg></trk></gpx>",
+        "\xEF\xBB\xBF<g:gpx xmlns:g='http://www.topografix.com/GPX/1/1'><g:rte>"
+        "<g:rtept lat='51.25' lon='7.5'/><g:rtept lat='-33.125' lon='-70.0625'/>"
+        "</g:rte></g:gpx>",
+    };
+    for (size_t i = 0; i < sizeof texts / sizeof texts[0]; i++) {
+        struct rfade_place *places = NULL;
+        size_t count = 0;
+        struct rfade_error error;
+        if (read_bytes(texts[i], strlen(texts[i]), &places, &count, &error) != RFADE_OK)
+            fail_msg("text %zu: %s", i, error.what);
+        assert_int_equal(count, 2);
+        assert_true(places[0].latitude_deg == 51.25 && places[0].longitude_deg == 7.5);
+        assert_true(places[1].latitude_deg == -33.125 && places[1].longitude_deg == -70.0625);
+        free(places);
+    }
+}
+
 static void what_is_no_line_is_refused(void **state)
 {
     (void)state;
@@ -110,7 +140,17 @@ static void what_is_no_line_is_refused(void **state)
         {"51.25,7.5\nnan,7\n", 2, "not a latitude"},
         {"0x33,7.5\n51,7\n", 1, "not a latitude"},
         {"x,y\n51,7\n52,7\n", 1, "'x' and 'y'"},
-        {"<?xml version=\"1.0\"?><gpx/>", 0, "XML"},
+        {"<?xml version=\"1.0\"?><gpx/>", 0, "fewer than two"},
+        {"<kml>\n</kml>", 1, "no GPX"},
+        {"<gpx>\n<trk><trkseg>" TRACK_POINT("51", "7"), 2, "cut off"},
+        {"<gpx><trk><trkseg>\n" TRACK_POINT("51", "7") TRACK_POINT("east", "7"), 2,
+         "no place on earth"},
+        {"<gpx><trk>" TRACK_POINT("51", "7") "</trk>\n<trk>" TRACK_POINT("52", "7"), 2,
+         "several tracks"},
+        {"<gpx><rte>" ROUTE_POINT("51", "7") "</rte><rte>" ROUTE_POINT("52", "7"), 1,
+         "several routes"},
+        {"<!DOCTYPE gpx [<!ENTITY a \"aaaa\"><!ENTITY b \"&a;&a;\">]>\n<gpx>&b;</gpx>", 1,
+         "document type declaration"},
         {"{\"type\":\"LineString\",\"coordinates\":[[7,51],[8,52]", 0, "not valid JSON"},
         {"{}", 0, "no geometry has a type"},
         {"[1,2]", 0, "no geometry has a type"},
@@ -259,6 +299,7 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(lines_of_text_are_read),
         cmocka_unit_test(geojson_lines_are_read),
+        cmocka_unit_test(gpx_lines_are_read),
         cmocka_unit_test(what_is_no_line_is_refused),
         cmocka_unit_test(what_is_no_text_file_is_refused),
         cmocka_unit_test(a_driven_line_follows_the_road),
