@@ -96,8 +96,7 @@ static void a_file_cut_short_keeps_what_it_has(void **state)
 {
     (void)state;
     static const char *const rests[] = {"", "</trkseg>", "<trkpt lat=\"5",
-                                        "<trkpt lat=\"54.1\" "
-                                        "lon=\"-2.3\"><time>2026-01-15"};
+                                        "<trkpt lat='54.1' lon='-2.3'><time>2026-01-15"};
     for (size_t i = 0; i < sizeof rests / sizeof rests[0]; i++) {
         char text[1024];
         (void)snprintf(text, sizeof text, HEAD "<trk><trkseg>" POINT_0 "%s", rests[i]);

@@ -97,6 +97,11 @@ static void files_of_another_kind_are_refused_whole(void **state)
         {"PK\x03\x04\x14\0\x06\0", 8, "XLSX"},
         {"\xD0\xCF\x11\xE0\xA1\xB1\x1A\xE1", 8, "XLS"},
         {"SQLite format 3", 16, "SQLite"},
+        {"\x89PNG\r\n\x1A\n", 8, "PNG"},
+        {"\xFF\xD8\xFF\xE0\0\x10JFIF", 10, "JPEG"},
+        {"GIF89a", 6, "GIF"},
+        {"7z\xBC\xAF\x27\x1C\0\4", 8, "7z"},
+        {"Rar!\x1A\x07\x01\0", 8, "RAR"},
         {"%PDF-1.7\n", 9, "PDF"},
         {"\xFF\xFEt\0i\0", 6, "UTF-16"},
         {"\xFD"
