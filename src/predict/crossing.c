@@ -10,6 +10,8 @@
 #include <gsl/gsl_math.h>
 #include <math.h>
 
+#include "model/model.h"
+#include "predict/crossing.h"
 #include "routefade/stretch.h"
 
 /* 1 + K or m: the steadier the signal, the slower its amplitude moves. */
@@ -27,21 +29,32 @@ static double steadiness(const struct rfade_model *model, double parameter)
     }
 }
 
+double rfade_log_crossings_over_density(const struct rfade_model *model, double parameter)
+{
+    /* Density of the amplitude from that of the level: dx_db = 20/ln(10) dr/r. */
+    return log(20.0 / M_LN10) + 0.5 * log(M_PI / (2.0 * steadiness(model, parameter)));
+}
+
+enum rfade_status rfade_log_crossings(const struct rfade_model *model, double parameter,
+                                      double x_db, double *result)
+{
+    *result = NAN;
+    if (isnan(steadiness(model, parameter)))
+        return RFADE_DOMAIN;
+    struct rfade_log_gradient density;
+    enum rfade_status status = model->log_density(parameter, x_db, &density);
+    if (status == RFADE_OK)
+        *result = density.value + rfade_log_crossings_over_density(model, parameter) -
+                  0.5 * rfade_log_ratio(x_db);
+    return status;
+}
+
 enum rfade_status rfade_crossings_per_wavelength(const struct rfade_model *model,
                                                  double parameter, double x_db,
                                                  double *crossings)
 {
-    *crossings = NAN;
-    double steady = steadiness(model, parameter);
-    if (isnan(steady))
-        return RFADE_DOMAIN;
-    struct rfade_log_gradient density;
-    enum rfade_status status = model->log_density(parameter, x_db, &density);
-    if (status != RFADE_OK)
-        return status;
-    /* Density of the amplitude from that of the level: dx_db = 20/ln(10) dr/r. */
-    double ln_amplitude = x_db * (M_LN10 / 20.0);
-    *crossings =
-        exp(density.value + log(20.0 / M_LN10) - ln_amplitude) * sqrt(M_PI / (2.0 * steady));
-    return RFADE_OK;
+    double log_crossings = NAN;
+    enum rfade_status status = rfade_log_crossings(model, parameter, x_db, &log_crossings);
+    *crossings = exp(log_crossings);
+    return status;
 }
