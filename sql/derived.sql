@@ -43,7 +43,8 @@ CREATE TABLE traversal (
     snr_tally BLOB NOT NULL,            -- as logged
     noise_tally BLOB NOT NULL,          -- level less SNR
     blocks BLOB NOT NULL,
-    sampling BLOB NOT NULL
+    sampling BLOB NOT NULL,
+    crossings BLOB NOT NULL             -- of levels about the local mean
 ) STRICT;
 CREATE INDEX traversal_by_segment ON traversal (segment_id);
 CREATE INDEX traversal_by_trace ON traversal (trace_id);

@@ -9,6 +9,7 @@
 #include <stddef.h>
 #include <stdint.h>
 
+#include "routefade/crossings.h"
 #include "routefade/status.h"
 #include "routefade/tally.h"
 
@@ -138,6 +139,7 @@ struct rfade_traversal_tally {
     struct rfade_tally *noise;      /**< level less SNR, dBm, by 0.1 dB; weights in mm */
     struct rfade_blocks blocks;
     struct rfade_sampling_sums sampling;
+    struct rfade_crossings crossings;
 };
 
 struct rfade_separation {

@@ -116,7 +116,7 @@ static enum rfade_status store_trace(const struct making *making, const struct t
 }
 
 /* The byte forms of one traversal's tallies, blocks and sums. */
-enum { TALLIES = 5, BLOCKS = TALLIES, SAMPLING, ENCODED };
+enum { TALLIES = 5, BLOCKS = TALLIES, SAMPLING, CROSSINGS, ENCODED };
 struct encoded {
     uint8_t *bytes[ENCODED];
     size_t sizes[ENCODED];
@@ -144,6 +144,9 @@ static enum rfade_status encode(const struct rfade_traversal_tally *traversal,
     if (status == RFADE_OK)
         status = rfade_sampling_encode(&traversal->sampling, &encoded->bytes[SAMPLING],
                                        &encoded->sizes[SAMPLING]);
+    if (status == RFADE_OK)
+        status = rfade_crossings_encode(&traversal->crossings, &encoded->bytes[CROSSINGS],
+                                        &encoded->sizes[CROSSINGS]);
     return status;
 }
 
@@ -163,9 +166,10 @@ static enum rfade_status store_traversal(const struct making *making, int64_t tr
         making->work->survey, error,
         "INSERT INTO traversal (trace_id, segment_id, pass_start_us, start_us, end_us,"
         " reading_count, travel_m, level_uncertainty_db, fading_tally, level_tally,"
-        " local_mean_tally, snr_tally, noise_tally, blocks, sampling)"
-        " VALUES (?1, ?2, ?3, ?4, ?5, ?6, ?7, ?8, ?9, ?10, ?11, ?12, ?13, ?14, ?15)",
-        "iiiiiiddbbbbbbb", trace_id,
+        " local_mean_tally, snr_tally, noise_tally, blocks, sampling,"
+        " crossings)"
+        " VALUES (?1, ?2, ?3, ?4, ?5, ?6, ?7, ?8, ?9, ?10, ?11, ?12, ?13, ?14, ?15, ?16)",
+        "iiiiiiddbbbbbbbb", trace_id,
         making->work->route->segments[traversal->segment].segment_id,
         rfade_track_start_us(making->drive->tracks[pass]), traversal->first_time_us,
         traversal->last_time_us, traversal->sampling.readings,
@@ -174,7 +178,8 @@ static enum rfade_status store_traversal(const struct making *making, int64_t tr
         encoded.sizes[1], (const void *)encoded.bytes[2], encoded.sizes[2],
         (const void *)encoded.bytes[3], encoded.sizes[3], (const void *)encoded.bytes[4],
         encoded.sizes[4], (const void *)encoded.bytes[BLOCKS], encoded.sizes[BLOCKS],
-        (const void *)encoded.bytes[SAMPLING], encoded.sizes[SAMPLING]);
+        (const void *)encoded.bytes[SAMPLING], encoded.sizes[SAMPLING],
+        (const void *)encoded.bytes[CROSSINGS], encoded.sizes[CROSSINGS]);
 out:
     clear_encoded(&encoded);
     return status;

@@ -71,6 +71,10 @@ enum rfade_status rfade_pass_curvature(struct rfade_pass *pass);
 void rfade_pass_sampling(const struct rfade_pass *pass, struct rfade_range run,
                          struct rfade_sampling_sums *sums);
 
+/** Crossings along a run: a step between two readings belongs to the later one's segment. */
+void rfade_pass_crossings(const struct rfade_pass *pass, struct rfade_range run,
+                          struct rfade_crossings *crossings);
+
 /** Counts rows, travel and level updates of a run: the members up to travel_mm. */
 void rfade_pass_count_rows(const struct rfade_pass *pass, struct rfade_range run,
                            struct rfade_sampling_sums *sums);

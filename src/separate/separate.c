@@ -157,6 +157,7 @@ static enum rfade_status make_traversal(const struct rfade_pass *pass, struct rf
     }
     if (status == RFADE_OK) {
         rfade_pass_sampling(pass, run, &traversal->sampling);
+        rfade_pass_crossings(pass, run, &traversal->crossings);
     }
     return status;
 }
