@@ -72,8 +72,7 @@ static double fading_variance(const struct rfade_segment_result *row)
     return isfinite(variance) ? variance : 0.0;
 }
 
-/* The part of the level's uncertainty that is not fading. */
-static double calibration_db(const struct rfade_segment_result *row)
+double rfade_result_calibration_db(const struct rfade_segment_result *row)
 {
     double total = row->level_uncertainty_db * row->level_uncertainty_db;
     double fading = DB_PER_NEPER_OF_POWER * DB_PER_NEPER_OF_POWER * fading_variance(row);
@@ -123,7 +122,7 @@ static enum rfade_status predicted(struct rfade_segment_result *row,
             .length_wavelengths = pass_wavelengths,
             .passes = passes,
             .level_uncertainty_db = row->level_uncertainty_db,
-            .calibration_db = calibration_db(row),
+            .calibration_db = rfade_result_calibration_db(row),
             .slow_variance = slow,
             .readings = (double)rfade_tally_readings(row->level) / passes,
             .confidence = confidence,

@@ -23,6 +23,12 @@ static const char *const ROWS_SQL =
     " AND (?5 IS NULL OR to_m > ?5) AND (?6 IS NULL OR from_m < ?6)"
     " ORDER BY route.name, segment.number, channel.name, campaign.name";
 
+static const char *const SPANS_SQL =
+    "SELECT route.name, count(*), sum(to_m - from_m) FROM segment JOIN route USING (route_id)"
+    " WHERE (?1 IS NULL OR route.name = ?1) AND (?2 = 0 OR segment.number = ?2)"
+    " AND (?3 IS NULL OR to_m > ?3) AND (?4 IS NULL OR from_m < ?4)"
+    " GROUP BY route.name ORDER BY route.name";
+
 static const char *const FITS_SQL =
     "SELECT model, preferred, offset_db, parameter, parameter_low, parameter_high, weight,"
     " goodness_p FROM fit WHERE fading_id = ?1 ORDER BY model";
@@ -182,7 +188,8 @@ void rfade_results_clear(struct rfade_segment_results *results)
     for (size_t i = 0; i < results->count; i++)
         clear_row(&results->rows[i]);
     free(results->rows);
-    *results = (struct rfade_segment_results){NULL, 0};
+    free(results->spans);
+    *results = (struct rfade_segment_results){NULL, 0, NULL, 0};
 }
 
 /* Refuses a name that the survey does not hold. */
@@ -266,12 +273,35 @@ enum rfade_status rfade_readings_without_level(struct rfade_survey *survey, int6
                                 "SELECT count(*) FROM reading WHERE level_cdb IS NULL", "");
 }
 
+static void read_span(sqlite3_stmt *statement, void *row)
+{
+    struct rfade_route_span *span = row;
+    rfade_name_copy(span->route, statement, 0);
+    span->segments = sqlite3_column_int64(statement, 1);
+    span->length_m = sqlite3_column_double(statement, 2);
+}
+
+static enum rfade_status read_spans(struct rfade_survey *survey,
+                                    const struct rfade_segment_filter *filter,
+                                    struct rfade_segment_results *results,
+                                    struct rfade_error *error)
+{
+    sqlite3_stmt *statement = NULL;
+    enum rfade_status status =
+        rfade_survey_prepare(survey, &statement, error, SPANS_SQL, "tidd", filter->route,
+                             filter->segment, filter->from_m, filter->to_m);
+    if (status == RFADE_OK)
+        status = rfade_rows_read(survey, statement, sizeof *results->spans, read_span,
+                                 (void **)&results->spans, &results->span_count, error);
+    return status;
+}
+
 enum rfade_status rfade_results_read(struct rfade_survey *survey,
                                      const struct rfade_segment_filter *filter,
                                      struct rfade_segment_results *results,
                                      struct rfade_error *error)
 {
-    *results = (struct rfade_segment_results){NULL, 0};
+    *results = (struct rfade_segment_results){NULL, 0, NULL, 0};
     sqlite3_stmt *statement = NULL;
     struct rfade_noise *noise = NULL;
     size_t noise_count = 0;
@@ -295,6 +325,8 @@ enum rfade_status rfade_results_read(struct rfade_survey *survey,
             status = read_fits(survey, &results->rows[i], error);
     }
     free(noise);
+    if (status == RFADE_OK)
+        status = read_spans(survey, filter, results, error);
     if (status != RFADE_OK)
         rfade_results_clear(results);
     return status;

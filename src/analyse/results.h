@@ -9,6 +9,7 @@
 #include "routefade/model.h"
 #include "routefade/stretch.h"
 #include "routefade/tally.h"
+#include "survey/name.h"
 #include "survey/survey.h"
 
 /** Which segments; NULL, 0 and NaN: all. */
@@ -78,9 +79,18 @@ struct rfade_segment_result {
     size_t fit_count;
 };
 
+/** A route as far as the filter takes it in. */
+struct rfade_route_span {
+    char route[RFADE_NAME_SIZE];
+    int64_t segments;
+    double length_m; /**< of these segments, whether or not a vehicle was there */
+};
+
 struct rfade_segment_results {
     struct rfade_segment_result *rows; /**< by route, segment, channel, campaign */
     size_t count;
+    struct rfade_route_span *spans; /**< by route */
+    size_t span_count;
 };
 
 /**
@@ -113,6 +123,9 @@ const struct rfade_stored_fit *rfade_result_fit(const struct rfade_segment_resul
 
 /** Whether the fast fading was told apart, so that K and m may be shown. */
 bool rfade_result_resolved(const struct rfade_segment_result *row);
+
+/** The part of a row's level_uncertainty_db that is not fading, but the calibration's. */
+double rfade_result_calibration_db(const struct rfade_segment_result *row);
 
 /** A threshold as a level, and as the SNR it was given as: NaN for one given as a level. */
 struct rfade_threshold {

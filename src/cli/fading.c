@@ -1,6 +1,6 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
+#include <math.h>
 #include <stdlib.h>
-#include <string.h>
 
 #include "cli/segment_rows.h"
 
@@ -29,8 +29,6 @@ static const struct rfade_column own_columns[] = {
     {"weight", RFADE_COLUMN_PROBABILITY, 2, false, false},
     {"goodness_p", RFADE_COLUMN_PROBABILITY, 2, false, false},
 };
-enum { OWN_COLUMNS = sizeof own_columns / sizeof own_columns[0] };
-enum { COLUMNS = RFADE_SEGMENT_COLUMNS + OWN_COLUMNS };
 
 /* The parameter of a model with its interval; missing where it was not resolved. */
 static void parameter_values(const struct rfade_segment_result *row, enum rfade_model_id model,
@@ -46,10 +44,11 @@ static void parameter_values(const struct rfade_segment_result *row, enum rfade_
     values[2] = rfade_parameter_value(fit->model, fit->parameter_high);
 }
 
-static void row_values(const struct rfade_segment_result *row, struct rfade_value *values)
+static void own_values(const void *context, const struct rfade_segment_result *row,
+                       size_t index, struct rfade_value *own)
 {
-    rfade_segment_values(row, values);
-    struct rfade_value *own = values + RFADE_SEGMENT_COLUMNS;
+    (void)context;
+    (void)index;
     const struct rfade_stored_fit *fit = rfade_result_preferred(row);
     bool resolved = fit && rfade_result_resolved(row);
     own[0] = rfade_value_text(row->sampling);
@@ -77,27 +76,11 @@ static void rank_rows(const struct rfade_segment_results *results, bool by_estim
     }
 }
 
-static enum rfade_status print_rows(const struct rfade_run *run,
-                                    const struct rfade_segment_results *results,
-                                    const struct rfade_segment_rank *ranks, size_t count,
-                                    struct rfade_error *error)
-{
-    struct rfade_column columns[COLUMNS];
-    memcpy(columns, rfade_segment_columns, sizeof rfade_segment_columns);
-    memcpy(columns + RFADE_SEGMENT_COLUMNS, own_columns, sizeof own_columns);
-    struct rfade_rows *rows = NULL;
-    enum rfade_status status = rfade_rows_begin(run->common->format, run->output, NULL, columns,
-                                                COLUMNS, &rows, error);
-    for (size_t i = 0; i < count && status == RFADE_OK; i++) {
-        struct rfade_value values[COLUMNS];
-        row_values(&results->rows[ranks[i].row], values);
-        status = rfade_rows_row(rows, values, error);
-    }
-    if (status == RFADE_OK)
-        status = rfade_rows_end(rows, error);
-    rfade_rows_destroy(rows);
-    return status;
-}
+static const struct rfade_segment_table table = {
+    .columns = own_columns,
+    .column_count = sizeof own_columns / sizeof own_columns[0],
+    .values = own_values,
+};
 
 static enum rfade_status run_fading(struct rfade_run *run, struct rfade_error *error)
 {
@@ -111,7 +94,7 @@ static enum rfade_status run_fading(struct rfade_run *run, struct rfade_error *e
     if (ranks) {
         rank_rows(&results, asked->segments.by_estimate, ranks);
         size_t count = rfade_segment_order(&asked->segments, ranks, results.count);
-        status = print_rows(run, &results, ranks, count, error);
+        status = rfade_segment_print(run, &table, &results, ranks, count, error);
     } else {
         status = rfade_error_no_memory(error);
     }

@@ -1,14 +1,15 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include <math.h>
 #include <stdlib.h>
-#include <string.h>
 
+#include "cli/outage_route.h"
 #include "cli/segment_rows.h"
 #include "cli/threshold.h"
 
 struct outage_options {
     struct rfade_segment_options segments;
     struct rfade_threshold_options threshold;
+    bool whole_route;
 };
 
 static const struct outage_options defaults = {.segments = RFADE_SEGMENT_DEFAULTS,
@@ -16,23 +17,9 @@ static const struct outage_options defaults = {.segments = RFADE_SEGMENT_DEFAULT
 
 static const struct rfade_option options[] = {
     RFADE_THRESHOLD_OPTION_LINES(struct outage_options),
+    {"whole-route", NULL, RFADE_OPTION_FLAG, offsetof(struct outage_options, whole_route), 0, 0,
+     NULL, "one row a route, channel and campaign, over all its segments"},
     RFADE_SEGMENT_OPTION_LINES(struct outage_options)};
-
-static const struct rfade_column own_columns[] = {
-    {"outage", RFADE_COLUMN_PROBABILITY, 3, true, false},
-    {"outage_low", RFADE_COLUMN_PROBABILITY, 3, false, false},
-    {"outage_high", RFADE_COLUMN_PROBABILITY, 3, false, false},
-    {"next_low", RFADE_COLUMN_PROBABILITY, 2, false, false},
-    {"next_high", RFADE_COLUMN_PROBABILITY, 2, false, false},
-    {"observed", RFADE_COLUMN_PROBABILITY, 3, false, false},
-    {"observed_low", RFADE_COLUMN_PROBABILITY, 3, false, false},
-    {"observed_high", RFADE_COLUMN_PROBABILITY, 3, false, false},
-    {"noise_dbm", RFADE_COLUMN_NUMBER, 1, false, false},
-    {"noise", RFADE_COLUMN_TEXT, 0, false, false},
-    {"sampling", RFADE_COLUMN_TEXT, 0, false, false},
-};
-enum { OWN_COLUMNS = sizeof own_columns / sizeof own_columns[0] };
-enum { COLUMNS = RFADE_SEGMENT_COLUMNS + 1 + OWN_COLUMNS };
 
 struct answer {
     struct rfade_stretch_outage outage;
@@ -72,13 +59,18 @@ static void rank_rows(const struct rfade_segment_results *results, const struct 
     }
 }
 
-static void row_values(const struct rfade_segment_result *row,
-                       const struct rfade_threshold_asked *threshold,
-                       const struct answer *answer, struct rfade_value *values)
+/* What the rows are made from. */
+struct page {
+    const struct rfade_threshold_asked *threshold;
+    const struct answer *answers;
+};
+
+static void own_values(const void *context, const struct rfade_segment_result *row,
+                       size_t index, struct rfade_value *own)
 {
-    rfade_segment_values(row, values);
-    struct rfade_value *own = values + RFADE_SEGMENT_COLUMNS;
-    own[0] = rfade_value_number(threshold->value);
+    const struct page *page = context;
+    const struct answer *answer = &page->answers[index];
+    own[0] = rfade_value_number(page->threshold->value);
     own[1] = rfade_value_number(answer->outage.outage);
     own[2] = rfade_value_number(answer->outage.low);
     own[3] = rfade_value_number(answer->outage.high);
@@ -92,29 +84,29 @@ static void row_values(const struct rfade_segment_result *row,
     own[11] = rfade_value_text(row->sampling);
 }
 
-static enum rfade_status
-print_rows(const struct rfade_run *run, const struct rfade_segment_results *results,
-           const struct rfade_threshold_asked *threshold, const struct answer *answers,
-           const struct rfade_segment_rank *ranks, size_t count, struct rfade_error *error)
+static enum rfade_status print_rows(const struct rfade_run *run,
+                                    const struct rfade_segment_results *results,
+                                    const struct page *page,
+                                    const struct rfade_segment_rank *ranks, size_t count,
+                                    struct rfade_error *error)
 {
-    struct rfade_column columns[COLUMNS];
-    memcpy(columns, rfade_segment_columns, sizeof rfade_segment_columns);
-    columns[RFADE_SEGMENT_COLUMNS] =
-        (struct rfade_column){threshold->column, RFADE_COLUMN_NUMBER, 1, false, true};
-    memcpy(columns + RFADE_SEGMENT_COLUMNS + 1, own_columns, sizeof own_columns);
-    struct rfade_rows *rows = NULL;
-    enum rfade_status status = rfade_rows_begin(run->common->format, run->output, NULL, columns,
-                                                COLUMNS, &rows, error);
-    for (size_t i = 0; i < count && status == RFADE_OK; i++) {
-        struct rfade_value values[COLUMNS];
-        size_t row = ranks[i].row;
-        row_values(&results->rows[row], threshold, &answers[row], values);
-        status = rfade_rows_row(rows, values, error);
-    }
-    if (status == RFADE_OK)
-        status = rfade_rows_end(rows, error);
-    rfade_rows_destroy(rows);
-    return status;
+    const struct rfade_column columns[] = {
+        {page->threshold->column, RFADE_COLUMN_NUMBER, 1, false, true},
+        {"outage", RFADE_COLUMN_PROBABILITY, 3, true, false},
+        {"outage_low", RFADE_COLUMN_PROBABILITY, 3, false, false},
+        {"outage_high", RFADE_COLUMN_PROBABILITY, 3, false, false},
+        {"next_low", RFADE_COLUMN_PROBABILITY, 2, false, false},
+        {"next_high", RFADE_COLUMN_PROBABILITY, 2, false, false},
+        {"observed", RFADE_COLUMN_PROBABILITY, 3, false, false},
+        {"observed_low", RFADE_COLUMN_PROBABILITY, 3, false, false},
+        {"observed_high", RFADE_COLUMN_PROBABILITY, 3, false, false},
+        {"noise_dbm", RFADE_COLUMN_NUMBER, 1, false, false},
+        {"noise", RFADE_COLUMN_TEXT, 0, false, false},
+        {"sampling", RFADE_COLUMN_TEXT, 0, false, false},
+    };
+    const struct rfade_segment_table table = {columns, sizeof columns / sizeof columns[0],
+                                              own_values, page};
+    return rfade_segment_print(run, &table, results, ranks, count, error);
 }
 
 static enum rfade_status show_outage(const struct rfade_run *run,
@@ -136,7 +128,8 @@ static enum rfade_status show_outage(const struct rfade_run *run,
         goto out;
     rank_rows(results, answers, asked->segments.by_estimate, ranks);
     size_t count = rfade_segment_order(&asked->segments, ranks, results->count);
-    status = print_rows(run, results, threshold, answers, ranks, count, error);
+    const struct page page = {threshold, answers};
+    status = print_rows(run, results, &page, ranks, count, error);
 out:
     free(answers);
     free(ranks);
@@ -149,12 +142,16 @@ static enum rfade_status run_outage(struct rfade_run *run, struct rfade_error *e
     struct rfade_threshold_asked threshold = {"threshold_dbm", NAN};
     enum rfade_status status =
         rfade_threshold_choose(&rfade_command_outage, &asked->threshold, &threshold, error);
+    if (status == RFADE_OK && asked->whole_route && asked->segments.worst > 0)
+        status = rfade_usage(error, &rfade_command_outage,
+                             "--worst ranks segments: it can't go with --whole-route");
     if (status != RFADE_OK)
         return status;
     struct rfade_segment_results results;
     status = rfade_segment_read(run, &rfade_command_outage, &asked->segments, &results, error);
     if (status == RFADE_OK)
-        status = show_outage(run, asked, &threshold, &results, error);
+        status = asked->whole_route ? rfade_outage_whole_route(run, &results, &threshold, error)
+                                    : show_outage(run, asked, &threshold, &results, error);
     rfade_results_clear(&results);
     return status;
 }
@@ -170,7 +167,12 @@ const struct rfade_command rfade_command_outage = {
         "a censored reading straddles the threshold. A threshold in SNR is a level above "
         "the noise; `noise` says where that comes from: listed (by `routefade noise`), logged "
         "(level less logged SNR), channel (its noise floor) or thermal (290 K, bandwidth and "
-        "noise figure). Logged SNR, where there is one all along, is what observed counts. A "
+        "noise figure). Logged SNR, where there is one all along, is what observed counts. "
+        "With --whole-route, outage is the mean over the segments by their length, its "
+        "interval takes their errors as independent and the calibration as common to all; "
+        "observed covers the same segments. lognormal_outage is what fast fading over a "
+        "lognormal local mean gives, its median and spread (local_mean_dbm, local_sigma_db) "
+        "those along the route: where it differs, the local mean is not lognormal. A "
         "predicted outage is no safety case.",
     .options = options,
     .option_count = sizeof options / sizeof options[0],

@@ -3,8 +3,9 @@
 
 #include <math.h>
 #include <stdlib.h>
+#include <string.h>
 
-const struct rfade_column rfade_segment_columns[RFADE_SEGMENT_COLUMNS] = {
+static const struct rfade_column first_columns[] = {
     {"route", RFADE_COLUMN_TEXT, 0, false, true},
     {"segment", RFADE_COLUMN_INTEGER, 0, false, false},
     {"from_m", RFADE_COLUMN_NUMBER, 0, false, false},
@@ -17,7 +18,9 @@ const struct rfade_column rfade_segment_columns[RFADE_SEGMENT_COLUMNS] = {
     {"model", RFADE_COLUMN_TEXT, 0, false, false},
 };
 
-void rfade_segment_values(const struct rfade_segment_result *row, struct rfade_value *values)
+enum { FIRST_COLUMNS = sizeof first_columns / sizeof first_columns[0] };
+
+static void first_values(const struct rfade_segment_result *row, struct rfade_value *values)
 {
     const struct rfade_stored_fit *fit = rfade_result_preferred(row);
     values[0] = rfade_value_text(row->route);
@@ -56,7 +59,7 @@ enum rfade_status rfade_segment_read(const struct rfade_run *run,
                                      struct rfade_segment_results *results,
                                      struct rfade_error *error)
 {
-    *results = (struct rfade_segment_results){NULL, 0};
+    *results = (struct rfade_segment_results){NULL, 0, NULL, 0};
     const struct rfade_segment_filter filter = {
         .route = options->route,
         .channel = options->channel,
@@ -99,4 +102,31 @@ size_t rfade_segment_order(const struct rfade_segment_options *options,
         return count;
     qsort(ranks, count, sizeof *ranks, compare_ranks);
     return (uint64_t)options->worst < count ? (size_t)options->worst : count;
+}
+
+enum rfade_status rfade_segment_print(const struct rfade_run *run,
+                                      const struct rfade_segment_table *table,
+                                      const struct rfade_segment_results *results,
+                                      const struct rfade_segment_rank *ranks, size_t count,
+                                      struct rfade_error *error)
+{
+    struct rfade_column columns[FIRST_COLUMNS + RFADE_SEGMENT_OWN_COLUMNS];
+    memcpy(columns, first_columns, sizeof first_columns);
+    memcpy(columns + FIRST_COLUMNS, table->columns,
+           table->column_count * sizeof *table->columns);
+    struct rfade_rows *rows = NULL;
+    enum rfade_status status =
+        rfade_rows_begin(run->common->format, run->output, NULL, columns,
+                         FIRST_COLUMNS + table->column_count, &rows, error);
+    for (size_t i = 0; i < count && status == RFADE_OK; i++) {
+        struct rfade_value values[FIRST_COLUMNS + RFADE_SEGMENT_OWN_COLUMNS];
+        const struct rfade_segment_result *row = &results->rows[ranks[i].row];
+        first_values(row, values);
+        table->values(table->context, row, ranks[i].row, values + FIRST_COLUMNS);
+        status = rfade_rows_row(rows, values, error);
+    }
+    if (status == RFADE_OK)
+        status = rfade_rows_end(rows, error);
+    rfade_rows_destroy(rows);
+    return status;
 }

@@ -70,14 +70,6 @@ struct rfade_segment_options {
             NULL, "with --worst: ranked by the estimate itself"                                \
     }
 
-enum { RFADE_SEGMENT_COLUMNS = 10 };
-
-/** The first columns of every by-segment table: route ... model. */
-extern const struct rfade_column rfade_segment_columns[RFADE_SEGMENT_COLUMNS];
-
-/** Fills the first RFADE_SEGMENT_COLUMNS values of a row; borrowed from it. */
-void rfade_segment_values(const struct rfade_segment_result *row, struct rfade_value *values);
-
 /**
  * Opens the run's survey for reading and reads the rows that the options ask for. A note says
  * if the survey changed since they were made.
@@ -104,5 +96,24 @@ struct rfade_segment_rank {
  */
 size_t rfade_segment_order(const struct rfade_segment_options *options,
                            struct rfade_segment_rank *ranks, size_t count);
+
+/** What a by-segment command adds to the first columns, which all of them share. */
+struct rfade_segment_table {
+    const struct rfade_column *columns;
+    size_t column_count;
+    /** Fills a value a column for row number `row` of the results; borrowed from them. */
+    void (*values)(const void *context, const struct rfade_segment_result *row, size_t index,
+                   struct rfade_value *values);
+    const void *context;
+};
+
+enum { RFADE_SEGMENT_OWN_COLUMNS = 24 }; /**< room for a command's own */
+
+/** Prints the rows in the order of the ranks: route ... model, then the command's own. */
+enum rfade_status rfade_segment_print(const struct rfade_run *run,
+                                      const struct rfade_segment_table *table,
+                                      const struct rfade_segment_results *results,
+                                      const struct rfade_segment_rank *ranks, size_t count,
+                                      struct rfade_error *error);
 
 #endif

@@ -1,0 +1,40 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/**
+ * @file bounds.h  How sure a segment's outage is, and how much of that is calibration, which
+ * no further pass makes better.
+ */
+#ifndef ROUTEFADE_ANALYSE_BOUNDS_H
+#define ROUTEFADE_ANALYSE_BOUNDS_H
+
+#include "analyse/results.h"
+
+/** On the scale of ln(odds) of the outage; NaN where nothing was predicted. */
+struct rfade_outage_bounds {
+    double outage;
+    double log_odds; /**< of the outage; infinite for 0 and 1 */
+    double below;    /**< >= 0: from it to the lower bound, all uncertainty together */
+    double above;    /**< and to the upper bound */
+    double
+        calibration_below; /**< >= 0: the same from the calibration alone; what travel makes
+                                smaller is the rest, as the root of a difference of squares */
+    double calibration_above;
+    double calibration_db; /**< standard uncertainty of the vehicles' calibration, dB */
+    struct rfade_observed observed;
+};
+
+/** ln(p / (1 - p)), and back. */
+double rfade_log_odds(double probability);
+double rfade_from_log_odds(double log_odds);
+
+/**
+ * Bounds of a row's outage: each end is exceeded, or undercut, with a probability of
+ * 1 - confidence. Distances are those of the two-sided 95 % interval, in ratio of the normal
+ * quantiles.
+ * @param confidence  one-sided, in (0.5, 1)
+ */
+enum rfade_status rfade_result_bounds(struct rfade_segment_result *row,
+                                      const struct rfade_threshold *threshold,
+                                      double confidence, struct rfade_outage_bounds *bounds,
+                                      struct rfade_error *error);
+
+#endif
