@@ -74,6 +74,7 @@ enum rfade_status rfade_usage(struct rfade_error *error, const struct rfade_comm
                               const char *what_format, ...)
     __attribute__((format(printf, 3, 4)));
 
+extern const struct rfade_command rfade_command_acceptance;
 extern const struct rfade_command rfade_command_channel;
 extern const struct rfade_command rfade_command_estimate;
 extern const struct rfade_command rfade_command_fading;

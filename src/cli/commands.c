@@ -15,6 +15,7 @@ static const struct rfade_command *const commands[] = {
     &rfade_command_fit,
     &rfade_command_fading,
     &rfade_command_outage,
+    &rfade_command_acceptance,
     &rfade_command_status,
     &rfade_command_estimate,
     &rfade_command_predict,

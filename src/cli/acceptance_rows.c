@@ -1,0 +1,154 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+#include <math.h>
+#include <stdlib.h>
+
+#include "cli/acceptance.h"
+
+static const struct rfade_segment_acceptance *
+segment_of(const struct rfade_acceptance_page *page, const struct rfade_segment_result *row)
+{
+    for (size_t i = 0; i < page->results->count; i++)
+        if (page->groups->rows[i] == row)
+            return &page->segments[i];
+    return NULL;
+}
+
+/* Segments by the place of their row in the results. */
+struct ordered {
+    const struct rfade_acceptance_page *page;
+    const struct rfade_segment_acceptance **segments;
+};
+
+static double end(const struct rfade_outage_bounds *bounds, double distance)
+{
+    return rfade_from_log_odds(bounds->log_odds + distance);
+}
+
+static void own_values(const void *context, const struct rfade_segment_result *row,
+                       size_t index, struct rfade_value *own)
+{
+    const struct ordered *ordered = context;
+    const struct rfade_segment_acceptance *segment = ordered->segments[index];
+    const struct rfade_outage_bounds *bounds = &segment->bounds;
+    const struct rfade_judgement *judgement = &segment->judgement;
+    own[0] = rfade_value_number(ordered->page->threshold->value);
+    own[1] = rfade_value_number(ordered->page->target.outage);
+    own[2] = rfade_value_number(bounds->outage);
+    own[3] = rfade_value_number(end(bounds, -bounds->below));
+    own[4] = rfade_value_number(end(bounds, bounds->above));
+    own[5] = rfade_value_text(rfade_verdict_name(judgement->verdict));
+    own[6] = rfade_value_text(segment->meets_together ? "yes" : "no");
+    own[7] = rfade_value_number(judgement->more_m);
+    own[8] = rfade_value_number(judgement->more_passes);
+    own[9] = rfade_value_number(bounds->calibration_db);
+    own[10] = rfade_value_number(judgement->calibration_needed_db);
+    own[11] = rfade_value_number(bounds->observed.fraction);
+    own[12] = rfade_value_number(bounds->observed.low);
+    own[13] = rfade_value_number(bounds->observed.high);
+    own[14] = rfade_value_text(row->sampling);
+}
+
+static enum rfade_status print(const struct rfade_run *run, const struct ordered *ordered,
+                               const struct rfade_segment_rank *ranks, size_t count,
+                               struct rfade_error *error)
+{
+    const struct rfade_column columns[] = {
+        {ordered->page->threshold->column, RFADE_COLUMN_NUMBER, 1, false, true},
+        {"target_outage", RFADE_COLUMN_PROBABILITY, 2, false, true},
+        {"outage", RFADE_COLUMN_PROBABILITY, 3, true, false},
+        {"outage_low", RFADE_COLUMN_PROBABILITY, 3, false, false},
+        {"outage_high", RFADE_COLUMN_PROBABILITY, 3, false, false},
+        {"verdict", RFADE_COLUMN_TEXT, 0, false, false},
+        {"meets_together", RFADE_COLUMN_TEXT, 0, false, false},
+        {"more_m", RFADE_COLUMN_NUMBER, 0, false, false},
+        {"more_passes", RFADE_COLUMN_NUMBER, 0, false, false},
+        {"calibration_db", RFADE_COLUMN_NUMBER, 2, false, false},
+        {"calibration_needed_db", RFADE_COLUMN_NUMBER, 2, false, false},
+        {"observed", RFADE_COLUMN_PROBABILITY, 3, false, false},
+        {"observed_low", RFADE_COLUMN_PROBABILITY, 3, false, false},
+        {"observed_high", RFADE_COLUMN_PROBABILITY, 3, false, false},
+        {"sampling", RFADE_COLUMN_TEXT, 0, false, false},
+    };
+    const struct rfade_segment_table table = {columns, sizeof columns / sizeof columns[0],
+                                              own_values, ordered};
+    return rfade_segment_print(run, &table, ordered->page->results, ranks, count, error);
+}
+
+enum rfade_status rfade_acceptance_rows(const struct rfade_run *run,
+                                        const struct rfade_acceptance_page *page,
+                                        const struct rfade_segment_options *options,
+                                        struct rfade_error *error)
+{
+    size_t count = page->results->count;
+    struct rfade_segment_rank *ranks = malloc((count + 1) * sizeof *ranks);
+    struct ordered ordered = {page, malloc((count + 1) * sizeof *ordered.segments)};
+    enum rfade_status status = RFADE_NO_MEMORY;
+    if (!ranks || !ordered.segments) {
+        status = rfade_error_no_memory(error);
+        goto out;
+    }
+    for (size_t i = 0; i < count; i++) {
+        ordered.segments[i] = segment_of(page, &page->results->rows[i]);
+        const struct rfade_outage_bounds *bounds = &ordered.segments[i]->bounds;
+        double badness = options->by_estimate ? bounds->outage : end(bounds, -bounds->below);
+        ranks[i] = (struct rfade_segment_rank){i, isnan(badness) ? bounds->observed.fraction
+                                                                 : badness};
+    }
+    count = rfade_segment_order(options, ranks, count);
+    status = print(run, &ordered, ranks, count, error);
+out:
+    free(ranks);
+    free((void *)ordered.segments);
+    return status;
+}
+
+enum rfade_status rfade_acceptance_routes(const struct rfade_run *run,
+                                          const struct rfade_acceptance_page *page,
+                                          struct rfade_error *error)
+{
+    const struct rfade_column columns[] = {
+        {"route", RFADE_COLUMN_TEXT, 0, false, true},
+        {"channel", RFADE_COLUMN_TEXT, 0, false, true},
+        {"campaign", RFADE_COLUMN_TEXT, 0, false, true},
+        {page->threshold->column, RFADE_COLUMN_NUMBER, 1, false, true},
+        {"target_outage", RFADE_COLUMN_PROBABILITY, 2, false, true},
+        {"confidence", RFADE_COLUMN_PROBABILITY, 2, false, true},
+        {"length_m", RFADE_COLUMN_NUMBER, 0, false, false},
+        {"meets_m", RFADE_COLUMN_NUMBER, 0, false, false},
+        {"fails_m", RFADE_COLUMN_NUMBER, 0, false, false},
+        {"undecided_m", RFADE_COLUMN_NUMBER, 0, false, false},
+        {"not_judged_m", RFADE_COLUMN_NUMBER, 0, false, false},
+        {"unseen_m", RFADE_COLUMN_NUMBER, 0, false, false},
+        {"meets_share", RFADE_COLUMN_PROBABILITY, 2, false, false},
+        {"meets_together_m", RFADE_COLUMN_NUMBER, 0, false, false},
+    };
+    enum { COLUMNS = sizeof columns / sizeof columns[0] };
+    struct rfade_rows *rows = NULL;
+    enum rfade_status status = rfade_rows_begin(run->common->format, run->output, NULL, columns,
+                                                COLUMNS, &rows, error);
+    for (size_t i = 0; i < page->groups->count && status == RFADE_OK; i++) {
+        const struct rfade_segment_result *first = page->groups->groups[i].rows[0];
+        const struct rfade_acceptance_lengths *lengths = &page->lengths[i];
+        const struct rfade_value values[COLUMNS] = {
+            rfade_value_text(first->route),
+            rfade_value_text(first->channel),
+            rfade_value_text(first->campaign),
+            rfade_value_number(page->threshold->value),
+            rfade_value_number(page->target.outage),
+            rfade_value_number(page->target.confidence),
+            rfade_value_number(lengths->length_m),
+            rfade_value_number(lengths->meets_m),
+            rfade_value_number(lengths->fails_m),
+            rfade_value_number(lengths->undecided_m),
+            rfade_value_number(lengths->not_judged_m),
+            rfade_value_number(lengths->unseen_m),
+            rfade_value_number(lengths->meets_m / lengths->length_m),
+            rfade_value_number(lengths->meets_together_m),
+        };
+        status = rfade_rows_row(rows, values, error);
+    }
+    if (status == RFADE_OK)
+        status = rfade_rows_end(rows, error);
+    rfade_rows_destroy(rows);
+    return status;
+}
