@@ -16,6 +16,7 @@ static const struct rfade_command *const commands[] = {
     &rfade_command_fading,
     &rfade_command_outage,
     &rfade_command_acceptance,
+    &rfade_command_fade_timing,
     &rfade_command_status,
     &rfade_command_estimate,
     &rfade_command_predict,
