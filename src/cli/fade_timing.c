@@ -1,7 +1,6 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include <math.h>
 #include <stdlib.h>
-#include <string.h>
 
 #include "analyse/timing.h"
 #include "cli/segment_rows.h"
@@ -43,8 +42,6 @@ static const struct rfade_column own_columns[] = {
     {"observed_fade_s", RFADE_COLUMN_PROBABILITY, 3, false, false},
     {"longest_fade_s", RFADE_COLUMN_NUMBER, 3, false, false},
 };
-enum { OWN_COLUMNS = sizeof own_columns / sizeof own_columns[0] };
-enum { COLUMNS = RFADE_SEGMENT_COLUMNS + OWN_COLUMNS };
 
 /* Which of the counted levels to show, in the order asked for. */
 struct levels {
@@ -125,14 +122,23 @@ static void rank_rows(const struct rfade_segment_results *results, const struct 
     }
 }
 
-static void row_values(const struct rfade_segment_result *row, const struct answer *answer,
-                       const struct levels *levels, size_t level, struct rfade_value *values)
+/* What the rows are made of: row number `index` is a level of a segment. */
+struct shown {
+    const struct answer *answers;
+    const struct levels *levels;
+};
+
+static void own_values(const void *context, const struct rfade_segment_result *row,
+                       size_t index, struct rfade_value *own)
 {
+    (void)row;
+    const struct shown *shown = context;
+    const struct levels *levels = shown->levels;
+    const struct answer *answer = &shown->answers[index / levels->count];
+    const size_t level = index % levels->count;
     const struct rfade_level_timing *timing = &answer->levels[level];
     const char *reason = rfade_visibility_reason(timing->visibility);
     double speed_m_s = answer->speed_m_s;
-    rfade_segment_values(row, values);
-    struct rfade_value *own = values + RFADE_SEGMENT_COLUMNS;
     own[0] = rfade_value_number(0.0 - rfade_crossing_levels_cdb[levels->index[level]] / 100.0);
     own[1] = rfade_value_text(timing->model ? timing->model->name : NULL);
     own[2] = rfade_value_number(timing->predicted_per_m);
@@ -152,29 +158,37 @@ static void row_values(const struct rfade_segment_result *row, const struct answ
     own[16] = rfade_value_number(timing->longest_fade_s);
 }
 
+/* Each segment in as many rows as there are levels; the copies borrow what the rows own. */
 static enum rfade_status print_rows(const struct rfade_run *run,
                                     const struct rfade_segment_results *results,
                                     const struct answer *answers, const struct levels *levels,
                                     const struct rfade_segment_rank *ranks, size_t count,
                                     struct rfade_error *error)
 {
-    struct rfade_column columns[COLUMNS];
-    memcpy(columns, rfade_segment_columns, sizeof rfade_segment_columns);
-    memcpy(columns + RFADE_SEGMENT_COLUMNS, own_columns, sizeof own_columns);
-    struct rfade_rows *rows = NULL;
-    enum rfade_status status = rfade_rows_begin(run->common->format, run->output, NULL, columns,
-                                                COLUMNS, &rows, error);
-    for (size_t i = 0; i < count && status == RFADE_OK; i++) {
-        size_t row = ranks[i].row;
-        for (size_t level = 0; level < levels->count && status == RFADE_OK; level++) {
-            struct rfade_value values[COLUMNS];
-            row_values(&results->rows[row], &answers[row], levels, level, values);
-            status = rfade_rows_row(rows, values, error);
-        }
+    const struct shown shown = {answers, levels};
+    const struct rfade_segment_table table = {
+        .columns = own_columns,
+        .column_count = sizeof own_columns / sizeof own_columns[0],
+        .values = own_values,
+        .context = &shown,
+    };
+    size_t rows = results->count * levels->count;
+    struct rfade_segment_results each = {.rows = calloc(rows + 1, sizeof *each.rows),
+                                         .count = rows};
+    struct rfade_segment_rank *order = calloc(rows + 1, sizeof *order);
+    enum rfade_status status = RFADE_NO_MEMORY;
+    if (!each.rows || !order) {
+        status = rfade_error_no_memory(error);
+        goto out;
     }
-    if (status == RFADE_OK)
-        status = rfade_rows_end(rows, error);
-    rfade_rows_destroy(rows);
+    for (size_t i = 0; i < rows; i++)
+        each.rows[i] = results->rows[i / levels->count];
+    for (size_t i = 0; i < count * levels->count; i++)
+        order[i].row = ranks[i / levels->count].row * levels->count + i % levels->count;
+    status = rfade_segment_print(run, &table, &each, order, count * levels->count, error);
+out:
+    free(each.rows);
+    free(order);
     return status;
 }
 
