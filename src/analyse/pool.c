@@ -8,6 +8,8 @@
 #include <math.h>
 #include <stdlib.h>
 
+#include "analyse/expected_blocks.h"
+
 /* A pass without travel tells no mean. */
 static const double LEAST_WAVELENGTHS = 1e-3;
 
@@ -19,7 +21,11 @@ struct lags {
     struct rfade_lag_means window;
     struct rfade_lag_means half_window;
     struct rfade_lag_means pass;
+    struct rfade_lag_means followed; /* by blocks */
 };
+
+/* Blocks are compared with themselves and the two after them. */
+static const double BLOCKS_FOLLOWED = 3.0;
 
 static enum rfade_status find_lags(const struct rfade_pool *pool,
                                    const struct rfade_analysis_settings *settings,
@@ -31,6 +37,9 @@ static enum rfade_status find_lags(const struct rfade_pool *pool,
         status = rfade_lag_means(0.5 * settings->window_wavelengths, &lags->half_window);
     if (status == RFADE_OK)
         status = rfade_lag_means(fmax(pass_wavelengths, LEAST_WAVELENGTHS), &lags->pass);
+    if (status == RFADE_OK)
+        status =
+            rfade_lag_means(BLOCKS_FOLLOWED * settings->block_wavelengths, &lags->followed);
     return status;
 }
 
@@ -178,50 +187,26 @@ static void judge_local_mean(struct rfade_pool *pool,
         sqrt(fading_db2 + pool->calibration_db * pool->calibration_db);
 }
 
-/*
- * How the parameter moves with the relative mean power when the ray's power a moves it:
- * K = a/s, dK = da/s = (1 + K) d(power); m = (1 + K)^2/(1 + 2K), dm/dK = 2K(1 + K)/(1 + 2K)^2
- * with K from m [Nakagami 1960].
- */
-static double slow_slope(const struct rfade_fit *fit)
+/* Measured blocks with what theory expects; the measured ones alone where it has no say. */
+static struct rfade_blocks covariance_blocks(const struct rfade_pool *pool,
+                                             const struct lags *lags, double k,
+                                             const struct rfade_ray *ray)
 {
-    if (fit->model == RFADE_RICE)
-        return 1.0 + fit->parameter;
-    double m = fit->parameter;
-    if (fit->model != RFADE_NAKAGAMI || !(m > 1.0))
-        return 0.0;
-    double root = sqrt(m * m - m);
-    double k = root / (m - root);
-    return 2.0 * k * (1.0 + k) * (1.0 + k) / ((1.0 + 2.0 * k) * (1.0 + 2.0 * k));
-}
-
-/*
- * Scatter that moves in step with the direct ray looks like a stronger or weaker ray all along
- * a pass: with the mean x of the scatter in phase over it, K is off by 2 x/sqrt(ray power),
- * relative. Blocks within the pass don't see that. Of the relative variance of the pass's
- * mean power it is v = 4 (ray power) var(x): K then has the variance ((1 + K) v^(1/2))^2.
- */
-static void widen(const struct rfade_analysis_settings *settings, double slow_variance,
-                  struct rfade_fit *fit)
-{
-    double reach = gsl_cdf_ugaussian_Pinv(0.5 + 0.5 * settings->confidence) * slow_slope(fit) *
-                   sqrt(slow_variance);
-    if (!(reach > 0.0))
-        return;
-    fit->parameter_low = fit->parameter - hypot(fit->parameter - fit->parameter_low, reach);
-    fit->parameter_low = fmax(fit->parameter_low, rfade_model(fit->model)->fit_min);
-    fit->parameter_high = fit->parameter + hypot(fit->parameter_high - fit->parameter, reach);
-    fit->parameter_high = fmin(fit->parameter_high, rfade_model(fit->model)->parameter_max);
-}
-
-/* Relative variance of the passes' mean power beyond that under a ray across the road. */
-static double slow_variance(const struct lags *lags, double passes, double k,
-                            const struct rfade_ray *ray)
-{
-    struct rfade_ray across = rfade_ray_at(90.0);
-    double excess = rfade_lag_mean_variance(&lags->pass, k, ray) -
-                    rfade_lag_mean_variance(&lags->pass, k, &across);
-    return fmax(0.0, excess) / passes;
+    struct rfade_blocks blocks = pool->blocks;
+    const struct rfade_sampling_sums *sums = &pool->sampling;
+    double travel_wavelengths = pool->travel_m / pool->wavelength_m;
+    double updates = fmax((double)sums->updates, 1.0);
+    struct rfade_expected_fading fading = {
+        .k = k,
+        .ray = *ray,
+        .pass = lags->pass,
+        .followed = lags->followed,
+        .travel_wavelengths = travel_wavelengths,
+        .spacing_wavelengths = travel_wavelengths / (double)rfade_tally_readings(pool->fading),
+        .step_db = 0.01 * sqrt((double)sums->step_square_cdb2 / updates),
+        .levels = pool->fading};
+    (void)rfade_expect_blocks(&fading, &blocks);
+    return blocks;
 }
 
 /*
@@ -256,8 +241,7 @@ static enum rfade_status fit_fading(struct rfade_pool *pool,
     enum rfade_status status = rfade_bins_from_tally(pool->fading, &bins, &bin_count);
     if (status != RFADE_OK)
         return status;
-    struct rfade_estimate_settings how = {.confidence = settings->confidence,
-                                          .blocks = &pool->blocks};
+    struct rfade_estimate_settings how = {.confidence = settings->confidence};
     /* How much the window narrows depends on K, weakly: K as it looks before is enough. */
     const struct rfade_estimate_settings plain = {.confidence = settings->confidence};
     struct rfade_fit narrowed;
@@ -267,12 +251,11 @@ static enum rfade_status fit_fading(struct rfade_pool *pool,
         struct rfade_narrowing narrowing =
             rfade_lag_narrowing(&lags->window, &lags->half_window, narrowed.parameter, &ray);
         how.narrowing = narrowing.power;
+        struct rfade_blocks blocks = covariance_blocks(pool, lags, narrowed.parameter, &ray);
+        how.blocks = &blocks;
         status = rfade_estimate_bins(bins, bin_count, &how, &result->estimate);
-        double slow = slow_variance(lags, (double)pool->passes, narrowed.parameter, &ray);
-        for (size_t i = 0; i < result->estimate.fit_count && status == RFADE_OK; i++) {
+        for (size_t i = 0; i < result->estimate.fit_count && status == RFADE_OK; i++)
             correct_nakagami(how.narrowing, narrowing.log, &result->estimate.fits[i]);
-            widen(settings, slow, &result->estimate.fits[i]);
-        }
     }
     result->fitted = status == RFADE_OK;
     free(bins);

@@ -11,6 +11,7 @@
 #include <stdbool.h>
 
 #include "model/model.h"
+#include "predict/fluctuation.h"
 #include "predict/next_pass.h"
 #include "predict/response.h"
 
@@ -26,7 +27,7 @@ struct average {
 /* What the track says beside: means over it. */
 struct track_means {
     double crossings;       /* rate of fades */
-    double lengths;         /* of squared lengths of fades: see fluctuation */
+    double fluctuation;     /* of the share in fades by itself: its variance */
     double response;        /* d outage / d level, per dB */
     double response_square; /* of its square */
     double slow_response;   /* what slow variations of the power move */
@@ -60,11 +61,6 @@ static enum rfade_status average_over_track(const struct rfade_stretch *stretch,
     return RFADE_OK;
 }
 
-/*
- * Fades and the gaps between them, both of exponential length, make a telegraph signal: the
- * share p of a long travel L that lies in fades, begun at a rate N, has the variance
- * 2 p^2 (1 - p)^2 / (N L) [Cox, Renewal Theory, 1962, chapter 7].
- */
 static enum rfade_status average_means(const struct rfade_stretch *stretch,
                                        double threshold_dbm, struct track_means *result)
 {
@@ -73,26 +69,25 @@ static enum rfade_status average_means(const struct rfade_stretch *stretch,
     for (size_t i = 0; i < stretch->track_count; i++) {
         double weight = stretch->track[i].weight;
         double x_db = place_db(stretch, i, 0.0, threshold_dbm);
-        double rate = NAN;
-        struct rfade_tails tails;
+        double rate = NAN, variance = NAN;
         struct rfade_response response;
-        enum rfade_status status = stretch->model->tails(stretch->parameter, x_db, &tails);
+        enum rfade_status status =
+            rfade_crossings_per_wavelength(stretch->model, stretch->parameter, x_db, &rate);
         if (status == RFADE_OK)
-            status =
-                rfade_crossings_per_wavelength(stretch->model, stretch->parameter, x_db, &rate);
+            status = rfade_fluctuation(stretch->model, stretch->parameter, x_db,
+                                       stretch->length_wavelengths, &variance);
         if (status == RFADE_OK)
             status = rfade_response(stretch->model, stretch->parameter, x_db, &response);
         if (status != RFADE_OK)
             return status;
-        double both = tails.lower * tails.upper;
         sum.crossings += weight * rate;
-        sum.lengths += rate > 0.0 ? weight * both * both / rate : 0.0;
+        sum.fluctuation += weight * variance;
         sum.response += weight * response.level;
         sum.response_square += weight * response.level * response.level;
         sum.slow_response += weight * response.slow;
         weights += weight;
     }
-    *result = (struct track_means){sum.crossings / weights, sum.lengths / weights,
+    *result = (struct track_means){sum.crossings / weights, sum.fluctuation / weights,
                                    sum.response / weights, sum.response_square / weights,
                                    sum.slow_response / weights};
     return RFADE_OK;
@@ -214,9 +209,9 @@ static enum rfade_status judge(const struct rfade_stretch *stretch, double thres
                                 .centre = centre,
                                 .low = centre,
                                 .high = centre,
-                                .variance = 2.0 * means.lengths / stretch->length_wavelengths +
-                                            means.slow_response * means.slow_response *
-                                                stretch->slow_variance};
+                                .variance = means.fluctuation + means.slow_response *
+                                                                    means.slow_response *
+                                                                    stretch->slow_variance};
     if (!isfinite(centre)) /* no doubt at this precision: 0 or 1 */
         return RFADE_OK;
     return confidence_ends(
