@@ -104,6 +104,9 @@ static enum rfade_status predicted(struct rfade_segment_result *row,
     double pass_wavelengths = row->travel_m / row->wavelength_m / passes;
     enum rfade_status status = local_mean_track(row, &track, &track_count);
     double slow = slow_variance(row, pass_wavelengths);
+    double sigma_db = row->local_sigma_db;
+    double spread_below = sigma_db > 0.0 ? 1.0 - row->local_sigma_low_db / sigma_db : 0.0;
+    double spread_above = sigma_db > 0.0 ? row->local_sigma_high_db / sigma_db - 1.0 : 0.0;
     for (size_t i = 0; i < row->fit_count && count < RFADE_MODEL_COUNT; i++) {
         const struct rfade_stored_fit *fit = &row->fits[i];
         bool usable = fit->model && fit->model->id != RFADE_LOGNORMAL;
@@ -123,6 +126,8 @@ static enum rfade_status predicted(struct rfade_segment_result *row,
             .passes = passes,
             .level_uncertainty_db = row->level_uncertainty_db,
             .calibration_db = rfade_result_calibration_db(row),
+            .spread_below = spread_below,
+            .spread_above = spread_above,
             .slow_variance = slow,
             .readings = (double)rfade_tally_readings(row->level) / passes,
             .confidence = confidence,

@@ -137,8 +137,8 @@ static void local_sigma(const struct rfade_pool *pool,
 {
     double noise_db2 = result->window_noise_db * result->window_noise_db;
     double within_db2 =
-        fmax(0.0, -2.0 * DB_PER_NEPER_OF_POWER * (offset_db + rounding_db(&pool->sampling)));
-    double track_db2 = fmax(0.0, variance_db2 - noise_db2) + within_db2;
+        -2.0 * DB_PER_NEPER_OF_POWER * (offset_db + rounding_db(&pool->sampling));
+    double track_db2 = fmax(0.0, variance_db2 - noise_db2 + within_db2);
     double windows = pool->travel_m / (settings->window_wavelengths * pool->wavelength_m);
     double error_db2 = sqrt((4.0 * track_db2 + 2.0 * noise_db2) * noise_db2 / windows +
                             within_db2 * within_db2);

@@ -33,24 +33,43 @@ struct track_means {
     double slow_response;   /* what slow variations of the power move */
 };
 
-/* Where the threshold lies about the mean power at one place of the track, dB. */
-static double place_db(const struct rfade_stretch *stretch, size_t i, double shift_db,
-                       double threshold_dbm)
+/* How far from what was found the truth may be: one source of uncertainty at a time. */
+struct move {
+    double parameter;
+    double shift_db; /* of the level */
+    double spread;   /* factor of the track's deviations from its mean */
+};
+
+static double track_mean_dbm(const struct rfade_stretch *stretch)
 {
-    return threshold_dbm - (stretch->track[i].level_dbm + stretch->offset_db + shift_db);
+    double sum = 0.0, weights = 0.0;
+    for (size_t i = 0; i < stretch->track_count; i++) {
+        sum += stretch->track[i].weight * stretch->track[i].level_dbm;
+        weights += stretch->track[i].weight;
+    }
+    return sum / weights;
+}
+
+/* Where the threshold lies about the mean power at one place of the track, dB. */
+static double place_db(const struct rfade_stretch *stretch, size_t i, double threshold_dbm)
+{
+    return threshold_dbm - (stretch->track[i].level_dbm + stretch->offset_db);
 }
 
 static enum rfade_status average_over_track(const struct rfade_stretch *stretch,
-                                            double parameter, double shift_db,
-                                            double threshold_dbm, struct average *result)
+                                            const struct move *move, double threshold_dbm,
+                                            struct average *result)
 {
     *result = (struct average){NAN, NAN};
     double lower = 0.0, upper = 0.0, weights = 0.0;
+    double mean_dbm = track_mean_dbm(stretch);
     for (size_t i = 0; i < stretch->track_count; i++) {
         double weight = stretch->track[i].weight;
+        double about_db = stretch->track[i].level_dbm - mean_dbm;
+        double x_db = place_db(stretch, i, threshold_dbm) - move->shift_db -
+                      (move->spread - 1.0) * about_db;
         struct rfade_tails tails;
-        enum rfade_status status = stretch->model->tails(
-            parameter, place_db(stretch, i, shift_db, threshold_dbm), &tails);
+        enum rfade_status status = stretch->model->tails(move->parameter, x_db, &tails);
         if (status != RFADE_OK)
             return status;
         lower += weight * tails.lower;
@@ -68,7 +87,7 @@ static enum rfade_status average_means(const struct rfade_stretch *stretch,
     double weights = 0.0;
     for (size_t i = 0; i < stretch->track_count; i++) {
         double weight = stretch->track[i].weight;
-        double x_db = place_db(stretch, i, 0.0, threshold_dbm);
+        double x_db = place_db(stretch, i, threshold_dbm);
         double rate = NAN, variance = NAN;
         struct rfade_response response;
         enum rfade_status status =
@@ -119,12 +138,11 @@ static double probability_of(double odds_log)
 
 /* Squared distances, below and above, that one source of uncertainty moves the log odds. */
 static enum rfade_status add_distances(const struct rfade_stretch *stretch, double centre,
-                                       double parameter, double shift_db, double threshold_dbm,
+                                       const struct move *move, double threshold_dbm,
                                        double *below, double *above)
 {
     struct average moved;
-    enum rfade_status status =
-        average_over_track(stretch, parameter, shift_db, threshold_dbm, &moved);
+    enum rfade_status status = average_over_track(stretch, move, threshold_dbm, &moved);
     if (status != RFADE_OK)
         return status;
     double distance = log_odds(&moved) - centre;
@@ -157,15 +175,18 @@ static enum rfade_status confidence_ends(const struct rfade_stretch *stretch,
                                          double both, double *low, double *high)
 {
     double below = both, above = both;
-    const double moves[][2] = {{stretch->parameter_low, 0.0},
-                               {stretch->parameter_high, 0.0},
-                               {stretch->parameter, shift_db},
-                               {stretch->parameter, -shift_db}};
+    double parameter = stretch->parameter;
+    const struct move moves[] = {{stretch->parameter_low, 0.0, 1.0},
+                                 {stretch->parameter_high, 0.0, 1.0},
+                                 {parameter, shift_db, 1.0},
+                                 {parameter, -shift_db, 1.0},
+                                 {parameter, 0.0, 1.0 - stretch->spread_below},
+                                 {parameter, 0.0, 1.0 + stretch->spread_above}};
     for (size_t i = 0; i < sizeof moves / sizeof moves[0]; i++) {
-        if (isnan(moves[i][0]) && stretch->model->parameter_name)
+        if (isnan(moves[i].parameter) && stretch->model->parameter_name)
             continue;
-        enum rfade_status status = add_distances(stretch, centre, moves[i][0], moves[i][1],
-                                                 threshold_dbm, &below, &above);
+        enum rfade_status status =
+            add_distances(stretch, centre, &moves[i], threshold_dbm, &below, &above);
         if (status != RFADE_OK)
             return status;
     }
@@ -178,8 +199,9 @@ static bool valid(const struct rfade_stretch *stretch)
 {
     return stretch->model && stretch->length_wavelengths > 0 && stretch->passes > 0 &&
            stretch->level_uncertainty_db >= 0 && stretch->calibration_db >= 0 &&
-           stretch->slow_variance >= 0 && stretch->readings >= 0 && stretch->confidence > 0 &&
-           stretch->confidence < 1 && isfinite(stretch->offset_db);
+           stretch->slow_variance >= 0 && stretch->spread_below >= 0 &&
+           stretch->spread_below <= 1 && stretch->spread_above >= 0 && stretch->readings >= 0 &&
+           stretch->confidence > 0 && stretch->confidence < 1 && isfinite(stretch->offset_db);
 }
 
 /* What one model says: log odds of the outage and its ends, and the next pass's variance. */
@@ -197,8 +219,8 @@ static enum rfade_status judge(const struct rfade_stretch *stretch, double thres
 {
     struct average average;
     struct track_means means;
-    enum rfade_status status =
-        average_over_track(stretch, stretch->parameter, 0.0, threshold_dbm, &average);
+    const struct move none = {stretch->parameter, 0.0, 1.0};
+    enum rfade_status status = average_over_track(stretch, &none, threshold_dbm, &average);
     if (status == RFADE_OK)
         status = average_means(stretch, threshold_dbm, &means);
     if (status != RFADE_OK)

@@ -273,6 +273,8 @@ static void make_row(const struct rfade_pool *pool, const struct rfade_pool_resu
         .mean_power_dbm = result->mean_power_dbm,
         .local_mean_dbm = result->local_mean_dbm,
         .local_sigma_db = result->local_sigma_db,
+        .local_sigma_low_db = result->local_sigma_low_db,
+        .local_sigma_high_db = result->local_sigma_high_db,
         .window_noise_db = result->window_noise_db,
         .level_uncertainty_db = result->level_uncertainty_db,
         .level = pool->level,
