@@ -40,8 +40,8 @@ static void track_moments(const struct rfade_tally_cell *cells, size_t count, do
  * mean itself has, so that the noise is not counted again beside the fast fading. The mean of
  * the dB of a noisy power lies below the dB of its mean by half its relative variance.
  */
-static enum rfade_status local_mean_track(struct rfade_segment_result *row,
-                                          struct rfade_local_mean **track, size_t *count)
+enum rfade_status rfade_result_track(struct rfade_segment_result *row,
+                                     struct rfade_local_mean **track, size_t *count)
 {
     const struct rfade_tally_cell *cells = NULL;
     *track = NULL;
@@ -102,7 +102,7 @@ static enum rfade_status predicted(struct rfade_segment_result *row,
     size_t track_count = 0, count = 0, place = 0;
     double passes = (double)row->passes;
     double pass_wavelengths = row->travel_m / row->wavelength_m / passes;
-    enum rfade_status status = local_mean_track(row, &track, &track_count);
+    enum rfade_status status = rfade_result_track(row, &track, &track_count);
     double slow = slow_variance(row, pass_wavelengths);
     double sigma_db = row->local_sigma_db;
     double spread_below = sigma_db > 0.0 ? 1.0 - row->local_sigma_low_db / sigma_db : 0.0;
@@ -154,11 +154,17 @@ static double travel_mm(struct rfade_tally *tally)
 }
 
 /* Readings without SNR, and lost packets, are known by their level alone. */
+bool rfade_result_has_snr(struct rfade_segment_result *row)
+{
+    return row->noise_source == RFADE_NOISE_LOGGED &&
+           travel_mm(row->snr) >= SNR_SHARE * travel_mm(row->level);
+}
+
 static enum rfade_status observe(struct rfade_segment_result *row,
                                  const struct rfade_threshold *threshold,
                                  struct rfade_observed *observed)
 {
-    if (!isnan(threshold->snr_db) && travel_mm(row->snr) >= SNR_SHARE * travel_mm(row->level))
+    if (!isnan(threshold->snr_db) && rfade_result_has_snr(row))
         return rfade_observed_below(row->snr, threshold->snr_db, observed);
     return rfade_observed_below(row->level, threshold->level_dbm, observed);
 }

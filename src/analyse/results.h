@@ -127,11 +127,18 @@ bool rfade_result_resolved(const struct rfade_segment_result *row);
 /** The part of a row's level_uncertainty_db that is not fading, but the calibration's. */
 double rfade_result_calibration_db(const struct rfade_segment_result *row);
 
+/** The local mean along a row's segment, what its window adds and takes away undone. free(). */
+enum rfade_status rfade_result_track(struct rfade_segment_result *row,
+                                     struct rfade_local_mean **track, size_t *count);
+
 /** A threshold as a level, and as the SNR it was given as: NaN for one given as a level. */
 struct rfade_threshold {
     double level_dbm;
     double snr_db;
 };
+
+/** Whether SNR was logged all along and tells the row's noise: then it is what was observed. */
+bool rfade_result_has_snr(struct rfade_segment_result *row);
 
 /**
  * Outage of a row at a threshold; NaN members where nothing was fitted. Observed is the logged
