@@ -70,7 +70,7 @@ static enum rfade_status print(const struct rfade_run *run, const struct ordered
         {"sampling", RFADE_COLUMN_TEXT, 0, false, false},
     };
     const struct rfade_segment_table table = {columns, sizeof columns / sizeof columns[0],
-                                              own_values, ordered};
+                                              own_values, ordered, 1};
     return rfade_segment_print(run, &table, ordered->page->results, ranks, count, error);
 }
 

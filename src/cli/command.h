@@ -76,11 +76,13 @@ enum rfade_status rfade_usage(struct rfade_error *error, const struct rfade_comm
 
 extern const struct rfade_command rfade_command_acceptance;
 extern const struct rfade_command rfade_command_channel;
+extern const struct rfade_command rfade_command_error_rate;
 extern const struct rfade_command rfade_command_estimate;
 extern const struct rfade_command rfade_command_fade_timing;
 extern const struct rfade_command rfade_command_fading;
 extern const struct rfade_command rfade_command_fit;
 extern const struct rfade_command rfade_command_import;
+extern const struct rfade_command rfade_command_margin;
 extern const struct rfade_command rfade_command_noise;
 extern const struct rfade_command rfade_command_outage;
 extern const struct rfade_command rfade_command_predict;

@@ -15,6 +15,8 @@ static const struct rfade_command *const commands[] = {
     &rfade_command_fit,
     &rfade_command_fading,
     &rfade_command_outage,
+    &rfade_command_error_rate,
+    &rfade_command_margin,
     &rfade_command_acceptance,
     &rfade_command_fade_timing,
     &rfade_command_status,

@@ -105,7 +105,7 @@ static enum rfade_status print_rows(const struct rfade_run *run,
         {"sampling", RFADE_COLUMN_TEXT, 0, false, false},
     };
     const struct rfade_segment_table table = {columns, sizeof columns / sizeof columns[0],
-                                              own_values, page};
+                                              own_values, page, 1};
     return rfade_segment_print(run, &table, results, ranks, count, error);
 }
 

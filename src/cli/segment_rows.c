@@ -118,11 +118,13 @@ enum rfade_status rfade_segment_print(const struct rfade_run *run,
     enum rfade_status status =
         rfade_rows_begin(run->common->format, run->output, NULL, columns,
                          FIRST_COLUMNS + table->column_count, &rows, error);
-    for (size_t i = 0; i < count && status == RFADE_OK; i++) {
+    size_t lines = table->lines ? table->lines : 1;
+    for (size_t i = 0; i < count * lines && status == RFADE_OK; i++) {
         struct rfade_value values[FIRST_COLUMNS + RFADE_SEGMENT_OWN_COLUMNS];
-        const struct rfade_segment_result *row = &results->rows[ranks[i].row];
+        size_t place = ranks[i / lines].row;
+        const struct rfade_segment_result *row = &results->rows[place];
         first_values(row, values);
-        table->values(table->context, row, ranks[i].row, values + FIRST_COLUMNS);
+        table->values(table->context, row, place * lines + i % lines, values + FIRST_COLUMNS);
         status = rfade_rows_row(rows, values, error);
     }
     if (status == RFADE_OK)

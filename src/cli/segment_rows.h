@@ -101,10 +101,12 @@ size_t rfade_segment_order(const struct rfade_segment_options *options,
 struct rfade_segment_table {
     const struct rfade_column *columns;
     size_t column_count;
-    /** Fills a value a column for row number `row` of the results; borrowed from them. */
+    /** Fills a value a column for line number `index`: row number index / lines of the results;
+     * borrowed from them. */
     void (*values)(const void *context, const struct rfade_segment_result *row, size_t index,
                    struct rfade_value *values);
     const void *context;
+    size_t lines; /**< that each row gives; 0: one */
 };
 
 enum { RFADE_SEGMENT_OWN_COLUMNS = 24 }; /**< room for a command's own */

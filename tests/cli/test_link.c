@@ -1,0 +1,236 @@
+/* SPDX-License-Identifier: GPL-3.0-or-later */
+/* Error rates and margins by segment, through the program alone. */
+#include <setjmp.h>
+#include <stdarg.h>
+#include <stddef.h>
+#include <stdint.h>
+
+#include <cmocka.h>
+#include <jansson.h>
+#include <math.h>
+#include <stdio.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "program.h"
+
+struct fixture {
+    char folder[64];
+    char survey[96];
+};
+
+static void run_quietly(const char *const *arguments)
+{
+    struct program program = {0};
+    program_run(&program, arguments);
+    assert_string_equal(program.errors, "");
+    assert_int_equal(program.status, 0);
+    program_clear(&program);
+}
+
+#define DONE(...) run_quietly((const char *const[]){__VA_ARGS__, NULL})
+
+/* Rayleigh fading, then a strong ray: noise at -118 dBm, twice the symbol rate as bandwidth. */
+static int setup(void **state)
+{
+    struct fixture *fixture = calloc(1, sizeof *fixture);
+    char log[128];
+    (void)snprintf(fixture->folder, sizeof fixture->folder, "%s", folder_create());
+    (void)snprintf(fixture->survey, sizeof fixture->survey, "%s/night.routefade",
+                   fixture->folder);
+    (void)snprintf(log, sizeof log, "%s/drive.csv", fixture->folder);
+    DONE("simulate", "--length-m", "420", "--k", "0,6", "--stretch-m", "200",
+         "--mean-level-dbm", "-95", "--shadowing-db", "2", "--seed", "6", "--vehicle",
+         "plough-2", "--channel", "telemetry", "--output", log);
+    DONE("import", log, "--survey", fixture->survey);
+    DONE("channel", "telemetry", "--carrier-hz", "457e6", "--noise-floor-dbm", "-118",
+         "--bandwidth-hz", "10000", "--symbol-rate-hz", "5000", "--survey", fixture->survey);
+    DONE("route", "fen", "--from-vehicle", "plough-2", "--survey", fixture->survey);
+    DONE("fit", "--survey", fixture->survey);
+    *state = fixture;
+    return 0;
+}
+
+static int teardown(void **state)
+{
+    struct fixture *fixture = *state;
+    folder_remove(fixture->folder);
+    free(fixture);
+    return 0;
+}
+
+static json_t *json_of(const char *const *arguments)
+{
+    struct program program = {0};
+    program_run(&program, arguments);
+    assert_int_equal(program.status, 0);
+    json_t *rows = json_loads(program.output, 0, NULL);
+    assert_non_null(rows);
+    program_clear(&program);
+    return rows;
+}
+
+#define JSON_OF(...) json_of((const char *const[]){__VA_ARGS__, "--format", "json", NULL})
+
+static double number_at(const json_t *rows, size_t row, const char *name)
+{
+    const json_t *value = json_object_get(json_array_get(rows, row), name);
+    return json_is_number(value) ? json_number_value(value) : NAN;
+}
+
+static const char *text_at(const json_t *rows, size_t row, const char *name)
+{
+    return json_string_value(json_object_get(json_array_get(rows, row), name));
+}
+
+/* Es/N0 is level less noise, times bandwidth over symbol rate, here 3.0103 dB. */
+static void each_modulation_has_a_row_on_each_segment(void **state)
+{
+    const struct fixture *fixture = *state;
+    json_t *rows = JSON_OF("error-rate", "--modulation", "ncfsk2", "--modulation", "dbpsk",
+                           "--survey", fixture->survey);
+    size_t count = json_array_size(rows);
+    assert_true(count >= 8);
+    for (size_t i = 0; i < count; i++) {
+        assert_string_equal(text_at(rows, i, "modulation"), i % 2 ? "dbpsk" : "ncfsk2");
+        assert_true(number_at(rows, i, "segment") == 1.0 + (double)(i / 2));
+        double esn0_db = number_at(rows, i, "mean_esn0_db");
+        assert_true(fabs(esn0_db - (number_at(rows, i, "mean_power_dbm") + 121.0103)) < 1e-4);
+        /* Unfaded [Proakis]: exp(-g/2)/2 and exp(-g)/2. */
+        double snr = pow(10.0, esn0_db / 10.0);
+        double unfaded = 0.5 * exp(i % 2 ? -snr : -0.5 * snr);
+        assert_true(fabs(number_at(rows, i, "bit_unfaded") - unfaded) <= 1e-9 * unfaded);
+        double bit = number_at(rows, i, "bit");
+        assert_true(bit > unfaded && bit < 0.5);
+        assert_true(number_at(rows, i, "bit_low") < bit);
+        assert_true(number_at(rows, i, "bit_high") > bit);
+        assert_true(number_at(rows, i, "symbol") == bit); /* one bit a symbol */
+        assert_true(number_at(rows, i, "bit_observed") > 0.0);
+    }
+    /* Segment 1 fades by Rayleigh: 1/(2 + g) for ncfsk2 [Proakis], shadowing aside. */
+    double snr = pow(10.0, number_at(rows, 0, "mean_esn0_db") / 10.0);
+    assert_true(fabs(number_at(rows, 0, "bit") * (2.0 + snr) - 1.0) < 0.4);
+    json_decref(rows);
+}
+
+static void diversity_and_the_other_direction_help(void **state)
+{
+    const struct fixture *fixture = *state;
+    json_t *one = JSON_OF("error-rate", "--modulation", "qpsk", "--survey", fixture->survey);
+    json_t *two = JSON_OF("error-rate", "--modulation", "qpsk", "--branches", "2",
+                          "--combining", "selection", "--survey", fixture->survey);
+    json_t *up = JSON_OF("error-rate", "--modulation", "qpsk", "--other-direction-db", "5",
+                         "--survey", fixture->survey);
+    for (size_t i = 0; i < json_array_size(one); i++) {
+        assert_true(number_at(two, i, "bit") < number_at(one, i, "bit"));
+        assert_true(isnan(number_at(two, i, "bit_observed"))); /* nobody saw two branches */
+        assert_true(number_at(up, i, "bit") < number_at(one, i, "bit"));
+        assert_true(fabs(number_at(up, i, "mean_esn0_db") - number_at(one, i, "mean_esn0_db") -
+                         5.0) < 1e-9);
+    }
+    json_decref(one);
+    json_decref(two);
+    json_decref(up);
+}
+
+/* Lowering the level by the margin gives the target: asked of `outage`, at a threshold that is
+ * higher by it. */
+static void margin_is_what_the_level_can_fall_by(void **state)
+{
+    const struct fixture *fixture = *state;
+    json_t *rows = JSON_OF("margin", "--target-outage", "0.02", "--threshold-dbm", "-110",
+                           "--survey", fixture->survey);
+    size_t count = json_array_size(rows);
+    assert_true(count >= 4);
+    for (size_t i = 0; i < count; i++) {
+        char segment[24], threshold_dbm[32];
+        double margin_db = number_at(rows, i, "margin_db");
+        (void)snprintf(segment, sizeof segment, "%.0f", number_at(rows, i, "segment"));
+        (void)snprintf(threshold_dbm, sizeof threshold_dbm, "%.12f", -110.0 + margin_db);
+        json_t *outage = JSON_OF("outage", "--threshold-dbm", threshold_dbm, "--segment",
+                                 segment, "--survey", fixture->survey);
+        assert_true(fabs(number_at(outage, 0, "outage") / 0.02 - 1.0) < 1e-4);
+        json_decref(outage);
+        assert_true(number_at(rows, i, "margin_low_db") < margin_db);
+        assert_true(number_at(rows, i, "margin_high_db") > margin_db);
+        if (i > 0)
+            assert_true(number_at(rows, i - 1, "margin_high_db") <=
+                        number_at(rows, i, "margin_high_db"));
+    }
+    json_decref(rows);
+}
+
+/* Without --quiet a note says how many metres fall short: with a target that none meets, all.
+ */
+static void metres_that_fall_short_are_told(void **state)
+{
+    const struct fixture *fixture = *state;
+    struct program program = {0};
+    program_run(&program,
+                (const char *const[]){"margin", "--target-ber", "1e-9", "--modulation",
+                                      "256qam", "--survey", fixture->survey, NULL});
+    assert_int_equal(program.status, 0);
+    assert_non_null(strstr(program.errors, "fall short of the target"));
+    json_t *rows = JSON_OF("margin", "--target-ber", "1e-9", "--modulation", "256qam",
+                           "--survey", fixture->survey);
+    double short_m = 0.0;
+    for (size_t i = 0; i < json_array_size(rows); i++)
+        if (number_at(rows, i, "margin_db") < 0.0)
+            short_m += number_at(rows, i, "to_m") - number_at(rows, i, "from_m");
+    char said[32];
+    (void)snprintf(said, sizeof said, " %.0f m fall short", short_m);
+    assert_true(short_m > 0.0);
+    assert_non_null(strstr(program.errors, said));
+    program_clear(&program);
+    json_decref(rows);
+}
+
+static void what_makes_no_sense_is_refused(void **state)
+{
+    const struct fixture *fixture = *state;
+    const char *survey = fixture->survey;
+    REFUSED(2, "modulations", "error-rate", "--survey", survey);
+    REFUSED(2, "there is no modulation '9psk'", "error-rate", "--modulation", "9psk",
+            "--survey", survey);
+    REFUSED(2, "exactly one of", "margin", "--survey", survey);
+    REFUSED(2, "exactly one of", "margin", "--target-ber", "1e-3", "--target-outage", "0.1",
+            "--modulation", "bpsk", "--threshold-db", "3", "--survey", survey);
+    REFUSED(2, "needs --modulation", "margin", "--target-ber", "1e-3", "--survey", survey);
+    REFUSED(2, "needs --packet-bits", "margin", "--target-per", "1e-3", "--modulation", "bpsk",
+            "--survey", survey);
+    REFUSED(2, "", "margin", "--target-outage", "0.1", "--survey", survey);
+    REFUSED(2, "combining", "error-rate", "--modulation", "bpsk", "--combining", "hope",
+            "--survey", survey);
+}
+
+static void a_channel_that_tells_too_little_is_refused(void **state)
+{
+    const struct fixture *fixture = *state;
+    char log[128], survey[128];
+    (void)snprintf(log, sizeof log, "%s/drive.csv", fixture->folder);
+    (void)snprintf(survey, sizeof survey, "%s/other.routefade", fixture->folder);
+    DONE("import", log, "--survey", survey);
+    DONE("channel", "telemetry", "--carrier-hz", "457e6", "--survey", survey);
+    DONE("route", "fen", "--from-vehicle", "plough-2", "--survey", survey);
+    DONE("fit", "--survey", survey);
+    REFUSED(1, "has no noise floor", "error-rate", "--modulation", "bpsk", "--survey", survey);
+    DONE("channel", "telemetry", "--noise-floor-dbm", "-118", "--survey", survey);
+    DONE("fit", "--survey", survey);
+    REFUSED(1, "has no bandwidth and symbol rate", "margin", "--target-ber", "1e-3",
+            "--modulation", "bpsk", "--survey", survey);
+}
+
+#define TEST(test) cmocka_unit_test_setup_teardown(test, setup, teardown)
+
+int main(void)
+{
+    const struct CMUnitTest tests[] = {
+        TEST(each_modulation_has_a_row_on_each_segment),
+        TEST(diversity_and_the_other_direction_help),
+        TEST(margin_is_what_the_level_can_fall_by),
+        TEST(metres_that_fall_short_are_told),
+        TEST(what_makes_no_sense_is_refused),
+        TEST(a_channel_that_tells_too_little_is_refused),
+    };
+    return cmocka_run_group_tests(tests, NULL, NULL);
+}
