@@ -65,6 +65,7 @@ struct making {
     const struct rfade_trace_work *work;
     const struct rfade_drive *drive;
     const struct rfade_fingerprint *fingerprint;
+    const struct rfade_trace_listener *listener; /* NULL: passes are separated and stored */
     struct rfade_trace_receiver known;
     const struct rfade_survey_reading *readings; /* lost ones put in */
     size_t count;
@@ -185,15 +186,20 @@ out:
     return status;
 }
 
-static enum rfade_status separate_pass(const struct making *making, int64_t trace_id,
-                                       size_t pass, const struct rfade_track_reading *located,
-                                       size_t count, struct rfade_error *error)
+static struct rfade_separate_settings separate_settings(const struct making *making)
 {
-    const struct rfade_separate_settings how = {
+    return (struct rfade_separate_settings){
         .wavelength_m = wavelength_m(making->work->channel),
         .window_wavelengths = making->work->settings->window_wavelengths,
         .block_wavelengths = making->work->settings->block_wavelengths,
     };
+}
+
+static enum rfade_status separate_pass(const struct making *making, int64_t trace_id,
+                                       size_t pass, const struct rfade_track_reading *located,
+                                       size_t count, struct rfade_error *error)
+{
+    const struct rfade_separate_settings how = separate_settings(making);
     struct rfade_separation separation;
     enum rfade_status status =
         rfade_separate(located, count, &making->known.receiver, &how, &separation);
@@ -262,6 +268,24 @@ static enum rfade_status store_passes(const struct making *making, struct trace_
     return status;
 }
 
+static enum rfade_status tell_passes(const struct making *making, struct rfade_error *error)
+{
+    const struct rfade_trace_listener *listener = making->listener;
+    enum rfade_status status = RFADE_OK;
+    for (size_t pass = 0; pass < making->drive->pass_count && status == RFADE_OK; pass++) {
+        const struct rfade_located_pass located = {
+            .pass = pass,
+            .count = locate(making, pass),
+            .readings = making->located,
+            .receiver = making->known.receiver,
+            .settings = separate_settings(making),
+        };
+        if (located.count > 0)
+            status = listener->take(listener->context, &located, error);
+    }
+    return status;
+}
+
 /* A run of readings without a gap; `stream` is what all the stream's traces share. */
 static enum rfade_status make_trace(const struct making *stream,
                                     const struct rfade_survey_reading *readings, size_t count,
@@ -288,9 +312,11 @@ static enum rfade_status make_trace(const struct making *stream,
         status = rfade_count_missing(readings, count, &row.missing_count, error);
     making.readings = filled;
     making.located = malloc((making.count + 1) * sizeof *making.located);
+    if (status == RFADE_OK && !making.located)
+        status = rfade_error_no_memory(error);
     if (status == RFADE_OK)
         status =
-            making.located ? store_passes(&making, &row, error) : rfade_error_no_memory(error);
+            making.listener ? tell_passes(&making, error) : store_passes(&making, &row, error);
     free(making.located);
     free(filled);
     return status;
@@ -331,11 +357,9 @@ static enum rfade_status make_traces(const struct making *stream,
     return status;
 }
 
-enum rfade_status rfade_trace_make(const struct rfade_trace_work *work,
-                                   const struct rfade_drive *drive,
-                                   const struct rfade_fingerprint *fingerprint,
-                                   struct rfade_error *error)
+static enum rfade_status make_stream(const struct making *how, struct rfade_error *error)
 {
+    const struct rfade_trace_work *work = how->work;
     struct rfade_survey_reading *readings = NULL;
     size_t count = 0, repeated = 0;
     enum rfade_status status = rfade_survey_trace_readings(
@@ -345,7 +369,7 @@ enum rfade_status rfade_trace_make(const struct rfade_trace_work *work,
     if (status != RFADE_OK)
         return status;
     count = keep_levels(readings, count);
-    struct making stream = {.work = work, .drive = drive, .fingerprint = fingerprint};
+    struct making stream = *how;
     status = rfade_trace_receiver(work->channel, work->calibration, work->settings, readings,
                                   count, &stream.known);
     if (status == RFADE_OK)
@@ -354,4 +378,22 @@ enum rfade_status rfade_trace_make(const struct rfade_trace_work *work,
         status = rfade_error_set(error, status, "", "out of memory");
     free(readings);
     return status;
+}
+
+enum rfade_status rfade_trace_make(const struct rfade_trace_work *work,
+                                   const struct rfade_drive *drive,
+                                   const struct rfade_fingerprint *fingerprint,
+                                   struct rfade_error *error)
+{
+    const struct making how = {.work = work, .drive = drive, .fingerprint = fingerprint};
+    return make_stream(&how, error);
+}
+
+enum rfade_status rfade_trace_locate(const struct rfade_trace_work *work,
+                                     const struct rfade_drive *drive,
+                                     const struct rfade_trace_listener *listener,
+                                     struct rfade_error *error)
+{
+    const struct making how = {.work = work, .drive = drive, .listener = listener};
+    return make_stream(&how, error);
 }

@@ -10,6 +10,7 @@
 #include "analyse/outing.h"
 #include "analyse/route_work.h"
 #include "analyse/settings.h"
+#include "routefade/separate.h"
 #include "survey/channel.h"
 #include "survey/vehicle.h"
 
@@ -34,5 +35,27 @@ enum rfade_status rfade_trace_make(const struct rfade_trace_work *work,
                                    const struct rfade_drive *drive,
                                    const struct rfade_fingerprint *fingerprint,
                                    struct rfade_error *error);
+
+/** A trace's readings along one pass of the drive, located. Borrowed during the call. */
+struct rfade_located_pass {
+    size_t pass;
+    const struct rfade_track_reading *readings;
+    size_t count; /**< > 0 */
+    struct rfade_receiver receiver;
+    struct rfade_separate_settings settings;
+};
+
+/** Is told of each of them, in order of time. */
+struct rfade_trace_listener {
+    enum rfade_status (*take)(void *context, const struct rfade_located_pass *located,
+                              struct rfade_error *error);
+    void *context;
+};
+
+/** Makes the stream's traces, stores nothing, and tells the listener of their passes. */
+enum rfade_status rfade_trace_locate(const struct rfade_trace_work *work,
+                                     const struct rfade_drive *drive,
+                                     const struct rfade_trace_listener *listener,
+                                     struct rfade_error *error);
 
 #endif

@@ -77,6 +77,7 @@ enum rfade_status rfade_usage(struct rfade_error *error, const struct rfade_comm
 extern const struct rfade_command rfade_command_acceptance;
 extern const struct rfade_command rfade_command_channel;
 extern const struct rfade_command rfade_command_error_rate;
+extern const struct rfade_command rfade_command_diversity;
 extern const struct rfade_command rfade_command_estimate;
 extern const struct rfade_command rfade_command_fade_timing;
 extern const struct rfade_command rfade_command_fading;

@@ -19,6 +19,7 @@ static const struct rfade_command *const commands[] = {
     &rfade_command_margin,
     &rfade_command_acceptance,
     &rfade_command_fade_timing,
+    &rfade_command_diversity,
     &rfade_command_status,
     &rfade_command_estimate,
     &rfade_command_predict,
