@@ -32,3 +32,5 @@ run routefade status
 run routefade fit
 run routefade fading --channel telemetry --worst 12
 run routefade outage --channel telemetry --threshold-db 10 --worst 12
+run routefade outage --channel telemetry --threshold-db 10 --whole-route
+run routefade acceptance --channel telemetry --threshold-db 10 --target-outage 0.02

@@ -39,9 +39,9 @@ static void write_lengths(FILE *stream, const struct rfade_acceptance_page *page
     const struct rfade_acceptance_lengths *lengths = &page->lengths[index];
     double length_m = lengths->length_m;
     write_share(stream, lengths->meets_m, length_m);
-    (void)fputs(" of the route meets the target (outage at most ", stream);
-    write_probability(stream, page->target.outage);
-    (void)fprintf(stream, ") with %g %% confidence; ", 100.0 * page->target.confidence);
+    (void)fprintf(stream,
+                  " of the route meets the target (outage at most %g) with %g %% confidence; ",
+                  page->target.outage, 100.0 * page->target.confidence);
     write_share(stream, lengths->fails_m, length_m);
     (void)fputs(" fails it; ", stream);
     write_share(stream, lengths->undecided_m, length_m);

@@ -151,7 +151,7 @@ static void sentences_say_the_same(void **state)
     char *text = TEXT_OF("acceptance", "--target-outage", "0.09", "--threshold-dbm", "-105",
                          "--confidence", "0.999", "--survey", fixture->survey);
     assert_non_null(strstr(text, "Route fen, channel telemetry, campaign "));
-    assert_non_null(strstr(text, ": 38 % of the route meets the target (outage at most 0.090) "
+    assert_non_null(strstr(text, ": 38 % of the route meets the target (outage at most 0.09) "
                                  "with 99.9 % confidence; "));
     assert_non_null(
         strstr(text, "The confidence is that of each segment's own verdict; 38 % "));
