@@ -24,17 +24,13 @@ static void read_group(sqlite3_stmt *statement, void *row)
 static enum rfade_status list_groups(struct rfade_survey *survey, struct group **groups,
                                      size_t *count, struct rfade_error *error)
 {
-    *groups = NULL;
-    *count = 0;
-    sqlite3_stmt *statement = NULL;
+    void *rows = NULL;
     enum rfade_status status =
-        rfade_survey_prepare(survey, &statement, error,
-                             "SELECT DISTINCT segment_id, channel_id, campaign_id"
-                             " FROM traversal JOIN trace USING (trace_id) ORDER BY 1, 2, 3",
-                             "");
-    if (status == RFADE_OK)
-        status = rfade_rows_read(survey, statement, sizeof **groups, read_group,
-                                 (void **)groups, count, error);
+        rfade_rows_query(survey, sizeof **groups, read_group, &rows, count, error,
+                         "SELECT DISTINCT segment_id, channel_id, campaign_id"
+                         " FROM traversal JOIN trace USING (trace_id) ORDER BY 1, 2, 3",
+                         "");
+    *groups = rows;
     return status;
 }
 

@@ -31,17 +31,13 @@ enum rfade_status rfade_outings(struct rfade_survey *survey, double gap_s,
                                 struct rfade_outing **outings, size_t *count,
                                 struct rfade_error *error)
 {
-    *outings = NULL;
-    *count = 0;
-    sqlite3_stmt *statement = NULL;
+    void *rows = NULL;
     enum rfade_status status =
-        rfade_survey_prepare(survey, &statement, error,
-                             "SELECT vehicle_id, start_us, end_us FROM extent"
-                             " ORDER BY vehicle_id, start_us",
-                             "");
-    if (status == RFADE_OK)
-        status = rfade_rows_read(survey, statement, sizeof **outings, read_extent,
-                                 (void **)outings, count, error);
+        rfade_rows_query(survey, sizeof **outings, read_extent, &rows, count, error,
+                         "SELECT vehicle_id, start_us, end_us FROM extent"
+                         " ORDER BY vehicle_id, start_us",
+                         "");
+    *outings = rows;
     if (status == RFADE_OK)
         *count = join(*outings, *count, llround(gap_s * 1e6));
     return status;
@@ -58,16 +54,12 @@ enum rfade_status rfade_outing_streams(struct rfade_survey *survey,
                                        struct rfade_outing_stream **streams, size_t *count,
                                        struct rfade_error *error)
 {
-    *streams = NULL;
-    *count = 0;
-    sqlite3_stmt *statement = NULL;
-    enum rfade_status status = rfade_survey_prepare(
-        survey, &statement, error,
+    void *rows = NULL;
+    enum rfade_status status = rfade_rows_query(
+        survey, sizeof **streams, read_stream, &rows, count, error,
         "SELECT DISTINCT channel_id, campaign_id FROM extent"
         " WHERE vehicle_id = ?1 AND start_us <= ?3 AND end_us >= ?2 ORDER BY 1, 2",
         "iii", outing->vehicle_id, outing->start_us, outing->end_us);
-    if (status == RFADE_OK)
-        status = rfade_rows_read(survey, statement, sizeof **streams, read_stream,
-                                 (void **)streams, count, error);
+    *streams = rows;
     return status;
 }

@@ -162,12 +162,11 @@ static void read_fit(sqlite3_stmt *statement, void *fit)
 static enum rfade_status read_fits(struct rfade_survey *survey,
                                    struct rfade_segment_result *row, struct rfade_error *error)
 {
-    sqlite3_stmt *statement = NULL;
+    void *rows = NULL;
     enum rfade_status status =
-        rfade_survey_prepare(survey, &statement, error, FITS_SQL, "i", row->fading_id);
-    if (status == RFADE_OK)
-        status = rfade_rows_read(survey, statement, sizeof *row->fits, read_fit,
-                                 (void **)&row->fits, &row->fit_count, error);
+        rfade_rows_query(survey, sizeof *row->fits, read_fit, &rows, &row->fit_count, error,
+                         FITS_SQL, "i", row->fading_id);
+    row->fits = rows;
     return status;
 }
 
@@ -286,13 +285,11 @@ static enum rfade_status read_spans(struct rfade_survey *survey,
                                     struct rfade_segment_results *results,
                                     struct rfade_error *error)
 {
-    sqlite3_stmt *statement = NULL;
-    enum rfade_status status =
-        rfade_survey_prepare(survey, &statement, error, SPANS_SQL, "tidd", filter->route,
-                             filter->segment, filter->from_m, filter->to_m);
-    if (status == RFADE_OK)
-        status = rfade_rows_read(survey, statement, sizeof *results->spans, read_span,
-                                 (void **)&results->spans, &results->span_count, error);
+    void *rows = NULL;
+    enum rfade_status status = rfade_rows_query(
+        survey, sizeof *results->spans, read_span, &rows, &results->span_count, error,
+        SPANS_SQL, "tidd", filter->route, filter->segment, filter->from_m, filter->to_m);
+    results->spans = rows;
     return status;
 }
 
@@ -302,19 +299,18 @@ enum rfade_status rfade_results_read(struct rfade_survey *survey,
                                      struct rfade_error *error)
 {
     *results = (struct rfade_segment_results){NULL, 0, NULL, 0};
-    sqlite3_stmt *statement = NULL;
     struct rfade_noise *noise = NULL;
     size_t noise_count = 0;
+    void *rows = NULL;
     enum rfade_status status = check_names(survey, filter, error);
     if (status == RFADE_OK)
         status = check_segment(survey, filter, error);
     if (status == RFADE_OK)
-        status = rfade_survey_prepare(survey, &statement, error, ROWS_SQL, "tttidd",
-                                      filter->route, filter->channel, filter->campaign,
-                                      filter->segment, filter->from_m, filter->to_m);
-    if (status == RFADE_OK)
-        status = rfade_rows_read(survey, statement, sizeof *results->rows, read_row,
-                                 (void **)&results->rows, &results->count, error);
+        status =
+            rfade_rows_query(survey, sizeof *results->rows, read_row, &rows, &results->count,
+                             error, ROWS_SQL, "tttidd", filter->route, filter->channel,
+                             filter->campaign, filter->segment, filter->from_m, filter->to_m);
+    results->rows = rows;
     if (status == RFADE_OK)
         status = rfade_survey_noise(survey, &noise, &noise_count, error);
     for (size_t i = 0; i < results->count && status == RFADE_OK; i++) {

@@ -74,16 +74,10 @@ enum rfade_status rfade_survey_channels(struct rfade_survey *survey,
                                         struct rfade_channel **channels, size_t *count,
                                         struct rfade_error *error)
 {
-    *channels = NULL;
-    *count = 0;
-    sqlite3_stmt *statement = NULL;
-    enum rfade_status status =
-        rfade_survey_prepare(survey, &statement, error, SELECT_CHANNEL "ORDER BY name", "");
-    if (status != RFADE_OK)
-        return status;
     void *rows = NULL;
-    status = rfade_rows_read(survey, statement, sizeof **channels, read_channel, &rows, count,
-                             error);
+    enum rfade_status status =
+        rfade_rows_query(survey, sizeof **channels, read_channel, &rows, count, error,
+                         SELECT_CHANNEL "ORDER BY name", "");
     *channels = rows;
     return status;
 }

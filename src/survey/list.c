@@ -27,19 +27,12 @@ enum rfade_status rfade_survey_logger_files(struct rfade_survey *survey,
                                             struct rfade_logger_file **files, size_t *count,
                                             struct rfade_error *error)
 {
-    *files = NULL;
-    *count = 0;
-    sqlite3_stmt *statement = NULL;
-    enum rfade_status status = rfade_survey_prepare(
-        survey, &statement, error,
+    void *rows = NULL;
+    enum rfade_status status = rfade_rows_query(
+        survey, sizeof **files, read_logger_file, &rows, count, error,
         "SELECT logger_file_id, sha256, name, size_bytes, line_count, reading_count, fix_count,"
         " differing_fix_count, refused_count FROM logger_file ORDER BY name, sha256",
         "");
-    if (status != RFADE_OK)
-        return status;
-    void *rows = NULL;
-    status = rfade_rows_read(survey, statement, sizeof **files, read_logger_file, &rows, count,
-                             error);
     *files = rows;
     return status;
 }
@@ -63,11 +56,9 @@ enum rfade_status rfade_survey_streams(struct rfade_survey *survey,
                                        struct rfade_stream **streams, size_t *count,
                                        struct rfade_error *error)
 {
-    *streams = NULL;
-    *count = 0;
-    sqlite3_stmt *statement = NULL;
-    enum rfade_status status = rfade_survey_prepare(
-        survey, &statement, error,
+    void *rows = NULL;
+    enum rfade_status status = rfade_rows_query(
+        survey, sizeof **streams, read_stream, &rows, count, error,
         "SELECT vehicle_id, channel_id, campaign_id, vehicle.name, channel.name, "
         "campaign.name, "
         "count(*), sum(reading_count), min(start_us), max(end_us) FROM extent "
@@ -75,11 +66,6 @@ enum rfade_status rfade_survey_streams(struct rfade_survey *survey,
         "JOIN campaign USING (campaign_id) GROUP BY vehicle_id, channel_id, campaign_id "
         "ORDER BY vehicle.name, channel.name, campaign.name",
         "");
-    if (status != RFADE_OK)
-        return status;
-    void *rows = NULL;
-    status =
-        rfade_rows_read(survey, statement, sizeof **streams, read_stream, &rows, count, error);
     *streams = rows;
     return status;
 }
@@ -102,12 +88,10 @@ enum rfade_status rfade_survey_found(struct rfade_survey *survey,
                                      struct rfade_stream_found **found, size_t *count,
                                      struct rfade_error *error)
 {
-    *found = NULL;
-    *count = 0;
-    sqlite3_stmt *statement = NULL;
+    void *rows = NULL;
     /* A trace stands once for each route, with the same readings. */
-    enum rfade_status status = rfade_survey_prepare(
-        survey, &statement, error,
+    enum rfade_status status = rfade_rows_query(
+        survey, sizeof **found, read_found, &rows, count, error,
         "SELECT vehicle.name, channel.name, campaign.name, sum(reading_count), "
         "max(CASE WHEN step_found THEN made.step_db END), "
         "max(CASE floor_source WHEN 'pile-up' THEN made.floor_dbm END), "
@@ -118,11 +102,6 @@ enum rfade_status rfade_survey_found(struct rfade_survey *survey,
         "JOIN campaign USING (campaign_id) GROUP BY vehicle_id, channel_id, campaign_id "
         "ORDER BY vehicle.name, channel.name, campaign.name",
         "");
-    if (status != RFADE_OK)
-        return status;
-    void *rows = NULL;
-    status =
-        rfade_rows_read(survey, statement, sizeof **found, read_found, &rows, count, error);
     *found = rows;
     return status;
 }

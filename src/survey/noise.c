@@ -104,17 +104,13 @@ enum rfade_status rfade_survey_noise(struct rfade_survey *survey,
                                      struct rfade_noise **stretches, size_t *count,
                                      struct rfade_error *error)
 {
-    *stretches = NULL;
-    *count = 0;
-    sqlite3_stmt *statement = NULL;
+    void *rows = NULL;
     enum rfade_status status =
-        rfade_survey_prepare(survey, &statement, error,
-                             "SELECT route.name, channel.name, from_m, to_m, noise_dbm "
-                             "FROM noise JOIN route USING (route_id) "
-                             "JOIN channel USING (channel_id) ORDER BY 1, 2, 3",
-                             "");
-    if (status == RFADE_OK)
-        status = rfade_rows_read(survey, statement, sizeof **stretches, read_noise,
-                                 (void **)stretches, count, error);
+        rfade_rows_query(survey, sizeof **stretches, read_noise, &rows, count, error,
+                         "SELECT route.name, channel.name, from_m, to_m, noise_dbm "
+                         "FROM noise JOIN route USING (route_id) "
+                         "JOIN channel USING (channel_id) ORDER BY 1, 2, 3",
+                         "");
+    *stretches = rows;
     return status;
 }

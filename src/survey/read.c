@@ -57,18 +57,13 @@ static enum rfade_status list_extents(struct rfade_survey *survey, int64_t vehic
                                       int64_t to_us, struct extent_row **extents, size_t *count,
                                       struct rfade_error *error)
 {
-    sqlite3_stmt *statement = NULL;
-    enum rfade_status status = rfade_survey_prepare(
-        survey, &statement, error,
+    void *rows = NULL;
+    enum rfade_status status = rfade_rows_query(
+        survey, sizeof **extents, read_extent, &rows, count, error,
         "SELECT first_reading_id, extent.reading_count, start_us, end_us, sha256 FROM extent "
         "JOIN logger_file USING (logger_file_id) WHERE vehicle_id = ?1 AND channel_id = ?2 "
         "AND campaign_id = ?3 AND start_us <= ?5 AND end_us >= ?4 ORDER BY sha256, ordinal",
         "iiiii", vehicle_id, channel_id, campaign_id, from_us, to_us);
-    if (status != RFADE_OK)
-        return status;
-    void *rows = NULL;
-    status =
-        rfade_rows_read(survey, statement, sizeof **extents, read_extent, &rows, count, error);
     *extents = rows;
     return status;
 }
@@ -310,18 +305,14 @@ enum rfade_status rfade_survey_fixes(struct rfade_survey *survey, int64_t vehicl
 {
     *fixes = NULL;
     *count = 0;
-    sqlite3_stmt *statement = NULL;
     void *rows = NULL;
     size_t read_count = 0;
-    enum rfade_status status = rfade_survey_prepare(
-        survey, &statement, error,
+    enum rfade_status status = rfade_rows_query(
+        survey, sizeof **fixes, read_fix, &rows, &read_count, error,
         "SELECT time_us, latitude_deg, longitude_deg, speed_m_s FROM fix "
         "JOIN logger_file USING (logger_file_id) "
         "WHERE vehicle_id = ?1 AND time_us BETWEEN ?2 AND ?3 ORDER BY time_us, sha256",
         "iii", vehicle_id, from_us, to_us);
-    if (status == RFADE_OK)
-        status = rfade_rows_read(survey, statement, sizeof **fixes, read_fix, &rows,
-                                 &read_count, error);
     struct rfade_position *read = rows;
     for (size_t i = 0; i < read_count; i++)
         if (*count == 0 || read[i].time_us != read[*count - 1].time_us)

@@ -63,9 +63,9 @@ static int bind_all(sqlite3_stmt *statement, const char *format, va_list values)
 }
 // NOLINTEND(clang-analyzer-valist.Uninitialized)
 
-static enum rfade_status prepare(struct rfade_survey *survey, sqlite3_stmt **statement,
-                                 struct rfade_error *error, const char *sql, const char *format,
-                                 va_list values)
+enum rfade_status rfade_survey_prepare_list(struct rfade_survey *survey,
+                                            sqlite3_stmt **statement, struct rfade_error *error,
+                                            const char *sql, const char *format, va_list values)
 {
     *statement = NULL;
     if (sqlite3_prepare_v2(rfade_survey_database(survey), sql, -1, statement, NULL) !=
@@ -85,7 +85,8 @@ enum rfade_status rfade_survey_prepare(struct rfade_survey *survey, sqlite3_stmt
 {
     va_list values;
     va_start(values, format);
-    enum rfade_status status = prepare(survey, statement, error, sql, format, values);
+    enum rfade_status status =
+        rfade_survey_prepare_list(survey, statement, error, sql, format, values);
     va_end(values);
     return status;
 }
@@ -106,7 +107,8 @@ enum rfade_status rfade_survey_run(struct rfade_survey *survey, struct rfade_err
     sqlite3_stmt *statement = NULL;
     va_list values;
     va_start(values, format);
-    enum rfade_status status = prepare(survey, &statement, error, sql, format, values);
+    enum rfade_status status =
+        rfade_survey_prepare_list(survey, &statement, error, sql, format, values);
     va_end(values);
     bool row = true;
     while (status == RFADE_OK && row)
@@ -124,7 +126,8 @@ enum rfade_status rfade_survey_integer(struct rfade_survey *survey, int64_t *val
     sqlite3_stmt *statement = NULL;
     va_list values;
     va_start(values, format);
-    enum rfade_status status = prepare(survey, &statement, error, sql, format, values);
+    enum rfade_status status =
+        rfade_survey_prepare_list(survey, &statement, error, sql, format, values);
     va_end(values);
     if (status == RFADE_OK)
         status = rfade_survey_step(survey, statement, found, error);

@@ -37,19 +37,12 @@ static enum rfade_status load_places(struct rfade_survey *survey, int64_t route_
                                      struct rfade_place **places, size_t *count,
                                      struct rfade_error *error)
 {
-    *places = NULL;
-    *count = 0;
-    sqlite3_stmt *statement = NULL;
-    enum rfade_status status =
-        rfade_survey_prepare(survey, &statement, error,
-                             "SELECT latitude_deg, longitude_deg FROM route_point "
-                             "WHERE route_id = ?1 ORDER BY ordinal",
-                             "i", route_id);
-    if (status != RFADE_OK)
-        return status;
     void *rows = NULL;
-    status =
-        rfade_rows_read(survey, statement, sizeof **places, read_place, &rows, count, error);
+    enum rfade_status status =
+        rfade_rows_query(survey, sizeof **places, read_place, &rows, count, error,
+                         "SELECT latitude_deg, longitude_deg FROM route_point "
+                         "WHERE route_id = ?1 ORDER BY ordinal",
+                         "i", route_id);
     *places = rows;
     return status;
 }
@@ -179,21 +172,14 @@ enum rfade_status rfade_survey_routes(struct rfade_survey *survey,
                                       struct rfade_route_row **routes, size_t *count,
                                       struct rfade_error *error)
 {
-    *routes = NULL;
-    *count = 0;
-    sqlite3_stmt *statement = NULL;
-    enum rfade_status status = rfade_survey_prepare(
-        survey, &statement, error,
+    void *rows = NULL;
+    enum rfade_status status = rfade_rows_query(
+        survey, sizeof **routes, read_route, &rows, count, error,
         "SELECT route_id, name, length_m, segment_m, corridor_m, "
         "(SELECT count(*) FROM route_point WHERE route_point.route_id = route.route_id), "
         "(SELECT count(*) FROM segment WHERE segment.route_id = route.route_id) "
         "FROM route ORDER BY name",
         "");
-    if (status != RFADE_OK)
-        return status;
-    void *rows = NULL;
-    status =
-        rfade_rows_read(survey, statement, sizeof **routes, read_route, &rows, count, error);
     *routes = rows;
     return status;
 }
@@ -224,19 +210,12 @@ enum rfade_status rfade_survey_segments(struct rfade_survey *survey, int64_t rou
                                         struct rfade_segment_row **segments, size_t *count,
                                         struct rfade_error *error)
 {
-    *segments = NULL;
-    *count = 0;
-    sqlite3_stmt *statement = NULL;
-    enum rfade_status status =
-        rfade_survey_prepare(survey, &statement, error,
-                             "SELECT segment_id, number, from_m, to_m FROM segment "
-                             "WHERE route_id = ?1 ORDER BY number",
-                             "i", route_id);
-    if (status != RFADE_OK)
-        return status;
     void *rows = NULL;
-    status = rfade_rows_read(survey, statement, sizeof **segments, read_segment, &rows, count,
-                             error);
+    enum rfade_status status =
+        rfade_rows_query(survey, sizeof **segments, read_segment, &rows, count, error,
+                         "SELECT segment_id, number, from_m, to_m FROM segment "
+                         "WHERE route_id = ?1 ORDER BY number",
+                         "i", route_id);
     *segments = rows;
     return status;
 }

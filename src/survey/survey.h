@@ -7,6 +7,7 @@
 #define ROUTEFADE_SURVEY_SURVEY_H
 
 #include <sqlite3.h>
+#include <stdarg.h>
 #include <stdbool.h>
 #include <stdint.h>
 
@@ -49,6 +50,12 @@ enum rfade_status rfade_survey_execute(struct rfade_survey *survey, const char *
 enum rfade_status rfade_survey_prepare(struct rfade_survey *survey, sqlite3_stmt **statement,
                                        struct rfade_error *error, const char *sql,
                                        const char *format, ...);
+
+/** The same with the values in a list, which the caller begins and ends. */
+enum rfade_status rfade_survey_prepare_list(struct rfade_survey *survey,
+                                            sqlite3_stmt **statement, struct rfade_error *error,
+                                            const char *sql, const char *format,
+                                            va_list values);
 
 /** Steps to the next row: *row tells whether there is one. */
 enum rfade_status rfade_survey_step(struct rfade_survey *survey, sqlite3_stmt *statement,

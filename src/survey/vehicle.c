@@ -70,16 +70,10 @@ enum rfade_status rfade_survey_vehicles(struct rfade_survey *survey,
                                         struct rfade_vehicle **vehicles, size_t *count,
                                         struct rfade_error *error)
 {
-    *vehicles = NULL;
-    *count = 0;
-    sqlite3_stmt *statement = NULL;
-    enum rfade_status status = rfade_survey_prepare(
-        survey, &statement, error, "SELECT vehicle_id, name FROM vehicle ORDER BY name", "");
-    if (status != RFADE_OK)
-        return status;
     void *rows = NULL;
-    status = rfade_rows_read(survey, statement, sizeof **vehicles, read_vehicle, &rows, count,
-                             error);
+    enum rfade_status status =
+        rfade_rows_query(survey, sizeof **vehicles, read_vehicle, &rows, count, error,
+                         "SELECT vehicle_id, name FROM vehicle ORDER BY name", "");
     *vehicles = rows;
     return status;
 }
@@ -98,19 +92,12 @@ enum rfade_status rfade_survey_calibrations(struct rfade_survey *survey,
                                             struct rfade_calibration **calibrations,
                                             size_t *count, struct rfade_error *error)
 {
-    *calibrations = NULL;
-    *count = 0;
-    sqlite3_stmt *statement = NULL;
-    enum rfade_status status = rfade_survey_prepare(
-        survey, &statement, error,
+    void *rows = NULL;
+    enum rfade_status status = rfade_rows_query(
+        survey, sizeof **calibrations, read_calibration, &rows, count, error,
         "SELECT vehicle_id, name, from_us, offset_db, offset_uncertainty_db FROM calibration "
         "JOIN vehicle USING (vehicle_id) ORDER BY name, from_us",
         "");
-    if (status != RFADE_OK)
-        return status;
-    void *rows = NULL;
-    status = rfade_rows_read(survey, statement, sizeof **calibrations, read_calibration, &rows,
-                             count, error);
     *calibrations = rows;
     return status;
 }
