@@ -24,6 +24,8 @@ struct work {
     const struct rfade_stored_fit *fit; /* NULL: nothing to predict from */
     struct rfade_snr_place *way;
     size_t place_count;
+    double low_db; /* of the way */
+    double high_db;
     double reach_db; /* of the level's uncertainty */
     double mean_db;  /* of the mean power along the way */
 };
@@ -63,6 +65,8 @@ static enum rfade_status make_way(struct rfade_segment_result *row, double refer
     for (size_t i = 0; i < work->place_count && status == RFADE_OK; i++) {
         double over_db = track[i].level_dbm + work->fit->offset_db - reference_dbm;
         work->way[i] = (struct rfade_snr_place){over_db, track[i].weight};
+        work->low_db = fmin(work->low_db, over_db);
+        work->high_db = fmax(work->high_db, over_db);
         power += track[i].weight * pow(10.0, over_db / 10.0);
         weights += track[i].weight;
     }
@@ -75,7 +79,7 @@ static enum rfade_status make_work(struct rfade_segment_result *row, double refe
                                    double quantile, struct work *work)
 {
     const struct rfade_stored_fit *fit = rfade_result_preferred(row);
-    *work = (struct work){.mean_db = NAN};
+    *work = (struct work){.mean_db = NAN, .low_db = INFINITY, .high_db = -INFINITY};
     if (!fit || !fit->model || fit->model->id == RFADE_LOGNORMAL || isnan(reference_dbm))
         return RFADE_OK;
     work->fit = fit;
@@ -116,10 +120,8 @@ static void reach_out(const struct work *work, struct rfade_rate_domain *domain)
 {
     const struct rfade_stored_fit *fit = work->fit;
     const double parameters[] = {fit->parameter, fit->parameter_low, fit->parameter_high};
-    for (size_t i = 0; i < work->place_count; i++) {
-        domain->snr_low_db = fmin(domain->snr_low_db, work->way[i].snr_db - work->reach_db);
-        domain->snr_high_db = fmax(domain->snr_high_db, work->way[i].snr_db + work->reach_db);
-    }
+    domain->snr_low_db = fmin(domain->snr_low_db, work->low_db - work->reach_db);
+    domain->snr_high_db = fmax(domain->snr_high_db, work->high_db + work->reach_db);
     for (size_t i = 0; i < sizeof parameters / sizeof parameters[0]; i++) {
         if (!fit->model->parameter_name || isnan(parameters[i]))
             continue;
@@ -187,13 +189,16 @@ static enum rfade_status make_surfaces(struct rates *rates, bool about_target)
     return status;
 }
 
-/* A row's surface cut at one parameter of its fit. */
+/* A row's surface cut at one parameter of its fit, as far as its SNR reaches either way. */
 static enum rfade_status cut_at(const struct rates *rates, const struct work *work,
-                                double parameter, struct rfade_rate_curve **curve)
+                                double parameter, double either_way_db,
+                                struct rfade_rate_curve **curve)
 {
     const struct rfade_model *model = work->fit->model;
     double held = model->parameter_name ? held_parameter(model, parameter) : NAN;
-    return rfade_rate_surface_cut(rates->surfaces[model->id], held, curve);
+    return rfade_rate_surface_cut(rates->surfaces[model->id], held,
+                                  work->low_db - either_way_db, work->high_db + either_way_db,
+                                  curve);
 }
 
 /* Squared distances in the logarithm, below and above, by target. */
@@ -220,7 +225,8 @@ static enum rfade_status move_level(const struct rates *rates, const struct work
                                     struct distances *distances)
 {
     struct rfade_rate_curve *curve = NULL;
-    enum rfade_status status = cut_at(rates, work, work->fit->parameter, &curve);
+    enum rfade_status status =
+        cut_at(rates, work, work->fit->parameter, work->reach_db, &curve);
     const double shifts_db[] = {0.0, work->reach_db, -work->reach_db};
     for (size_t i = 0; i < 3 && status == RFADE_OK; i++) {
         status = rfade_rate_curve_mean(curve, work->way, work->place_count, shifts_db[i],
@@ -241,7 +247,7 @@ static enum rfade_status move_parameter(const struct rates *rates, const struct 
         struct rfade_rate_curve *curve = NULL;
         if (!work->fit->model->parameter_name || isnan(ends[i]))
             continue;
-        status = cut_at(rates, work, ends[i], &curve);
+        status = cut_at(rates, work, ends[i], 0.0, &curve);
         if (status == RFADE_OK)
             status = rfade_rate_curve_mean(curve, work->way, work->place_count, 0.0,
                                            distances->moved);
@@ -313,7 +319,7 @@ static enum rfade_status solve_shift(const struct rates *rates, const struct wor
 {
     struct rfade_rate_curve *curve = NULL;
     double low_db = -3.0 * RFADE_SNR_LIMIT_DB, high_db = 3.0 * RFADE_SNR_LIMIT_DB;
-    enum rfade_status status = cut_at(rates, work, parameter, &curve);
+    enum rfade_status status = cut_at(rates, work, parameter, INFINITY, &curve);
     for (int i = 0; i < SOLVE_STEPS_MAX && status == RFADE_OK; i++) {
         double middle_db = 0.5 * (low_db + high_db), probability = NAN;
         if (high_db - low_db < MARGIN_ACCURACY_DB)

@@ -75,7 +75,7 @@ static enum rfade_status make_curve(const struct rfade_target *targets, size_t c
     enum rfade_status status =
         rfade_rate_surface_create(&steady, targets, count, &domain, &surface);
     if (status == RFADE_OK)
-        status = rfade_rate_surface_cut(surface, NAN, curve);
+        status = rfade_rate_surface_cut(surface, NAN, -INFINITY, INFINITY, curve);
     rfade_rate_surface_destroy(surface);
     return status;
 }

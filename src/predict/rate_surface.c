@@ -302,27 +302,47 @@ void rfade_rate_surface_destroy(struct rfade_rate_surface *surface)
     free(surface);
 }
 
-/* The surface's values with the nodes of the parameter weighted. */
-static void cut(const struct rfade_rate_surface *surface, const double *weights,
-                double *log_values)
+/* The panels that hold a stretch of SNR. */
+static struct snr_axis narrow(const struct snr_axis *snr, double low_db, double high_db,
+                              size_t *first)
+{
+    struct snr_axis some = *snr;
+    double last = (double)(snr->panels - 1);
+    double from = floor((low_db - snr->low_db) / snr->panel_db);
+    double to = floor((high_db - snr->low_db) / snr->panel_db);
+    from = fmin(fmax(from, 0.0), last); /* a panel of no width gives NaN: the first */
+    to = fmin(fmax(to, from), last);
+    *first = (size_t)from;
+    some.low_db += from * snr->panel_db;
+    some.panels = (size_t)(to - from) + 1;
+    return some;
+}
+
+/* The surface's values from a panel on, with the nodes of the parameter weighted. */
+static void cut(const struct rfade_rate_surface *surface, const double *weights, size_t first,
+                size_t size, double *log_values)
 {
     size_t block = block_size(surface->target_count, &surface->snr);
-    for (size_t j = 0; j < block; j++)
+    size_t from = first * surface->target_count * PANEL_NODES;
+    for (size_t j = 0; j < size; j++)
         log_values[j] = 0.0;
     for (size_t i = 0; i < surface->spread.count; i++)
-        for (size_t j = 0; j < block && weights[i] != 0.0; j++)
-            log_values[j] += weights[i] * surface->log_values[i * block + j];
+        for (size_t j = 0; j < size && weights[i] != 0.0; j++)
+            log_values[j] += weights[i] * surface->log_values[i * block + from + j];
 }
 
 enum rfade_status rfade_rate_surface_cut(const struct rfade_rate_surface *surface,
-                                         double parameter, struct rfade_rate_curve **curve)
+                                         double parameter, double low_db, double high_db,
+                                         struct rfade_rate_curve **curve)
 {
     const struct spread_axis *spread = &surface->spread;
-    size_t block = block_size(surface->target_count, &surface->snr);
+    size_t first = 0;
+    struct snr_axis snr = narrow(&surface->snr, low_db, high_db, &first);
+    size_t size = block_size(surface->target_count, &snr);
     *curve = NULL;
     struct rfade_rate_curve *made = calloc(1, sizeof *made);
     double *weights = malloc(spread->count * sizeof *weights);
-    double *log_values = malloc(block * sizeof *log_values);
+    double *log_values = malloc(size * sizeof *log_values);
     if (!made || !weights || !log_values) {
         free(made);
         free(weights);
@@ -331,9 +351,9 @@ enum rfade_status rfade_rate_surface_cut(const struct rfade_rate_surface *surfac
     }
     double place = fmin(fmax(spread_of(surface->model, parameter), spread->low), spread->high);
     interpolate(spread->nodes, spread->count, place, weights);
-    cut(surface, weights, log_values);
+    cut(surface, weights, first, size, log_values);
     free(weights);
-    *made = (struct rfade_rate_curve){surface->snr, surface->target_count, log_values};
+    *made = (struct rfade_rate_curve){snr, surface->target_count, log_values};
     *curve = made;
     return RFADE_OK;
 }

@@ -71,7 +71,9 @@ static void check_surface(struct rfade_link link, const struct rfade_rate_domain
                 pow((domain->parameter_high + 0.5) / (domain->parameter_low + 0.5), v) -
             0.5;
         const struct rfade_snr_place here = {link.mean_snr_db - 3.0, 2.0};
-        assert_int_equal(rfade_rate_surface_cut(surface, link.parameter, &curve), RFADE_OK);
+        assert_int_equal(rfade_rate_surface_cut(surface, link.parameter, link.mean_snr_db,
+                                                link.mean_snr_db, &curve),
+                         RFADE_OK);
         assert_int_equal(rfade_rate_curve_mean(curve, &here, 1, 3.0, found), RFADE_OK);
         rfade_rate_curve_destroy(curve);
         for (int i = 0; i < TARGETS; i++) {
@@ -120,7 +122,8 @@ static void a_way_is_averaged(void **state)
     struct rfade_rate_curve *curve = NULL;
     double mean = NAN;
     assert_int_equal(rfade_rate_surface_create(&link, &target, 1, &domain, &surface), RFADE_OK);
-    assert_int_equal(rfade_rate_surface_cut(surface, NAN, &curve), RFADE_OK);
+    assert_int_equal(rfade_rate_surface_cut(surface, NAN, -INFINITY, INFINITY, &curve),
+                     RFADE_OK);
     /* Over Rayleigh fading it is 1/(2 + SNR) [Proakis]. */
     assert_int_equal(rfade_rate_curve_mean(curve, way, 2, 0.0, &mean), RFADE_OK);
     assert_true(fabs(mean / (0.75 / 12.0 + 0.25 / 102.0) - 1.0) < 1e-9);
