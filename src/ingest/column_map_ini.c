@@ -144,7 +144,7 @@ static char *next_line(char *line, int size, void *context)
 
 static void set_key(struct reading *reading, const struct rfade_map_key *key, const char *value)
 {
-    uint64_t bit = UINT64_C(1) << rfade_map_key_index(key);
+    uint64_t bit = UINT64_C(1) << rfade_map_key_index(reading->section, key);
     uint64_t *seen = reading->level ? &reading->level_keys : &reading->map_keys;
     if (*seen & bit) {
         refuse(reading, "keep one of them", "given twice in its section:", key->name);

@@ -82,7 +82,7 @@ enum rfade_status rfade_json_values_create(const struct rfade_column_map *map,
                                            struct rfade_row_values *row_values,
                                            struct rfade_error *error)
 {
-    const char *names[RFADE_MOST_ROLES];
+    const char *names[RFADE_MOST_ROLES] = {NULL};
     *row_values = (struct rfade_row_values){0};
     *values = calloc(1, sizeof **values);
     struct rfade_json_values *made = *values;

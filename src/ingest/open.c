@@ -216,7 +216,7 @@ static enum rfade_status ingest(const struct rfade_log_source *source, const str
 {
     struct rfade_map_choice choice = {0};
     enum rfade_status status = recognise(job, &choice, error);
-    if (status == RFADE_OK) {
+    if (status == RFADE_OK && choice.map) {
         (void)snprintf(job->summary->map_name, sizeof job->summary->map_name, "%s",
                        choice.map->name);
         status = read_log(job, &choice, error);
