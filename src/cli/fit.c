@@ -10,11 +10,12 @@ struct fit_options {
     bool all;
     double window_wavelengths;
     double gap_s;
+    double fix_gap_s;
     double noise_margin_db;
 };
 
 static const struct fit_options defaults = {
-    .all = false, .window_wavelengths = 40, .gap_s = 30, .noise_margin_db = 0};
+    .all = false, .window_wavelengths = 40, .gap_s = 30, .fix_gap_s = 30, .noise_margin_db = 0};
 
 static const struct rfade_option options[] = {
     {"all", NULL, RFADE_OPTION_FLAG, offsetof(struct fit_options, all), 0, 0, NULL,
@@ -24,6 +25,9 @@ static const struct rfade_option options[] = {
      "window of travel of the local mean, in wavelengths (40)"},
     {"gap-s", "T", RFADE_OPTION_NUMBER, offsetof(struct fit_options, gap_s), 0.001, 86400, NULL,
      "a longer gap between readings ends a trace, in seconds (30)"},
+    {"fix-gap-s", "T", RFADE_OPTION_NUMBER, offsetof(struct fit_options, fix_gap_s), 0.001,
+     86400, NULL,
+     "readings in a longer gap between positions, as in a tunnel, stay without a place (30)"},
     {"noise-margin-db", "DB", RFADE_OPTION_NUMBER,
      offsetof(struct fit_options, noise_margin_db), 0, 40, NULL,
      "the levels include the noise: take it off where the channel's noise is known, and count "
@@ -78,6 +82,7 @@ static enum rfade_status run_fit(struct rfade_run *run, struct rfade_error *erro
     struct rfade_analysis_settings settings = rfade_analysis_defaults();
     settings.window_wavelengths = asked->window_wavelengths;
     settings.gap_s = asked->gap_s;
+    settings.fix_gap_s = asked->fix_gap_s;
     settings.noise_margin_db = asked->noise_margin_db;
     struct rfade_survey *survey = NULL;
     struct rfade_analysis_summary summary;

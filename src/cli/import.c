@@ -145,7 +145,10 @@ static enum rfade_status import_source(struct job *job, const char *path,
     if (known)
         return write_row(job, path, NULL, "known", "the survey has these bytes already", error);
     listener.survey = rfade_import_sink(import);
-    const struct rfade_sink sink = {&listener, hear_reading, hear_fix, hear_refusal};
+    const struct rfade_sink sink = {.context = &listener,
+                                    .reading = hear_reading,
+                                    .fix = hear_fix,
+                                    .refused = hear_refusal};
     status = rfade_ingest(source, (const struct rfade_column_map *const *)job->maps,
                           job->map_count, &job->names, &sink, &summary, error);
     if (status != RFADE_OK) {

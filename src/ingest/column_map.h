@@ -14,14 +14,23 @@
  * name of digits alone stands in double quotes: column = "868".
  *
  *     [file]
- *     format = delimited       delimited | json | nmea | gpx; the map is for files of that kind
- * alone, which is told by their content separator = comma        comma | semicolon | tab | pipe
- * | blanks | one character; `blanks`: any run of blanks and tabs, those at the ends of a line
- * do not count decimal = point          point | comma header = yes             yes: the first
- * line after those skipped; no: columns are given by number; or the header's line number, from
- * 1 skip = 0                 lines at the top that are no data (a `sep=,` line is passed over
- * by itself) comment = #              lines that start so are no data; none: there are no
- * comments quote = double           double | single | none; a quoted value ends on its own line
+ *     format = delimited       delimited | json | nmea | gpx; the map is for files of that
+ *                              kind alone, which is told by their content
+ *     name = *                 the map is for files with such names alone, folders left out:
+ *                              * is anything, ? one character, and {vehicle}, {channel},
+ *                              {campaign}, {date} (2026-01-15 or 20260115), {latitude} and
+ *                              {longitude}, or {x} and {y}, are what the name says, as in
+ *                              log-{vehicle}-{date}.csv*
+ *     separator = comma        comma | semicolon | tab | pipe | blanks | one character;
+ *                              `blanks`: any run of blanks and tabs, those at the ends of a
+ *                              line do not count
+ *     decimal = point          point | comma
+ *     header = yes             yes: the first line after those skipped; no: columns are given
+ *                              by number; or the header's line number, from 1
+ *     skip = 0                 lines at the top that are no data (a `sep=,` line is passed
+ *                              over by itself)
+ *     comment = #              lines that start so are no data; none: there are no comments
+ *     quote = double           double | single | none; a quoted value ends on its own line
  *     rows = even              even: a row with another number of values than most rows have
  *                              is refused, since its columns may be shifted; ragged: rows may
  *                              be longer or shorter as long as the columns needed are there
@@ -49,6 +58,16 @@
  *     origin = 2026-01-15T20:00:00Z    for an epoch format that counts from there
  *     subsecond_column = nanoseconds   whole units to be added to the time
  *     subsecond_unit = ns      ms | us | ns
+ *     offset_s = 0             seconds added to every time: GNSS time less the logger's
+ *     gnss_column = utc        where the receiver's time stands beside the logger's (ISO 8601
+ *                              in UTC, or an epoch): the file is read twice, and the median
+ *                              of their difference, taken where the former changes, is added
+ *                              to every time. A file whose clock was set meanwhile is refused
+ *     spread = no              yes: of n rows in a row with the same whole second the k-th,
+ *                              from 0, is put k / n of a second later
+ *     backward = sort          sort: rows may come in any order; refuse: a row up to an hour
+ *                              earlier than one before it of its vehicle is refused, since
+ *                              the clock was put back and its times were there before
  *
  *     [position]               at most one of four forms:
  *     latitude_column = lat    degrees, WGS 84, north and east positive
@@ -119,7 +138,7 @@
  *     [file]
  *     format = json
  *     records = $.packets[*]   where the records stand: $ is each value of the file (one a
- * line, or one after another), $[*] each element of an array,
+ *                              line, or one after another), $[*] each element of an array,
  *                              $.runs[*].packets[*] those further inside; by default the
  *                              elements, where the file is an array, else its values
  *

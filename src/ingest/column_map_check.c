@@ -3,6 +3,7 @@
 
 #include <math.h>
 
+#include "ingest/file_name.h"
 #include "ingest/json_values.h"
 #include "ingest/layout.h"
 
@@ -61,10 +62,41 @@ static const char position_remedy[] =
     "give latitude_column and longitude_column; or x_column, y_column and epsg; or x_column, "
     "y_column, origin_latitude and origin_longitude; or latitude and longitude";
 
+/* A place in the files' names: by degrees, a grid or an origin. */
+static struct finding check_named_place(struct rfade_column_map *map)
+{
+    const char *pattern = map->file.name;
+    struct rfade_position_map *position = &map->position;
+    bool degrees = rfade_name_pattern_has(pattern, RFADE_PART_LATITUDE);
+    bool metres = rfade_name_pattern_has(pattern, RFADE_PART_X);
+    bool origin = !isnan(position->latitude_deg) && !isnan(position->longitude_deg);
+    bool fits = degrees == rfade_name_pattern_has(pattern, RFADE_PART_LONGITUDE) &&
+                metres == rfade_name_pattern_has(pattern, RFADE_PART_Y) && degrees != metres &&
+                position->form == RFADE_POSITION_NONE &&
+                (metres ? origin != (position->epsg != 0) : !origin && position->epsg == 0);
+    position->form = RFADE_POSITION_FIXED;
+    if (fits)
+        return fine;
+    return (struct finding){
+        0, "the position's keys and the name's parts don't fit together",
+        "give {latitude} and {longitude}; or {x} and {y}, and in [position] "
+        "epsg, or origin_latitude and origin_longitude"};
+}
+
+static bool has_named_place(const struct rfade_column_map *map)
+{
+    for (int part = RFADE_PART_LATITUDE; part <= RFADE_PART_Y; part++)
+        if (rfade_name_pattern_has(map->file.name, (enum rfade_name_part)part))
+            return true;
+    return false;
+}
+
 /* Sets the form that the reader could not know from one key alone. */
 static struct finding check_position(struct rfade_column_map *map)
 {
     struct rfade_position_map *position = &map->position;
+    if (has_named_place(map))
+        return check_named_place(map);
     bool columns =
         rfade_column_given(&position->first) || rfade_column_given(&position->second);
     bool both = rfade_column_given(&position->first) && rfade_column_given(&position->second);
@@ -120,6 +152,26 @@ static struct finding check_named(const struct rfade_named *named)
     if (named->line > 0 && name == rfade_column_given(&named->column))
         return (struct finding){named->line, "the section needs a name or a column, not both",
                                 "give either `name = ...` or `column = ...`"};
+    return fine;
+}
+
+/* Nothing may be said twice: by the files' names and by a section. */
+static struct finding check_name_parts(struct rfade_column_map *map)
+{
+    const char *pattern = map->file.name;
+    bool level_named = map->level_count > 0 && map->levels[0].channel[0];
+    bool twice =
+        (rfade_name_pattern_has(pattern, RFADE_PART_VEHICLE) && map->vehicle.line > 0) ||
+        (rfade_name_pattern_has(pattern, RFADE_PART_CAMPAIGN) && map->campaign.line > 0) ||
+        (rfade_name_pattern_has(pattern, RFADE_PART_CHANNEL) &&
+         (map->channel.line > 0 || level_named)) ||
+        (rfade_name_pattern_has(pattern, RFADE_PART_DATE) &&
+         (map->time.has_date || rfade_column_given(&map->date_column) ||
+          map->time.form == RFADE_TIME_EPOCH));
+    if (twice)
+        return (struct finding){
+            0, "the files' names say what another key says, too",
+            "leave the part out of `name`, with * in its place, or the key"};
     return fine;
 }
 
@@ -188,7 +240,8 @@ static struct finding check_json(struct rfade_column_map *map)
 /* A map for files that hold positions alone. */
 static struct finding check_no_columns(struct rfade_column_map *map)
 {
-    bool any = map->level_count > 0 || map->channel.line > 0 || map->campaign.line > 0 ||
+    bool any = has_named_place(map) || map->time_spread || map->level_count > 0 ||
+               map->channel.line > 0 || map->campaign.line > 0 ||
                map->position.form != RFADE_POSITION_NONE ||
                !isnan(map->position.latitude_deg) || map->position.epsg != 0;
     for (size_t role = 0; role < RFADE_ROLE_LEVELS; role++)
@@ -204,10 +257,11 @@ enum rfade_status rfade_column_map_check(struct rfade_column_map *map,
                                          struct rfade_error *error)
 {
     static struct finding (*const checks[])(struct rfade_column_map *) = {
-        check_file,  check_time,   check_position, check_speed, check_sequence,
-        check_names, check_levels, check_header,   check_json,  NULL};
+        check_file,  check_time,       check_position, check_speed,  check_sequence,
+        check_names, check_name_parts, check_levels,   check_header, check_json,
+        NULL};
     static struct finding (*const positions_checks[])(struct rfade_column_map *) = {
-        check_no_columns, check_names, NULL};
+        check_no_columns, check_names, check_name_parts, NULL};
     struct finding (*const *check)(struct rfade_column_map *) =
         rfade_format_is_positions(map->file.format) ? positions_checks : checks;
     for (; *check; check++) {

@@ -102,6 +102,7 @@ enum rfade_log_format {
 struct rfade_file_map {
     enum rfade_log_format format;  /**< that the map is for */
     char records[RFADE_NAME_SIZE]; /**< path of a JSON file's records; empty: not given */
+    char name[RFADE_NAME_SIZE];    /**< pattern of the files' names; empty: any */
     char separator;                /**< RFADE_SEPARATOR_BLANKS: runs of blanks and tabs */
     char decimal_sign;
     char comment; /**< '\0': none */
@@ -120,8 +121,12 @@ struct rfade_column_map {
     struct rfade_column time_column;
     struct rfade_column date_column;
     struct rfade_column subsecond_column;
+    struct rfade_column gnss_column;
     int subsecond_digits; /**< decimal places: 3 ms, 6 us, 9 ns; 0: not given */
     size_t time_line;
+    int64_t time_offset_us; /**< added to each time */
+    bool time_spread;       /**< rows with one whole-second stamp are spread over it */
+    bool backward_refused;  /**< rows before one that came earlier are refused */
     struct rfade_position_map position;
     struct rfade_column speed_column;
     double speed_m_s_per_unit; /**< NaN: not given */

@@ -4,42 +4,39 @@
 #include <stdio.h>
 #include <stdlib.h>
 
+#include "ingest/row_spread.h"
 #include "ingest/track.h"
+
+/* A clock that goes back by more has begun another session. */
+static const int64_t session_us = INT64_C(3600000000);
+
+enum { MOST_VEHICLES = 64 };
+
+/* Of a vehicle whose clock may not go back. */
+struct latest {
+    const char *vehicle;
+    int64_t time_us;
+};
 
 struct rfade_emitter {
     const struct rfade_column_map *map;
     const struct rfade_sink *sink;
     struct rfade_ingest_summary *summary;
     struct rfade_tracks *tracks;
+    struct rfade_row_spread *spread; /* NULL: times stay as they are */
+    size_t vehicle_count;
+    struct latest latest[MOST_VEHICLES];
     bool any_time;
     size_t first_refused_line;
     char first_refused[256];
 };
 
-enum rfade_status rfade_emitter_create(const struct rfade_column_map *map,
-                                       const struct rfade_sink *sink,
-                                       struct rfade_ingest_summary *summary,
-                                       struct rfade_emitter **emitter,
-                                       struct rfade_error *error)
-{
-    *emitter = calloc(1, sizeof **emitter);
-    if (!*emitter)
-        return rfade_error_no_memory(error);
-    (*emitter)->map = map;
-    (*emitter)->sink = sink;
-    (*emitter)->summary = summary;
-    (*emitter)->tracks = rfade_tracks_create(&map->position, sink);
-    if ((*emitter)->tracks)
-        return RFADE_OK;
-    free(*emitter);
-    *emitter = NULL;
-    return rfade_error_no_memory(error);
-}
-
 void rfade_emitter_destroy(struct rfade_emitter *emitter)
 {
-    if (emitter)
-        rfade_tracks_destroy(emitter->tracks);
+    if (!emitter)
+        return;
+    rfade_tracks_destroy(emitter->tracks);
+    rfade_row_spread_destroy(emitter->spread);
     free(emitter);
 }
 
@@ -126,12 +123,11 @@ static enum rfade_status emit(struct rfade_emitter *emitter, const struct rfade_
     return status;
 }
 
-enum rfade_status rfade_emitter_row(struct rfade_emitter *emitter, const struct rfade_row *row,
-                                    bool usable, const struct rfade_line *line,
-                                    struct rfade_error *error)
+static enum rfade_status pass_row(void *context, const struct rfade_row *row, bool usable,
+                                  const struct rfade_line *line, struct rfade_error *error)
 {
+    struct rfade_emitter *emitter = context;
     enum rfade_status status = RFADE_OK;
-    emitter->summary->rows++;
     if (usable)
         status = emit(emitter, row, line, error);
     if (status == RFADE_OK)
@@ -139,6 +135,65 @@ enum rfade_status rfade_emitter_row(struct rfade_emitter *emitter, const struct 
     if (status == RFADE_OK && row->refused[0])
         status = refuse(emitter, line, row->refused, error);
     return status;
+}
+
+enum rfade_status rfade_emitter_create(const struct rfade_column_map *map,
+                                       const struct rfade_sink *sink,
+                                       struct rfade_ingest_summary *summary,
+                                       struct rfade_emitter **emitter,
+                                       struct rfade_error *error)
+{
+    *emitter = calloc(1, sizeof **emitter);
+    if (!*emitter)
+        return rfade_error_no_memory(error);
+    (*emitter)->map = map;
+    (*emitter)->sink = sink;
+    (*emitter)->summary = summary;
+    (*emitter)->tracks = rfade_tracks_create(&map->position, sink);
+    if (map->time_spread)
+        (*emitter)->spread = rfade_row_spread_create(pass_row, *emitter);
+    if ((*emitter)->tracks && (!map->time_spread || (*emitter)->spread))
+        return RFADE_OK;
+    rfade_emitter_destroy(*emitter);
+    *emitter = NULL;
+    return rfade_error_no_memory(error);
+}
+
+/* Whether the row lies before one of its vehicle that came earlier in the same session. */
+static bool goes_back(struct rfade_emitter *emitter, const struct rfade_row *row)
+{
+    size_t i = 0;
+    while (i < emitter->vehicle_count && emitter->latest[i].vehicle != row->vehicle)
+        i++;
+    if (i == MOST_VEHICLES)
+        return false;
+    struct latest *latest = &emitter->latest[i];
+    bool known = i < emitter->vehicle_count;
+    if (known && row->time_us < latest->time_us && latest->time_us - row->time_us < session_us)
+        return true;
+    *latest = (struct latest){row->vehicle, row->time_us};
+    emitter->vehicle_count += !known;
+    return false;
+}
+
+enum rfade_status rfade_emitter_row(struct rfade_emitter *emitter, const struct rfade_row *row,
+                                    bool usable, const struct rfade_line *line,
+                                    struct rfade_error *error)
+{
+    enum rfade_status status = RFADE_OK;
+    emitter->summary->rows++;
+    if (usable && row->has_gnss && emitter->sink->clocks)
+        status =
+            emitter->sink->clocks(emitter->sink->context, row->time_us, row->gnss_us, error);
+    if (status != RFADE_OK)
+        return status;
+    if (usable && emitter->map->backward_refused && goes_back(emitter, row))
+        return refuse(emitter, line, "the clock went back: a row before this has a later time",
+                      error);
+    if (emitter->spread)
+        return rfade_row_spread_add(emitter->spread, emitter->map->time_offset_us, row, usable,
+                                    line, error);
+    return pass_row(emitter, row, usable, line, error);
 }
 
 static enum rfade_status check_yield(const struct rfade_emitter *emitter,
@@ -159,7 +214,10 @@ static enum rfade_status check_yield(const struct rfade_emitter *emitter,
 
 enum rfade_status rfade_emitter_finish(struct rfade_emitter *emitter, struct rfade_error *error)
 {
-    enum rfade_status status = rfade_tracks_finish(emitter->tracks, error);
+    enum rfade_status status =
+        emitter->spread ? rfade_row_spread_flush(emitter->spread, error) : RFADE_OK;
+    if (status == RFADE_OK)
+        status = rfade_tracks_finish(emitter->tracks, error);
     emitter->summary->fixes = rfade_tracks_fixes(emitter->tracks);
     emitter->summary->refused += rfade_tracks_refused(emitter->tracks);
     return status == RFADE_OK ? check_yield(emitter, error) : status;

@@ -13,6 +13,11 @@ static const char *read_index(const char *at, struct rfade_json_step *step)
     step->index = RFADE_ANY_INDEX;
     if (*at == '*')
         return at[1] == ']' ? at + 2 : NULL;
+    if (at[0] == '#' && at[1] == '-') {
+        step->index = RFADE_FROM_END;
+        digits = strspn(at + 2, "0123456789");
+        return digits > 0 && at[2 + digits] == ']' ? at + digits + 3 : NULL;
+    }
     if (digits == 0 || digits > MOST_INDEX_DIGITS || at[digits] != ']')
         return NULL;
     step->index = 0;
@@ -32,7 +37,7 @@ static const char *read_name(const char *at, struct rfade_json_step *step)
     return end + quoted;
 }
 
-bool rfade_json_path_read(const char *text, struct rfade_json_path *path)
+static bool read_path(const char *text, struct rfade_json_path *path)
 {
     *path = (struct rfade_json_path){0};
     if (*text != '$')
@@ -50,4 +55,23 @@ bool rfade_json_path_read(const char *text, struct rfade_json_path *path)
             return false;
     }
     return true;
+}
+
+static bool has_index(const struct rfade_json_path *path, size_t index)
+{
+    for (size_t i = 0; i < path->count; i++)
+        if (!path->steps[i].name && path->steps[i].index == index)
+            return true;
+    return false;
+}
+
+bool rfade_json_path_read(const char *text, struct rfade_json_path *path)
+{
+    return read_path(text, path) && !has_index(path, RFADE_FROM_END);
+}
+
+bool rfade_json_path_is_value(const char *text)
+{
+    struct rfade_json_path path;
+    return read_path(text, &path) && !has_index(&path, RFADE_ANY_INDEX);
 }

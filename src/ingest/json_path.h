@@ -1,5 +1,5 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-/** @file json_path.h  The path at which a JSON file's records stand, step by step. */
+/** @file json_path.h  A path in a JSON file, step by step. Pure functions. */
 #ifndef ROUTEFADE_INGEST_JSON_PATH_H
 #define ROUTEFADE_INGEST_JSON_PATH_H
 
@@ -8,7 +8,7 @@
 
 enum { RFADE_MOST_JSON_STEPS = 16 };
 
-/** A name, or an element's index; RFADE_ANY_INDEX for each. */
+/** A name, or an element's index; RFADE_ANY_INDEX for each, RFADE_FROM_END from the end. */
 struct rfade_json_step {
     const char *name; /**< NULL: an index. Borrowed from the path, without NUL */
     size_t name_size;
@@ -16,6 +16,7 @@ struct rfade_json_step {
 };
 
 #define RFADE_ANY_INDEX ((size_t)-1)
+#define RFADE_FROM_END ((size_t)-2)
 
 struct rfade_json_path {
     size_t count;
@@ -23,9 +24,13 @@ struct rfade_json_path {
 };
 
 /**
- * Reads $, then .name, ."name", [*] or [number] each, at most RFADE_MOST_JSON_STEPS. Names are
- * compared as the file writes them. False if the text is no such path. The text is borrowed.
+ * Reads the path of records: $, then .name, ."name", [*] or [number] each, at most
+ * RFADE_MOST_JSON_STEPS. Names are compared as the file writes them. False if the text is no
+ * such path. The text is borrowed.
  */
 bool rfade_json_path_read(const char *text, struct rfade_json_path *path);
+
+/** Whether a text is a path to one value: as above, with [#-number], and without [*]. */
+bool rfade_json_path_is_value(const char *text);
 
 #endif

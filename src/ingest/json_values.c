@@ -6,6 +6,8 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "ingest/json_path.h"
+
 /* "$." and the name. */
 enum { PATH_SIZE = RFADE_NAME_SIZE + 2 };
 
@@ -40,17 +42,8 @@ static sqlite3 *open_memory(void)
 bool rfade_json_column_valid(const char *name)
 {
     char path[PATH_SIZE];
-    sqlite3_stmt *statement = NULL;
-    sqlite3 *database = open_memory();
     make_path(name, path);
-    bool valid = database &&
-                 sqlite3_prepare_v2(database, "SELECT json_extract('{}', ?1)", -1, &statement,
-                                    NULL) == SQLITE_OK &&
-                 sqlite3_bind_text(statement, 1, path, -1, SQLITE_STATIC) == SQLITE_OK &&
-                 sqlite3_step(statement) == SQLITE_ROW;
-    sqlite3_finalize(statement);
-    (void)sqlite3_close(database);
-    return valid;
+    return rfade_json_path_is_value(path);
 }
 
 void rfade_json_values_destroy(struct rfade_json_values *values)

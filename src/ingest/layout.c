@@ -47,6 +47,8 @@ const struct rfade_column *rfade_map_column(const struct rfade_column_map *map, 
         return &map->campaign.column;
     case RFADE_ROLE_SEQUENCE:
         return &map->sequence_column;
+    case RFADE_ROLE_GNSS:
+        return &map->gnss_column;
     default:
         break;
     }

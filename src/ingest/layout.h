@@ -21,6 +21,7 @@ enum rfade_role {
     RFADE_ROLE_CHANNEL,
     RFADE_ROLE_CAMPAIGN,
     RFADE_ROLE_SEQUENCE,
+    RFADE_ROLE_GNSS, /**< time that the GNSS receiver says */
     RFADE_ROLE_LEVELS
 };
 

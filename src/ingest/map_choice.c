@@ -2,12 +2,16 @@
 #include "ingest/map_choice.h"
 
 #include <stdlib.h>
+#include <string.h>
 
 #include "ingest/built_in_map.h"
+#include "ingest/file_name.h"
 #include "ingest/json.h"
+#include "ingest/map_of_file.h"
 
 /* A file's first bytes. */
 struct head {
+    const char *name; /* the file's, without folders */
     enum rfade_log_format format;
     const char *bytes;
     size_t size;
@@ -21,22 +25,40 @@ void rfade_map_choice_clear(struct rfade_map_choice *choice)
     *choice = (struct rfade_map_choice){0};
 }
 
-/* Lays a map over the first bytes: how many of its columns are there. */
-static enum rfade_status fit(const struct rfade_column_map *map, const struct head *head,
-                             struct rfade_layout **layout, size_t *columns,
-                             struct rfade_error *error)
+/* Lays the choice's map over the first bytes: how many of its columns are there. */
+static enum rfade_status fit(const struct head *head, struct rfade_map_choice *choice,
+                             size_t *columns, struct rfade_error *error)
 {
-    *layout = NULL;
     *columns = 0;
     if (rfade_format_is_positions(head->format))
         return RFADE_OK;
     if (head->format == RFADE_FORMAT_JSON)
-        return rfade_json_fit(map, head->bytes, head->size, columns, error);
-    enum rfade_status status =
-        rfade_layout_create(map, head->bytes, head->size, head->whole, layout, error);
+        return rfade_json_fit(choice->map, head->bytes, head->size, columns, error);
+    enum rfade_status status = rfade_layout_create(choice->map, head->bytes, head->size,
+                                                   head->whole, &choice->layout, error);
     if (status == RFADE_OK)
-        *columns = (*layout)->column_count;
+        *columns = choice->layout->column_count;
     return status;
+}
+
+/* A map by itself, with what the file's name says. Clear the choice either way. */
+static enum rfade_status try_map(const struct rfade_column_map *map, const struct head *head,
+                                 struct rfade_map_choice *choice, size_t *columns,
+                                 struct rfade_error *error)
+{
+    struct rfade_name_parts parts;
+    const char *pattern = map->file.name;
+    enum rfade_status status = RFADE_OK;
+    *choice = (struct rfade_map_choice){.map = map};
+    if (pattern[0] && !rfade_name_match(pattern, head->name, &parts))
+        return rfade_error_set(error, RFADE_INPUT, "check `name` in the map's [file] section",
+                               "the file's name is not like '%.100s' of %s", pattern,
+                               map->name);
+    if (pattern[0])
+        status = rfade_map_of_file(map, &parts, &choice->own, error);
+    if (choice->own)
+        choice->map = choice->own;
+    return status == RFADE_OK ? fit(head, choice, columns, error) : status;
 }
 
 /* Of the maps that fit, the one with most columns. RFADE_OK without a map if none fits: the
@@ -46,39 +68,37 @@ static enum rfade_status choose_given(const struct rfade_column_map *const *maps
                                       struct rfade_map_choice *choice, bool *any,
                                       struct rfade_error *error)
 {
-    const struct rfade_column_map *rival = NULL;
+    const char *rival = NULL;
     size_t most = 0;
     for (size_t i = 0; i < map_count; i++) {
-        struct rfade_layout *layout = NULL;
+        struct rfade_map_choice tried;
         struct rfade_error misfit;
         size_t columns = 0;
         if (maps[i]->file.format != head->format)
             continue;
-        enum rfade_status status = fit(maps[i], head, &layout, &columns, &misfit);
+        enum rfade_status status = try_map(maps[i], head, &tried, &columns, &misfit);
         if (status != RFADE_OK && !*any)
             rfade_error_set(error, status, misfit.remedy, "%s%s",
                             map_count > 1 ? "none of the column maps fits: " : "", misfit.what);
         *any = true;
+        bool better = status == RFADE_OK && (!choice->map || columns > most);
+        if (status == RFADE_OK && !better && columns == most)
+            rival = maps[i]->name;
+        if (better) {
+            rfade_map_choice_clear(choice);
+            *choice = tried;
+            most = columns;
+            rival = NULL;
+        } else {
+            rfade_map_choice_clear(&tried);
+        }
         if (status != RFADE_OK && status != RFADE_INPUT)
             return status;
-        if (status != RFADE_OK)
-            continue;
-        if (choice->map && columns == most)
-            rival = maps[i];
-        if (choice->map && columns <= most) {
-            free(layout);
-            continue;
-        }
-        free(choice->layout);
-        choice->map = maps[i];
-        choice->layout = layout;
-        most = columns;
-        rival = NULL;
     }
     if (rival)
         return rfade_error_set(error, RFADE_INPUT, "import the file with one of them alone",
                                "two column maps fit equally well: %s and %s", choice->map->name,
-                               rival->name);
+                               rival);
     return RFADE_OK;
 }
 
@@ -100,16 +120,17 @@ static enum rfade_status choose_built_in(const struct head *head,
             : rfade_built_in_map(head->bytes, head->size, &choice->own, error);
     choice->map = choice->own;
     if (status == RFADE_OK)
-        status = fit(choice->map, head, &choice->layout, &columns, error);
+        status = fit(head, choice, &columns, error);
     return status;
 }
 
 enum rfade_status rfade_map_choose(const struct rfade_column_map *const *maps, size_t map_count,
-                                   enum rfade_log_format format, const char *bytes, size_t size,
-                                   bool whole, struct rfade_map_choice *choice,
-                                   struct rfade_error *error)
+                                   const char *path, enum rfade_log_format format,
+                                   const char *bytes, size_t size, bool whole,
+                                   struct rfade_map_choice *choice, struct rfade_error *error)
 {
-    const struct head head = {format, bytes, size, whole};
+    const char *slash = strrchr(path, '/');
+    const struct head head = {slash ? slash + 1 : path, format, bytes, size, whole};
     bool any = false; /* of the maps is for this format */
     enum rfade_status status = choose_given(maps, map_count, &head, choice, &any, error);
     if (status != RFADE_OK || choice->map)

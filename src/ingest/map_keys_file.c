@@ -3,6 +3,7 @@
 
 #include <string.h>
 
+#include "ingest/file_name.h"
 #include "ingest/json_path.h"
 #include "ingest/map_value.h"
 
@@ -36,6 +37,11 @@ static bool set_records(void *target, const char *value)
     struct rfade_json_path path;
     return rfade_map_text(target, RFADE_NAME_SIZE, value) &&
            rfade_json_path_read(target, &path);
+}
+
+static bool set_file_name(void *target, const char *value)
+{
+    return rfade_map_text(target, RFADE_NAME_SIZE, value) && !rfade_name_pattern_check(value);
 }
 
 static bool set_decimal(void *target, const char *value)
@@ -99,6 +105,11 @@ static bool set_rows(void *target, const char *value)
 
 static const struct rfade_map_key file_keys[] = {
     {"format", set_file_format, MAP(file.format), "delimited, json, nmea or gpx"},
+    {"name", set_file_name, MAP(file.name),
+     "a pattern such as log-{vehicle}-{date}.csv, without folders; parts are {vehicle}, "
+     "{channel}, {campaign}, {date}, {latitude}, {longitude}, {x}, {y}, each once at most; * "
+     "and "
+     "? stand for anything"},
     {"records", set_records, MAP(file.records),
      "the path of the records, such as $[*], $.packets[*] or $"},
     {"separator", set_separator, MAP(file.separator),

@@ -1,6 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include "ingest/column_map_keys.h"
 
+#include <math.h>
 #include <string.h>
 
 #include "ingest/map_value.h"
@@ -64,6 +65,31 @@ static bool set_subsecond(void *target, const char *value)
     return word >= 0;
 }
 
+static bool set_offset_s(void *target, const char *value)
+{
+    double seconds = NAN;
+    bool read = rfade_map_number(value, -4e8, 4e8, &seconds); /* about 12 years */
+    if (read)
+        *(int64_t *)target = llround(seconds * 1e6);
+    return read;
+}
+
+static bool set_spread(void *target, const char *value)
+{
+    static const char *const words[] = {"no", "yes", NULL};
+    int word = rfade_map_word(words, value);
+    *(bool *)target = word == 1;
+    return word >= 0;
+}
+
+static bool set_backward(void *target, const char *value)
+{
+    static const char *const words[] = {"sort", "refuse", NULL};
+    int word = rfade_map_word(words, value);
+    *(bool *)target = word == 1;
+    return word >= 0;
+}
+
 #define MAP(part) offsetof(struct rfade_column_map, part)
 
 static const struct rfade_map_key time_keys[] = {
@@ -79,6 +105,10 @@ static const struct rfade_map_key time_keys[] = {
     {"origin", set_origin, MAP(time), "a time such as 2026-01-15T20:00:00Z"},
     {"subsecond_column", rfade_map_set_column, MAP(subsecond_column), rfade_map_column_remedy},
     {"subsecond_unit", set_subsecond, MAP(subsecond_digits), "ms, us or ns"},
+    {"offset_s", set_offset_s, MAP(time_offset_us), "seconds, with a decimal point"},
+    {"gnss_column", rfade_map_set_column, MAP(gnss_column), rfade_map_column_remedy},
+    {"spread", set_spread, MAP(time_spread), "yes or no"},
+    {"backward", set_backward, MAP(backward_refused), "sort or refuse"},
 };
 
 const struct rfade_map_section rfade_map_time_section = {

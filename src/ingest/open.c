@@ -12,12 +12,14 @@
 #include <unistd.h>
 #include <zlib.h>
 
+#include "ingest/clock.h"
 #include "ingest/delimited.h"
 #include "ingest/gpx_track.h"
 #include "ingest/json.h"
 #include "ingest/kind.h"
 #include "ingest/lines.h"
 #include "ingest/map_choice.h"
+#include "ingest/map_of_file.h"
 #include "ingest/nmea.h"
 
 static const char read_remedy[] = "check the file's name, permissions and medium";
@@ -192,8 +194,8 @@ static enum rfade_status read_log(const struct job *job, const struct rfade_map_
 }
 
 /* Looks at the first bytes, and chooses the map. */
-static enum rfade_status recognise(const struct job *job, struct rfade_map_choice *choice,
-                                   struct rfade_error *error)
+static enum rfade_status recognise(const struct job *job, const char *path,
+                                   struct rfade_map_choice *choice, struct rfade_error *error)
 {
     const char *head = NULL;
     size_t size = 0;
@@ -207,19 +209,104 @@ static enum rfade_status recognise(const struct job *job, struct rfade_map_choic
     if (kind.what)
         return rfade_error_set(error, RFADE_INPUT, kind.remedy, "the file is %s", kind.what);
     bool whole = size < RFADE_BLOCK_SIZE - 3; /* a byte-order mark may have gone */
-    return rfade_map_choose(job->maps, job->map_count, rfade_log_format_of(head, size), head,
-                            size, whole, choice, error);
+    return rfade_map_choose(job->maps, job->map_count, path, rfade_log_format_of(head, size),
+                            head, size, whole, choice, error);
 }
 
-static enum rfade_status ingest(const struct rfade_log_source *source, const struct job *job,
+/* To the file's beginning, for another reading. */
+static enum rfade_status restart(struct rfade_log_source *source, struct job *job,
+                                 struct rfade_error *error)
+{
+    const struct rfade_byte_source bytes = {source, read_bytes};
+    rfade_line_reader_destroy(job->lines);
+    job->lines = rfade_line_reader_create(&bytes);
+    if (!job->lines)
+        return rfade_error_no_memory(error);
+    if (gzrewind(source->stream) == 0)
+        return RFADE_OK;
+    return rfade_error_set(error, RFADE_STORAGE, read_remedy, "the file can't be read again");
+}
+
+static enum rfade_status pass_reading(void *context, const struct rfade_ingest_reading *reading,
+                                      struct rfade_error *error)
+{
+    (void)context;
+    (void)reading;
+    (void)error;
+    return RFADE_OK;
+}
+
+static enum rfade_status pass_fix(void *context, const struct rfade_ingest_fix *fix,
+                                  struct rfade_error *error)
+{
+    (void)context;
+    (void)fix;
+    (void)error;
+    return RFADE_OK;
+}
+
+static enum rfade_status pass_refusal(void *context, const struct rfade_ingest_refusal *refusal,
+                                      struct rfade_error *error)
+{
+    (void)context;
+    (void)refusal;
+    (void)error;
+    return RFADE_OK;
+}
+
+static enum rfade_status take_clocks(void *context, int64_t logger_us, int64_t gnss_us,
+                                     struct rfade_error *error)
+{
+    (void)error;
+    rfade_clock_add(context, logger_us, gnss_us);
+    return RFADE_OK;
+}
+
+/* Reads the file for its two clocks alone, and puts their distance into a map of its own. */
+static enum rfade_status compare_clocks(struct rfade_log_source *source, struct job *job,
+                                        struct rfade_map_choice *choice,
+                                        struct rfade_error *error)
+{
+    int64_t offset_us = 0;
+    const char *reason = NULL;
+    struct rfade_clock *clock = rfade_clock_create();
+    struct rfade_column_map *own = choice->own ? choice->own : rfade_map_copy(choice->map);
+    const struct rfade_sink sink = {clock, pass_reading, pass_fix, pass_refusal, take_clocks};
+    struct job first = *job;
+    first.sink = &sink;
+    choice->own = own;
+    enum rfade_status status =
+        clock && own ? read_log(&first, choice, error) : rfade_error_no_memory(error);
+    *job->summary = (struct rfade_ingest_summary){0};
+    if (status == RFADE_OK)
+        reason = rfade_clock_offset(clock, &offset_us);
+    if (reason)
+        status =
+            rfade_error_set(error, RFADE_INPUT,
+                            "leave out gnss_column and set offset_s, or read the time from "
+                            "the GNSS column",
+                            "%s", reason);
+    if (status == RFADE_OK) {
+        own->time_offset_us += offset_us;
+        choice->map = own;
+        status = restart(source, job, error);
+    }
+    rfade_clock_destroy(clock);
+    return status;
+}
+
+static enum rfade_status ingest(struct rfade_log_source *source, struct job *job,
                                 struct rfade_error *error)
 {
     struct rfade_map_choice choice = {0};
-    enum rfade_status status = recognise(job, &choice, error);
+    enum rfade_status status = recognise(job, source->path, &choice, error);
     if (status == RFADE_OK && choice.map) {
+        if (rfade_column_given(&choice.map->gnss_column))
+            status = compare_clocks(source, job, &choice, error);
         (void)snprintf(job->summary->map_name, sizeof job->summary->map_name, "%s",
                        choice.map->name);
-        status = read_log(job, &choice, error);
+        if (status == RFADE_OK)
+            status = read_log(job, &choice, error);
     }
     if (status == RFADE_OK)
         status = check_unchanged(source, error);
@@ -238,9 +325,9 @@ enum rfade_status rfade_ingest(struct rfade_log_source *source,
     struct rfade_line_reader *lines = rfade_line_reader_create(&bytes);
     if (!lines)
         return rfade_error_no_memory(error);
-    const struct job job = {lines, maps, map_count, names, sink, summary};
+    struct job job = {lines, maps, map_count, names, sink, summary};
     enum rfade_status status = ingest(source, &job, error);
-    rfade_line_reader_destroy(lines);
+    rfade_line_reader_destroy(job.lines);
     if (status != RFADE_OK && error && error->file[0] == '\0')
         rfade_error_at(error, source->path, error->line);
     return status;

@@ -157,6 +157,19 @@ static const char *read_subsecond(const struct rfade_row_maker *maker, int64_t *
     return NULL;
 }
 
+/* Compared and put right: the clock's offset is added. */
+static const char *settle_time(struct rfade_row_maker *maker, struct rfade_row *row)
+{
+    static const struct rfade_time_format automatic = {.decimal_sign = '.'};
+    const struct rfade_field *gnss = field(maker, RFADE_ROLE_GNSS);
+    struct rfade_time_reader reader = {.format = &automatic};
+    row->has_gnss =
+        gnss->size > 0 && !rfade_time_read(&reader, gnss->text, gnss->size, &row->gnss_us);
+    row->time_us += maker->map->time_offset_us;
+    bool valid = row->time_us >= RFADE_EARLIEST_US && row->time_us < RFADE_LATEST_US;
+    return valid ? NULL : "lies out of range with the clock's offset";
+}
+
 static bool read_time(struct rfade_row_maker *maker, struct rfade_row *row)
 {
     const struct rfade_field *value = field(maker, RFADE_ROLE_TIME);
@@ -182,6 +195,8 @@ static bool read_time(struct rfade_row_maker *maker, struct rfade_row *row)
         reason = read_subsecond(maker, &subsecond_us);
         row->time_us += subsecond_us;
     }
+    if (!reason)
+        reason = settle_time(maker, row);
     return !reason || refuse_value(row, "time", value, reason);
 }
 
@@ -350,6 +365,7 @@ static void read_speed(struct rfade_row_maker *maker, struct rfade_row *row)
 void rfade_row_begin(struct rfade_row *row)
 {
     row->time_us = 0;
+    row->has_gnss = false;
     row->has_place = false;
     row->no_place = false;
     row->speed_m_s = NAN;

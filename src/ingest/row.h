@@ -16,6 +16,8 @@ struct rfade_row_level {
 
 struct rfade_row {
     int64_t time_us;
+    bool has_gnss; /**< the receiver's time stands in the row, too */
+    int64_t gnss_us;
     const char *vehicle; /**< as names.h keeps them */
     const char *campaign;
     bool has_place;

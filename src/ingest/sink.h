@@ -55,6 +55,9 @@ struct rfade_sink {
                              struct rfade_error *error);
     enum rfade_status (*refused)(void *context, const struct rfade_ingest_refusal *refusal,
                                  struct rfade_error *error);
+    /** The two clocks of a row that has both, before anything else of it. NULL: not wanted. */
+    enum rfade_status (*clocks)(void *context, int64_t logger_us, int64_t gnss_us,
+                                struct rfade_error *error);
 };
 
 #endif

@@ -46,5 +46,6 @@ static enum rfade_status take_refusal(void *context, const struct rfade_ingest_r
 
 struct rfade_sink checked_sink(struct counts *counts)
 {
-    return (struct rfade_sink){counts, take_reading, take_fix, take_refusal};
+    return (struct rfade_sink){
+        .context = counts, .reading = take_reading, .fix = take_fix, .refused = take_refusal};
 }

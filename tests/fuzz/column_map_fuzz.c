@@ -14,7 +14,8 @@ int LLVMFuzzerTestOneInput(const uint8_t *data, size_t size)
     FUZZ_REQUIRE((status == RFADE_OK) == (map != NULL));
     if (map) {
         FUZZ_REQUIRE(map->level_count <= RFADE_MOST_LEVELS);
-        FUZZ_REQUIRE(rfade_column_given(&map->time_column));
+        FUZZ_REQUIRE(rfade_column_given(&map->time_column) ||
+                     rfade_format_is_positions(map->file.format));
     } else {
         FUZZ_REQUIRE(error.status == status && error.what[0] != '\0');
     }

@@ -132,7 +132,10 @@ void collect_file(struct collected *collected, const char *path,
 {
     *collected = (struct collected){0};
     struct rfade_log_source *source = NULL;
-    struct rfade_sink sink = {collected, keep_reading, keep_fix, keep_refusal};
+    struct rfade_sink sink = {.context = collected,
+                              .reading = keep_reading,
+                              .fix = keep_fix,
+                              .refused = keep_refusal};
     collected->status = rfade_log_source_open(path, &source, &collected->error);
     if (collected->status == RFADE_OK)
         collected->status = rfade_ingest(source, maps, map_count, names, &sink,

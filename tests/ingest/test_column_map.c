@@ -32,6 +32,10 @@ static void every_key_reaches_its_part(void **state)
                                             "zone = Europe/Berlin\n"
                                             "subsecond_column = 7\n"
                                             "subsecond_unit = ns\n"
+                                            "offset_s = -3.25\n"
+                                            "gnss_column = utc\n"
+                                            "spread = yes\n"
+                                            "backward = refuse\n"
                                             "[position]\n"
                                             "x_column = Rechtswert\n"
                                             "y_column = Hochwert\n"
@@ -72,6 +76,9 @@ static void every_key_reaches_its_part(void **state)
     assert_non_null(map->time.zone);
     assert_int_equal(map->subsecond_column.number, 7);
     assert_int_equal(map->subsecond_digits, 9);
+    assert_int_equal(map->time_offset_us, -3250000);
+    assert_string_equal(map->gnss_column.name, "utc");
+    assert_true(map->time_spread && map->backward_refused);
     assert_int_equal(map->position.form, RFADE_POSITION_GRID);
     assert_int_equal(map->position.epsg, 32632);
     assert_int_equal(map->position.no_fix.count, 2);
@@ -164,6 +171,26 @@ static const struct {
     {TIME "[file]\ncomment = //\n" LEVEL, 4, "none"},
     {TIME "[file]\nquote = \"\n" LEVEL, 4, "double"},
     {TIME "[file]\nrows = odd\n" LEVEL, 4, "ragged"},
+    {TIME "[file]\nformat = xml\n", 4, "json"},
+    {TIME "[file]\nformat = json\nrecords = $[x]\n", 5, "path"},
+    {TIME "[file]\nrecords = $[*]\n" LEVEL, 0, "format = json"},
+    {"[file]\nformat = json\n[time]\ncolumn = 1\n" LEVEL, 0, "paths"},
+    {"[file]\nformat = json\n[time]\ncolumn = $.a[\n" LEVEL, 0, "paths"},
+    {TIME "[file]\nname = {driver}.csv\n" LEVEL, 4, "{vehicle}"},
+    {TIME "[file]\nname = {x}{x}{y}.csv\n" LEVEL, 4, "each once"},
+    {TIME "[file]\nname = a/*.csv\n", 4, "folders"},
+    {TIME "[file]\nname = {x}.csv\n" LEVEL, 0, "{y}"},
+    {TIME "[file]\nname = {x}_{y}.csv\n" LEVEL, 0, "epsg"},
+    {TIME "[file]\nname = {latitude}_{longitude}\n[position]\nepsg = 32630\n" LEVEL, 0, "epsg"},
+    {TIME "[file]\nname = {vehicle}.csv\n[vehicle]\nname = a\n" LEVEL, 0, "leave the part"},
+    {TIME "[file]\nname = {channel}.csv\n[level a]\ncolumn = b\n", 0, "leave the part"},
+    {TIME "date = 2026-01-15\n[file]\nname = {date}.csv\n" LEVEL, 0, "leave the part"},
+    {TIME "format = epoch_s\n[file]\nname = {date}.csv\n" LEVEL, 0, "leave the part"},
+    {TIME "offset_s = soon\n" LEVEL, 3, "seconds"},
+    {TIME "spread = maybe\n" LEVEL, 3, "yes"},
+    {TIME "backward = no\n" LEVEL, 3, "sort"},
+    {"[file]\nformat = nmea\n[time]\ncolumn = a\n", 0, "[vehicle]"},
+    {"[file]\nformat = gpx\n" LEVEL, 0, "[vehicle]"},
     {TIME "[position]\n", 3, "latitude_column"},
     {TIME "[position]\nlatitude_column = a\n", 3, "longitude_column"},
     {TIME "[position]\nx_column = a\ny_column = b\n", 3, "epsg"},

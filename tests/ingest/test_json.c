@@ -278,7 +278,13 @@ static void paths_of_records_are_checked(void **state)
                                       "$[*]a",
                                       "$.a.b.c.d.e.f.g.h.i.j.k.l.m.n.o.p.q",
                                       "$[99999999999]"};
+    static const char *const values[] = {"$.a[#-1]", "$[3].b", "$.\"a b\".c"};
     struct rfade_json_path path;
+    for (size_t i = 0; i < sizeof values / sizeof values[0]; i++)
+        assert_true(rfade_json_path_is_value(values[i]));
+    assert_false(rfade_json_path_is_value("$[*]"));
+    assert_false(rfade_json_path_is_value("$.a["));
+    assert_false(rfade_json_path_read("$[#-1]", &path));
     for (size_t i = 0; i < sizeof good / sizeof good[0]; i++)
         assert_true(rfade_json_path_read(good[i], &path));
     for (size_t i = 0; i < sizeof bad / sizeof bad[0]; i++)
