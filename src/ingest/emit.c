@@ -130,6 +130,8 @@ static enum rfade_status pass_row(void *context, const struct rfade_row *row, bo
     enum rfade_status status = RFADE_OK;
     if (usable)
         status = emit(emitter, row, line, error);
+    else if (row->refused[0] == '\0')
+        emitter->summary->no_reading += row->no_reading;
     if (status == RFADE_OK)
         status = emit_numbers(emitter, row, error);
     if (status == RFADE_OK && row->refused[0])

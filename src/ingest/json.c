@@ -128,6 +128,7 @@ struct json {
     struct rfade_row_values row_values;
     struct rfade_row_maker *maker;
     struct rfade_emitter *emitter;
+    size_t level_count; /* that a record may have */
 };
 
 /* A record that has none of the columns tells that there was nothing to receive. */
@@ -142,6 +143,7 @@ static enum rfade_status take_record(struct json *json, const struct rfade_json_
     if (reason)
         return rfade_emitter_refuse(json->emitter, &record->line, reason, error);
     bool any = rfade_json_values_present(json->values) > 0;
+    row.no_reading = any ? 0 : json->level_count;
     bool usable = any && rfade_row_make(json->maker, &row);
     return rfade_emitter_row(json->emitter, &row, usable, &record->line, error);
 }
@@ -168,7 +170,7 @@ rfade_json_read(struct rfade_line_reader *lines, const struct rfade_column_map *
                 const struct rfade_ingest_names *names, const struct rfade_sink *sink,
                 struct rfade_ingest_summary *summary, struct rfade_error *error)
 {
-    struct json json = {.values = NULL};
+    struct json json = {.level_count = map->level_count};
     enum rfade_status status =
         rfade_json_values_create(map, &json.values, &json.row_values, error);
     if (status == RFADE_OK)

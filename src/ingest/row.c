@@ -214,7 +214,7 @@ static bool read_name(struct rfade_row_maker *maker, struct rfade_row *row, cons
 }
 
 /* One level and its SNR; false if one of them can't be used. */
-static bool read_level(struct rfade_row_maker *maker, struct rfade_row *row, size_t index,
+static bool read_level(const struct rfade_row_maker *maker, struct rfade_row *row, size_t index,
                        struct rfade_row_level *level)
 {
     const struct rfade_level_map *map = &maker->map->levels[index];
@@ -362,6 +362,27 @@ static void read_speed(struct rfade_row_maker *maker, struct rfade_row *row)
     (void)refuse_value(row, "speed", value, "can't be right; not used");
 }
 
+/* Whether a name is missing that nothing needs: there is no reading, number or position. */
+static bool says_nothing(const struct rfade_row_maker *maker)
+{
+    static const size_t names[] = {RFADE_ROLE_VEHICLE, RFADE_ROLE_CHANNEL, RFADE_ROLE_CAMPAIGN};
+    static const size_t others[] = {RFADE_ROLE_FIRST, RFADE_ROLE_SECOND, RFADE_ROLE_SEQUENCE};
+    bool missing = false;
+    for (size_t i = 0; i < sizeof names / sizeof names[0]; i++)
+        missing =
+            missing || (maker->values->by_role[names[i]] && field(maker, names[i])->size == 0);
+    for (size_t i = 0; i < sizeof others / sizeof others[0]; i++)
+        missing = missing && field(maker, others[i])->size == 0;
+    for (size_t i = 0; missing && i < maker->map->level_count; i++) {
+        struct rfade_row scratch;
+        struct rfade_row_level level = {0};
+        rfade_row_begin(&scratch);
+        missing = read_level(maker, &scratch, i, &level) &&
+                  level.level_cdb == RFADE_NO_VALUE_CDB && level.snr_cdb == RFADE_NO_VALUE_CDB;
+    }
+    return missing;
+}
+
 void rfade_row_begin(struct rfade_row *row)
 {
     row->time_us = 0;
@@ -380,6 +401,10 @@ void rfade_row_begin(struct rfade_row *row)
 bool rfade_row_make(struct rfade_row_maker *maker, struct rfade_row *row)
 {
     const char *channel = NULL;
+    if (says_nothing(maker)) {
+        row->no_reading = maker->map->level_count;
+        return false;
+    }
     if (!read_time(maker, row) ||
         !read_name(maker, row, maker->vehicle, RFADE_ROLE_VEHICLE, "vehicle", &row->vehicle) ||
         !read_name(maker, row, maker->channel, RFADE_ROLE_CHANNEL, "channel", &channel) ||

@@ -71,7 +71,8 @@ bool rfade_row_refuse(struct rfade_row *row, const char *format, ...)
 
 /**
  * Fills a row that was begun from the values. Whether anything of them can be used, other
- * than the numbers of `valueless` levels; row->refused says what can't.
+ * than the numbers of `valueless` levels; row->refused says what can't. A row without a name
+ * that it doesn't need, having nothing to tell, is not refused.
  */
 bool rfade_row_make(struct rfade_row_maker *maker, struct rfade_row *row);
 

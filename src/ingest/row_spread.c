@@ -91,8 +91,7 @@ enum rfade_status rfade_row_spread_add(struct rfade_row_spread *spread, int64_t 
                                        const struct rfade_row *row, bool usable,
                                        const struct rfade_line *line, struct rfade_error *error)
 {
-    bool timed = usable || row->valueless_count > 0;
-    if (!timed) /* it is only refused */
+    if (row->time_us == 0) /* its time could not be read */
         return spread->pass(spread->context, row, usable, line, error);
     enum rfade_status status = RFADE_OK;
     if (spread->count > 0 && spread->rows[0].row.time_us != row->time_us)

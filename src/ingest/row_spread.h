@@ -1,7 +1,8 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /**
  * @file row_spread.h  Rows of a clock that shows whole seconds, spread evenly: of n rows in a
- * row with one stamp the k-th, from 0, gets k / n of a second more.
+ * row with one stamp the k-th, from 0, gets k / n of a second more. Rows that are refused for
+ * other reasons than their time count among them.
  */
 #ifndef ROUTEFADE_INGEST_ROW_SPREAD_H
 #define ROUTEFADE_INGEST_ROW_SPREAD_H

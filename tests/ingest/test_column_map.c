@@ -277,7 +277,8 @@ static void the_example_maps_are_right(void **state)
 {
     (void)state;
     static const char *const names[] = {"no-header-local-metres", "blanks-utm-modem",
-                                        "sep-line-bench", "semicolon-local-time"};
+                                        "sep-line-bench",         "semicolon-local-time",
+                                        "json-lost-packets",      "clock-in-file-name"};
     for (size_t i = 0; i < sizeof names / sizeof names[0]; i++) {
         char path[512];
         struct rfade_column_map *map = NULL;
