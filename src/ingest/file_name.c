@@ -56,7 +56,7 @@ bool rfade_name_date(const char *text, int64_t *days)
     size_t size = strlen(text);
     if (size > DATE_SIZE || size < 8)
         return false;
-    memcpy(plain, text, size);
+    memcpy(plain, text, size + 1);
     bool joined = size == 8 && strspn(plain, "0123456789") == 8;
     bool parted = size == DATE_SIZE && plain[4] == plain[7] && strchr("-_.", plain[4]);
     if (parted)

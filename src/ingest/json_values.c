@@ -75,23 +75,22 @@ enum rfade_status rfade_json_values_create(const struct rfade_column_map *map,
                                            struct rfade_row_values *row_values,
                                            struct rfade_error *error)
 {
-    const char *names[RFADE_MOST_ROLES] = {NULL};
     *row_values = (struct rfade_row_values){0};
     *values = calloc(1, sizeof **values);
     struct rfade_json_values *made = *values;
     bool good = made && (made->database = open_memory());
-    for (size_t role = 0; good && role < RFADE_ROLE_LEVELS + 2 * map->level_count; role++) {
-        const struct rfade_column *column = rfade_map_column(map, role);
-        if (!rfade_column_given(column))
-            continue;
-        row_values->by_role[role] = &made->fields[made->count];
-        names[made->count++] = column->name;
-    }
+    size_t roles = RFADE_ROLE_LEVELS + 2 * map->level_count;
+    for (size_t role = 0; good && role < roles; role++)
+        if (rfade_column_given(rfade_map_column(map, role)))
+            row_values->by_role[role] = &made->fields[made->count++];
     good = good && prepare(made);
-    for (size_t i = 0; good && i < made->count; i++) {
+    int parameter = 2; /* the first is the record */
+    for (size_t role = 0; good && role < roles; role++) {
         char path[PATH_SIZE];
-        make_path(names[i], path);
-        good = sqlite3_bind_text(made->statement, (int)i + 2, path, -1, SQLITE_TRANSIENT) ==
+        if (!row_values->by_role[role])
+            continue;
+        make_path(rfade_map_column(map, role)->name, path);
+        good = sqlite3_bind_text(made->statement, parameter++, path, -1, SQLITE_TRANSIENT) ==
                SQLITE_OK;
     }
     if (good)

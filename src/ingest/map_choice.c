@@ -68,38 +68,34 @@ static enum rfade_status choose_given(const struct rfade_column_map *const *maps
                                       struct rfade_map_choice *choice, bool *any,
                                       struct rfade_error *error)
 {
+    const struct rfade_column_map *best = NULL;
     const char *rival = NULL;
     size_t most = 0;
+    size_t columns = 0;
     for (size_t i = 0; i < map_count; i++) {
         struct rfade_map_choice tried;
         struct rfade_error misfit;
-        size_t columns = 0;
         if (maps[i]->file.format != head->format)
             continue;
         enum rfade_status status = try_map(maps[i], head, &tried, &columns, &misfit);
+        rfade_map_choice_clear(&tried);
         if (status != RFADE_OK && !*any)
             rfade_error_set(error, status, misfit.remedy, "%s%s",
                             map_count > 1 ? "none of the column maps fits: " : "", misfit.what);
         *any = true;
-        bool better = status == RFADE_OK && (!choice->map || columns > most);
-        if (status == RFADE_OK && !better && columns == most)
-            rival = maps[i]->name;
-        if (better) {
-            rfade_map_choice_clear(choice);
-            *choice = tried;
-            most = columns;
-            rival = NULL;
-        } else {
-            rfade_map_choice_clear(&tried);
-        }
         if (status != RFADE_OK && status != RFADE_INPUT)
             return status;
+        if (status != RFADE_OK || (best && columns < most))
+            continue;
+        rival = best && columns == most ? maps[i]->name : NULL;
+        best = rival ? best : maps[i];
+        most = columns;
     }
     if (rival)
         return rfade_error_set(error, RFADE_INPUT, "import the file with one of them alone",
-                               "two column maps fit equally well: %s and %s", choice->map->name,
+                               "two column maps fit equally well: %s and %s", best->name,
                                rival);
-    return RFADE_OK;
+    return best ? try_map(best, head, choice, &columns, error) : RFADE_OK;
 }
 
 static enum rfade_status choose_built_in(const struct head *head,

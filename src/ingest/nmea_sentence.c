@@ -84,7 +84,9 @@ static struct field field(const struct fields *fields, size_t index)
 static char letter(const struct fields *fields, size_t index)
 {
     struct field value = field(fields, index);
-    return value.size == 1 ? value.text[0] : '\0';
+    if (value.size != 1)
+        return '\0';
+    return value.text[0];
 }
 
 static bool number(const struct fields *fields, size_t index, double *value)

@@ -270,29 +270,29 @@ static enum rfade_status compare_clocks(struct rfade_log_source *source, struct 
     int64_t offset_us = 0;
     const char *reason = NULL;
     struct rfade_clock *clock = rfade_clock_create();
-    struct rfade_column_map *own = choice->own ? choice->own : rfade_map_copy(choice->map);
+    if (!choice->own)
+        choice->own = rfade_map_copy(choice->map);
+    if (!clock || !choice->own) {
+        rfade_clock_destroy(clock);
+        return rfade_error_no_memory(error);
+    }
+    choice->map = choice->own;
     const struct rfade_sink sink = {clock, pass_reading, pass_fix, pass_refusal, take_clocks};
     struct job first = *job;
     first.sink = &sink;
-    choice->own = own;
-    enum rfade_status status =
-        clock && own ? read_log(&first, choice, error) : rfade_error_no_memory(error);
+    enum rfade_status status = read_log(&first, choice, error);
     *job->summary = (struct rfade_ingest_summary){0};
     if (status == RFADE_OK)
         reason = rfade_clock_offset(clock, &offset_us);
+    rfade_clock_destroy(clock);
     if (reason)
         status =
             rfade_error_set(error, RFADE_INPUT,
                             "leave out gnss_column and set offset_s, or read the time from "
                             "the GNSS column",
                             "%s", reason);
-    if (status == RFADE_OK) {
-        own->time_offset_us += offset_us;
-        choice->map = own;
-        status = restart(source, job, error);
-    }
-    rfade_clock_destroy(clock);
-    return status;
+    choice->own->time_offset_us += offset_us;
+    return status == RFADE_OK ? restart(source, job, error) : status;
 }
 
 static enum rfade_status ingest(struct rfade_log_source *source, struct job *job,
