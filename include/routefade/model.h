@@ -38,7 +38,7 @@ struct rfade_log_gradient {
 };
 
 /**
- * What all intervals of one parameter have in common, so that a fit pays for it once. Filled
+ * What all levels of one parameter have in common, so that a fit pays for it once. Filled
  * by `prepare`; its constants are the model's own business. No resources: copy it freely.
  */
 struct rfade_prepared {
@@ -73,8 +73,12 @@ struct rfade_model {
     enum rfade_status (*log_interval)(double parameter, double low_db, double high_db,
                                       struct rfade_log_gradient *result);
 
-    /** @return RFADE_OK | RFADE_DOMAIN (parameter is NaN, and log_interval_of refuses) */
+    /** @return RFADE_OK | RFADE_DOMAIN (parameter is NaN, and the two below refuse) */
     enum rfade_status (*prepare)(double parameter, struct rfade_prepared *prepared);
+
+    /** As log_density, the same digits, for a parameter that has been prepared. */
+    enum rfade_status (*log_density_of)(const struct rfade_prepared *prepared, double x_db,
+                                        struct rfade_log_gradient *result);
 
     /** As log_interval, the same digits, for a parameter that has been prepared. */
     enum rfade_status (*log_interval_of)(const struct rfade_prepared *prepared, double low_db,

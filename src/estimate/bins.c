@@ -148,39 +148,48 @@ static size_t join_neighbours(struct rfade_bin *bins, size_t bin_count, double c
     return count;
 }
 
+static bool is_point(const struct rfade_bin *bin)
+{
+    return bin->low_db == bin->high_db;
+}
+
 /*
- * Points gathered by counting, without a sort: a million of them come unquantised. Appends
- * to `gathered`, which has room; as they are if they lie too far apart for that.
+ * The points among the bins, gathered by counting, without a sort: a million of them come
+ * unquantised. Appends to `gathered`, which has room; as they are if they lie too far apart.
  */
-static enum rfade_status gather_points(const struct rfade_bin *points, size_t point_count,
+static enum rfade_status gather_points(const struct rfade_bin *bins, size_t bin_count,
                                        double cell_db, struct rfade_bin *gathered,
                                        size_t *gathered_count)
 {
     double low_db = INFINITY;
     double high_db = -INFINITY;
-    for (size_t i = 0; i < point_count; i++) {
-        low_db = fmin(low_db, points[i].low_db);
-        high_db = fmax(high_db, points[i].low_db);
-    }
-    double cells = floor((high_db - low_db) / cell_db) + 1.0;
-    if (point_count == 0 || !(cells <= (double)point_count)) {
-        memcpy(gathered + *gathered_count, points, point_count * sizeof *points);
-        *gathered_count += point_count;
-        return RFADE_OK;
-    }
-    struct rfade_bin *sums = calloc((size_t)cells, sizeof *sums);
-    if (sums == NULL) {
-        return RFADE_NO_MEMORY;
-    }
-    for (size_t i = 0; i < point_count; i++) {
-        struct rfade_bin *sum = &sums[(size_t)((points[i].low_db - low_db) / cell_db)];
-        if (sum->weight > 0.0) {
-            join(sum, &points[i]);
-        } else {
-            *sum = points[i];
+    double point_count = 0.0;
+    for (size_t i = 0; i < bin_count; i++) {
+        if (is_point(&bins[i])) {
+            low_db = fmin(low_db, bins[i].low_db);
+            high_db = fmax(high_db, bins[i].low_db);
+            point_count += 1.0;
         }
     }
-    for (size_t i = 0; i < (size_t)cells; i++) {
+    double cells = floor((high_db - low_db) / cell_db) + 1.0;
+    bool gather = point_count > 0.0 && cells <= point_count;
+    struct rfade_bin *sums = gather ? calloc((size_t)cells, sizeof *sums) : NULL;
+    if (gather && sums == NULL) {
+        return RFADE_NO_MEMORY;
+    }
+    for (size_t i = 0; i < bin_count; i++) {
+        if (!is_point(&bins[i])) {
+            continue;
+        }
+        struct rfade_bin *sum = gather ? &sums[(size_t)((bins[i].low_db - low_db) / cell_db)]
+                                       : &gathered[(*gathered_count)++];
+        if (gather && sum->weight > 0.0) {
+            join(sum, &bins[i]);
+        } else {
+            *sum = bins[i];
+        }
+    }
+    for (size_t i = 0; gather && i < (size_t)cells; i++) {
         if (sums[i].weight > 0.0) {
             gathered[(*gathered_count)++] = sums[i];
         }
@@ -189,20 +198,17 @@ static enum rfade_status gather_points(const struct rfade_bin *points, size_t po
     return RFADE_OK;
 }
 
-/* Points to the end of a copy, intervals to its beginning; the number of intervals. */
-static size_t part_points(const struct rfade_bin *bins, size_t bin_count,
-                          struct rfade_bin *parted)
+/* Copies what isn't a point; the number of it. */
+static size_t copy_intervals(const struct rfade_bin *bins, size_t bin_count,
+                             struct rfade_bin *intervals)
 {
-    size_t intervals = 0;
-    size_t points = 0;
+    size_t count = 0;
     for (size_t i = 0; i < bin_count; i++) {
-        if (bins[i].low_db == bins[i].high_db) {
-            parted[bin_count - ++points] = bins[i];
-        } else {
-            parted[intervals++] = bins[i];
+        if (!is_point(&bins[i])) {
+            intervals[count++] = bins[i];
         }
     }
-    return intervals;
+    return count;
 }
 
 enum rfade_status rfade_bins_shorten(const struct rfade_bin *bins, size_t bin_count,
@@ -215,32 +221,29 @@ enum rfade_status rfade_bins_shorten(const struct rfade_bin *bins, size_t bin_co
     double cells = CELLS_MIN * sqrt(fmax(1.0, (double)bin_count / CELLS_GROWTH_FROM));
     double cell_db = deviation_db / fmin(cells, CELLS_MAX);
     enum rfade_status status = RFADE_OK;
-    struct rfade_bin *parted = malloc(bin_count * sizeof *parted);
     struct rfade_bin *made = malloc(bin_count * sizeof *made);
     *shorter = NULL;
     *shorter_count = 0;
-    if (parted == NULL || made == NULL) {
-        status = RFADE_NO_MEMORY;
-        goto out;
+    if (made == NULL) {
+        return RFADE_NO_MEMORY;
     }
     if (bin_count < SHORTEN_MIN || !(cell_db > 0.0)) {
         memcpy(made, bins, bin_count * sizeof *made);
         *shorter_count = bin_count;
     } else {
-        size_t intervals = part_points(bins, bin_count, parted);
-        qsort(parted, intervals, sizeof *parted, compare_kinds);
-        *shorter_count = join_neighbours(parted, intervals, cell_db, edges_db);
-        memcpy(made, parted, *shorter_count * sizeof *made);
-        status = gather_points(parted + intervals, bin_count - intervals, cell_db, made,
-                               shorter_count);
+        size_t intervals = copy_intervals(bins, bin_count, made);
+        qsort(made, intervals, sizeof *made, compare_kinds);
+        *shorter_count = join_neighbours(made, intervals, cell_db, edges_db);
+        status = gather_points(bins, bin_count, cell_db, made, shorter_count);
+    }
+    if (status != RFADE_OK) {
+        free(made);
+        *shorter_count = 0;
+        return status;
     }
     sort_by_place(made, *shorter_count);
     *shorter = made;
-    made = NULL;
-out:
-    free(parted);
-    free(made);
-    return status;
+    return RFADE_OK;
 }
 
 static bool same_interval(const struct rfade_bin *a, const struct rfade_bin *b)

@@ -27,14 +27,26 @@ double rfade_spread_slope(const struct rfade_model *model, double parameter)
 /* One bin; score about location and the model's own parameter. */
 static enum rfade_status bin_gradient(const struct rfade_model *model,
                                       const struct rfade_bin *bin, double location_db,
-                                      double parameter, struct rfade_log_gradient *gradient)
+                                      const struct rfade_prepared *prepared,
+                                      struct rfade_log_gradient *gradient)
 {
     double low_db = bin->low_db - location_db;
     double high_db = bin->high_db - location_db;
     if (bin->low_db == bin->high_db) {
-        return model->log_density(parameter, low_db, gradient);
+        return model->log_density_of(prepared, low_db, gradient);
     }
-    return model->log_interval(parameter, low_db, high_db, gradient);
+    return model->log_interval_of(prepared, low_db, high_db, gradient);
+}
+
+static enum rfade_status bin_gradient_once(const struct rfade_model *model,
+                                           const struct rfade_bin *bin, double location_db,
+                                           double parameter,
+                                           struct rfade_log_gradient *gradient)
+{
+    struct rfade_prepared prepared;
+    enum rfade_status status = model->prepare(parameter, &prepared);
+    return status == RFADE_OK ? bin_gradient(model, bin, location_db, &prepared, gradient)
+                              : status;
 }
 
 enum rfade_status rfade_bin_log_probability(const struct rfade_model *model,
@@ -42,7 +54,7 @@ enum rfade_status rfade_bin_log_probability(const struct rfade_model *model,
                                             double parameter, double *log_probability)
 {
     struct rfade_log_gradient gradient = {NAN, NAN, NAN};
-    enum rfade_status status = bin_gradient(model, bin, location_db, parameter, &gradient);
+    enum rfade_status status = bin_gradient_once(model, bin, location_db, parameter, &gradient);
     *log_probability = gradient.value;
     return status;
 }
@@ -52,7 +64,7 @@ enum rfade_status rfade_bin_score(const struct rfade_model *model, const struct 
                                   double score[2])
 {
     struct rfade_log_gradient gradient = {NAN, NAN, NAN};
-    enum rfade_status status = bin_gradient(model, bin, location_db, parameter, &gradient);
+    enum rfade_status status = bin_gradient_once(model, bin, location_db, parameter, &gradient);
     *log_probability = gradient.value;
     score[RFADE_LOCATION] = gradient.d_mean_db;
     score[RFADE_SPREAD] = !rfade_has_spread(model)
@@ -68,11 +80,15 @@ enum rfade_status rfade_likelihood_at(const struct rfade_sample *sample, const d
     double parameter = rfade_parameter_of_spread(model, theta[RFADE_SPREAD]);
     double scale = isnan(parameter) ? 0.0 : 1.0 / rfade_spread_slope(model, parameter);
     struct rfade_likelihood sum = {0.0, {0.0, 0.0}, {{{0.0, 0.0}, {0.0, 0.0}}}};
+    struct rfade_prepared prepared;
+    enum rfade_status status = model->prepare(parameter, &prepared);
+    if (status != RFADE_OK) {
+        return status;
+    }
     for (size_t i = 0; i < sample->bin_count; i++) {
         const struct rfade_bin *bin = &sample->bins[i];
         struct rfade_log_gradient gradient = {NAN, NAN, NAN};
-        enum rfade_status status =
-            bin_gradient(model, bin, theta[RFADE_LOCATION], parameter, &gradient);
+        status = bin_gradient(model, bin, theta[RFADE_LOCATION], &prepared, &gradient);
         if (status != RFADE_OK) {
             return status;
         }

@@ -67,6 +67,15 @@ struct rfade_log_gradient rfade_interval_from_ends(const struct rfade_interval_e
     return tail_complement(&low->lower, &high->upper);
 }
 
+enum rfade_status rfade_log_density_once(const struct rfade_model *model, double parameter,
+                                         double x_db, struct rfade_log_gradient *result)
+{
+    struct rfade_prepared prepared;
+    *result = rfade_log_gradient_nan();
+    const enum rfade_status status = model->prepare(parameter, &prepared);
+    return status == RFADE_OK ? model->log_density_of(&prepared, x_db, result) : status;
+}
+
 enum rfade_status rfade_log_interval_once(const struct rfade_model *model, double parameter,
                                           double low_db, double high_db,
                                           struct rfade_log_gradient *result)

@@ -34,9 +34,10 @@ static enum rfade_status tails(double sigma_db, double x_db, struct rfade_tails 
     return rfade_normal_tails(x_db / sigma_db, result);
 }
 
-static enum rfade_status log_density(double sigma_db, double x_db,
-                                     struct rfade_log_gradient *result)
+static enum rfade_status log_density_of(const struct rfade_prepared *prepared, double x_db,
+                                        struct rfade_log_gradient *result)
 {
+    const double sigma_db = prepared->parameter;
     *result = rfade_log_gradient_nan();
     if (!parameter_valid(sigma_db) || !rfade_level_valid(x_db) || isinf(x_db)) {
         return RFADE_DOMAIN;
@@ -121,6 +122,12 @@ static enum rfade_status log_interval_of(const struct rfade_prepared *prepared, 
     return RFADE_OK;
 }
 
+static enum rfade_status log_density(double sigma_db, double x_db,
+                                     struct rfade_log_gradient *result)
+{
+    return rfade_log_density_once(&rfade_model_lognormal, sigma_db, x_db, result);
+}
+
 static enum rfade_status log_interval(double sigma_db, double low_db, double high_db,
                                       struct rfade_log_gradient *result)
 {
@@ -156,6 +163,7 @@ const struct rfade_model rfade_model_lognormal = {
     .log_density = log_density,
     .log_interval = log_interval,
     .prepare = prepare,
+    .log_density_of = log_density_of,
     .log_interval_of = log_interval_of,
     .quantile = quantile,
     .from_normalised_variance = from_normalised_variance,

@@ -69,6 +69,10 @@ struct rfade_interval_end rfade_interval_end_from(const struct rfade_tails *tail
 struct rfade_log_gradient rfade_interval_from_ends(const struct rfade_interval_end *low,
                                                    const struct rfade_interval_end *high);
 
+/** The table's log_density for any model: prepare, then log_density_of. */
+enum rfade_status rfade_log_density_once(const struct rfade_model *model, double parameter,
+                                         double x_db, struct rfade_log_gradient *result);
+
 /** The table's log_interval for any model: prepare, then log_interval_of. */
 enum rfade_status rfade_log_interval_once(const struct rfade_model *model, double parameter,
                                           double low_db, double high_db,

@@ -40,22 +40,6 @@ static enum rfade_status tails(double m, double x_db, struct rfade_tails *result
     return RFADE_OK;
 }
 
-static enum rfade_status log_density(double m, double x_db, struct rfade_log_gradient *result)
-{
-    *result = rfade_log_gradient_nan();
-    if (!parameter_valid(m) || !rfade_level_valid(x_db) || isinf(x_db)) {
-        return RFADE_DOMAIN;
-    }
-    const double log_y = rfade_log_ratio(x_db);
-    const double phi = rfade_exp_excess(log_y);
-    double log_minus_psi = NAN;
-    (void)rfade_log_minus_psi(m, &log_minus_psi, NULL);
-    result->value = log_density_at_mean(m) - m * phi;
-    result->d_mean_db = RFADE_LN_PER_DB * m * expm1(log_y);
-    result->d_parameter = log_minus_psi - phi;
-    return RFADE_OK;
-}
-
 enum { LOG_DENSITY_AT_MEAN, LOG_MINUS_PSI }; /* constants */
 
 static enum rfade_status prepare(double m, struct rfade_prepared *prepared)
@@ -67,6 +51,22 @@ static enum rfade_status prepare(double m, struct rfade_prepared *prepared)
     prepared->parameter = m;
     prepared->constants[LOG_DENSITY_AT_MEAN] = log_density_at_mean(m);
     return rfade_log_minus_psi(m, &prepared->constants[LOG_MINUS_PSI], NULL);
+}
+
+static enum rfade_status log_density_of(const struct rfade_prepared *prepared, double x_db,
+                                        struct rfade_log_gradient *result)
+{
+    const double m = prepared->parameter;
+    *result = rfade_log_gradient_nan();
+    if (!parameter_valid(m) || !rfade_level_valid(x_db) || isinf(x_db)) {
+        return RFADE_DOMAIN;
+    }
+    const double log_y = rfade_log_ratio(x_db);
+    const double phi = rfade_exp_excess(log_y);
+    result->value = prepared->constants[LOG_DENSITY_AT_MEAN] - m * phi;
+    result->d_mean_db = RFADE_LN_PER_DB * m * expm1(log_y);
+    result->d_parameter = prepared->constants[LOG_MINUS_PSI] - phi;
+    return RFADE_OK;
 }
 
 /* Relative to the interval's middle the density is exp(-m h(t)), h = y expm1(t) - t. */
@@ -140,6 +140,11 @@ static enum rfade_status log_interval_of(const struct rfade_prepared *prepared, 
     return RFADE_OK;
 }
 
+static enum rfade_status log_density(double m, double x_db, struct rfade_log_gradient *result)
+{
+    return rfade_log_density_once(&rfade_model_nakagami, m, x_db, result);
+}
+
 static enum rfade_status log_interval(double m, double low_db, double high_db,
                                       struct rfade_log_gradient *result)
 {
@@ -176,6 +181,7 @@ const struct rfade_model rfade_model_nakagami = {
     .log_density = log_density,
     .log_interval = log_interval,
     .prepare = prepare,
+    .log_density_of = log_density_of,
     .log_interval_of = log_interval_of,
     .quantile = quantile,
     .from_normalised_variance = from_normalised_variance,

@@ -22,10 +22,10 @@ static enum rfade_status tails(double parameter, double x_db, struct rfade_tails
     return RFADE_OK;
 }
 
-static enum rfade_status log_density(double parameter, double x_db,
-                                     struct rfade_log_gradient *result)
+static enum rfade_status log_density_of(const struct rfade_prepared *prepared, double x_db,
+                                        struct rfade_log_gradient *result)
 {
-    (void)parameter;
+    (void)prepared;
     *result = rfade_log_gradient_nan();
     if (!rfade_level_valid(x_db) || isinf(x_db)) {
         return RFADE_DOMAIN;
@@ -65,6 +65,12 @@ static enum rfade_status log_interval_of(const struct rfade_prepared *prepared, 
     return RFADE_OK;
 }
 
+static enum rfade_status log_density(double parameter, double x_db,
+                                     struct rfade_log_gradient *result)
+{
+    return rfade_log_density_once(&rfade_model_rayleigh, parameter, x_db, result);
+}
+
 static enum rfade_status log_interval(double parameter, double low_db, double high_db,
                                       struct rfade_log_gradient *result)
 {
@@ -93,6 +99,7 @@ const struct rfade_model rfade_model_rayleigh = {
     .log_density = log_density,
     .log_interval = log_interval,
     .prepare = prepare,
+    .log_density_of = log_density_of,
     .log_interval_of = log_interval_of,
     .quantile = quantile,
     .from_normalised_variance = NULL,

@@ -122,21 +122,6 @@ static enum rfade_status tails(double k, double x_db, struct rfade_tails *result
     return RFADE_OK;
 }
 
-static enum rfade_status log_density(double k, double x_db, struct rfade_log_gradient *result)
-{
-    *result = rfade_log_gradient_nan();
-    if (!parameter_valid(k) || !rfade_level_valid(x_db) || isinf(x_db)) {
-        return RFADE_DOMAIN;
-    }
-    const struct rice rice = rice_of(k);
-    const struct point point = point_at(&rice, x_db);
-    const struct rfade_bessel_pair bessel = rfade_bessel_pair(rice.a * point.b);
-    result->value = log_density_base(&point) + log(bessel.i0_scaled);
-    result->d_mean_db = -RFADE_LN_PER_DB * level_slope(rice.a, point.b, point.offset, &bessel);
-    result->d_parameter = parameter_slope(&rice, &point, &bessel);
-    return RFADE_OK;
-}
-
 /*
  * Relative to the interval's middle, t nepers of power away, with u = b expm1(t/2) the way
  * in amplitude: exp(t) exp(-u (offset + u/2)) exp(-z) I0(z).
@@ -222,6 +207,28 @@ static enum rfade_status prepare(double k, struct rfade_prepared *prepared)
     return RFADE_OK;
 }
 
+static struct rice rice_from(const struct rfade_prepared *prepared)
+{
+    return (struct rice){prepared->parameter, prepared->constants[A],
+                         prepared->constants[SCALE], prepared->constants[AMPLITUDE_EXCESS]};
+}
+
+static enum rfade_status log_density_of(const struct rfade_prepared *prepared, double x_db,
+                                        struct rfade_log_gradient *result)
+{
+    *result = rfade_log_gradient_nan();
+    if (!parameter_valid(prepared->parameter) || !rfade_level_valid(x_db) || isinf(x_db)) {
+        return RFADE_DOMAIN;
+    }
+    const struct rice rice = rice_from(prepared);
+    const struct point point = point_at(&rice, x_db);
+    const struct rfade_bessel_pair bessel = rfade_bessel_pair(rice.a * point.b);
+    result->value = log_density_base(&point) + log(bessel.i0_scaled);
+    result->d_mean_db = -RFADE_LN_PER_DB * level_slope(rice.a, point.b, point.offset, &bessel);
+    result->d_parameter = parameter_slope(&rice, &point, &bessel);
+    return RFADE_OK;
+}
+
 static enum rfade_status log_interval_of(const struct rfade_prepared *prepared, double low_db,
                                          double high_db, struct rfade_log_gradient *result)
 {
@@ -229,9 +236,7 @@ static enum rfade_status log_interval_of(const struct rfade_prepared *prepared, 
     if (!parameter_valid(prepared->parameter) || !rfade_interval_valid(low_db, high_db)) {
         return RFADE_DOMAIN;
     }
-    const struct rice rice = {prepared->parameter, prepared->constants[A],
-                              prepared->constants[SCALE],
-                              prepared->constants[AMPLITUDE_EXCESS]};
+    const struct rice rice = rice_from(prepared);
     const double width_db = high_db - low_db;
     if (width_db <= RFADE_NARROW_DB) {
         const struct point middle = point_at(&rice, 0.5 * (low_db + high_db));
@@ -245,6 +250,11 @@ static enum rfade_status log_interval_of(const struct rfade_prepared *prepared, 
     const struct rfade_interval_end high = interval_end(&rice, high_db);
     *result = rfade_interval_from_ends(&low, &high);
     return RFADE_OK;
+}
+
+static enum rfade_status log_density(double k, double x_db, struct rfade_log_gradient *result)
+{
+    return rfade_log_density_once(&rfade_model_rice, k, x_db, result);
 }
 
 static enum rfade_status log_interval(double k, double low_db, double high_db,
@@ -287,6 +297,7 @@ const struct rfade_model rfade_model_rice = {
     .log_density = log_density,
     .log_interval = log_interval,
     .prepare = prepare,
+    .log_density_of = log_density_of,
     .log_interval_of = log_interval_of,
     .quantile = quantile,
     .from_normalised_variance = from_normalised_variance,

@@ -1,9 +1,9 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /**
  * @file fit_bench.c  Times the Rice and Nakagami fits of a file of doubles (levels in dB, the
- * machine's own byte order), and all three models with intervals on its 0.1 dB tally.
- * Prints one line a measurement: what, processor seconds, log-likelihood,
- * parameter.
+ * machine's own byte order), and all three models with intervals on tallies of it by 0.1 and
+ * 0.02 dB (some 470 and 1,900 bins of a million readings). Prints one line a measurement: what,
+ * processor seconds, log-likelihood, parameter.
  */
 #include <gsl/gsl_errno.h>
 #include <math.h>
@@ -15,7 +15,7 @@
 
 enum { REPEATS = 5 };
 
-static const struct rfade_estimate_settings PLAIN = {0.95, NULL, 0.0, false};
+static const struct rfade_estimate_settings PLAIN = {.confidence = 0.95};
 
 static double now_s(void)
 {
@@ -63,7 +63,8 @@ static int time_model(const char *name, const struct rfade_bin *bins, size_t cou
     return EXIT_SUCCESS;
 }
 
-static int time_tally(const struct rfade_bin *readings, size_t count)
+/* 1 dB steps about local means on a grid. */
+static int time_tally(const struct rfade_bin *readings, size_t count, int32_t grid_cdb)
 {
     struct rfade_tally *tally = NULL;
     struct rfade_bin *bins = NULL;
@@ -72,9 +73,8 @@ static int time_tally(const struct rfade_bin *readings, size_t count)
     double best_s = INFINITY;
     enum rfade_status status = rfade_tally_create(&tally);
     for (size_t i = 0; status == RFADE_OK && i < count; i++) {
-        /* 1 dB steps about local means on a 0.1 dB grid: some hundred keys. */
         struct rfade_tally_key key = {.step_cdb = 100};
-        key.centre_cdb = 10 * (int32_t)lround(10.0 * readings[i].low_db);
+        key.centre_cdb = grid_cdb * (int32_t)lround(100.0 / grid_cdb * readings[i].low_db);
         status = rfade_tally_add(tally, &key, 1, 1);
     }
     if (status == RFADE_OK) {
@@ -105,7 +105,7 @@ int main(int argc, char **argv)
         return 2;
     }
     int failed = time_model("rice", bins, count) | time_model("nakagami", bins, count) |
-                 time_tally(bins, count);
+                 time_tally(bins, count, 10) | time_tally(bins, count, 2);
     free(bins);
     return failed;
 }

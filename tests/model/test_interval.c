@@ -261,12 +261,20 @@ static void prepared_parameter_gives_the_same_digits(void **state)
             assert_int_equal(model->log_interval_of(&prepared, low_db, high_db, &result),
                              RFADE_OK);
             assert_memory_equal(&result, &expected, sizeof result);
+            struct rfade_log_gradient density, density_of;
+            assert_int_equal(model->log_density(examples[i].parameter, low_db, &density),
+                             RFADE_OK);
+            assert_int_equal(model->log_density_of(&prepared, low_db, &density_of), RFADE_OK);
+            assert_memory_equal(&density_of, &density, sizeof density);
         }
     }
     struct rfade_prepared prepared;
     struct rfade_log_gradient result;
     assert_int_equal(rfade_model(RFADE_RICE)->prepare(-1.0, &prepared), RFADE_DOMAIN);
     assert_int_equal(rfade_model(RFADE_RICE)->log_interval_of(&prepared, 0.0, 1.0, &result),
+                     RFADE_DOMAIN);
+    assert_true(isnan(result.value));
+    assert_int_equal(rfade_model(RFADE_RICE)->log_density_of(&prepared, 0.0, &result),
                      RFADE_DOMAIN);
     assert_true(isnan(result.value));
 }
