@@ -70,6 +70,9 @@ struct rfade_estimate_settings {
     const struct rfade_blocks *blocks; /**< of the same readings, bins about the same local
                                             mean; NULL: readings are independent. With fewer
                                             than 6 blocks each counts as one reading. */
+    /** The blocks as they were counted, where `blocks` holds theory, too: goodness, which needs
+     * every class by itself, is judged by them alone. NULL: by `blocks`. */
+    const struct rfade_blocks *counted_blocks;
     double narrowing;    /**< share of the power variance that dividing by the local mean took
                               away, [0, 1); the parameters are corrected for it; 0: none */
     bool with_lognormal; /**< lognormal as a candidate */

@@ -253,6 +253,7 @@ static enum rfade_status fit_fading(struct rfade_pool *pool,
         how.narrowing = narrowing.power;
         struct rfade_blocks blocks = covariance_blocks(pool, lags, narrowed.parameter, &ray);
         how.blocks = &blocks;
+        how.counted_blocks = &pool->blocks;
         status = rfade_estimate_bins(bins, bin_count, &how, &result->estimate);
         for (size_t i = 0; i < result->estimate.fit_count && status == RFADE_OK; i++)
             correct_nakagami(how.narrowing, narrowing.log, &result->estimate.fits[i]);

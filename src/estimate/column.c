@@ -109,7 +109,7 @@ static enum rfade_status estimate_grouped(const double *levels_dbm, size_t count
                                           double step_db, const struct rfade_bin *bins,
                                           size_t bin_count, struct rfade_estimate *estimate)
 {
-    struct rfade_estimate_settings estimate_settings = {settings->confidence, NULL, 0.0, false};
+    struct rfade_estimate_settings estimate_settings = {.confidence = settings->confidence};
     struct rfade_blocks blocks;
     double edges_db[RFADE_CLASS_EDGES];
     rfade_class_edges(bins, bin_count, edges_db);

@@ -17,6 +17,7 @@ struct workspace {
     struct rfade_bin *quick;
     double edges_db[RFADE_CLASS_EDGES];
     struct rfade_class_covariance covariance;
+    struct rfade_class_covariance counted;
 };
 
 static bool settings_valid(const struct rfade_estimate_settings *settings)
@@ -25,15 +26,20 @@ static bool settings_valid(const struct rfade_estimate_settings *settings)
            settings->narrowing >= 0.0 && settings->narrowing < 1.0;
 }
 
-static void measure_covariance(struct workspace *workspace, const struct rfade_bin *bins,
-                               size_t bin_count, const struct rfade_blocks *blocks)
+static void measure_covariances(struct workspace *workspace, const struct rfade_bin *bins,
+                                size_t bin_count,
+                                const struct rfade_estimate_settings *settings)
 {
     double totals[RFADE_COARSE_BINS] = {0.0};
     for (size_t i = 0; i < bin_count; i++) {
         totals[rfade_class_of(workspace->edges_db, rfade_bin_place(&bins[i]))] +=
             bins[i].weight;
     }
-    rfade_class_covariance(blocks, totals, &workspace->covariance);
+    rfade_class_covariance(settings->blocks, totals, &workspace->covariance);
+    workspace->counted = workspace->covariance;
+    if (settings->counted_blocks != NULL) {
+        rfade_class_covariance(settings->counted_blocks, totals, &workspace->counted);
+    }
 }
 
 static enum rfade_status prepare(const struct rfade_bin *bins, size_t bin_count,
@@ -65,7 +71,7 @@ static enum rfade_status prepare(const struct rfade_bin *bins, size_t bin_count,
     } else {
         rfade_class_edges(workspace->quick, quick_count, workspace->edges_db);
     }
-    measure_covariance(workspace, workspace->quick, quick_count, settings->blocks);
+    measure_covariances(workspace, workspace->quick, quick_count, settings);
     workspace->problem = (struct rfade_problem){
         .bins = quick_count < bin_count ? bins : workspace->quick,
         .bin_count = bin_count,
@@ -73,6 +79,7 @@ static enum rfade_status prepare(const struct rfade_bin *bins, size_t bin_count,
         .quick_count = quick_count,
         .edges_db = workspace->edges_db,
         .covariance = &workspace->covariance,
+        .counted = &workspace->counted,
         .settings = settings,
         .start_db = workspace->moments.mean_power_db,
         .start_variance = workspace->moments.normalised_variance,

@@ -13,6 +13,7 @@ struct rfade_problem {
     size_t quick_count;
     const double *edges_db; /**< of the classes */
     const struct rfade_class_covariance *covariance;
+    const struct rfade_class_covariance *counted; /**< for goodness */
     const struct rfade_estimate_settings *settings;
     double start_db;       /**< mean power by moments */
     double start_variance; /**< normalised variance of power by moments */

@@ -13,6 +13,8 @@
 #include <math.h>
 #include <string.h>
 
+#include "model/model.h"
+
 enum { GRIDS_MAX = 64, CLASSES = RFADE_COARSE_BINS };
 
 static const double EXPECTED_MIN = 5.0;    /* a pool's expectation, in independent readings */
@@ -62,7 +64,7 @@ static bool gather(const struct rfade_problem *problem, struct expectation *expe
 {
     double below[CLASSES] = {0.0};
     double above[CLASSES] = {0.0};
-    double lost = CENSORED_LOST * problem->covariance->readings;
+    double lost = CENSORED_LOST * problem->counted->readings;
     memset(expectation, 0, sizeof *expectation);
     for (size_t i = 0; i < problem->bin_count; i++) {
         const struct rfade_bin *bin = &problem->bins[i];
@@ -102,6 +104,32 @@ static double end_of_class(const struct grid *grid, double edge_db)
     return grid->offset_db + last * grid->width_db;
 }
 
+/*
+ * Dividing by the window's mean takes a share n of the variance away, to which a model with a
+ * spread has fitted itself; Rayleigh fading can't. To first order its density becomes
+ * exp(-x) (1 - n/2 L2(x)), L2 the Laguerre polynomial 1 - 2x + x^2/2: of the corrections that
+ * keep the mean the one that takes n of the variance away. This is the integral of L2(x)
+ * exp(-x) up to a level.
+ */
+static double laguerre_share(double level_db)
+{
+    double x = exp(level_db / RFADE_DB_PER_NEPER_OF_POWER);
+    return isinf(x) ? 0.0 : x * exp(-x) * (1.0 - 0.5 * x);
+}
+
+/* What the window moves out of an interval, as a share of all readings. */
+static double window_share(const struct rfade_problem *problem,
+                           const struct rfade_fit_details *details, const struct rfade_bin *bin)
+{
+    double location_db = details->maximum.theta[RFADE_LOCATION];
+    if (rfade_has_spread(details->sample.model)) {
+        return 0.0;
+    }
+    return 0.5 * problem->settings->narrowing *
+           (laguerre_share(bin->high_db - location_db) -
+            laguerre_share(bin->low_db - location_db));
+}
+
 static enum rfade_status expect_grid(const struct rfade_problem *problem,
                                      const struct rfade_fit_details *details,
                                      const struct grid *grid, double weight,
@@ -125,7 +153,7 @@ static enum rfade_status expect_grid(const struct rfade_problem *problem,
             return status;
         }
         double expected = weight * exp(log_probability);
-        expectation->expected[i] += expected;
+        expectation->expected[i] += expected - weight * window_share(problem, details, &bin);
         expectation->slope[i][0] += expected * score[0];
         expectation->slope[i][1] += expected * score[1];
         low = bin.high_db;
@@ -194,7 +222,7 @@ static void pool(const struct rfade_problem *problem, const struct rfade_fit_det
     memset(pooled->observed, 0, sizeof pooled->observed);
     memset(pooled->expected, 0, sizeof pooled->expected);
     for (int c = 0; c < CLASSES; c++) {
-        pooled->observed[pool_of[c]] += problem->covariance->observed[c];
+        pooled->observed[pool_of[c]] += problem->counted->observed[c];
         pooled->expected[pool_of[c]] += expectation->expected[c];
         slope[pool_of[c]][0] += expectation->slope[c][0];
         slope[pool_of[c]][1] += expectation->slope[c][1];
@@ -244,6 +272,19 @@ static void traces(const struct rfade_class_covariance *covariance, const struct
     }
 }
 
+/*
+ * Degrees of freedom by two moments: trace squared over the square's trace, at most those of
+ * independent readings. Of a covariance measured with f degrees of freedom the ratio is too
+ * large by 4/f^2 and, with d classes alike, 2/(f d), which is left out [delta method on the
+ * moments of the Wishart distribution].
+ */
+static double match_freedom(double trace, double square, double f, double most)
+{
+    double noise = isinf(f) ? 0.0 : 4.0 / (f * f);
+    double freedom = square > 0.0 ? trace * trace / square / (1.0 + noise) : most;
+    return fmin(fmax(freedom, 1.0), most);
+}
+
 /* p-value of a statistic whose null distribution has these traces. */
 static double judge(const struct rfade_class_covariance *covariance,
                     const struct pooled *pooled, int parameters)
@@ -260,8 +301,7 @@ static double judge(const struct rfade_class_covariance *covariance,
     if (!(trace > 0.0)) {
         return NAN;
     }
-    double most = pooled->count - 1 - parameters;
-    double freedom = square > 0.0 ? fmin(fmax(trace * trace / square, 1.0), most) : most;
+    double freedom = match_freedom(trace, square, f, pooled->count - 1 - parameters);
     return isinf(f) ? gsl_cdf_chisq_Q(statistic * freedom / trace, freedom)
                     : gsl_cdf_fdist_Q(statistic / trace, freedom, freedom * f);
 }
@@ -269,7 +309,7 @@ static double judge(const struct rfade_class_covariance *covariance,
 enum rfade_status rfade_goodness(const struct rfade_problem *problem,
                                  const struct rfade_fit_details *details, double *p)
 {
-    const struct rfade_class_covariance *covariance = problem->covariance;
+    const struct rfade_class_covariance *covariance = problem->counted;
     struct expectation expectation;
     struct pooled pooled;
     int pool_of[CLASSES];

@@ -13,7 +13,7 @@
 #include "estimate/generate.h"
 #include "routefade/estimate.h"
 
-static const struct rfade_estimate_settings PLAIN = {0.95, NULL, 0.0, false};
+static const struct rfade_estimate_settings PLAIN = {.confidence = 0.95};
 
 static int32_t to_cdb(double level_db, int32_t grid_cdb)
 {

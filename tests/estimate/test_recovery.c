@@ -21,7 +21,7 @@
 
 enum { READINGS = 1000, TRIALS = 100 };
 
-static const struct rfade_estimate_settings PLAIN = {0.95, NULL, 0.0, false};
+static const struct rfade_estimate_settings PLAIN = {.confidence = 0.95};
 
 struct cell {
     enum rfade_model_id model;
