@@ -312,11 +312,11 @@ static enum rfade_status make_trace(const struct making *stream,
         status = rfade_count_missing(readings, count, &row.missing_count, error);
     making.readings = filled;
     making.located = malloc((making.count + 1) * sizeof *making.located);
-    if (status == RFADE_OK && !making.located)
-        status = rfade_error_no_memory(error);
-    if (status == RFADE_OK)
+    if (status == RFADE_OK && making.located)
         status =
             making.listener ? tell_passes(&making, error) : store_passes(&making, &row, error);
+    else if (status == RFADE_OK)
+        status = rfade_error_no_memory(error);
     free(making.located);
     free(filled);
     return status;

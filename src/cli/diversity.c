@@ -201,11 +201,11 @@ static enum rfade_status show_diversity(const struct rfade_run *run,
     const struct rfade_analysis_settings settings = rfade_analysis_defaults();
     struct rfade_survey *survey = NULL;
     size_t count = 0;
-    enum rfade_status status = RFADE_OK;
-    if (!pairs || !answers || !ranks)
-        status = rfade_error_no_memory(error);
-    if (status == RFADE_OK)
+    enum rfade_status status = RFADE_NO_MEMORY;
+    if (pairs && answers && ranks)
         status = match_rows(first, second, threshold, pairs, &count, error);
+    else
+        (void)rfade_error_no_memory(error);
     if (status == RFADE_OK)
         status = rfade_survey_open(run->common->survey, RFADE_SURVEY_READ, &survey, error);
     if (status == RFADE_OK)

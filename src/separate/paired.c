@@ -96,9 +96,9 @@ static void sum_pair(const struct pairing_work *work, size_t i, size_t j,
     sums->weight_mm += weight_mm;
     if (below[0] >= 0 && below[1] >= 0) {
         sums->known_mm += weight_mm;
-        sums->below_mm[0] += below[0] * weight_mm;
-        sums->below_mm[1] += below[1] * weight_mm;
-        sums->both_below_mm += below[0] * below[1] * weight_mm;
+        sums->below_mm[0] += below[0] == 1 ? weight_mm : 0;
+        sums->below_mm[1] += below[1] == 1 ? weight_mm : 0;
+        sums->both_below_mm += below[0] == 1 && below[1] == 1 ? weight_mm : 0;
     }
 }
 
@@ -212,7 +212,7 @@ static enum rfade_status fill_runs(struct pairing_work *work, struct rfade_pairi
     for (size_t i = 0; i < first->count; i++) {
         runs += i == 0 || first->readings[i].segment != first->readings[i - 1].segment;
     }
-    result->runs = calloc(runs, sizeof *result->runs);
+    result->runs = calloc(runs + 1, sizeof *result->runs);
     if (result->runs == NULL) {
         return RFADE_NO_MEMORY;
     }

