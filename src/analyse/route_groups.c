@@ -35,6 +35,7 @@ enum rfade_status rfade_route_groups_make(struct rfade_segment_results *results,
                                           struct rfade_route_groups *groups)
 {
     size_t count = results->count;
+    /* NOLINTBEGIN(bugprone-sizeof-expression): an array of pointers is what is sorted */
     *groups = (struct rfade_route_groups){
         .groups = calloc(count + 1, sizeof *groups->groups),
         .rows = calloc(count + 1, sizeof *groups->rows),
@@ -46,6 +47,7 @@ enum rfade_status rfade_route_groups_make(struct rfade_segment_results *results,
     for (size_t i = 0; i < count; i++)
         groups->rows[i] = &results->rows[i];
     qsort((void *)groups->rows, count, sizeof *groups->rows, compare_rows);
+    /* NOLINTEND(bugprone-sizeof-expression) */
     for (size_t i = 0; i < count; i++) {
         bool same = i > 0 && compare_names(groups->rows[i - 1], groups->rows[i]) == 0;
         if (!same)

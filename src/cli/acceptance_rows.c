@@ -4,20 +4,17 @@
 
 #include "cli/acceptance.h"
 
-static const struct rfade_segment_acceptance *
-segment_of(const struct rfade_acceptance_page *page, const struct rfade_segment_result *row)
-{
-    for (size_t i = 0; i < page->results->count; i++)
-        if (page->groups->rows[i] == row)
-            return &page->segments[i];
-    return NULL;
-}
-
-/* Segments by the place of their row in the results. */
+/* Where the segments of the results' rows stand. */
 struct ordered {
     const struct rfade_acceptance_page *page;
-    const struct rfade_segment_acceptance **segments;
+    size_t *places; /* by the row's place in the results */
 };
+
+static void find_places(const struct rfade_acceptance_page *page, size_t *places)
+{
+    for (size_t i = 0; i < page->results->count; i++)
+        places[page->groups->rows[i] - page->results->rows] = i;
+}
 
 static double end(const struct rfade_outage_bounds *bounds, double distance)
 {
@@ -28,7 +25,8 @@ static void own_values(const void *context, const struct rfade_segment_result *r
                        size_t index, struct rfade_value *own)
 {
     const struct ordered *ordered = context;
-    const struct rfade_segment_acceptance *segment = ordered->segments[index];
+    const struct rfade_segment_acceptance *segment =
+        &ordered->page->segments[ordered->places[index]];
     const struct rfade_outage_bounds *bounds = &segment->bounds;
     const struct rfade_judgement *judgement = &segment->judgement;
     own[0] = rfade_value_number(ordered->page->threshold->value);
@@ -81,15 +79,15 @@ enum rfade_status rfade_acceptance_rows(const struct rfade_run *run,
 {
     size_t count = page->results->count;
     struct rfade_segment_rank *ranks = malloc((count + 1) * sizeof *ranks);
-    struct ordered ordered = {page, malloc((count + 1) * sizeof *ordered.segments)};
+    struct ordered ordered = {page, malloc((count + 1) * sizeof *ordered.places)};
     enum rfade_status status = RFADE_NO_MEMORY;
-    if (!ranks || !ordered.segments) {
+    if (!ranks || !ordered.places) {
         status = rfade_error_no_memory(error);
         goto out;
     }
+    find_places(page, ordered.places);
     for (size_t i = 0; i < count; i++) {
-        ordered.segments[i] = segment_of(page, &page->results->rows[i]);
-        const struct rfade_outage_bounds *bounds = &ordered.segments[i]->bounds;
+        const struct rfade_outage_bounds *bounds = &page->segments[ordered.places[i]].bounds;
         double badness = options->by_estimate ? bounds->outage : end(bounds, -bounds->below);
         ranks[i] = (struct rfade_segment_rank){i, isnan(badness) ? bounds->observed.fraction
                                                                  : badness};
@@ -98,7 +96,7 @@ enum rfade_status rfade_acceptance_rows(const struct rfade_run *run,
     status = print(run, &ordered, ranks, count, error);
 out:
     free(ranks);
-    free((void *)ordered.segments);
+    free(ordered.places);
     return status;
 }
 
