@@ -91,7 +91,7 @@ RFADE_API extern const double rfade_coarse_edges_db[RFADE_COARSE_BINS - 1];
 
 /**
  * The coarse bin that holds a level (dB about the local mean): bin i is (edge[i-1], edge[i]].
- * A censored reading is counted where its reported level, or its bound, lies.
+ * Censored readings are counted in the first bin, or the last.
  */
 RFADE_API int rfade_coarse_bin(double level_db);
 

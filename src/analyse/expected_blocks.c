@@ -25,6 +25,7 @@
 #include <stddef.h>
 
 #include "routefade/model.h"
+#include "routefade/stretch.h"
 
 /* Degrees p >= q, 1 <= p + q <= DEGREE_MAX. */
 enum { DEGREE_MAX = 6, PAIRS = 15, CLASSES = RFADE_COARSE_BINS };
@@ -46,6 +47,14 @@ enum { BLOCKS_MIN = 6 };
  * Clarke's spectrum with itself at its edge, 1/(2 pi). */
 static const double TURNED_LENGTH = 0.5 / M_PI;
 
+/* Lengths of the correlations of the other pairs, integrals of J0(2 pi u)^(p + q)
+ * cos((p - q) 2 pi u c) over all u, with the ray across the road and along it: sums over
+ * 4e7 points up to u = 200 with scipy 1.10's j0. */
+static const double SHORT_LENGTH[PAIRS - LONG_PAIRS][2] = {
+    {0.28534, 0.28698}, {0.28534, 0.00081}, {0.28731, 0.28731}, {0.28731, 0.11375},
+    {0.28731, 0.0},     {0.23988, 0.20783}, {0.23988, 0.04399}, {0.23988, 0.0},
+    {0.22486, 0.22486}, {0.22486, 0.12236}, {0.22486, 0.01570}, {0.22486, 0.0}};
+
 /* Three points across a step [AMS 55, table 25.4]. */
 static const double STEP_PLACE[3] = {-0.3872983346207417, 0.0, 0.3872983346207417};
 static const double STEP_WEIGHT[3] = {5.0 / 18.0, 8.0 / 18.0, 5.0 / 18.0};
@@ -53,7 +62,8 @@ static const double STEP_WEIGHT[3] = {5.0 / 18.0, 8.0 / 18.0, 5.0 / 18.0};
 /* Being below a level, or in a class. */
 struct coefficients {
     double probability;
-    double density; /* of the level, per neper of power */
+    double density;   /* of the level, per neper of power */
+    double crossings; /* from outside, a wavelength; ray across the road */
     double pair[PAIRS];
 };
 
@@ -94,12 +104,16 @@ static bool add_level(double k, double x_db, double weight, struct coefficients 
     double by_power[DEGREE_MAX + 1];
     struct rfade_tails tails;
     struct rfade_log_gradient density;
+    double rate = NAN;
     const struct rfade_model *rice = rfade_model(RFADE_RICE);
     if (rice->tails(k, x_db, &tails) != RFADE_OK ||
-        rice->log_density(k, x_db, &density) != RFADE_OK || !derivatives(a, b, by_power))
+        rice->log_density(k, x_db, &density) != RFADE_OK ||
+        rfade_crossings_per_wavelength(rice, k, x_db, &rate) != RFADE_OK ||
+        !derivatives(a, b, by_power))
         return false;
     sum->probability += weight * tails.lower;
     sum->density += weight * exp(density.value) * 10.0 / M_LN10;
+    sum->crossings += weight * rate;
     for (int i = 0; i < PAIRS; i++)
         sum->pair[i] += weight * coefficient(a, by_power, DEGREES[i][0], DEGREES[i][1]);
     return true;
@@ -125,14 +139,13 @@ static void add_times(struct coefficients *sum, double factor, const struct coef
 {
     sum->probability += factor * other->probability;
     sum->density += factor * other->density;
+    sum->crossings += fabs(factor) * other->crossings;
     for (int i = 0; i < PAIRS; i++)
         sum->pair[i] += factor * other->pair[i];
 }
 
-/*
- * Share of the travel whose bound lies in each class. A censored reading is counted in its
- * bound's class, and censored readings are the share below the bound of all that have it.
- */
+/* Share of the travel whose bound lies in each class: censored readings are the share below
+ * the bound of all that have it. */
 static enum rfade_status find_bounds(const struct rfade_expected_fading *fading,
                                      const struct coefficients edges[CLASSES],
                                      double share[CLASSES])
@@ -158,16 +171,19 @@ static enum rfade_status find_bounds(const struct rfade_expected_fading *fading,
     return status;
 }
 
-/* Classes from edges: all that is below a bound is counted in the bound's class. */
+/* Classes from edges. All that is below a bound is counted in the lowest class, and the
+ * bound's own class with it. */
 static void find_classes(const struct coefficients edges[CLASSES], const double share[CLASSES],
                          struct coefficients classes[CLASSES])
 {
     double open = 1.0; /* share of the travel without a bound in this class or above */
-    for (int i = 0; i < CLASSES; i++)
-        open -= share[i];
     for (int i = 0; i < CLASSES; i++) {
         classes[i] = (struct coefficients){0};
-        add_times(&classes[i], open + share[i], &edges[i]);
+        open -= share[i];
+    }
+    for (int i = 0; i < CLASSES; i++) {
+        add_times(&classes[0], share[i], &edges[i]);
+        add_times(&classes[i], open, &edges[i]);
         if (i > 0)
             add_times(&classes[i], -open, &edges[i - 1]);
         open += share[i];
@@ -187,10 +203,10 @@ static void divide_by_mean(double k, struct coefficients classes[CLASSES])
     }
 }
 
-/* Lengths of correlation by pair of degrees, and of what is left, in wavelengths. */
+/* Lengths of correlation by pair of degrees, and of what is left of each class, wavelengths. */
 struct lengths {
     double pair[PAIRS];
-    double rest;
+    double rest[CLASSES];
 };
 
 static void long_lengths(const struct rfade_lag_means *means, const struct rfade_ray *ray,
@@ -205,37 +221,53 @@ static void long_lengths(const struct rfade_lag_means *means, const struct rfade
     length[2] = across * length[1] + (1.0 - across) * TURNED_LENGTH;
 }
 
-/* From the third order on the correlation is about a normal curve, exp(-n pi^2 u^2). Of what
- * is left the parts of the orders n fall as n^(-3/2), as for any function that jumps. */
-static struct lengths find_lengths(const struct rfade_expected_fading *fading)
-{
-    struct lengths lengths;
-    long_lengths(&fading->pass, &fading->ray, lengths.pair);
-    for (int i = LONG_PAIRS; i < PAIRS; i++) {
-        double order = DEGREES[i][0] + DEGREES[i][1];
-        lengths.pair[i] = fmax(1.0 / sqrt(M_PI * order), fading->spacing_wavelengths);
-    }
-    lengths.rest = fmax(0.5 / sqrt(M_PI * DEGREE_MAX), fading->spacing_wavelengths);
-    return lengths;
-}
-
 static double ways(int pair)
 {
     return DEGREES[pair][0] == DEGREES[pair][1] ? 1.0 : 2.0;
 }
 
-/* Covariance of two classes' shares times the way, wavelengths: over all lags, ... */
-static double covariance(const struct coefficients *first, const struct coefficients *second,
-                         bool same, const struct lengths *lengths)
+/* What the pairs leave of being in one class and in another, at one place. */
+static double rest_of(const struct coefficients *first, const struct coefficients *second,
+                      bool same)
 {
     double rest = (same ? first->probability : 0.0) - first->probability * second->probability;
-    double sum = 0.0;
-    for (int i = 0; i < PAIRS; i++) {
-        double part = ways(i) * first->pair[i] * second->pair[i];
-        rest -= part;
-        sum += part * lengths->pair[i];
+    for (int i = 0; i < PAIRS; i++)
+        rest -= ways(i) * first->pair[i] * second->pair[i];
+    return rest;
+}
+
+/*
+ * What is left are visits to the class by themselves: as long as what is left over their rate,
+ * with lengths of Rayleigh's distribution, whose mean square is 4/pi of the mean squared.
+ */
+static struct lengths find_lengths(const struct rfade_expected_fading *fading,
+                                   const struct coefficients classes[CLASSES])
+{
+    struct lengths lengths;
+    double along = 1.0 - fading->ray.weight[RFADE_RAY_DIRECTIONS - 1];
+    long_lengths(&fading->pass, &fading->ray, lengths.pair);
+    for (int i = LONG_PAIRS; i < PAIRS; i++) {
+        double length = SHORT_LENGTH[i - LONG_PAIRS][0] * (1.0 - along) +
+                        SHORT_LENGTH[i - LONG_PAIRS][1] * along;
+        lengths.pair[i] = fmax(length, fading->spacing_wavelengths);
     }
-    return sum + rest * lengths->rest;
+    for (int i = 0; i < CLASSES; i++) {
+        double rest = fmax(rest_of(&classes[i], &classes[i], true), 0.0);
+        double visit = rest > 0.0 ? 4.0 / M_PI * rest / classes[i].crossings : 0.0;
+        lengths.rest[i] = fmax(visit, fading->spacing_wavelengths);
+    }
+    return lengths;
+}
+
+/* Covariance of two classes' shares times the way, wavelengths: over all lags, ... */
+static double covariance(const struct coefficients classes[CLASSES],
+                         const struct lengths *lengths, int first, int second)
+{
+    double sum = rest_of(&classes[first], &classes[second], first == second) *
+                 sqrt(lengths->rest[first] * lengths->rest[second]);
+    for (int i = 0; i < PAIRS; i++)
+        sum += ways(i) * classes[first].pair[i] * classes[second].pair[i] * lengths->pair[i];
+    return sum;
 }
 
 /* ... and over those beyond the ones that blocks follow. */
@@ -267,7 +299,7 @@ static enum rfade_status blend(const struct rfade_expected_fading *fading,
                                struct rfade_blocks *blocks)
 {
     struct rfade_blocks sum = *blocks;
-    struct lengths lengths = find_lengths(fading);
+    struct lengths lengths = find_lengths(fading, classes);
     double missed[LONG_PAIRS];
     double weight_mm = 0.0, measured = (double)blocks->blocks;
     double trusted = blocks->blocks >= BLOCKS_MIN ? measured : 0.0;
@@ -283,8 +315,7 @@ static enum rfade_status blend(const struct rfade_expected_fading *fading,
     double square = weight_mm * weight_mm / measured / fading->travel_wavelengths;
     for (int i = 0; i < CLASSES; i++) {
         for (int j = 0; j < CLASSES; j++) {
-            bool same = i == j;
-            double expected = square * covariance(&classes[i], &classes[j], same, &lengths);
+            double expected = square * covariance(classes, &lengths, i, j);
             double more = square * beyond(&classes[i], &classes[j], missed);
             if (!rounded(known * (double)blocks->same[i][j] +
                              share * (RFADE_EXPECTED_BLOCKS * expected + trusted * more),

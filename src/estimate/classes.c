@@ -29,6 +29,15 @@ int rfade_class_of(const double *edges_db, double level_db)
     return low;
 }
 
+int rfade_class_of_bin(const double *edges_db, const struct rfade_bin *bin)
+{
+    if (isinf(bin->low_db)) {
+        return 0;
+    }
+    return isinf(bin->high_db) ? RFADE_COARSE_BINS - 1
+                               : rfade_class_of(edges_db, rfade_bin_place(bin));
+}
+
 void rfade_class_edges(const struct rfade_bin *bins, size_t bin_count,
                        double edges_db[RFADE_CLASS_EDGES])
 {

@@ -18,6 +18,13 @@ double rfade_bin_place(const struct rfade_bin *bin);
 int rfade_class_of(const double *edges_db, double level_db);
 
 /**
+ * The class that a bin is counted in. Censored readings are counted in the outermost classes,
+ * wherever their bounds lie: beyond any bound the fading's scores are nearly the same, while
+ * those of readings beside the bound are others.
+ */
+int rfade_class_of_bin(const double *edges_db, const struct rfade_bin *bin);
+
+/**
  * Upper edges of classes of about equal weight, between distinct readings; never falling,
  * INFINITY where there are fewer.
  * @param bins  in ascending order of place

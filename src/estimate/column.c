@@ -84,7 +84,7 @@ static enum rfade_status measure_blocks(const double *levels_dbm, size_t count,
     for (size_t i = 0; i < count; i++) {
         struct rfade_bin bin = bin_of_level(settings, step_db, levels_dbm[i]);
         size_t block = (size_t)((double)i / (double)count * (double)block_count);
-        weights[block][rfade_class_of(edges_db, rfade_bin_place(&bin))]++;
+        weights[block][rfade_class_of_bin(edges_db, &bin)]++;
     }
     enum rfade_status status =
         rfade_blocks_add(blocks, (const int64_t(*)[RFADE_COARSE_BINS])weights, block_count);

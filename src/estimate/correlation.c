@@ -155,7 +155,7 @@ enum rfade_status rfade_class_scores(const struct rfade_sample *sample, const do
         if (status != RFADE_OK) {
             return status;
         }
-        int place = rfade_class_of(edges_db, rfade_bin_place(bin));
+        int place = rfade_class_of_bin(edges_db, bin);
         weight[place] += bin->weight;
         scores->mean[place][0] += bin->weight * score[0];
         scores->mean[place][1] += bin->weight * score[1];

@@ -32,8 +32,7 @@ static void measure_covariances(struct workspace *workspace, const struct rfade_
 {
     double totals[RFADE_COARSE_BINS] = {0.0};
     for (size_t i = 0; i < bin_count; i++) {
-        totals[rfade_class_of(workspace->edges_db, rfade_bin_place(&bins[i]))] +=
-            bins[i].weight;
+        totals[rfade_class_of_bin(workspace->edges_db, &bins[i])] += bins[i].weight;
     }
     rfade_class_covariance(settings->blocks, totals, &workspace->covariance);
     workspace->counted = workspace->covariance;
@@ -104,7 +103,7 @@ static double effective_count(const struct workspace *workspace)
     }
     for (size_t i = 0; i < problem->quick_count; i++) {
         const struct rfade_bin *bin = &problem->quick[i];
-        int place = rfade_class_of(workspace->edges_db, rfade_bin_place(bin));
+        int place = rfade_class_of_bin(workspace->edges_db, bin);
         weight[place] += bin->weight;
         power[place] += bin->weight * rfade_bin_power(bin, workspace->moments.mean_power_db);
     }

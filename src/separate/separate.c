@@ -36,6 +36,17 @@ static struct reading_keys reading_keys(const struct rfade_pass *pass, size_t i)
     return keys;
 }
 
+/* Censored readings go to the outermost bins, wherever their bounds lie: what the fading's
+ * scores make of them is nearly the same, but differs from those of readings beside it. */
+static int block_bin(const struct rfade_tally_key *fading)
+{
+    if (fading->kind == RFADE_BELOW) {
+        return 0;
+    }
+    return fading->kind == RFADE_ABOVE ? RFADE_COARSE_BINS - 1
+                                       : rfade_coarse_bin(fading->centre_cdb / 100.0);
+}
+
 /* Independent readings a window, by powers of two: half a wavelength of travel makes one. */
 static int32_t window_class(const struct rfade_pass *pass, struct rfade_range window)
 {
@@ -65,7 +76,7 @@ static enum rfade_status add_reading(const struct rfade_pass *pass, size_t i,
                                    .kind = RFADE_INTERVAL,
                                    .centre_cdb =
                                        (int32_t)(10.0 * round(pass->local_mean_cdb[i] / 10.0))};
-    int bin = rfade_coarse_bin(keys.fading.centre_cdb / 100.0);
+    int bin = block_bin(&keys.fading);
     enum rfade_status status;
 
     keys.fading.window_class = window_class(pass, window);
