@@ -37,12 +37,14 @@ struct rfade_stretch {
     double level_uncertainty_db; /**< standard error of the stretch's mean level, dB:
                                       fading not averaged out, and calibration */
     double calibration_db;       /**< the part of it that all of the track shares, dB */
-    double spread_below;  /**< share, [0, 1], by which the interval of the local mean's */
-    double spread_above;  /**< standard deviation reaches below it, and above; 0: known */
-    double slow_variance; /**< variance of one pass's mean power, relative, beyond that
-                               under a ray across the road; 0: none */
-    double readings;      /**< by which one more pass would be observed; 0: many */
-    double confidence;    /**< of both intervals, two-sided */
+    double spread_below;      /**< share, [0, 1], by which the interval of the local mean's */
+    double spread_above;      /**< standard deviation reaches below it, and above; 0: known */
+    double pass_deviation_db; /**< standard deviation of another pass's level, fading left
+                                   out; 0: passes under the same conditions */
+    double slow_variance;     /**< variance of one pass's mean power, relative, beyond that
+                                   under a ray across the road; 0: none */
+    double readings;          /**< by which one more pass would be observed; 0: many */
+    double confidence;        /**< of both intervals, two-sided */
 };
 
 struct rfade_stretch_outage {
@@ -63,9 +65,10 @@ struct rfade_stretch_outage {
  * stretch's. The prediction interval takes the readings below the threshold on one pass as a
  * Poisson number of fades of geometric length [Polya and Aeppli; Johnson, Kemp and Kotz 2005,
  * section 9.7], with the mean of the outage and the variance that isotropic scatter gives it
- * (fluctuation.c), mixed over the uncertainty of the outage itself. It is made for another
- * scatter over the same local mean; of the pass that was fitted itself, whose fades the fit has
- * seen, it holds the fraction nearly always.
+ * (fluctuation.c), mixed over the uncertainty of the outage itself and over how much passes
+ * differ. With one pass nothing is known of that: it holds for the same conditions. It is made
+ * for another scatter over the same local mean; of the pass that was fitted itself, whose
+ * fades the fit has seen, it holds the fraction nearly always.
  *
  * @return RFADE_OK | RFADE_DOMAIN | RFADE_NO_DATA (empty track)
  * Accuracy: the outage to that of the model's tails; interval ends are solved to 1e-6

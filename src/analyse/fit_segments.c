@@ -43,7 +43,9 @@ static enum rfade_status prepare_traversals(struct rfade_survey *survey,
         survey, statement, error,
         "SELECT trace.fingerprint, traversal.start_us, traversal.end_us,"
         " traversal.reading_count, travel_m, level_uncertainty_db, wavelength_m,"
-        " fading_tally, level_tally, local_mean_tally, snr_tally, noise_tally, blocks, sampling"
+        " fading_tally, level_tally, local_mean_tally, snr_tally, noise_tally, blocks, "
+        "sampling,"
+        " vehicle_id, pass_start_us"
         " FROM traversal JOIN trace USING (trace_id)"
         " WHERE segment_id = ?1 AND channel_id = ?2 AND campaign_id = ?3"
         " ORDER BY trace.fingerprint, traversal.start_us, traversal.end_us",
@@ -89,6 +91,20 @@ static enum rfade_status merge_tally(sqlite3_stmt *statement, int column,
     return status;
 }
 
+/* A pass may be cut into several traversals of one segment, by gaps between its traces. */
+static enum rfade_status merge_pass(sqlite3_stmt *statement, struct rfade_pass_levels *levels)
+{
+    struct rfade_tally *local_mean = NULL;
+    const void *bytes = sqlite3_column_blob(statement, 9);
+    enum rfade_status status =
+        rfade_tally_decode(bytes, (size_t)sqlite3_column_bytes(statement, 9), &local_mean);
+    if (status == RFADE_OK)
+        status = rfade_pass_levels_add(levels, sqlite3_column_int64(statement, 14),
+                                       sqlite3_column_int64(statement, 15), local_mean);
+    rfade_tally_destroy(local_mean);
+    return status;
+}
+
 static enum rfade_status merge_traversal(sqlite3_stmt *statement, struct rfade_pool *pool)
 {
     pool->readings += sqlite3_column_int64(statement, 3);
@@ -100,6 +116,8 @@ static enum rfade_status merge_traversal(sqlite3_stmt *statement, struct rfade_p
     enum rfade_status status = RFADE_OK;
     for (int i = 0; i < (int)(sizeof sums_of / sizeof sums_of[0]) && status == RFADE_OK; i++)
         status = merge_tally(statement, 7 + i, sums_of[i]);
+    if (status == RFADE_OK)
+        status = merge_pass(statement, &pool->pass_levels);
     struct rfade_blocks blocks = {0};
     const void *bytes = sqlite3_column_blob(statement, 12);
     if (status == RFADE_OK)
@@ -115,20 +133,6 @@ static enum rfade_status merge_traversal(sqlite3_stmt *statement, struct rfade_p
     if (status == RFADE_OK)
         status = rfade_sampling_merge(&pool->sampling, &sums, 1);
     return status;
-}
-
-/* A pass may be cut into several traversals of one segment, by gaps between its traces. */
-static enum rfade_status count_passes(struct rfade_survey *survey, const struct group *group,
-                                      int64_t *passes, struct rfade_error *error)
-{
-    bool found = false;
-    return rfade_survey_integer(survey, passes, &found, error,
-                                "SELECT count(*) FROM (SELECT DISTINCT vehicle_id,"
-                                " pass_start_us FROM traversal JOIN trace USING (trace_id)"
-                                " WHERE segment_id = ?1 AND channel_id = ?2"
-                                " AND campaign_id = ?3)",
-                                "iii", group->segment_id, group->channel_id,
-                                group->campaign_id);
 }
 
 static enum rfade_status fill_pool(struct rfade_survey *survey, const struct group *group,
@@ -193,17 +197,18 @@ static enum rfade_status store_result(struct rfade_survey *survey, const struct 
         "INSERT INTO fading (segment_id, channel_id, campaign_id, fingerprint, sampling,"
         " pass_count, reading_count, travel_m, wavelength_m, effective_count,"
         " mean_power_dbm, local_mean_dbm, local_sigma_db, local_sigma_low_db,"
-        " local_sigma_high_db, window_noise_db, level_uncertainty_db, noise_dbm, level_tally,"
-        " local_mean_tally, snr_tally) VALUES (?1, ?2, ?3, ?4, ?5, ?6, ?7, ?8, ?9, ?10, ?11,"
-        " ?12, ?13, ?14, ?15, ?16, ?17, ?18, ?19, ?20, ?21)",
-        "iiibtiidddddddddddbbb", group->segment_id, group->channel_id, group->campaign_id,
+        " local_sigma_high_db, window_noise_db, level_uncertainty_db, pass_deviation_db, "
+        "noise_dbm,"
+        " level_tally, local_mean_tally, snr_tally) VALUES (?1, ?2, ?3, ?4, ?5, ?6, ?7, ?8,"
+        " ?9, ?10, ?11, ?12, ?13, ?14, ?15, ?16, ?17, ?18, ?19, ?20, ?21, ?22)",
+        "iiibtiiddddddddddddbbb", group->segment_id, group->channel_id, group->campaign_id,
         (const void *)fingerprint->bytes, sizeof fingerprint->bytes,
         rfade_sampling_name(result->sampling), pool->passes, pool->readings, pool->travel_m,
         pool->wavelength_m, result->effective_count, result->mean_power_dbm,
         result->local_mean_dbm, result->local_sigma_db, result->local_sigma_low_db,
         result->local_sigma_high_db, result->window_noise_db, result->level_uncertainty_db,
-        result->noise_dbm, (const void *)bytes[0], sizes[0], (const void *)bytes[1], sizes[1],
-        (const void *)bytes[2], sizes[2]);
+        result->pass_deviation_db, result->noise_dbm, (const void *)bytes[0], sizes[0],
+        (const void *)bytes[1], sizes[1], (const void *)bytes[2], sizes[2]);
     if (status == RFADE_OK)
         status = store_fits(survey, group, result, error);
 out:
@@ -223,8 +228,7 @@ static enum rfade_status fit_group(struct rfade_survey *survey,
     if (rfade_pool_create(&pool) != RFADE_OK)
         return rfade_error_no_memory(error);
     enum rfade_status status = fill_pool(survey, group, &pool, error);
-    if (status == RFADE_OK)
-        status = count_passes(survey, group, &pool.passes, error);
+    pool.passes = (int64_t)pool.pass_levels.count;
     if (status == RFADE_OK)
         status = rfade_pool_evaluate(&pool, settings, &result, error);
     if (status == RFADE_OK)

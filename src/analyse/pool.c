@@ -65,6 +65,7 @@ void rfade_pool_clear(struct rfade_pool *pool)
     rfade_tally_destroy(pool->fading);
     rfade_tally_destroy(pool->level);
     rfade_tally_destroy(pool->local_mean);
+    rfade_pass_levels_clear(&pool->pass_levels);
     rfade_tally_destroy(pool->snr);
     rfade_tally_destroy(pool->noise);
     *pool = (struct rfade_pool){.wavelength_m = NAN};
@@ -166,6 +167,9 @@ static void judge_local_mean(struct rfade_pool *pool,
     const struct rfade_fit *rice = rice_fit(result);
     double k = rice ? rice->parameter : 0.0;
     struct rfade_ray ray = rfade_ray_from_lags(&pool->sampling, k);
+    double pass_variance = rfade_lag_mean_variance(&lags->pass, k, &ray);
+    struct rfade_pass_spread spread = rfade_find_pass_spread(
+        &pool->pass_levels, DB_PER_NEPER_OF_POWER * sqrt(pass_variance), settings->confidence);
     double window_variance = rfade_lag_mean_variance(&lags->window, k, &ray);
     result->window_noise_db = DB_PER_NEPER_OF_POWER * sqrt(window_variance);
     /* The mean of dB of a noisy power lies below the dB of its mean, to first order by half
@@ -176,15 +180,13 @@ static void judge_local_mean(struct rfade_pool *pool,
                              (rice ? rice->mean_power_db : 0.0);
     local_sigma(pool, settings, track->variance_db2, rice ? rice->mean_power_db : 0.0, result);
 
-    double passes = (double)pool->passes;
-    double mean_variance = rfade_lag_mean_variance(&lags->pass, k, &ray) / passes;
-    double fading_db2 = DB_PER_NEPER_OF_POWER * DB_PER_NEPER_OF_POWER * mean_variance;
+    double mean_variance = pass_variance / (double)pool->passes;
     if (result->fitted)
         result->effective_count =
             fmin((double)pool->readings,
                  rfade_model(RFADE_RICE)->normalised_variance(k) / mean_variance);
-    result->level_uncertainty_db =
-        sqrt(fading_db2 + pool->calibration_db * pool->calibration_db);
+    result->level_uncertainty_db = hypot(spread.mean_db, pool->calibration_db);
+    result->pass_deviation_db = spread.next_db;
 }
 
 /* Measured blocks with what theory expects; the measured ones alone where it has no say. */
@@ -277,6 +279,7 @@ enum rfade_status rfade_pool_evaluate(struct rfade_pool *pool,
                                          .window_noise_db = NAN,
                                          .effective_count = NAN,
                                          .level_uncertainty_db = NAN,
+                                         .pass_deviation_db = NAN,
                                          .noise_dbm = NAN};
     bool seen = result->sampling == RFADE_RESOLVED || result->sampling == RFADE_INSEPARABLE;
     struct lags lags;

@@ -9,6 +9,7 @@
 #include <stdbool.h>
 #include <stdint.h>
 
+#include "analyse/pass_spread.h"
 #include "analyse/settings.h"
 #include "common/error.h"
 #include "routefade/estimate.h"
@@ -24,6 +25,7 @@ struct rfade_pool {
     struct rfade_blocks blocks;
     struct rfade_sampling_sums sampling;
     int64_t passes;
+    struct rfade_pass_levels pass_levels; /**< may be of none, or of all passes */
     int64_t readings;
     double travel_m;
     double wavelength_m;
@@ -41,8 +43,9 @@ struct rfade_pool_result {
     double window_noise_db;
     double effective_count; /**< independent readings that would know the mean as well */
     double level_uncertainty_db;
-    double noise_dbm; /**< mean noise power by the logged SNR */
-    bool fitted;      /**< whether `estimate` holds fits of the fast fading */
+    double pass_deviation_db; /**< of the next pass's level from the mean, fading left out */
+    double noise_dbm;         /**< mean noise power by the logged SNR */
+    bool fitted;              /**< whether `estimate` holds fits of the fast fading */
     struct rfade_estimate estimate;
 };
 

@@ -68,6 +68,7 @@ struct rfade_segment_result {
     double local_sigma_high_db;
     double window_noise_db;
     double level_uncertainty_db;
+    double pass_deviation_db; /**< NaN with one pass */
     double noise_floor_dbm; /**< in the bandwidth; NaN: not known */
     enum rfade_noise_source noise_source;
     double bandwidth_hz;

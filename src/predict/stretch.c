@@ -199,9 +199,10 @@ static bool valid(const struct rfade_stretch *stretch)
 {
     return stretch->model && stretch->length_wavelengths > 0 && stretch->passes > 0 &&
            stretch->level_uncertainty_db >= 0 && stretch->calibration_db >= 0 &&
-           stretch->slow_variance >= 0 && stretch->spread_below >= 0 &&
-           stretch->spread_below <= 1 && stretch->spread_above >= 0 && stretch->readings >= 0 &&
-           stretch->confidence > 0 && stretch->confidence < 1 && isfinite(stretch->offset_db);
+           stretch->slow_variance >= 0 && stretch->pass_deviation_db >= 0 &&
+           stretch->spread_below >= 0 && stretch->spread_below <= 1 &&
+           stretch->spread_above >= 0 && stretch->readings >= 0 && stretch->confidence > 0 &&
+           stretch->confidence < 1 && isfinite(stretch->offset_db);
 }
 
 /* What one model says: log odds of the outage and its ends, and the next pass's variance. */
@@ -293,6 +294,24 @@ static void mix(const struct verdict *verdicts, const double *weights, size_t co
         fmax(result->centre, mixed_end(some, some_weights, kept, quantile, 1.0 - tail));
 }
 
+/* Another pass's level differs by itself: on top of what is unknown of the outage. */
+static enum rfade_status differ(const struct rfade_stretch *stretch, double threshold_dbm,
+                                double quantile, double centre, double *below, double *above)
+{
+    double squares[2] = {*below * *below, *above * *above};
+    for (int sign = -1; sign <= 1; sign += 2) {
+        const struct move move = {stretch->parameter,
+                                  sign * quantile * stretch->pass_deviation_db, 1.0};
+        enum rfade_status status =
+            add_distances(stretch, centre, &move, threshold_dbm, &squares[0], &squares[1]);
+        if (status != RFADE_OK)
+            return status;
+    }
+    *below = sqrt(squares[0]);
+    *above = sqrt(squares[1]);
+    return RFADE_OK;
+}
+
 enum rfade_status rfade_stretch_outage_mixed(const struct rfade_stretch *stretches,
                                              const double *weights, size_t count,
                                              size_t preferred, double threshold_dbm,
@@ -325,9 +344,14 @@ enum rfade_status rfade_stretch_outage_mixed(const struct rfade_stretch *stretch
     mix(verdicts, weights, count, quantile, tail, &all);
     result->low = probability_of(all.low);
     result->high = probability_of(all.high);
+    double below = all.centre - all.low, above = all.high - all.centre;
+    enum rfade_status status =
+        differ(&stretches[preferred], threshold_dbm, quantile, all.centre, &below, &above);
+    if (status != RFADE_OK)
+        return status;
     struct rfade_next_pass next = {.log_odds = all.centre,
-                                   .deviation_below = (all.centre - all.low) / quantile,
-                                   .deviation_above = (all.high - all.centre) / quantile,
+                                   .deviation_below = below / quantile,
+                                   .deviation_above = above / quantile,
                                    .variance = all.variance,
                                    .readings = stretches[preferred].readings};
     rfade_next_pass_interval(&next, confidence, &result->next_low, &result->next_high);

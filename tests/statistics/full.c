@@ -2,9 +2,13 @@
 /**
  * @file full.c  The full form: every cell of the table of coverage, printed as it goes.
  *   statistics_full [SEGMENTS [FIRST_CELL [CELLS]]]
- * A line a cell and measure: share that held the truth, its binomial interval, misses on
- * either side, mean width over 3.92 times the spread, bias over the spread; "FAIL" where the
- * binomial interval excludes 93 to 97 %. Exit status 1 if any cell failed.
+ * A line a cell and measure, as a row of a table: the share that held the truth and its
+ * binomial interval, misses on either side, mean width over 3.92 times the spread, mean error
+ * over the spread; "FAIL" where the binomial interval excludes 93 to 97 %, or the width's own
+ * interval 0.9 to 1.2. A summary at the end. Exit status 1 if any cell failed.
+ *
+ * Seeds follow from the cell alone, so that several processes may share the cells; none of
+ * them was used while the method was made.
  */
 #include <gsl/gsl_errno.h>
 #include <inttypes.h>
@@ -15,8 +19,8 @@
 #include "statistics/count.h"
 
 static const char *const measure_names[MEASURE_COUNT] = {
-    "K",      "m",       "local-mean", "local-sigma", "outage-5", "outage-10", "outage-15",
-    "same-5", "same-10", "same-15",    "next-5",      "next-10",  "next-15"};
+    "K",       "m",        "local mean", "local sigma", "outage -5", "outage -10", "outage -15",
+    "same -5", "same -10", "same -15",   "next -5",     "next -10",  "next -15"};
 
 static const struct circumstances base = {.k = 0.0,
                                           .ray_angle_deg = 90.0,
@@ -31,136 +35,246 @@ static const struct circumstances base = {.k = 0.0,
 
 static const double ks[] = {0.0, 1.0, 4.0, 10.0};
 static const double angles_deg[] = {90.0, 0.0};
+static const int shifted_passes[] = {1, 2, 3, 6};
 
-/* Exponential shadowing: K 1, 4, 10 and decorrelation 20, 60 m, after the others. */
+/* After the others: exponential shadowing, K 1, 4, 10 and decorrelation 20, 60 m; passes that
+ * differ by 2 dB, K 1 and 4 and one to six of them. */
 enum {
     VARIATIONS = 8,
     SMOOTH_CELLS = 4 * 2 * VARIATIONS,
     EXPONENTIAL_CELLS = 3 * 2,
-    CELLS = SMOOTH_CELLS + EXPONENTIAL_CELLS
+    SHIFTED_CELLS = 2 * 4,
+    CELLS = SMOOTH_CELLS + EXPONENTIAL_CELLS + SHIFTED_CELLS
 };
+
+/* Seeds of the runs by which the method was made lie below. */
+enum { FIRST_SEED_CELL = 2000, SEEDS_A_CELL = 100000 };
+
+struct tally_of_cells {
+    int run;
+    int failed;
+};
+
+/* One thing changed of the base. */
+static void vary(int variation, struct circumstances *it)
+{
+    switch (variation) {
+    case 1:
+        it->step_db = 0.1;
+        break;
+    case 2:
+        it->spacing_wavelengths = 0.05;
+        break;
+    case 3:
+        it->spacing_wavelengths = 0.3;
+        break;
+    case 4:
+        it->censored = 0.1;
+        break;
+    case 5:
+        it->decorrelation_m = 200.0;
+        break;
+    case 6:
+        it->passes = 3;
+        break;
+    case 7:
+        it->segment_m = 300.0;
+        break;
+    default:
+        break;
+    }
+}
 
 /* Each K and direction of the ray with the base and with one thing changed. */
 static struct circumstances cell(int index)
 {
     struct circumstances it = base;
-    if (index >= SMOOTH_CELLS) {
+    int exponential = index - SMOOTH_CELLS;
+    int shifted = exponential - EXPONENTIAL_CELLS;
+    if (shifted >= 0) {
+        it.k = ks[1 + shifted / 4];
+        it.passes = shifted_passes[shifted % 4];
+        it.pass_shift_db = 2.0;
+    } else if (exponential >= 0) {
         it.shadowing = RFADE_SHADOWING_EXPONENTIAL;
         it.margin_windows = 20.0;
-        it.k = ks[1 + (index - SMOOTH_CELLS) % 3];
-        it.decorrelation_m = index - SMOOTH_CELLS < 3 ? 20.0 : 60.0;
-        return it;
-    }
-    it.k = ks[index / VARIATIONS % 4];
-    it.ray_angle_deg = angles_deg[index / VARIATIONS / 4];
-    switch (index % VARIATIONS) {
-    case 1:
-        it.step_db = 0.1;
-        break;
-    case 2:
-        it.spacing_wavelengths = 0.05;
-        break;
-    case 3:
-        it.spacing_wavelengths = 0.3;
-        break;
-    case 4:
-        it.censored = 0.1;
-        break;
-    case 5:
-        it.decorrelation_m = 200.0;
-        break;
-    case 6:
-        it.passes = 3;
-        break;
-    case 7:
-        it.segment_m = 300.0;
-        break;
-    default:
-        break;
+        it.k = ks[1 + exponential % 3];
+        it.decorrelation_m = exponential < 3 ? 20.0 : 60.0;
+    } else {
+        it.k = ks[index / VARIATIONS % 4];
+        it.ray_angle_deg = angles_deg[index / VARIATIONS / 4];
+        vary(index % VARIATIONS, &it);
     }
     return it;
 }
 
-static void print_share(const struct share *share, double low, double high, bool *failed)
+static void print_cell(int index, const struct circumstances *it)
 {
-    double ends[2];
-    bool excluded = share_excludes(share, low, high);
-    share_ends(share, &ends[0], &ends[1]);
-    printf(" %6.2f%% [%.2f %.2f] n %" PRId64 "%s",
-           100.0 * (double)share->hits / (double)share->trials, 100.0 * ends[0],
-           100.0 * ends[1], share->trials, excluded ? " FAIL" : "");
-    *failed |= excluded;
+    printf("| %d | K %g, ray %g", index, it->k, it->ray_angle_deg);
+    if (it->step_db != base.step_db) {
+        printf(", step %g", it->step_db);
+    }
+    if (it->spacing_wavelengths != base.spacing_wavelengths) {
+        printf(", spacing %g", it->spacing_wavelengths);
+    }
+    if (it->censored > 0.0) {
+        printf(", censored %g", it->censored);
+    }
+    if (it->decorrelation_m != base.decorrelation_m) {
+        printf(", D %g", it->decorrelation_m);
+    }
+    if (it->shadowing != base.shadowing) {
+        printf(", exponential");
+    }
+    if (it->passes != base.passes || it->pass_shift_db > 0.0) {
+        printf(", passes %d", it->passes);
+    }
+    if (it->pass_shift_db > 0.0) {
+        printf(", differing %g dB", it->pass_shift_db);
+    }
+    if (it->segment_m != base.segment_m) {
+        printf(", %g m", it->segment_m);
+    }
+    printf(" | ");
 }
 
-static void print_measure(const struct circumstances *it, int measure,
-                          const struct coverage *coverage, bool *failed)
+/* The band that a share is to lie in; from 0 to 1: nothing is asked. */
+struct band {
+    double low;
+    double high;
+};
+
+static bool print_share(const struct share *share, const struct band *band)
 {
-    /* At K = 0 an interval can only miss upwards: it is to hold the truth at least as often. */
-    double most = measure == MEASURE_K && it->k == 0.0 ? 1.0 : 0.97;
-    /* A fraction that is next to never seen, or a rounded one, is held more often. */
-    if (measure >= MEASURE_SAME && coverage->share.trials > 0) {
-        most = 1.0;
+    double ends[2];
+    bool excluded = share_excludes(share, band->low, band->high);
+    share_ends(share, &ends[0], &ends[1]);
+    printf("%.2f [%.2f %.2f] | %" PRId64 " | ",
+           100.0 * (double)share->hits / (double)share->trials, 100.0 * ends[0],
+           100.0 * ends[1], share->trials);
+    return excluded;
+}
+
+/* Levels of passes that are alike, as far as they show. */
+static bool cautious(const struct circumstances *it, int measure)
+{
+    return it->passes > 1 && it->pass_shift_db == 0.0 && measure >= MEASURE_LOCAL_MEAN;
+}
+
+/*
+ * At K = 0 a two-sided interval can only miss upwards: it is to hold the truth at least as
+ * often. The prediction interval is made for another pass: the one that was fitted is held
+ * more often, and a fraction of few fades, which moves by whole ones, is, too. One pass says
+ * nothing of passes that differ, and three that don't differ can't tell that they don't.
+ */
+static struct band band_of(const struct circumstances *it, int measure)
+{
+    bool few_fades = measure > MEASURE_NEXT || it->k >= 10.0;
+    if (measure == MEASURE_LOCAL_SIGMA || (it->pass_shift_db > 0.0 && it->passes == 1)) {
+        return (struct band){0.0, 1.0};
     }
-    printf("  %-11s", measure_names[measure]);
-    print_share(&coverage->share, 0.93, most, failed);
-    printf("  below %" PRId64 " above %" PRId64, coverage->below, coverage->above);
+    if (measure == MEASURE_K && it->k == 0.0) {
+        return (struct band){0.95, 1.0};
+    }
+    if (cautious(it, measure)) {
+        return (struct band){0.93, 1.0};
+    }
+    if (measure >= MEASURE_SAME && (measure < MEASURE_NEXT || few_fades)) {
+        return (struct band){0.93, 1.0};
+    }
+    return (struct band){0.93, 0.97};
+}
+
+static bool judges_width(const struct circumstances *it, int measure)
+{
+    return measure < MEASURE_SAME && measure != MEASURE_LOCAL_SIGMA &&
+           !(measure == MEASURE_K && it->k == 0.0) &&
+           !(it->pass_shift_db > 0.0 && it->passes == 1) &&
+           !(it->passes > 1 && measure >= MEASURE_LOCAL_MEAN); /* Student's t of a few */
+}
+
+/* The spread is known to about a share 1/sqrt(2 n) of itself. */
+static bool width_failed(const struct coverage *coverage)
+{
+    double ratio = coverage_width_ratio(coverage);
+    double error = 1.96 / sqrt(2.0 * (double)coverage->finite);
+    return ratio * (1.0 + error) < 0.9 || ratio * (1.0 - error) > 1.2;
+}
+
+static bool print_measure(int index, const struct circumstances *it, int measure,
+                          const struct coverage *coverage)
+{
+    struct band band = band_of(it, measure);
+    print_cell(index, it);
+    printf("%s | ", measure_names[measure]);
+    bool failed = print_share(&coverage->share, &band);
+    printf("%" PRId64 "/%" PRId64 " | ", coverage->below, coverage->above);
     if (coverage->finite > 0) {
-        printf("  width %.3f bias %+.3f", coverage_width_ratio(coverage),
-               coverage_bias(coverage));
+        printf("%.2f | %+.2f | ", coverage_width_ratio(coverage), coverage_bias(coverage));
+        failed |= judges_width(it, measure) && width_failed(coverage);
+    } else {
+        printf(" | | ");
     }
-    printf("\n");
+    printf("%s |\n", failed ? "FAIL" : "");
+    return failed;
+}
+
+static bool print_rate(int index, const struct circumstances *it, const char *name,
+                       const struct share *share, const struct band *band)
+{
+    print_cell(index, it);
+    printf("%s | ", name);
+    bool failed = share->trials > 0 && print_share(share, band);
+    printf(" | | | %s |\n", failed ? "FAIL" : "");
+    return failed;
 }
 
 /* K of the segments called resolved is to be right in the middle. */
-static bool run_exponential(int index, int64_t segments)
+static bool print_exponential(int index, const struct circumstances *it, struct count *count)
 {
-    struct circumstances it = cell(index);
-    struct count count;
-    if (!count_segments(&it, segments, 1 + (uint64_t)index * 100000, &count)) {
-        return false;
-    }
-    double ratio = count.k_count > 0 ? count_median_k(&count) / it.k : 1.0;
-    bool right = count.k_count < segments / 10 || (ratio >= 0.9 && ratio <= 1.1);
-    printf("cell %d: exponential, K %g D %g: resolved %" PRId64 " inseparable %" PRId64
-           "; median K of resolved over truth %.3f%s\n",
-           index, it.k, it.decorrelation_m, count.resolved, count.inseparable, ratio,
-           right ? "" : " FAIL");
-    fflush(stdout);
-    count_clear(&count);
-    return right;
+    double ratio = count->k_count > 0 ? count_median_k(count) / it->k : 1.0;
+    bool failed = count->k_count >= count->segments / 10 && !(ratio >= 0.9 && ratio <= 1.1);
+    print_cell(index, it);
+    printf("median K over truth | %.3f | %" PRId64 " | inseparable %" PRId64 " | | | %s |\n",
+           ratio, count->resolved, count->inseparable, failed ? "FAIL" : "");
+    return failed;
 }
 
-static bool run_cell(int index, int64_t segments)
+static bool print_smooth(int index, const struct circumstances *it, const struct count *count)
+{
+    bool failed = count->failed > 0;
+    for (int i = 0; i < MEASURE_COUNT; i++) {
+        if (count->coverage[i].share.trials > 0) {
+            failed |= print_measure(index, it, i, &count->coverage[i]);
+        }
+    }
+    failed |=
+        print_rate(index, it, "goodness 5 %", &count->goodness, &(struct band){0.04, 0.06});
+    if (it->k == 0.0) {
+        failed |= print_rate(index, it, "Rayleigh against Rice 5 %", &count->rice,
+                             &(struct band){0.04, 0.06});
+        failed |= print_rate(index, it, "Rayleigh not preferred", &count->preferred,
+                             &(struct band){0.0, 0.1});
+    }
+    return failed;
+}
+
+static bool run_cell(int index, int64_t segments, struct tally_of_cells *tally)
 {
     struct circumstances it = cell(index);
     struct count count;
-    bool failed = false;
-    if (!count_segments(&it, segments, 1 + (uint64_t)index * 100000, &count)) {
+    uint64_t seed = 1 + (uint64_t)(FIRST_SEED_CELL + index) * SEEDS_A_CELL;
+    if (!count_segments(&it, segments, seed, &count)) {
         return false;
     }
-    printf("cell %d: K %g ray %g step %g spacing %g censored %g D %g passes %d length %g:"
-           " resolved %" PRId64 " inseparable %" PRId64 " failed %" PRId64 "; median K %.3f\n",
-           index, it.k, it.ray_angle_deg, it.step_db, it.spacing_wavelengths, it.censored,
-           it.decorrelation_m, it.passes, it.segment_m, count.resolved, count.inseparable,
-           count.failed, count_median_k(&count));
-    for (int i = 0; i < MEASURE_COUNT; i++) {
-        if (count.coverage[i].share.trials > 0) {
-            print_measure(&it, i, &count.coverage[i], &failed);
-        }
-    }
-    printf("  goodness   ");
-    print_share(&count.goodness, 0.04, 0.06, &failed);
-    printf("\n");
-    if (it.k == 0.0) {
-        printf("  rice-test  ");
-        print_share(&count.rice, 0.04, 0.06, &failed);
-        printf("\n  not-rayleigh");
-        print_share(&count.preferred, 0.0, 0.1, &failed);
-        printf("\n");
-    }
+    bool failed = it.shadowing == RFADE_SHADOWING_EXPONENTIAL
+                      ? print_exponential(index, &it, &count)
+                      : print_smooth(index, &it, &count);
     fflush(stdout);
     count_clear(&count);
-    return !failed;
+    tally->run++;
+    tally->failed += failed;
+    return true;
 }
 
 static long argument(int count, char **values, int place, long otherwise)
@@ -173,10 +287,15 @@ int main(int count, char **values)
     long segments = argument(count, values, 1, 2000);
     int first = (int)argument(count, values, 2, 0);
     int cells = (int)argument(count, values, 3, CELLS);
-    bool good = segments > 0 && first >= 0;
+    struct tally_of_cells tally = {0, 0};
+    bool good = segments > 0 && segments <= SEEDS_A_CELL && first >= 0;
     gsl_set_error_handler_off();
-    for (int i = first; i < first + cells && i < CELLS; i++) {
-        good &= i < SMOOTH_CELLS ? run_cell(i, segments) : run_exponential(i, segments);
+    printf(
+        "| cell | circumstances | measure | %% [95 %%] | n | below/above | width | bias | |\n"
+        "| --- | --- | --- | --- | --- | --- | --- | --- | --- |\n");
+    for (int i = first; i < first + cells && i < CELLS && good; i++) {
+        good = run_cell(i, segments, &tally);
     }
-    return good ? EXIT_SUCCESS : EXIT_FAILURE;
+    printf("\n%d of %d cells failed\n", tally.failed, tally.run);
+    return good && tally.failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
 }

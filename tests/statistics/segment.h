@@ -26,7 +26,8 @@ struct circumstances {
     double margin_windows; /**< road before and behind it: 2, so that no window is cut, or 20,
                                 the neighbourhood that the label is judged by */
     int passes;
-    double standstill_s; /**< at the middle of the segment; 0: none */
+    double pass_shift_db; /**< standard deviation of each pass's level about the local mean */
+    double standstill_s;  /**< at the middle of the segment; 0: none */
 };
 
 enum { THRESHOLDS = 3 };
