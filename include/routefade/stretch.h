@@ -59,8 +59,9 @@ struct rfade_stretch_outage {
  * Outage of a stretch at a threshold.
  *
  * outage = sum w F(threshold - local mean) / sum w. The confidence interval combines, on the
- * scale of ln(odds), the ends of the parameter's interval and of the mean level's by the
- * method of variance estimates recovery [Zou and Donner 2008, eq. 4]; only the part of the
+ * scale of ln(odds), the ends of the intervals of the parameter, the mean level and the local
+ * mean's standard deviation by the method of variance estimates recovery [Zou and Donner 2008,
+ * eq. 4]; only the part of the
  * track that lies near the threshold counts, so its level is less certain than the whole
  * stretch's. The prediction interval takes the readings below the threshold on one pass as a
  * Poisson number of fades of geometric length [Polya and Aeppli; Johnson, Kemp and Kotz 2005,
