@@ -9,9 +9,6 @@
 #include "ingest/emit.h"
 #include "ingest/time.h"
 
-/* Faster than any vehicle that one would send round for this: 1000 km/h. */
-static const double most_speed_m_s = 1000.0 / 3.6;
-
 struct gpx_track {
     const char *vehicle;
     struct rfade_emitter *emitter;
@@ -44,7 +41,7 @@ static enum rfade_status take_point(void *context, const struct rfade_gpx_point 
     row.no_place = !row.has_place;
     row.latitude_deg = point->latitude_deg;
     row.longitude_deg = point->longitude_deg == 180 ? -180 : point->longitude_deg;
-    if (point->speed_m_s >= 0 && point->speed_m_s <= most_speed_m_s)
+    if (point->speed_m_s >= 0 && point->speed_m_s <= RFADE_MOST_SPEED_M_S)
         row.speed_m_s = point->speed_m_s;
     return rfade_emitter_row(track->emitter, &row, true, &line, error);
 }

@@ -89,7 +89,8 @@ static enum rfade_status end_epoch(struct nmea *nmea, struct rfade_error *error)
     row.no_place = !row.has_place;
     row.latitude_deg = epoch->said.latitude_deg;
     row.longitude_deg = epoch->said.longitude_deg;
-    row.speed_m_s = epoch->said.speed_m_s;
+    if (epoch->said.speed_m_s <= RFADE_MOST_SPEED_M_S)
+        row.speed_m_s = epoch->said.speed_m_s;
     return rfade_emitter_row(nmea->emitter, &row, true, &line, error);
 }
 

@@ -11,27 +11,19 @@
 #include "ingest/fields.h"
 #include "ingest/names.h"
 #include "ingest/number.h"
-#include "ingest/position.h"
 #include "ingest/quantity.h"
+#include "ingest/row_place.h"
 #include "ingest/time.h"
-
-/* Faster than any vehicle that one would send round for this: 1000 km/h. */
-static const double most_speed_m_s = 1000.0 / 3.6;
 
 struct rfade_row_maker {
     const struct rfade_column_map *map;
     const struct rfade_row_values *values;
     struct rfade_name_table *names;
-    struct rfade_position_converter *converter;
+    struct rfade_place_reader *places;
     struct rfade_time_reader time_reader;
     const char *vehicle; /* NULL: in a column */
     const char *channel;
     const char *campaign;
-    bool has_place; /* a place was read, from these texts: rows repeat positions */
-    struct rfade_field first;
-    struct rfade_field second;
-    double latitude_deg;
-    double longitude_deg;
 };
 
 void rfade_row_maker_destroy(struct rfade_row_maker *maker)
@@ -39,7 +31,7 @@ void rfade_row_maker_destroy(struct rfade_row_maker *maker)
     if (!maker)
         return;
     rfade_name_table_destroy(maker->names);
-    rfade_position_converter_destroy(maker->converter);
+    rfade_place_reader_destroy(maker->places);
     free(maker);
 }
 
@@ -105,7 +97,7 @@ enum rfade_status rfade_row_maker_create(const struct rfade_column_map *map,
     if (status == RFADE_OK)
         status = settle_names(made, names, error);
     if (status == RFADE_OK)
-        status = rfade_position_converter_create(&map->position, &made->converter, error);
+        status = rfade_place_reader_create(map, values, &made->places, error);
     if (status != RFADE_OK) {
         rfade_row_maker_destroy(made);
         return status;
@@ -114,11 +106,16 @@ enum rfade_status rfade_row_maker_create(const struct rfade_column_map *map,
     return RFADE_OK;
 }
 
-static const struct rfade_field *field(const struct rfade_row_maker *maker, size_t role)
+const struct rfade_field *rfade_row_value(const struct rfade_row_values *values, size_t role)
 {
     static const struct rfade_field absent;
-    const struct rfade_field *value = maker->values->by_role[role];
+    const struct rfade_field *value = values->by_role[role];
     return value ? value : &absent;
+}
+
+static const struct rfade_field *field(const struct rfade_row_maker *maker, size_t role)
+{
+    return rfade_row_value(maker->values, role);
 }
 
 bool rfade_row_refuse(struct rfade_row *row, const char *format, ...)
@@ -137,8 +134,8 @@ bool rfade_row_refuse(struct rfade_row *row, const char *format, ...)
     return false;
 }
 
-static bool refuse_value(struct rfade_row *row, const char *what,
-                         const struct rfade_field *value, const char *reason)
+bool rfade_row_refuse_value(struct rfade_row *row, const char *what,
+                            const struct rfade_field *value, const char *reason)
 {
     return rfade_row_refuse(row, "the %s '%.40s' %s", what, value->text, reason);
 }
@@ -197,7 +194,7 @@ static bool read_time(struct rfade_row_maker *maker, struct rfade_row *row)
     }
     if (!reason)
         reason = settle_time(maker, row);
-    return !reason || refuse_value(row, "time", value, reason);
+    return !reason || rfade_row_refuse_value(row, "time", value, reason);
 }
 
 static bool read_name(struct rfade_row_maker *maker, struct rfade_row *row, const char *fixed,
@@ -210,7 +207,7 @@ static bool read_name(struct rfade_row_maker *maker, struct rfade_row *row, cons
     const char *reason = value->cut
                              ? "is too long for a name"
                              : rfade_name_keep(maker->names, value->text, value->size, name);
-    return !reason || refuse_value(row, what, value, reason);
+    return !reason || rfade_row_refuse_value(row, what, value, reason);
 }
 
 /* One level and its SNR; false if one of them can't be used. */
@@ -225,11 +222,11 @@ static bool read_level(const struct rfade_row_maker *maker, struct rfade_row *ro
     const char *reason = rfade_quantity_read(&map->level, decimal_sign, value->text,
                                              value->size, &level->level_cdb);
     if (reason)
-        return refuse_value(row, "level", value, reason);
+        return rfade_row_refuse_value(row, "level", value, reason);
     value = field(maker, RFADE_ROLE_LEVELS + 2 * index + 1);
     reason =
         rfade_quantity_read(&map->snr, decimal_sign, value->text, value->size, &level->snr_cdb);
-    return !reason || refuse_value(row, "SNR", value, reason);
+    return !reason || rfade_row_refuse_value(row, "SNR", value, reason);
 }
 
 /* A number that can't be right is refused alone; the reading stays, without one. */
@@ -249,7 +246,7 @@ static void read_sequence(struct rfade_row_maker *maker, struct rfade_row *row)
     row->numbered = kind == RFADE_NUMBER && rfade_decimal_scaled(&decimal, 0, &row->sequence) &&
                     row->sequence >= 0 && row->sequence <= most;
     if (!row->numbered)
-        (void)refuse_value(row, "sequence number", value, "can't be right; not used");
+        (void)rfade_row_refuse_value(row, "sequence number", value, "can't be right; not used");
 }
 
 /* All levels; false if some were refused and none is left. */
@@ -273,93 +270,6 @@ static bool read_levels(struct rfade_row_maker *maker, struct rfade_row *row,
         row->levels[row->level_count++] = level;
     }
     return bad == 0 || row->level_count > 0;
-}
-
-/* Both coordinates; false if there are none, refused or not. */
-static bool read_coordinates(const struct rfade_row_maker *maker, struct rfade_row *row,
-                             double *first, double *second)
-{
-    char decimal_sign = maker->map->file.decimal_sign;
-    const struct rfade_position_map *map = &maker->map->position;
-    double *values[2] = {first, second};
-    for (size_t i = 0; i < 2; i++) {
-        const struct rfade_field *value = field(maker, RFADE_ROLE_FIRST + i);
-        struct rfade_decimal decimal;
-        enum rfade_number_kind kind =
-            rfade_number_read(&map->no_fix, decimal_sign, value->text, value->size, &decimal);
-        if (kind == RFADE_NO_NUMBER)
-            return refuse_value(row, "coordinate", value, "is not a number; position not used");
-        if (kind == RFADE_NOTHING) {
-            row->no_place = true;
-            return false;
-        }
-        *values[i] = rfade_decimal_double(&decimal);
-    }
-    if (map->form == RFADE_POSITION_DEGREES && *first == 0 && *second == 0)
-        row->no_place = true;
-    return !row->no_place;
-}
-
-/* Whether the coordinates are to the letter those that were read last, and good. */
-static bool is_same_place(const struct rfade_row_maker *maker)
-{
-    const struct rfade_field *first = field(maker, RFADE_ROLE_FIRST);
-    const struct rfade_field *second = field(maker, RFADE_ROLE_SECOND);
-    return maker->has_place && first->size == maker->first.size &&
-           second->size == maker->second.size &&
-           memcmp(first->text, maker->first.text, first->size) == 0 &&
-           memcmp(second->text, maker->second.text, second->size) == 0;
-}
-
-static void remember_place(struct rfade_row_maker *maker, const struct rfade_row *row)
-{
-    maker->has_place = row->has_place;
-    maker->first = *field(maker, RFADE_ROLE_FIRST);
-    maker->second = *field(maker, RFADE_ROLE_SECOND);
-    maker->latitude_deg = row->latitude_deg;
-    maker->longitude_deg = row->longitude_deg;
-}
-
-static void read_place(struct rfade_row_maker *maker, struct rfade_row *row)
-{
-    enum rfade_position_form form = maker->map->position.form;
-    double first = 0;
-    double second = 0;
-    if (form == RFADE_POSITION_NONE)
-        return;
-    if (is_same_place(maker)) {
-        row->has_place = true;
-        row->latitude_deg = maker->latitude_deg;
-        row->longitude_deg = maker->longitude_deg;
-        return;
-    }
-    if (form != RFADE_POSITION_FIXED && !read_coordinates(maker, row, &first, &second))
-        return;
-    const char *reason = rfade_position_convert(maker->converter, first, second,
-                                                &row->latitude_deg, &row->longitude_deg);
-    row->has_place = !reason;
-    if (reason)
-        (void)rfade_row_refuse(row, "the position %.20s, %.20s %s; not used",
-                               field(maker, RFADE_ROLE_FIRST)->text,
-                               field(maker, RFADE_ROLE_SECOND)->text, reason);
-    remember_place(maker, row);
-}
-
-static void read_speed(struct rfade_row_maker *maker, struct rfade_row *row)
-{
-    static const struct rfade_sentinels none;
-    const struct rfade_field *value = field(maker, RFADE_ROLE_SPEED);
-    struct rfade_decimal decimal;
-    enum rfade_number_kind kind = rfade_number_read(&none, maker->map->file.decimal_sign,
-                                                    value->text, value->size, &decimal);
-    if (kind == RFADE_NOTHING)
-        return;
-    if (kind == RFADE_NUMBER)
-        row->speed_m_s = rfade_decimal_double(&decimal) * maker->map->speed_m_s_per_unit;
-    if (row->speed_m_s >= 0 && row->speed_m_s <= most_speed_m_s)
-        return;
-    row->speed_m_s = NAN;
-    (void)refuse_value(row, "speed", value, "can't be right; not used");
 }
 
 /* Whether a name is missing that nothing needs: there is no reading, number or position. */
@@ -414,8 +324,6 @@ bool rfade_row_make(struct rfade_row_maker *maker, struct rfade_row *row)
     read_sequence(maker, row);
     if (!read_levels(maker, row, channel))
         return false;
-    read_place(maker, row);
-    if (row->has_place)
-        read_speed(maker, row);
+    rfade_place_read(maker->places, row);
     return true;
 }

@@ -8,6 +8,9 @@
 #include "ingest/layout.h"
 #include "ingest/open.h"
 
+/** Faster than any vehicle that one would send round for this: 1000 km/h. */
+#define RFADE_MOST_SPEED_M_S (1000.0 / 3.6)
+
 struct rfade_row_level {
     const char *channel;
     int32_t level_cdb; /**< RFADE_NO_VALUE_CDB: none */
@@ -62,12 +65,19 @@ enum rfade_status rfade_row_maker_create(const struct rfade_column_map *map,
                                          struct rfade_error *error);
 void rfade_row_maker_destroy(struct rfade_row_maker *maker); /* NULL is harmless */
 
+/** The value of a role; empty if there is no such column. */
+const struct rfade_field *rfade_row_value(const struct rfade_row_values *values, size_t role);
+
 /** Empties a row, to be filled by _make or refused. */
 void rfade_row_begin(struct rfade_row *row);
 
 /** Adds to what is refused, as far as there is room. Returns false, for callers to return. */
 bool rfade_row_refuse(struct rfade_row *row, const char *format, ...)
     __attribute__((format(printf, 2, 3)));
+
+/** As _refuse: the what 'value' reason. */
+bool rfade_row_refuse_value(struct rfade_row *row, const char *what,
+                            const struct rfade_field *value, const char *reason);
 
 /**
  * Fills a row that was begun from the values. Whether anything of them can be used, other
