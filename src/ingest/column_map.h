@@ -132,7 +132,8 @@
  * With `format = json` a row is a record, and a column a path in it, as SQLite writes paths:
  * time, rx.rssi, $.rx."signal to noise", $[2], $.list[#-1] (`$.` may be left out before a
  * first name). Numbers may stand as texts. What is not there, and null, is empty; a record
- * that has none of the columns says that nothing was received. The keys of [file] that say
+ * that has none of the columns says that nothing was received. A record holds at most 65534
+ * bytes, and what stands outside of it can't be a column. The keys of [file] that say
  * how lines are taken apart have no meaning, but for
  *
  *     [file]

@@ -145,6 +145,12 @@ static void vehicles_come_from_the_map(void **state)
     collect_text(&got, "[file]\nformat = nmea\n[vehicle]\nname = spreader-7\n", RMC_0);
     assert_int_equal(got.status, RFADE_OK);
     assert_int_equal(got.fix_count, 1);
+    struct rfade_column_map *map = good_map("[file]\nformat = nmea\nname = {vehicle}-*.nmea\n");
+    const struct rfade_column_map *const maps[1] = {map};
+    collect_file(&got, write_log("plough-7.nmea", RMC_0, strlen(RMC_0)), maps, 1, NULL);
+    assert_int_equal(got.status, RFADE_OK);
+    assert_int_equal(got.fix_count, 1);
+    rfade_column_map_destroy(map);
     collect_file(&got, write_log("log", RMC_0, strlen(RMC_0)), NULL, 0, NULL);
     assert_int_equal(got.status, RFADE_INPUT);
     assert_non_null(strstr(got.error.remedy, "--vehicle"));
