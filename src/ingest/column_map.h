@@ -146,8 +146,8 @@
  * NMEA 0183 AND GPX
  *
  * Such files give positions and need no map: their vehicle is the command line's. A map with
- * `format = nmea` or `format = gpx` may say [vehicle] name, and of [position] held_s and
- * max_speed; for NMEA files without RMC sentences also [time] date, the day of the first line.
+ * `format = nmea` or `format = gpx` may say [file] name, [vehicle] name, and of [position]
+ * held_s and max_speed; for NMEA files without RMC also [time] date, that of the first line.
  *
  * WHAT BECOMES OF A ROW
  *
