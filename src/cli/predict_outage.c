@@ -4,20 +4,23 @@
 #include "cli/predict.h"
 #include "routefade/predict.h"
 
-static size_t count(const struct rfade_predict_options *given)
+static size_t count(const struct rfade_predicted *predicted)
 {
-    return given->threshold_db.count;
+    return isnan(predicted->link.mean_snr_db) ? 0 : predicted->given->threshold_db.count;
 }
 
 /* Probability that the SNR is below the threshold. */
-static enum rfade_status outage_of(const struct rfade_link *link, double threshold_db,
+static enum rfade_status outage_of(const struct rfade_predicted *predicted, double threshold_db,
                                    double *outage, struct rfade_error *error)
 {
-    double x_db = threshold_db - link->median_snr_db;
+    const struct rfade_link *link = &predicted->link;
+    double x_db = threshold_db - predicted->median_snr_db;
     struct rfade_tails tails;
     enum rfade_status status = RFADE_OK;
     *outage = NAN;
-    if (link->model)
+    if (link->branches > 1)
+        status = rfade_link_outage(link, threshold_db, &tails);
+    else if (link->model)
         status = rfade_outage(link->model, link->parameter, link->shadowing_db, x_db, &tails);
     else if (link->shadowing_db > 0)
         status = rfade_model(RFADE_LOGNORMAL)->tails(link->shadowing_db, x_db, &tails);
@@ -31,13 +34,12 @@ static enum rfade_status outage_of(const struct rfade_link *link, double thresho
     return RFADE_OK;
 }
 
-static enum rfade_status entry(const struct rfade_link *link,
-                               const struct rfade_predict_options *given, size_t index,
+static enum rfade_status entry(const struct rfade_predicted *predicted, size_t index,
                                struct rfade_value *values, struct rfade_error *error)
 {
-    double threshold_db = given->threshold_db.items[index];
+    double threshold_db = predicted->given->threshold_db.items[index];
     double outage;
-    enum rfade_status status = outage_of(link, threshold_db, &outage, error);
+    enum rfade_status status = outage_of(predicted, threshold_db, &outage, error);
     values[0] = rfade_value_number(threshold_db);
     values[1] = rfade_value_number(outage);
     return status;

@@ -4,15 +4,17 @@
 #include "cli/predict.h"
 #include "routefade/predict.h"
 
-static size_t count(const struct rfade_predict_options *given)
+static size_t count(const struct rfade_predicted *predicted)
 {
-    return given->probability.count;
+    return isnan(predicted->link.mean_snr_db) ? 0 : predicted->given->probability.count;
 }
 
 /* The SNR that is exceeded in all but a probability of places. */
-static enum rfade_status quantile_of(const struct rfade_link *link, double probability,
-                                     double *snr_db, struct rfade_error *error)
+static enum rfade_status quantile_of(const struct rfade_predicted *predicted,
+                                     double probability, double *snr_db,
+                                     struct rfade_error *error)
 {
+    const struct rfade_link *link = &predicted->link;
     double above_median_db = 0; /* a steady SNR is the same everywhere */
     double rest = 1 - probability;
     enum rfade_status status = RFADE_OK;
@@ -27,17 +29,16 @@ static enum rfade_status quantile_of(const struct rfade_link *link, double proba
         return rfade_error_set(error, status, "ask for a probability that is less extreme",
                                "no SNR for a probability of %g: %s", probability,
                                rfade_status_text(status));
-    *snr_db = link->median_snr_db + above_median_db;
+    *snr_db = predicted->median_snr_db + above_median_db;
     return RFADE_OK;
 }
 
-static enum rfade_status entry(const struct rfade_link *link,
-                               const struct rfade_predict_options *given, size_t index,
+static enum rfade_status entry(const struct rfade_predicted *predicted, size_t index,
                                struct rfade_value *values, struct rfade_error *error)
 {
-    double probability = given->probability.items[index];
+    double probability = predicted->given->probability.items[index];
     double snr_db;
-    enum rfade_status status = quantile_of(link, probability, &snr_db, error);
+    enum rfade_status status = quantile_of(predicted, probability, &snr_db, error);
     values[0] = rfade_value_number(probability);
     values[1] = rfade_value_number(snr_db);
     return status;

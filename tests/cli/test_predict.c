@@ -315,14 +315,14 @@ static void what_makes_no_sense_is_refused(void **state)
             "--threshold-db", "0");
     REFUSED(2, "give one of --unfaded, --rayleigh", "predict", "--rayleigh", "--rice-k", "3",
             "--mean-snr-db", "9", "--threshold-db", "0");
-    REFUSED(2, "give one of --mean-snr-db, --median-snr-db", "predict", "--rayleigh",
+    REFUSED(2, "give one of --mean-snr-db, --mean-ebn0-db", "predict", "--rayleigh",
             "--threshold-db", "0");
-    REFUSED(2, "give one of --mean-snr-db, --median-snr-db", "predict", "--rayleigh",
+    REFUSED(2, "give one of --mean-snr-db, --mean-ebn0-db", "predict", "--rayleigh",
             "--mean-snr-db", "9", "--median-snr-db", "8", "--shadowing-db", "4",
             "--threshold-db", "0");
     REFUSED(2, "--median-snr-db needs --shadowing-db", "predict", "--rayleigh",
             "--median-snr-db", "9", "--threshold-db", "0");
-    REFUSED(2, "give a --threshold-db or a --probability", "predict", "--rayleigh",
+    REFUSED(2, "give a --threshold-db, --probability or", "predict", "--rayleigh",
             "--mean-snr-db", "9");
     REFUSED(2, "--format csv holds one kind of answer", "predict", "--rayleigh",
             "--mean-snr-db", "9", "--threshold-db", "0", "--probability", "0.1", "--format",
@@ -334,9 +334,6 @@ static void what_makes_no_sense_is_refused(void **state)
     REFUSED(2, "option --shadowing-db needs a number from 0 to 30", "predict", "--shadowing-db",
             "31");
     REFUSED(2, "'predict' takes no argument 'x'", "predict", "--rayleigh", "x");
-    REFUSED(2, "unknown option '--mean-ebn0-db'", "predict", "--rayleigh", "--mean-ebn0-db",
-            "9");
-    REFUSED(2, "unknown option '--branches'", "predict", "--rayleigh", "--branches", "2");
 }
 
 int main(void)
