@@ -6,6 +6,9 @@
  * two outer ones are trapezoidal sums from the upper end of a distribution downward: rates rise
  * that way to a limit, so that what is left can be bounded, however many peaks the terms may
  * have.
+ *
+ * The sum over the shadowing may lie on any grid of ln SNR, so it lies on a fixed one: means
+ * over fast fading serve for every mean SNR, as do steady rates for every local mean.
  */
 #include "predict/average.h"
 
@@ -18,6 +21,10 @@
 
 /* Sums end where all that is left is this far below them, in nepers. */
 static const double negligible_exponent = 40.0;
+static const double negligible = 4e-18;
+
+/* Linear sums are not trusted below: their terms leave the range of doubles. */
+static const double linear_range = 1e-280;
 
 /* Of the normal distribution: what lies above is below 1e-16. */
 static const double normal_end = 8.5;
@@ -60,8 +67,7 @@ static struct rfade_error_rate rate_of(const struct log_sums *sums)
     return rate;
 }
 
-/* 1 - (1 - p)^bits */
-static struct rfade_error_rate packet_rate(double bits, const struct rfade_error_rate *rate)
+struct rfade_error_rate rfade_packet_rate(double bits, const struct rfade_error_rate *rate)
 {
     const double error = -expm1(bits * log1p(-rate->bit));
     const double log_error = error > 1e-300 ? log(error) : rate->log_bit + log(bits);
@@ -70,69 +76,145 @@ static struct rfade_error_rate packet_rate(double bits, const struct rfade_error
 
 static struct rfade_error_rate steady(const struct rfade_average *average, double log_snr)
 {
-    const struct rfade_error_rate rate = rfade_error_rate_at(average->modulation, exp(log_snr));
-    return average->packet_bits > 0.0 ? packet_rate(average->packet_bits, &rate) : rate;
+    const struct rfade_averaged *what = &average->what;
+    const struct rfade_error_rate rate =
+        rfade_error_rate_at(what->modulation, exp(log_snr), what->bits_only);
+    return what->packet_bits > 0.0 ? rfade_packet_rate(what->packet_bits, &rate) : rate;
 }
 
-static enum rfade_status over_law(struct rfade_average *average, double log_mean,
-                                  struct rfade_error_rate *rate)
+/* The local mean of one branch, and its place on the fixed grid if it has one. */
+struct local_mean {
+    double log_snr;
+    bool on_grid;
+    long index; /* in steps of the sum over the shadowing */
+};
+
+static struct rfade_error_rate steady_at_node(struct rfade_average *average,
+                                              const struct local_mean *mean, size_t node)
+{
+    const struct rfade_snr_law *law = &average->law;
+    if (!mean->on_grid) {
+        return steady(average, mean->log_snr + rfade_snr_law_place(law, node));
+    }
+    const long ratio = lround(average->faded.step / law->step);
+    const long index = mean->index * ratio + law->first - (long)node;
+    struct rfade_error_rate *kept = rfade_rate_grid_place(&average->steady, index);
+    if (kept == NULL) {
+        return steady(average, (double)index * law->step);
+    }
+    if (kept->bit < 0.0) {
+        *kept = steady(average, (double)index * law->step);
+    }
+    return *kept;
+}
+
+static enum rfade_status over_law_in_logarithms(struct rfade_average *average,
+                                                const struct local_mean *mean,
+                                                struct rfade_error_rate *rate)
 {
     struct log_sums sums = no_sums;
+    struct rfade_snr_node node;
     double log_before = INFINITY;
     for (size_t i = 0; i < TERMS_MAX; i++) {
-        double log_mass;
-        const enum rfade_status status = rfade_snr_law_node(&average->law, i, &log_mass);
+        const enum rfade_status status = rfade_snr_law_node(&average->law, i, &node);
         if (status != RFADE_OK) {
             return status;
         }
-        const double y = average->law.first - (double)i * average->law.step;
-        const struct rfade_error_rate here = steady(average, log_mean + y);
-        add_rate(&sums, log_mass, &here);
+        const struct rfade_error_rate here = steady_at_node(average, mean, i);
+        add_rate(&sums, node.log_mass, &here);
         /* below the peak the density falls at least as the square root of the SNR */
-        if (log_mass < log_before && is_negligible(&sums, log_mass - log(average->law.step))) {
+        if (node.log_mass < log_before &&
+            is_negligible(&sums, node.log_mass - log(average->law.step))) {
             *rate = rate_of(&sums);
             return RFADE_OK;
         }
-        log_before = log_mass;
+        log_before = node.log_mass;
     }
     return RFADE_NO_CONVERGENCE;
 }
 
-static enum rfade_status over_fading(struct rfade_average *average, double log_mean,
-                                     struct rfade_error_rate *rate)
+static enum rfade_status over_law(struct rfade_average *average, const struct local_mean *mean,
+                                  struct rfade_error_rate *rate)
 {
-    const struct rfade_link *link = &average->link;
-    if (link->model == NULL) {
-        *rate = steady(average, log_mean + rfade_link_log_gain(link));
-        return RFADE_OK;
+    double bit = 0.0;
+    double symbol = 0.0;
+    struct rfade_snr_node node = {INFINITY, INFINITY};
+    double before;
+    size_t i = 0;
+    do {
+        before = node.mass;
+        const enum rfade_status status = rfade_snr_law_node(&average->law, i, &node);
+        if (status != RFADE_OK) {
+            return status;
+        }
+        const struct rfade_error_rate here = steady_at_node(average, mean, i);
+        bit += node.mass * here.bit;
+        symbol += node.mass * here.symbol;
+        i++;
+    } while (i < TERMS_MAX && (node.mass > before ||
+                               node.mass > negligible * average->law.step * fmin(bit, symbol)));
+    if (!(fmin(bit, symbol) > linear_range)) {
+        return over_law_in_logarithms(average, mean, rate);
     }
-    if (average->packet_bits > 0.0 ||
-        (link->combining == RFADE_SELECTION && link->branches > 1)) {
-        return over_law(average, log_mean, rate);
-    }
-    struct rfade_mgf mgf = average->mgf;
-    mgf.scale *= exp(log_mean);
-    *rate = rfade_error_rate_by_mgf(average->modulation, &mgf);
+    *rate = (struct rfade_error_rate){bit, symbol, log(bit), log(symbol)};
     return RFADE_OK;
 }
 
-/* Largest step in ln SNR that a rate allows: a packet's bends the sharper the longer it is. */
-static double rate_step(const struct rfade_average *average)
+static enum rfade_status over_fading(struct rfade_average *average,
+                                     const struct local_mean *mean,
+                                     struct rfade_error_rate *rate)
 {
-    return analytic_step / fmax(1.0, log(average->packet_bits));
+    if (average->link.model == NULL) {
+        *rate = steady(average, mean->log_snr + rfade_link_log_gain(&average->link));
+        return RFADE_OK;
+    }
+    if (average->by_law) {
+        return over_law(average, mean, rate);
+    }
+    struct rfade_mgf mgf = average->mgf;
+    mgf.scale *= exp(mean->log_snr);
+    *rate = rfade_error_rate_by_mgf(average->what.modulation, &mgf, average->what.bits_only);
+    return RFADE_OK;
+}
+
+static enum rfade_status faded_at_index(struct rfade_average *average, long index,
+                                        struct rfade_error_rate *rate)
+{
+    const struct local_mean mean = {(double)index * average->faded.step, true, index};
+    struct rfade_error_rate *kept = rfade_rate_grid_place(&average->faded, index);
+    if (kept == NULL) {
+        return over_fading(average, &mean, rate);
+    }
+    if (kept->bit < 0.0) {
+        struct rfade_error_rate made;
+        const enum rfade_status status = over_fading(average, &mean, &made);
+        if (status != RFADE_OK) {
+            return status;
+        }
+        *kept = made;
+    }
+    *rate = *kept;
+    return RFADE_OK;
 }
 
 static enum rfade_status over_shadowing(struct rfade_average *average, double log_median,
                                         struct rfade_error_rate *rate)
 {
     const double sigma = average->link.shadowing_db * RFADE_LN_PER_DB;
-    const double step = fmin(shadowing_step_max, rate_step(average) / sigma);
+    const double grid_step = average->faded.step;
+    const double step = average->on_grid ? grid_step / sigma : shadowing_step_max;
     const double log_factor = log(step) - 0.5 * log(2.0 * M_PI);
+    const long first = lround((log_median + sigma * normal_end) / grid_step);
     struct log_sums sums = no_sums;
-    for (int i = 0; i < TERMS_MAX; i++) {
-        const double z = normal_end - i * step;
+    for (long i = 0; i < TERMS_MAX; i++) {
+        const double z = average->on_grid
+                             ? ((double)(first - i) * grid_step - log_median) / sigma
+                             : normal_end - (double)i * step;
+        const struct local_mean mean = {log_median + sigma * z, false, 0};
         struct rfade_error_rate here;
-        const enum rfade_status status = over_fading(average, log_median + sigma * z, &here);
+        const enum rfade_status status = average->on_grid
+                                             ? faded_at_index(average, first - i, &here)
+                                             : over_fading(average, &mean, &here);
         if (status != RFADE_OK) {
             return status;
         }
@@ -145,13 +227,36 @@ static enum rfade_status over_shadowing(struct rfade_average *average, double lo
     return RFADE_NO_CONVERGENCE;
 }
 
+/*
+ * Largest step in ln SNR that a steady rate allows: a packet's bends the sharper the longer it
+ * is. Its mean over the law is as smooth as the law.
+ */
+static double rate_step(const struct rfade_averaged *what)
+{
+    return what->packet_bits > 1.0 ? analytic_step / fmax(1.0, log(what->packet_bits))
+                                   : analytic_step;
+}
+
+static void plan_steps(struct rfade_average *average)
+{
+    const double sigma = average->link.shadowing_db * RFADE_LN_PER_DB;
+    double step = rate_step(&average->what);
+    if (average->by_law) {
+        rfade_snr_law_init(&average->law, &average->link, step, negligible_exponent + 5.0);
+        const double smooth = rfade_snr_law_step(&average->link);
+        step = average->law.step * fmax(1.0, floor(smooth / average->law.step));
+        rfade_rate_grid_init(&average->steady, average->law.step);
+    }
+    rfade_rate_grid_init(&average->faded, step);
+    average->on_grid = shadowing_step_max * sigma >= step;
+}
+
 enum rfade_status rfade_average_init(struct rfade_average *average,
                                      const struct rfade_link *link,
-                                     const struct rfade_modulation *modulation,
-                                     double packet_bits)
+                                     const struct rfade_averaged *what)
 {
-    *average = (struct rfade_average){.modulation = modulation, .packet_bits = packet_bits};
-    if (modulation == NULL) {
+    *average = (struct rfade_average){.what = *what};
+    if (what->modulation == NULL) {
         return RFADE_DOMAIN;
     }
     const enum rfade_status status = rfade_link_check(link);
@@ -159,16 +264,33 @@ enum rfade_status rfade_average_init(struct rfade_average *average,
         return status;
     }
     average->link = *link;
+    average->by_law =
+        link->model != NULL &&
+        (what->packet_bits > 0.0 || (link->combining == RFADE_SELECTION && link->branches > 1));
     if (link->model != NULL) {
         average->mgf = rfade_mgf_of(link->model, link->parameter, link->branches);
-        rfade_snr_law_init(&average->law, link, rate_step(average), negligible_exponent);
     }
+    plan_steps(average);
     return RFADE_OK;
 }
 
 void rfade_average_clear(struct rfade_average *average)
 {
     rfade_snr_law_clear(&average->law);
+    rfade_rate_grid_clear(&average->steady);
+    rfade_rate_grid_clear(&average->faded);
+}
+
+enum rfade_status rfade_average_change(struct rfade_average *average,
+                                       const struct rfade_modulation *modulation)
+{
+    if (modulation == NULL) {
+        return RFADE_DOMAIN;
+    }
+    average->what.modulation = modulation;
+    rfade_rate_grid_clear(&average->steady);
+    rfade_rate_grid_clear(&average->faded);
+    return RFADE_OK;
 }
 
 enum rfade_status rfade_average_at(struct rfade_average *average, double mean_snr_db,
@@ -179,7 +301,8 @@ enum rfade_status rfade_average_at(struct rfade_average *average, double mean_sn
         return RFADE_DOMAIN;
     }
     if (average->link.shadowing_db == 0.0) {
-        return over_fading(average, rfade_log_ratio(mean_snr_db), rate);
+        const struct local_mean mean = {rfade_log_ratio(mean_snr_db), false, 0};
+        return over_fading(average, &mean, rate);
     }
     return over_shadowing(
         average, rfade_log_ratio(mean_snr_db + rfade_link_median_db(&average->link)), rate);

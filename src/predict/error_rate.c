@@ -9,18 +9,22 @@ enum rfade_status rfade_error_rates(const struct rfade_link *link,
                                     const struct rfade_modulation *const *modulations,
                                     size_t count, struct rfade_error_rate *rates)
 {
-    enum rfade_status status = count == 0 ? RFADE_DOMAIN : RFADE_OK;
+    struct rfade_average average;
     for (size_t i = 0; i < count; i++) {
         rates[i] = rfade_error_rate_nan();
     }
+    if (count == 0) {
+        return RFADE_DOMAIN;
+    }
+    const struct rfade_averaged what = {.modulation = modulations[0]};
+    enum rfade_status status = rfade_average_init(&average, link, &what);
     for (size_t i = 0; i < count && status == RFADE_OK; i++) {
-        struct rfade_average average;
-        status = rfade_average_init(&average, link, modulations[i], 0.0);
+        status = i == 0 ? RFADE_OK : rfade_average_change(&average, modulations[i]);
         if (status == RFADE_OK) {
             status = rfade_average_at(&average, link->mean_snr_db, &rates[i]);
         }
-        rfade_average_clear(&average);
     }
+    rfade_average_clear(&average);
     return status;
 }
 

@@ -41,23 +41,23 @@ static enum rfade_status over_law(struct rfade_snr_law *law, double x, bool is_u
     struct rfade_log_sum sum = rfade_log_sum_empty();
     double log_before = INFINITY;
     for (size_t i = 0; i < TERMS_MAX; i++) {
-        double log_mass;
+        struct rfade_snr_node node;
         struct rfade_tails tails;
-        const enum rfade_status status = rfade_snr_law_node(law, i, &log_mass);
+        const enum rfade_status status = rfade_snr_law_node(law, i, &node);
         if (status != RFADE_OK) {
             return status;
         }
-        const double y = law->first - (double)i * law->step;
+        const double y = rfade_snr_law_place(law, i);
         (void)rfade_normal_tails((x - y) / sigma, &tails);
-        const double log_term = log_mass + tail_of(&tails, is_upper);
+        const double log_term = node.log_mass + tail_of(&tails, is_upper);
         rfade_log_sum_add(&sum, log_term);
-        const double log_rest = is_upper ? log_term : log_mass;
-        if (log_mass < log_before &&
+        const double log_rest = is_upper ? log_term : node.log_mass;
+        if (node.log_mass < log_before &&
             log_rest - log(law->step) < rfade_log_sum_log(&sum) - negligible_exponent) {
             *log_tail = rfade_log_sum_log(&sum);
             return RFADE_OK;
         }
-        log_before = log_mass;
+        log_before = node.log_mass;
     }
     return RFADE_NO_CONVERGENCE;
 }

@@ -172,7 +172,7 @@ static struct rfade_scaled averaged_term(const struct rfade_term *term, const vo
 }
 
 struct rfade_error_rate rfade_error_rate_by_mgf(const struct rfade_modulation *modulation,
-                                                const struct rfade_mgf *mgf)
+                                                const struct rfade_mgf *mgf, bool bits_only)
 {
-    return rfade_error_rate_by_terms(modulation, averaged_term, mgf);
+    return rfade_error_rate_by_terms(modulation, averaged_term, mgf, bits_only);
 }

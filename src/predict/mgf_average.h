@@ -18,8 +18,8 @@ struct rfade_mgf {
 /** For a branch of linear mean 1; multiply scale by the mean. No checks. */
 struct rfade_mgf rfade_mgf_of(const struct rfade_model *model, double parameter, int branches);
 
-/** Both rates averaged; no checks. */
+/** Both rates averaged, or the bits' alone as both; no checks. */
 struct rfade_error_rate rfade_error_rate_by_mgf(const struct rfade_modulation *modulation,
-                                                const struct rfade_mgf *mgf);
+                                                const struct rfade_mgf *mgf, bool bits_only);
 
 #endif

@@ -4,6 +4,8 @@
 #ifndef ROUTEFADE_PREDICT_MODULATION_H
 #define ROUTEFADE_PREDICT_MODULATION_H
 
+#include <stdbool.h>
+
 #include "routefade/error_rate.h"
 
 enum rfade_term_kind {
@@ -53,17 +55,17 @@ struct rfade_scaled {
 typedef struct rfade_scaled rfade_term_value(const struct rfade_term *term,
                                              const void *context);
 
-/** Both rates of a modulation, term by term, within their limits. */
+/**
+ * Both rates of a modulation, term by term, within their limits; with bits_only the symbols' is
+ * the bits'.
+ */
 struct rfade_error_rate rfade_error_rate_by_terms(const struct rfade_modulation *modulation,
                                                   rfade_term_value *value_of,
-                                                  const void *context);
+                                                  const void *context, bool bits_only);
 
 /** Rates at a steady linear Es/N0 >= 0; no checks. */
 struct rfade_error_rate rfade_error_rate_at(const struct rfade_modulation *modulation,
-                                            double snr);
-
-/** Bit error rate alone, without its logarithm. */
-double rfade_bit_error_at(const struct rfade_modulation *modulation, double snr);
+                                            double snr, bool bits_only);
 
 /** Both rates NaN: what a failure leaves behind. */
 struct rfade_error_rate rfade_error_rate_nan(void);

@@ -21,7 +21,7 @@ static void add_node(const struct rfade_modulation *modulation, double snr_db, d
                      struct means *means)
 {
     const struct rfade_error_rate rate =
-        rfade_error_rate_at(modulation, exp(rfade_log_ratio(snr_db)));
+        rfade_error_rate_at(modulation, exp(rfade_log_ratio(snr_db)), false);
     means->bit += weight * rate.bit;
     means->symbol += weight * rate.symbol;
 }

@@ -39,9 +39,7 @@ static double log_probability(struct search *search, double mean_snr_db)
         log_value =
             search->target->kind == RFADE_TARGET_SYMBOL ? rate.log_symbol : rate.log_bit;
         if (search->target->kind == RFADE_TARGET_PACKET_INDEPENDENT) {
-            const double bits = search->target->packet_bits;
-            const double error = -expm1(bits * log1p(-rate.bit));
-            log_value = error > 1e-300 ? log(error) : rate.log_bit + log(bits);
+            log_value = rfade_packet_rate(search->target->packet_bits, &rate).log_bit;
         }
     }
     if (status != RFADE_OK && search->status == RFADE_OK) {
@@ -125,7 +123,7 @@ static enum rfade_status solve(struct search *search, double *mean_snr_db)
 static enum rfade_status search_init(struct search *search, const struct rfade_link *link,
                                      const struct rfade_target *target)
 {
-    double bits = 0.0;
+    struct rfade_averaged what = {target->modulation, target->kind != RFADE_TARGET_SYMBOL, 0.0};
     *search = (struct search){.link = *link, .target = target, .status = RFADE_OK};
     if (!(target->value > 0.0 && target->value < 1.0)) {
         return RFADE_DOMAIN;
@@ -139,7 +137,8 @@ static enum rfade_status search_init(struct search *search, const struct rfade_l
         if (!(target->packet_bits >= 1.0 && target->packet_bits <= RFADE_PACKET_BITS_MAX)) {
             return RFADE_DOMAIN;
         }
-        bits = target->kind == RFADE_TARGET_PACKET_BLOCK ? target->packet_bits : 0.0;
+        what.packet_bits =
+            target->kind == RFADE_TARGET_PACKET_BLOCK ? target->packet_bits : 0.0;
         break;
     case RFADE_TARGET_BIT:
     case RFADE_TARGET_SYMBOL:
@@ -147,7 +146,7 @@ static enum rfade_status search_init(struct search *search, const struct rfade_l
     default:
         return RFADE_DOMAIN;
     }
-    return rfade_average_init(&search->average, link, target->modulation, bits);
+    return rfade_average_init(&search->average, link, &what);
 }
 
 enum rfade_status rfade_required_snr(const struct rfade_link *link,

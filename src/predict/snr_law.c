@@ -16,65 +16,73 @@
 
 static const double step_limit = 0.25;
 
-static double upper_end(const struct rfade_link *link, double step, double log_depth)
+/* Place of the upper end, in steps. */
+static long upper_end(const struct rfade_link *link, double step, double log_depth)
 {
     double peak = -INFINITY;
-    double y = 0.0;
-    for (;;) {
+    for (long i = 0;; i++) {
         const double log_density =
-            rfade_branches_log_density(link, y * RFADE_DB_PER_NEPER_OF_POWER);
+            rfade_branches_log_density(link, (double)i * step * RFADE_DB_PER_NEPER_OF_POWER);
         peak = fmax(peak, log_density);
         if (log_density < peak - log_depth) {
-            return y;
+            return i;
         }
-        y += step;
     }
 }
 
-void rfade_snr_law_init(struct rfade_snr_law *law, const struct rfade_link *link,
-                        double step_max, double log_depth)
+double rfade_snr_law_step(const struct rfade_link *link)
 {
     double spread = rfade_branches_spread(link);
     if (link->combining == RFADE_SELECTION) {
         spread /= sqrt(link->branches);
     }
+    return fmin(0.5 * spread, step_limit);
+}
+
+void rfade_snr_law_init(struct rfade_snr_law *law, const struct rfade_link *link,
+                        double step_max, double log_depth)
+{
     *law = (struct rfade_snr_law){.link = *link};
-    law->step = fmin(fmin(0.5 * spread, step_limit), step_max);
+    law->step = fmin(rfade_snr_law_step(link), step_max);
     law->first = upper_end(link, law->step, log_depth);
 }
 
 void rfade_snr_law_clear(struct rfade_snr_law *law)
 {
-    free(law->log_mass);
-    law->log_mass = NULL;
+    free(law->nodes);
+    law->nodes = NULL;
     law->count = 0;
     law->capacity = 0;
+}
+
+double rfade_snr_law_place(const struct rfade_snr_law *law, size_t index)
+{
+    return (double)(law->first - (long)index) * law->step;
 }
 
 static enum rfade_status grow(struct rfade_snr_law *law)
 {
     const size_t capacity = law->capacity == 0 ? 256 : 2 * law->capacity;
-    double *more = realloc(law->log_mass, capacity * sizeof *more);
+    struct rfade_snr_node *more = realloc(law->nodes, capacity * sizeof *more);
     if (more == NULL) {
         return RFADE_NO_MEMORY;
     }
-    law->log_mass = more;
+    law->nodes = more;
     law->capacity = capacity;
     return RFADE_OK;
 }
 
-enum rfade_status rfade_snr_law_node(struct rfade_snr_law *law, size_t index, double *log_mass)
+enum rfade_status rfade_snr_law_node(struct rfade_snr_law *law, size_t index,
+                                     struct rfade_snr_node *node)
 {
-    *log_mass = NAN;
     while (law->count <= index) {
         if (law->count == law->capacity && grow(law) != RFADE_OK) {
             return RFADE_NO_MEMORY;
         }
-        const double y = law->first - (double)law->count * law->step;
-        law->log_mass[law->count++] =
-            log(law->step) +
-            rfade_branches_log_density(&law->link, y * RFADE_DB_PER_NEPER_OF_POWER);
+        const double x_db = rfade_snr_law_place(law, law->count) * RFADE_DB_PER_NEPER_OF_POWER;
+        const double log_mass = log(law->step) + rfade_branches_log_density(&law->link, x_db);
+        law->nodes[law->count++] = (struct rfade_snr_node){exp(log_mass), log_mass};
     }
-    *log_mass = law->log_mass[index];
+    *node = law->nodes[index];
     return RFADE_OK;
 }

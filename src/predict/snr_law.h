@@ -5,16 +5,26 @@
 
 #include "routefade/error_rate.h"
 
-/** Equally spaced in the logarithm of the SNR, downward; the first is at the law's upper end.
+struct rfade_snr_node {
+    double mass; /**< density times step */
+    double log_mass;
+};
+
+/**
+ * Equally spaced in the logarithm of the SNR over the local mean of one branch, downward from
+ * the law's upper end.
  */
 struct rfade_snr_law {
     struct rfade_link link;
     double step;  /**< nepers */
-    double first; /**< SNR over the local mean of one branch, nepers */
+    long first;   /**< place of the first node, in steps */
     size_t count; /**< nodes so far: more are made as an average reaches for them */
     size_t capacity;
-    double *log_mass; /**< [count], owned: ln of density times step */
+    struct rfade_snr_node *nodes; /**< [count], owned */
 };
+
+/** The greatest step, in nepers, that leaves 1e-13 of a mean over the link's law. */
+double rfade_snr_law_step(const struct rfade_link *link);
 
 /**
  * @param link       checked, with a model
@@ -26,7 +36,10 @@ void rfade_snr_law_init(struct rfade_snr_law *law, const struct rfade_link *link
 
 void rfade_snr_law_clear(struct rfade_snr_law *law);
 
-/** @param[out] log_mass  of the node; NaN on failure */
-enum rfade_status rfade_snr_law_node(struct rfade_snr_law *law, size_t index, double *log_mass);
+/** Where a node lies, nepers. */
+double rfade_snr_law_place(const struct rfade_snr_law *law, size_t index);
+
+enum rfade_status rfade_snr_law_node(struct rfade_snr_law *law, size_t index,
+                                     struct rfade_snr_node *node);
 
 #endif

@@ -47,12 +47,12 @@ static void finish(const struct rfade_scaled *sum, double limit, double *rate, d
 
 struct rfade_error_rate rfade_error_rate_by_terms(const struct rfade_modulation *modulation,
                                                   rfade_term_value *value_of,
-                                                  const void *context)
+                                                  const void *context, bool bits_only)
 {
     struct rfade_error_rate rate;
     const struct rfade_scaled bit = sum_terms(&modulation->bit, value_of, context);
     finish(&bit, modulation->bit.limit, &rate.bit, &rate.log_bit);
-    if (modulation->symbol.count == 0) {
+    if (bits_only || modulation->symbol.count == 0) {
         rate.symbol = rate.bit;
         rate.log_symbol = rate.log_bit;
         return rate;
@@ -108,21 +108,12 @@ static struct rfade_scaled steady_term(const struct rfade_term *term, const void
 }
 
 struct rfade_error_rate rfade_error_rate_at(const struct rfade_modulation *modulation,
-                                            double snr)
+                                            double snr, bool bits_only)
 {
     if (isinf(snr)) {
         return (struct rfade_error_rate){0.0, 0.0, -INFINITY, -INFINITY};
     }
-    return rfade_error_rate_by_terms(modulation, steady_term, &snr);
-}
-
-double rfade_bit_error_at(const struct rfade_modulation *modulation, double snr)
-{
-    if (isinf(snr)) {
-        return 0.0;
-    }
-    const struct rfade_scaled sum = sum_terms(&modulation->bit, steady_term, &snr);
-    return fmin(sum.value * exp(sum.log_scale), modulation->bit.limit);
+    return rfade_error_rate_by_terms(modulation, steady_term, &snr, bits_only);
 }
 
 enum rfade_status rfade_error_rate_steady(const struct rfade_modulation *modulation,
@@ -133,6 +124,6 @@ enum rfade_status rfade_error_rate_steady(const struct rfade_modulation *modulat
         !(fabs(snr_db) <= RFADE_SNR_LIMIT_DB || (isinf(snr_db) && !isnan(snr_db)))) {
         return RFADE_DOMAIN;
     }
-    *rate = rfade_error_rate_at(modulation, exp(rfade_log_ratio(snr_db)));
+    *rate = rfade_error_rate_at(modulation, exp(rfade_log_ratio(snr_db)), false);
     return RFADE_OK;
 }
