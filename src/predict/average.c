@@ -32,7 +32,14 @@ static const double normal_end = 8.5;
 /* Width of the strip about the real axis of ln SNR in which rates are benign is pi/2. */
 static const double analytic_step = M_PI * M_PI / 36.0;
 
-static const double shadowing_step_max = 0.4;
+/* Step over the spread of a bell-shaped integrand that leaves 1e-14 of it. */
+static const double bell_step = 0.78;
+
+/* Nothing above 1e-300 comes from further out in the normal distribution. */
+static const double normal_reach = 37.0;
+
+/* A fixed grid finer than so many nepers does not pay. */
+static const double grid_step_min = 0.01;
 
 enum { TERMS_MAX = 10000000 };
 
@@ -202,7 +209,7 @@ static enum rfade_status over_shadowing(struct rfade_average *average, double lo
 {
     const double sigma = average->link.shadowing_db * RFADE_LN_PER_DB;
     const double grid_step = average->faded.step;
-    const double step = average->on_grid ? grid_step / sigma : shadowing_step_max;
+    const double step = grid_step / sigma;
     const double log_factor = log(step) - 0.5 * log(2.0 * M_PI);
     const long first = lround((log_median + sigma * normal_end) / grid_step);
     struct log_sums sums = no_sums;
@@ -237,18 +244,37 @@ static double rate_step(const struct rfade_averaged *what)
                                    : analytic_step;
 }
 
+/*
+ * Step in ln SNR for the sum over the shadowing. Its terms are bells of curvature 1/sigma^2
+ * from the normal density and at most `slope` from the rate, the slope of the rate's logarithm
+ * where it equals that of the density, which is normal_reach/sigma at most; and no rate falls
+ * faster than its fading allows far out.
+ */
+static double shadowing_step(const struct rfade_average *average, double sigma)
+{
+    const struct rfade_mgf *mgf = &average->mgf;
+    const double steepest = average->link.model == NULL ? INFINITY : mgf->order + mgf->steady;
+    const double slope = fmin(steepest, normal_reach / sigma);
+    return bell_step / sqrt(1.0 / (sigma * sigma) + slope);
+}
+
 static void plan_steps(struct rfade_average *average)
 {
     const double sigma = average->link.shadowing_db * RFADE_LN_PER_DB;
-    double step = rate_step(&average->what);
+    const double needed = sigma > 0.0 ? shadowing_step(average, sigma) : INFINITY;
+    double step = fmin(needed, rate_step(&average->what));
+    average->on_grid = step >= grid_step_min;
     if (average->by_law) {
-        rfade_snr_law_init(&average->law, &average->link, step, negligible_exponent + 5.0);
-        const double smooth = rfade_snr_law_step(&average->link);
-        step = average->law.step * fmax(1.0, floor(smooth / average->law.step));
+        rfade_snr_law_init(&average->law, &average->link, rate_step(&average->what),
+                           negligible_exponent + 5.0);
         rfade_rate_grid_init(&average->steady, average->law.step);
+        step = fmin(needed, fmax(rfade_snr_law_step(&average->link), average->law.step));
+        average->on_grid = step >= average->law.step;
+        if (average->on_grid) {
+            step = average->law.step * floor(step / average->law.step);
+        }
     }
     rfade_rate_grid_init(&average->faded, step);
-    average->on_grid = shadowing_step_max * sigma >= step;
 }
 
 enum rfade_status rfade_average_init(struct rfade_average *average,

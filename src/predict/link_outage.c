@@ -20,8 +20,9 @@ static const double negligible_exponent = 40.0;
 /* Of the normal distribution: beyond, its density is 0. */
 static const double normal_end = 40.0;
 
-/* Step over the narrower distribution's spread. */
-static const double shadowing_step_max = 0.4;
+/* Step over the narrower distribution's spread: short, since deep tails are wanted. */
+static const double shadowing_step_max = 0.25;
+static const double law_step_share = 0.6;
 
 /* The law's density at its upper end: below the range of doubles. */
 static const double law_depth = 800.0;
@@ -92,7 +93,9 @@ static enum rfade_status one_tail(const struct rfade_link *link, double x, bool 
 {
     const double sigma = link->shadowing_db * RFADE_LN_PER_DB;
     struct rfade_snr_law law;
-    rfade_snr_law_init(&law, link, shadowing_step_max * sigma, law_depth);
+    rfade_snr_law_init(
+        &law, link, fmin(shadowing_step_max * sigma, law_step_share * rfade_snr_law_step(link)),
+        law_depth);
     enum rfade_status status;
     if (sigma * shadowing_step_max < law.step * (1.0 + 1e-12)) {
         status = over_shadowing(link, shadowing_step_max, x, is_upper, log_tail);

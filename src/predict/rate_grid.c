@@ -4,12 +4,15 @@
 #include <math.h>
 #include <stdlib.h>
 
-/* 280 dB either way; what lies beyond is worked out every time. */
+/* 280 dB either way, as long as that is not too many; what lies beyond is worked out every
+ * time. */
 static const double reach_nepers = 64.0;
+static const double reach_max = 8192.0;
 
 void rfade_rate_grid_init(struct rfade_rate_grid *grid, double step)
 {
-    *grid = (struct rfade_rate_grid){step, (long)ceil(reach_nepers / step), NULL};
+    *grid =
+        (struct rfade_rate_grid){step, (long)fmin(ceil(reach_nepers / step), reach_max), NULL};
 }
 
 void rfade_rate_grid_clear(struct rfade_rate_grid *grid)

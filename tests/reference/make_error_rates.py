@@ -2,12 +2,14 @@
 """Random reference points for error rates, packets and outage of combined branches.
 
     python3 make_error_rates.py rate|selection|packet|outage > NAME_branches_random.tsv
+    python3 make_error_rates.py shadowed|shadowed_outage > NAME_random.tsv
 
 The definitions, averaged over the density of the combined SNR with mpmath in 30-digit arithmetic:
-Gauss-Legendre panels of 30 nodes in ln SNR, over which the integrand changes by no more than
+Gauss-Legendre panels of 20 nodes in ln SNR, over which the integrand changes by no more than
 exp(8), as far as it counts. Conditional rates are worked out from constellations: rails of PAM with
 a reflected Gray code, the phase of M-PSK by Craig's integral. Nothing is shared with the program: no moment
-generating function, no trapezoidal rule. 17 digits of each value; arguments read back exactly.
+generating function, no trapezoidal rule. With shadowing, panels over the normal variable of what has a closed
+form for a given local mean. 17 digits of each value; arguments read back exactly.
 """
 import math
 import random
@@ -17,7 +19,7 @@ import mpmath
 from mpmath import erfc, exp, gammainc, log, loggamma, mp, mpf, nstr, pi, sqrt
 
 mp.dps = 30
-NODE_COUNT = 30
+NODE_COUNT = 20
 
 
 def gauss_legendre(n):
@@ -41,30 +43,33 @@ def q(x):
     return erfc(x / sqrt(mpf(2))) / 2
 
 
-def rail_rates(levels, snr_per_rail_point):
-    """Bit and symbol error of one PAM rail; d = half distance over the noise's deviation."""
-    bits = levels.bit_length() - 1
-    d = snr_per_rail_point
-    tails = [q((2 * j + 1) * d) for j in range(levels)]  # beyond the j-th threshold away
-    bit = symbol = mpf(0)
+def rail_weights(levels):
+    """Bit and symbol errors of one PAM rail as sums over Q at 1, 3, 5 ... half distances."""
+    bits, symbols = [0] * levels, [0] * levels
     for sent in range(levels):
         for got in range(levels):
-            if got == sent:
-                continue
             gap = abs(got - sent)
-            at_end = got in (0, levels - 1)
-            p = tails[gap - 1] - (0 if at_end else tails[gap])
+            if gap == 0:
+                continue
             wrong = bin((sent ^ sent >> 1) ^ (got ^ got >> 1)).count("1")
-            bit += p * wrong
-            symbol += p
-    return bit / (levels * bits), symbol / levels
+            bits[gap - 1] += wrong  # beyond the near threshold ...
+            symbols[gap - 1] += 1
+            if got not in (0, levels - 1):  # ... but not beyond the far one
+                bits[gap] -= wrong
+                symbols[gap] -= 1
+    return bits, symbols
 
 
 def qam(points):
     levels = int(round(math.sqrt(points)))
+    bits, symbols = rail_weights(levels)
+    wanted = [j for j in range(levels) if bits[j] or symbols[j]]
 
     def rates(g):
-        bit, symbol = rail_rates(levels, sqrt(3 * g / (points - 1)))
+        d = sqrt(3 * g / (points - 1))
+        tails = {j: q((2 * j + 1) * d) for j in wanted}
+        symbol = sum(symbols[j] * tails[j] for j in wanted) / levels
+        bit = sum(bits[j] * tails[j] for j in wanted) / (levels * (levels.bit_length() - 1))
         return bit, symbol * (2 - symbol)
     return rates
 
@@ -74,6 +79,10 @@ def beyond(psi, g):
     total = mpf(0)
     s = g * mpmath.sin(psi) ** 2
     edges = [psi / 8, psi / 4, psi / 2, psi, pi / 4, 3 * pi / 8, pi / 2]
+    edge = sqrt(s) / 4  # at low SNR all happens within sin t near sqrt(s)
+    while edge < pi / 4:
+        edges.append(edge)
+        edge *= 2
     edges += [pi - e for e in edges]
     edges = sorted(e for e in set(edges) if 0 < e < pi - psi)
     width = 1 / sqrt(1 + s)
@@ -156,7 +165,10 @@ class RiceSum:
     def density(self, y):
         b = sqrt(2 * (1 + self.k) * exp(y))
         z = self.a * b
-        bessel = bessels(self.n - 1, z)[self.n - 1]
+        if z > 300:
+            bessel = mpmath.besseli(self.n - 1, z) * exp(-z)
+        else:
+            bessel = bessels(self.n - 1, z)[self.n - 1]
         return (b * b / 2 * (b / self.a) ** (self.n - 1) * exp(-(b - self.a) ** 2 / 2) * bessel)
 
     def rough_log(self, y):
@@ -186,6 +198,8 @@ class RiceSum:
 
     def lower(self, y):
         b = sqrt(2 * (1 + self.k) * exp(y))
+        if b > self.a + 30 + self.n:
+            return mpf(1)
         return self.tail(y, False) if b < self.a + self.n else 1 - self.tail(y, True)
 
     def upper(self, y):
@@ -240,7 +254,7 @@ def integrate(law, function, decay, bits, snr):
         middle, low, high = rough(y), rough(y - h), rough(y + h)
         slope = abs(high - low) / (2 * h)
         bend = abs(high - 2 * middle + low) / (h * h)
-        step = min(1.0, 8 / (slope + 1), 4 / math.sqrt(bend + 1), 2 / math.log(bits + 2))
+        step = min(1.0, 8 / (slope + 1), 4 / math.sqrt(bend + 1), 4 / math.log(bits + 20))
         if middle > peak - 80 or rough(y + step) > peak - 80:
             half, centre = mpf(step) / 2, mpf(y) + mpf(step) / 2
             for t, w in NODES:
@@ -250,6 +264,83 @@ def integrate(law, function, decay, bits, snr):
                 total = parts if total is None else [a + b for a, b in zip(total, parts)]
         y += step
     return total
+
+
+def over_shadowing(function, sigma):
+    """Mean of a vector function of the local mean in nepers, normal with deviation sigma."""
+    width = min(mpf(1) / 2, 1 / (4 * mpf(sigma)))
+    count = int(math.ceil(37 / float(width)))
+    centres = [width * k for k in range(-count, int(math.ceil(13 / float(width))))]
+    rough = [exp(-z * z / 2) * function(sigma * z)[0] for z in centres]
+    peak = max(rough)
+    total = None
+    for i, z in enumerate(centres):
+        if max(rough[max(0, i - 2):i + 3]) < peak * mpf(10) ** -24:
+            continue
+        for t, w in NODES:
+            at = z + width / 2 * t
+            weight = width / 2 * w * exp(-at * at / 2) / sqrt(2 * pi)
+            parts = [weight * v for v in function(sigma * at)]
+            total = parts if total is None else [a + b for a, b in zip(total, parts)]
+    return total
+
+
+def shadowed_function(model, parameter, branches, modulation):
+    """Rates for a local mean SNR."""
+    if model == "unfaded":
+        return lambda g: RATES[modulation](branches * g)
+    factor = mpf(1) if modulation == "dbpsk" else mpf(1) / 2
+    if model == "rice":
+        k = mpf(parameter)
+
+        def rate(g):
+            d = 1 + k + factor * g
+            return ((1 + k) / d * exp(-k * factor * g / d)) ** branches / 2
+    else:
+        m = mpf(parameter) if model == "nakagami" else mpf(1)
+
+        def rate(g):
+            return (1 + factor * g / m) ** (-m * branches) / 2
+    return lambda g: (rate(g), rate(g))
+
+
+def shadowed_rows(kind, count, seed):
+    generator = random.Random(seed)
+    made = 0
+    per_db = log(mpf(10)) / 10
+    while made < count:
+        model, parameter = draw(generator, k_high=3.0, m_high=3.0)
+        branches = generator.randint(1, 4)
+        sigma_db = float(f"{10 ** generator.uniform(-1, 1.4):.3g}")
+        sigma = mpf(sigma_db) * per_db
+        snr_db = round(generator.uniform(-20, 50), 2)
+        median = mpf(snr_db) * per_db - sigma * sigma / 2
+        if kind == "shadowed":
+            modulation = generator.choice(("dbpsk", "ncfsk2"))
+            if generator.random() < 0.4:
+                model, parameter = "unfaded", 0.0
+                modulation = generator.choice(list(RATES))
+            function = shadowed_function(model, parameter, branches, modulation)
+            values = over_shadowing(lambda x: function(exp(median + x)), sigma)
+            head = [modulation, model, parameter, branches, "mrc", sigma_db, snr_db]
+        else:
+            branches = generator.randint(2, 4)
+            combining = generator.choice(("mrc", "selection"))
+            parameter = min(parameter, 100.0)
+            law = law_of(model, parameter, branches, combining)
+            threshold = round(snr_db + generator.uniform(-30, 15), 2)
+            x = mpf(threshold) * per_db - median
+
+            def function(s, law=law, x=x, n=branches):
+                if isinstance(law, Greatest):
+                    return (law.one.lower(x - s) ** n,)
+                return (law.lower(x - s),)
+            values = over_shadowing(function, sigma)
+            head = [model, parameter, branches, combining, sigma_db, snr_db, threshold]
+        if values[0] < mpf(10) ** (-295 if kind == "shadowed" else -60):
+            continue
+        yield head, values
+        made += 1
 
 
 def draw(generator, models=("rayleigh", "rice", "nakagami"), k_high=5.0, m_high=4.0):
@@ -315,7 +406,12 @@ COLUMNS = {"rate": "modulation model parameter branches combining mean_snr_db bi
            "selection": "modulation model parameter branches combining mean_snr_db bit symbol",
            "packet": "modulation model parameter branches combining mean_snr_db bits block",
            "outage": "model parameter branches combining mean_snr_db threshold_db outage coverage"}
-COUNTS = {"rate": 240, "selection": 60, "packet": 60, "outage": 200}
+COLUMNS["shadowed"] = ("modulation model parameter branches combining shadowing_db mean_snr_db "
+                       "bit symbol")
+COLUMNS["shadowed_outage"] = ("model parameter branches combining shadowing_db mean_snr_db "
+                              "threshold_db outage")
+COUNTS = {"rate": 90, "selection": 24, "packet": 28, "outage": 200, "shadowed": 70,
+          "shadowed_outage": 20}
 
 
 def main():
@@ -324,7 +420,8 @@ def main():
     print(f"# Made by make_error_rates.py {kind} with mpmath {mpmath.__version__}; "
           "how, see there.")
     print(COLUMNS[kind].replace(" ", "\t"))
-    for arguments, values in rows(kind, count, f"routefade {kind}"):
+    make = shadowed_rows if kind.startswith("shadowed") else rows
+    for arguments, values in make(kind, count, f"routefade {kind}"):
         texts = [a if isinstance(a, str) else repr(a) for a in arguments]
         print("\t".join(texts + [nstr(v, 17, min_fixed=0, max_fixed=0) for v in values]),
               flush=True)
