@@ -194,10 +194,10 @@ static void rates_are_smooth_in_the_shadowing(void **state)
     (void)state;
     struct rfade_link link = {
         .model = rfade_model(RFADE_RICE), .parameter = 4.0, .mean_snr_db = 12.0, .branches = 1};
-    sweep_number(&link, &link.shadowing_db, 1.0, 6.0, 250);
+    sweep_number(&link, &link.shadowing_db, 1.0, 6.0, 400);
     link.branches = 2;
     link.combining = RFADE_SELECTION;
-    sweep_number(&link, &link.shadowing_db, 1.0, 6.0, 250);
+    sweep_number(&link, &link.shadowing_db, 1.0, 6.0, 400);
 }
 
 int main(void)

@@ -410,7 +410,7 @@ COLUMNS["shadowed"] = ("modulation model parameter branches combining shadowing_
                        "bit symbol")
 COLUMNS["shadowed_outage"] = ("model parameter branches combining shadowing_db mean_snr_db "
                               "threshold_db outage")
-COUNTS = {"rate": 90, "selection": 24, "packet": 28, "outage": 200, "shadowed": 70,
+COUNTS = {"rate": 78, "selection": 24, "packet": 28, "outage": 200, "shadowed": 70,
           "shadowed_outage": 20}
 
 
