@@ -70,6 +70,7 @@ CREATE TABLE fading (
     local_sigma_high_db REAL,
     window_noise_db REAL,               -- standard deviation of that noise
     level_uncertainty_db REAL,          -- standard error of the mean level
+    calibration_db REAL NOT NULL,       -- the part of it that is the vehicles' calibration
     pass_deviation_db REAL,             -- of another pass's level, fading left out; one: NULL
     noise_dbm REAL,                     -- dB of the mean noise power that was logged
     level_tally BLOB NOT NULL,

@@ -66,7 +66,7 @@ enum rfade_status rfade_result_bounds(struct rfade_segment_result *row,
     bounds->below = scale * distance(rfade_log_odds(found.low), bounds->log_odds);
     bounds->above = scale * distance(bounds->log_odds, rfade_log_odds(found.high));
     bounds->calibration_below = bounds->calibration_above = 0.0;
-    bounds->calibration_db = rfade_result_calibration_db(row);
+    bounds->calibration_db = row->calibration_db;
     if (bounds->calibration_db > 0.0)
         status = calibration_distances(row, threshold, quantile * bounds->calibration_db,
                                        bounds, error);

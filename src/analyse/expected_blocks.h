@@ -18,7 +18,7 @@ struct rfade_expected_fading {
     double travel_wavelengths;       /**< over all passes */
     double spacing_wavelengths;      /**< of the readings */
     double step_db;                  /**< of their levels */
-    struct rfade_tally *levels;      /**< fast fading: its censored readings' bounds; borrowed */
+    struct rfade_tally *levels; /**< fast fading: its censored readings' bounds; borrowed */
 };
 
 /**

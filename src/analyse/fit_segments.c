@@ -197,18 +197,20 @@ static enum rfade_status store_result(struct rfade_survey *survey, const struct 
         "INSERT INTO fading (segment_id, channel_id, campaign_id, fingerprint, sampling,"
         " pass_count, reading_count, travel_m, wavelength_m, effective_count,"
         " mean_power_dbm, local_mean_dbm, local_sigma_db, local_sigma_low_db,"
-        " local_sigma_high_db, window_noise_db, level_uncertainty_db, pass_deviation_db, "
+        " local_sigma_high_db, window_noise_db, level_uncertainty_db, calibration_db, "
+        "pass_deviation_db, "
         "noise_dbm,"
         " level_tally, local_mean_tally, snr_tally) VALUES (?1, ?2, ?3, ?4, ?5, ?6, ?7, ?8,"
-        " ?9, ?10, ?11, ?12, ?13, ?14, ?15, ?16, ?17, ?18, ?19, ?20, ?21, ?22)",
-        "iiibtiiddddddddddddbbb", group->segment_id, group->channel_id, group->campaign_id,
+        " ?9, ?10, ?11, ?12, ?13, ?14, ?15, ?16, ?17, ?18, ?19, ?20, ?21, ?22, ?23)",
+        "iiibtiidddddddddddddbbb", group->segment_id, group->channel_id, group->campaign_id,
         (const void *)fingerprint->bytes, sizeof fingerprint->bytes,
         rfade_sampling_name(result->sampling), pool->passes, pool->readings, pool->travel_m,
         pool->wavelength_m, result->effective_count, result->mean_power_dbm,
         result->local_mean_dbm, result->local_sigma_db, result->local_sigma_low_db,
         result->local_sigma_high_db, result->window_noise_db, result->level_uncertainty_db,
-        result->pass_deviation_db, result->noise_dbm, (const void *)bytes[0], sizes[0],
-        (const void *)bytes[1], sizes[1], (const void *)bytes[2], sizes[2]);
+        pool->calibration_db, result->pass_deviation_db, result->noise_dbm,
+        (const void *)bytes[0], sizes[0], (const void *)bytes[1], sizes[1],
+        (const void *)bytes[2], sizes[2]);
     if (status == RFADE_OK)
         status = store_fits(survey, group, result, error);
 out:

@@ -72,7 +72,8 @@ static double fading_variance(const struct rfade_segment_result *row)
     return isfinite(variance) ? variance : 0.0;
 }
 
-double rfade_result_calibration_db(const struct rfade_segment_result *row)
+/* The part of the level's uncertainty that all of the track shares: that is not fading. */
+static double shared_db(const struct rfade_segment_result *row)
 {
     double total = row->level_uncertainty_db * row->level_uncertainty_db;
     double fading = DB_PER_NEPER_OF_POWER * DB_PER_NEPER_OF_POWER * fading_variance(row);
@@ -125,7 +126,7 @@ static enum rfade_status predicted(struct rfade_segment_result *row,
             .length_wavelengths = pass_wavelengths,
             .passes = passes,
             .level_uncertainty_db = row->level_uncertainty_db,
-            .calibration_db = rfade_result_calibration_db(row),
+            .calibration_db = shared_db(row),
             .spread_below = spread_below,
             .spread_above = spread_above,
             .pass_deviation_db = row->pass_deviation_db > 0.0 ? row->pass_deviation_db : 0.0,

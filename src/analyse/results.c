@@ -16,7 +16,7 @@ static const char *const ROWS_SQL =
     " local_sigma_high_db, window_noise_db, level_uncertainty_db, channel.noise_floor_dbm,"
     " channel.bandwidth_hz, channel.noise_figure_db, channel.symbol_rate_hz,"
     " fading.noise_dbm, fading.level_tally, fading.local_mean_tally, fading.snr_tally,"
-    " pass_deviation_db"
+    " pass_deviation_db, calibration_db"
     " FROM fading JOIN segment USING (segment_id) JOIN route USING (route_id)"
     " JOIN channel USING (channel_id) JOIN campaign USING (campaign_id)"
     " WHERE (?1 IS NULL OR route.name = ?1) AND (?2 IS NULL OR channel.name = ?2)"
@@ -109,6 +109,7 @@ static void read_row(sqlite3_stmt *statement, void *row)
         .local_mean = column_tally(statement, 26),
         .snr = column_tally(statement, 27),
         .pass_deviation_db = rfade_column_real(statement, 28),
+        .calibration_db = rfade_column_real(statement, 29),
     };
     read_noise(statement, row);
 }

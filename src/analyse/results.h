@@ -68,8 +68,9 @@ struct rfade_segment_result {
     double local_sigma_high_db;
     double window_noise_db;
     double level_uncertainty_db;
+    double calibration_db;    /**< the part of it that is the vehicles' calibration */
     double pass_deviation_db; /**< NaN with one pass */
-    double noise_floor_dbm; /**< in the bandwidth; NaN: not known */
+    double noise_floor_dbm;   /**< in the bandwidth; NaN: not known */
     enum rfade_noise_source noise_source;
     double bandwidth_hz;
     double symbol_rate_hz;
@@ -124,9 +125,6 @@ const struct rfade_stored_fit *rfade_result_fit(const struct rfade_segment_resul
 
 /** Whether the fast fading was told apart, so that K and m may be shown. */
 bool rfade_result_resolved(const struct rfade_segment_result *row);
-
-/** The part of a row's level_uncertainty_db that is not fading, but the calibration's. */
-double rfade_result_calibration_db(const struct rfade_segment_result *row);
 
 /** The local mean along a row's segment, what its window adds and takes away undone. free(). */
 enum rfade_status rfade_result_track(struct rfade_segment_result *row,

@@ -40,10 +40,11 @@ struct rfade_whole_route {
 };
 
 /**
- * Outage of a whole route. Segments err independently of each other, but for the calibration,
- * which moves all of them the same way: the former's distances to the interval's ends combine
- * as the root of the sum of squares [Zou and Donner, Statistics in Medicine 27, 2008], the
- * latter's add up; both combine on the scale of ln(odds).
+ * Outage of a whole route. Segments err independently of each other (by fading, and by how
+ * their passes differ), but for the calibration, which moves all of them the same way: the
+ * former's distances to the interval's ends combine as the root of the sum of squares [Zou and
+ * Donner, Statistics in Medicine 27, 2008], the latter's add up; both combine on the scale of
+ * ln(odds).
  *
  * lognormal_outage takes each segment's fast fading as it was fitted, and the local mean along
  * the whole route as one normal distribution of its level in dB: where it differs from
