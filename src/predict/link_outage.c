@@ -71,7 +71,9 @@ static enum rfade_status over_shadowing(const struct rfade_link *link, double st
     const double sigma = link->shadowing_db * RFADE_LN_PER_DB;
     const double sign = is_upper ? -1.0 : 1.0;
     struct rfade_log_sum sum = rfade_log_sum_empty();
-    for (double z = normal_end; z > -normal_end; z -= step) {
+    const int terms = (int)(2.0 * normal_end / step);
+    for (int i = 0; i < terms; i++) {
+        const double z = normal_end - i * step;
         struct rfade_tails tails;
         const double level = x - sign * sigma * z;
         const enum rfade_status status =

@@ -148,7 +148,9 @@ static struct rfade_scaled wedge(const struct path *path, double angle_cot)
     const double v_end = log1p(path->c * angle_cot * angle_cot / path->d0);
     const double x_end = asinh(sqrt(v_end / path->spread));
     double sum = 0.0;
-    for (double x = 0.0; x < x_end; x += panel_length) {
+    const int panels = (int)ceil(x_end / panel_length);
+    for (int i = 0; i < panels; i++) {
+        const double x = i * panel_length;
         const double part = wedge_panel(path, x, fmin(x + panel_length, x_end));
         sum += part;
         if (part < 1e-17 * sum) {

@@ -35,11 +35,11 @@ struct rfade_term_sum {
 };
 
 struct rfade_modulation {
-    enum rfade_modulation_id id;
     const char *name;
-    int bits; /**< a symbol */
     struct rfade_term_sum bit;
     struct rfade_term_sum symbol; /**< no terms: as the bits */
+    enum rfade_modulation_id id;
+    int bits; /**< a symbol */
 };
 
 /** The terms of the symbol error rate. */

@@ -66,9 +66,11 @@ static enum rfade_status bracket(struct search *search, double *low_db, double *
     const double start_db = 10.0;
     const double sign = excess(start_db, search) > 0.0 ? 1.0 : -1.0;
     double near_db = start_db;
-    for (double reach_db = 10.0;; reach_db *= 2.0) {
+    double reach_db = 10.0;
+    for (;;) {
         const double far_db =
             fmax(fmin(start_db + sign * reach_db, RFADE_SNR_LIMIT_DB), -RFADE_SNR_LIMIT_DB);
+        reach_db *= 2.0;
         const double value = excess(far_db, search) * sign;
         if (search->status != RFADE_OK) {
             return search->status;
