@@ -110,8 +110,7 @@ static enum rfade_status predicted(struct rfade_segment_result *row,
     double spread_above = sigma_db > 0.0 ? row->local_sigma_high_db / sigma_db - 1.0 : 0.0;
     for (size_t i = 0; i < row->fit_count && count < RFADE_MODEL_COUNT; i++) {
         const struct rfade_stored_fit *fit = &row->fits[i];
-        bool usable = fit->model && fit->model->id != RFADE_LOGNORMAL;
-        if (fit != preferred && !(usable && fit->weight > WEIGHT_MIN))
+        if (fit != preferred && !(fit->model && fit->weight > WEIGHT_MIN))
             continue;
         place = fit == preferred ? count : place;
         weights[count] = isfinite(fit->weight) ? fit->weight : 1.0;
@@ -139,6 +138,18 @@ static enum rfade_status predicted(struct rfade_segment_result *row,
         status =
             rfade_stretch_outage_mixed(stretches, weights, count, place, threshold_dbm, outage);
     free(track);
+    return status;
+}
+
+/* Of a law fitted to the levels as a whole: how sure it is, is not known. */
+static enum rfade_status outage_of_levels(const struct rfade_stored_fit *fit,
+                                          double threshold_dbm,
+                                          struct rfade_stretch_outage *outage)
+{
+    struct rfade_tails tails;
+    enum rfade_status status =
+        fit->model->tails(fit->parameter, threshold_dbm - fit->offset_db, &tails);
+    outage->outage = tails.lower;
     return status;
 }
 
@@ -180,7 +191,9 @@ enum rfade_status rfade_result_outage(struct rfade_segment_result *row,
     *outage = (struct rfade_stretch_outage){NAN, NAN, NAN, NAN, NAN, NAN};
     const struct rfade_stored_fit *fit = rfade_result_preferred(row);
     enum rfade_status status = RFADE_OK;
-    if (fit && fit->model)
+    if (fit && fit->model && fit->model->id == RFADE_LOGNORMAL)
+        status = outage_of_levels(fit, threshold->level_dbm, outage);
+    else if (fit && fit->model)
         status = predicted(row, fit, threshold->level_dbm, confidence, outage);
     if (status == RFADE_OK)
         status = observe(row, threshold, observed);

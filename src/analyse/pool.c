@@ -9,6 +9,7 @@
 #include <stdlib.h>
 
 #include "analyse/expected_blocks.h"
+#include "analyse/levels.h"
 
 /* A pass without travel tells no mean. */
 static const double LEAST_WAVELENGTHS = 1e-3;
@@ -181,7 +182,7 @@ static void judge_local_mean(struct rfade_pool *pool,
     local_sigma(pool, settings, track->variance_db2, rice ? rice->mean_power_db : 0.0, result);
 
     double mean_variance = pass_variance / (double)pool->passes;
-    if (result->fitted)
+    if (rice)
         result->effective_count =
             fmin((double)pool->readings,
                  rfade_model(RFADE_RICE)->normalised_variance(k) / mean_variance);
@@ -292,6 +293,8 @@ enum rfade_status rfade_pool_evaluate(struct rfade_pool *pool,
             return rfade_error_set(error, status, "report it with the survey",
                                    "the fast fading of a segment can't be fitted: %s",
                                    rfade_status_text(status));
+    } else if (result->sampling == RFADE_UNDERSAMPLED) {
+        result->fitted = rfade_fit_levels(pool->level, &result->estimate) == RFADE_OK;
     }
     struct level_moments track, readings, noise;
     status = level_moments(pool->local_mean, &track);
@@ -304,7 +307,8 @@ enum rfade_status rfade_pool_evaluate(struct rfade_pool *pool,
                                rfade_status_text(status));
     result->mean_power_dbm = readings.mean_power_dbm;
     result->noise_dbm = noise.mean_power_dbm;
-    if (!isnan(track.mean_dbm))
+    /* Where windows hold a reading or two, their mean is no local mean. */
+    if (!isnan(track.mean_dbm) && result->sampling != RFADE_UNDERSAMPLED)
         judge_local_mean(pool, settings, &lags, &track, result);
     return RFADE_OK;
 }

@@ -89,16 +89,13 @@ static double lognormal_outage(const struct rfade_segment_result *row,
     double x_db = threshold_dbm - whole->local_mean_dbm;
     double sigma_db = whole->local_sigma_db;
     struct rfade_tails tails;
-    enum rfade_status status;
-    if (fit->model->id == RFADE_LOGNORMAL) /* normal levels in dB add up to normal ones */
-        status = fit->model->tails(hypot(fit->parameter, sigma_db), x_db, &tails);
-    else
-        status = rfade_outage(fit->model, fit->parameter, fmin(sigma_db, SIGMA_MAX_DB), x_db,
-                              &tails);
+    enum rfade_status status =
+        rfade_outage(fit->model, fit->parameter, fmin(sigma_db, SIGMA_MAX_DB), x_db, &tails);
     return status == RFADE_OK ? tails.lower : NAN;
 }
 
-/* A fit without a track, of a vehicle that stood still, predicts nothing. */
+/* A fit without a track predicts nothing: of a vehicle that stood still, or of the levels as a
+ * whole. */
 static bool was_predicted(const struct rfade_segment_result *row)
 {
     const struct rfade_stored_fit *fit = rfade_result_preferred(row);
@@ -138,7 +135,7 @@ enum rfade_status rfade_whole_route(const struct rfade_route_group *group,
             rfade_result_bounds(row, &thresholds[i], 0.5 + 0.5 * confidence, &bounds, error);
         if (status != RFADE_OK)
             return status;
-        if (isnan(bounds.outage))
+        if (isnan(bounds.outage) || !was_predicted(row))
             continue;
         if (whole->predicted_m == 0.0)
             sums.reference_dbm = row->local_mean_dbm;

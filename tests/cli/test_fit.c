@@ -311,6 +311,42 @@ static void outage_is_that_of_the_simulated_fading(void **state)
     json_decref(rows);
 }
 
+/*
+ * A reading a second at 80 km/h, 34 wavelengths: no local mean, but a law of the levels. Under
+ * Rayleigh fading their mean in dB lies 2.51 dB under the mean power, here at -100 dBm, and
+ * half of them below that, about; how sure that is, is not said.
+ */
+static void undersampled_levels_have_a_lognormal_law(void **state)
+{
+    const struct fixture *fixture = *state;
+    char log[128];
+    (void)snprintf(log, sizeof log, "%s/sparse.csv", fixture->folder);
+    SAID("", "simulate", "--length-m", "20000", "--rate-hz", "1", "--speed-kmh", "80",
+         "--mean-level-dbm", "-100", "--shadowing-db", "0", "--vehicle", "plough-2",
+         "--channel", "telemetry", "--output", log);
+    SAID("", "import", log, "--survey", fixture->survey);
+    SAID("", "channel", "telemetry", "--carrier-hz", "457e6", "--survey", fixture->survey);
+    SAID("", "route", "fen", "--from-vehicle", "plough-2", "--segment-m", "20000", "--survey",
+         fixture->survey);
+    SAID("", "fit", "--survey", fixture->survey);
+    json_t *rows = JSON_OF("outage", "--threshold-dbm", "-102.51", "--survey", fixture->survey);
+    const json_t *row = json_array_get(rows, 0);
+    assert_string_equal(json_string_value(json_object_get(row, "model")), "lognormal");
+    assert_string_equal(json_string_value(json_object_get(row, "sampling")), "undersampled");
+    assert_true(fabs(number_at(rows, 0, "outage") - 0.5) < 0.06);
+    assert_true(isnan(number_at(rows, 0, "outage_low")));
+    json_decref(rows);
+    /* 5.57 dB, the spread of dB under Rayleigh fading, below that mean: 16 % of a normal law.
+     */
+    rows = JSON_OF("outage", "--threshold-dbm", "-108.08", "--survey", fixture->survey);
+    assert_true(fabs(number_at(rows, 0, "outage") - 0.1587) < 0.04);
+    json_decref(rows);
+    rows = JSON_OF("outage", "--threshold-dbm", "-108.08", "--whole-route", "--survey",
+                   fixture->survey);
+    assert_true(number_at(rows, 0, "predicted_m") == 0.0);
+    json_decref(rows);
+}
+
 /* Rows come so that `name` falls, and none is left out. */
 static void assert_falls(const json_t *rows, const char *name)
 {
@@ -472,6 +508,7 @@ int main(void)
         FITTED(worst_keeps_what_could_not_be_predicted),
         FITTED(narrowing_keeps_what_was_asked_for),
         FITTED(what_can_not_be_answered_is_refused),
+        EMPTY(undersampled_levels_have_a_lognormal_law),
         EMPTY(before_a_fit_there_is_no_answer),
         EMPTY(a_channel_without_carrier_is_refused),
         FITTED(results_older_than_the_survey_are_told),
