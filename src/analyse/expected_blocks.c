@@ -41,6 +41,11 @@ static const double K_RANGE[2] = {1e-3, 300.0};
 
 /* The blocks' own weights of lags, 1, 2/3, 1/3: what their mean costs (estimate). */
 static const double MEAN_COST = 3.0;
+/* ... and the sum of their squares, over all lags. */
+static const double SQUARES = 19.0 / 9.0;
+
+/* Theory's variances are good to about 15 percent: 2 over its square. */
+static const double THEORY_FREEDOM = 90.0;
 enum { BLOCKS_MIN = 6 };
 
 /* Length of the correlation J0^2 cos(2 phase) with the ray along the road: the convolution of
@@ -286,6 +291,19 @@ static double unbiased(double blocks)
     return blocks / (blocks - MEAN_COST);
 }
 
+/*
+ * As many blocks as know a variance as well as the blend does: measured ones by their degrees
+ * of freedom [Priestley 1981, section 6.2.4], theory by what its lengths may be off, and both
+ * by the square of their share.
+ */
+static double equivalent_blocks(double trusted, double expected)
+{
+    double share = trusted / (trusted + expected);
+    double measured = trusted > 1.0 ? share * share * SQUARES / (trusted - 1.0) : 0.0;
+    double theory = (1.0 - share) * (1.0 - share) / THEORY_FREEDOM;
+    return 1.0 + SQUARES / (measured + theory);
+}
+
 static bool rounded(double value, int64_t *result)
 {
     if (!(fabs(value) < 9e18))
@@ -304,13 +322,14 @@ static enum rfade_status blend(const struct rfade_expected_fading *fading,
     double weight_mm = 0.0, measured = (double)blocks->blocks;
     double trusted = blocks->blocks >= BLOCKS_MIN ? measured : 0.0;
     double all = trusted + RFADE_EXPECTED_BLOCKS;
+    double blended = round(equivalent_blocks(trusted, RFADE_EXPECTED_BLOCKS));
     long_lengths(&fading->followed, &fading->ray, missed);
     for (int i = 0; i < LONG_PAIRS; i++)
         missed[i] = fmax(lengths.pair[i] - missed[i], 0.0);
     for (int i = 0; i < CLASSES; i++)
         weight_mm += (double)blocks->total[i];
     /* All is brought to as many blocks as were measured; the totals stay. */
-    double share = measured / all / unbiased(all);
+    double share = measured / all / unbiased(blended);
     double known = trusted > 0.0 ? share * unbiased(trusted) : 0.0;
     double square = weight_mm * weight_mm / measured / fading->travel_wavelengths;
     for (int i = 0; i < CLASSES; i++) {
@@ -325,7 +344,7 @@ static enum rfade_status blend(const struct rfade_expected_fading *fading,
                 return RFADE_OVERFLOW;
         }
     }
-    sum.blocks = (int64_t)all;
+    sum.blocks = (int64_t)blended;
     *blocks = sum;
     return RFADE_OK;
 }

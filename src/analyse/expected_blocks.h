@@ -24,9 +24,9 @@ struct rfade_expected_fading {
 /**
  * Adds the correlation at lags beyond those that blocks follow, and as many expected blocks as
  * RFADE_EXPECTED_BLOCKS, to measured ones: the covariance that follows from the result is the
- * mean of both by their number. A few blocks know a variance but poorly, and theory knows it
- * as far as scatter comes from all around. With fewer than 6 measured blocks theory stands
- * alone.
+ * mean of both by their number, and the number of blocks in the result says how well it is
+ * known. A few blocks know a variance but poorly, and theory knows it as far as scatter comes
+ * from all around. With fewer than 6 measured blocks theory stands alone.
  * @return RFADE_OK | RFADE_DOMAIN | RFADE_OVERFLOW; blocks stay as they were on failure
  */
 enum rfade_status rfade_expect_blocks(const struct rfade_expected_fading *fading,

@@ -13,14 +13,14 @@
 #include <stdbool.h>
 #include <stddef.h>
 
-/* Uncertainty of the outage: nodes of the five-point Gauss-Hermite rule [AMS 55, table
- * 25.10], for the normal distribution. */
-enum { NODES = 5 };
-static const double NODE[NODES] = {-2.8569700138728056, -1.3556261799742659, 0.0,
-                                   1.3556261799742659, 2.8569700138728056};
-static const double NODE_WEIGHT[NODES] = {0.011257411327720689, 0.22207592200561264,
-                                          0.53333333333333333, 0.22207592200561264,
-                                          0.011257411327720689};
+/*
+ * Uncertainty of the outage: places up to four deviations aside, so close that what the
+ * numbers of readings spread by reaches from one to the next, but at least a quarter of a
+ * deviation apart and at most one, at which the trapezoidal rule is right to 1e-8.
+ */
+enum { NODES_MAX = 33 };
+static const double NODES_REACH = 4.0;
+static const double CLOSEST = 0.25;
 
 /* As many readings as continuous observation is taken for: at least this many, and so many
  * to a fade. */
@@ -34,6 +34,7 @@ static const double FADES_FOR_NORMAL = 200.0;
 
 /* The distribution of the number of readings below, at one node, and how far it was summed. */
 struct node {
+    double weight;
     double fades;  /* Poisson mean of the fades that are found */
     double repeat; /* q */
     double mean;   /* of the number of readings, and its deviation */
@@ -85,19 +86,27 @@ static void find_ends(const struct rfade_next_pass *next, double tail, double re
 {
     double centre = probability_of(next->log_odds);
     double fade = 0.5 * next->variance / centre;
-    struct node nodes[NODES];
+    struct node nodes[NODES_MAX];
     bool low_found = false;
-    for (int i = 0; i < NODES; i++) {
-        double deviation = NODE[i] < 0 ? next->deviation_below : next->deviation_above;
-        double outage = probability_of(next->log_odds + deviation * NODE[i]);
+    double weights = 0.0;
+    struct node middle = make_node(centre, fade, readings);
+    double apart = fmax(next->deviation_below, next->deviation_above) * middle.mean;
+    double step = apart > 0.0 ? fmin(fmax(middle.deviation / apart, CLOSEST), 1.0) : 1.0;
+    int aside = (int)floor(NODES_REACH / step), count = 2 * aside + 1;
+    for (int i = 0; i < count; i++) {
+        double place = step * (i - aside);
+        double deviation = place < 0 ? next->deviation_below : next->deviation_above;
+        double outage = probability_of(next->log_odds + deviation * place);
         /* Shallow fades are longer as they are more: both as the root of the outage. */
         nodes[i] = make_node(outage, fade * sqrt(outage / centre), readings);
+        nodes[i].weight = exp(-0.5 * place * place);
+        weights += nodes[i].weight;
     }
     size_t last = (size_t)readings;
     for (size_t n = 0; n <= last; n++) {
         double sum = 0.0;
-        for (int i = 0; i < NODES; i++)
-            sum += NODE_WEIGHT[i] * next_below(&nodes[i], (double)n);
+        for (int i = 0; i < count; i++)
+            sum += nodes[i].weight / weights * next_below(&nodes[i], (double)n);
         if (!low_found && sum > tail) {
             *low = (double)n;
             low_found = true;

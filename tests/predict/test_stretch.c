@@ -7,12 +7,13 @@
 
 #include <cmocka.h>
 #include <gsl/gsl_errno.h>
-#include <gsl/gsl_randist.h>
 #include <math.h>
 #include <stdbool.h>
+#include <stdlib.h>
 #include <string.h>
 
 #include "routefade/stretch.h"
+#include "simulate/drives.h"
 #include "support/reference_table.h"
 
 static void assert_near(double actual, double expected, double tolerance)
@@ -129,51 +130,50 @@ static void nothing_uncertain_gives_no_width(void **state)
     assert_true(outage.high > outage.outage * 1.1);
 }
 
-enum { DRAWS = 20000, READINGS = 1000 };
+enum { DRIVES = 1500, READINGS = 1000 };
 
-/* Share of the readings that a signal which is in turn below and above, each for a time of
- * exponential distribution, has below. */
-static double draw_share(gsl_rng *random, double outage, double fade_readings)
+/* Share of 1000 readings over 150 wavelengths below the level, one simulated pass. */
+static double drive_share(double k, double level_dbm, uint64_t seed)
 {
-    double gap_readings = fade_readings * (1.0 - outage) / outage;
-    bool is_below = gsl_rng_uniform(random) < outage;
-    double place = 0.0;
-    int count = 0;
-    while (place < READINGS) {
-        double next =
-            place + gsl_ran_exponential(random, is_below ? fade_readings : gap_readings);
-        if (is_below)
-            count += (int)(fmin(ceil(next), READINGS) - ceil(place));
-        is_below = !is_below;
-        place = next;
-    }
-    return (double)count / READINGS;
+    struct rfade_drive_settings settings = plain_drive();
+    struct rfade_drive_reading *readings = NULL;
+    size_t count = 0, below = 0;
+    settings.length_m = settings.stretch_m = 150.0;
+    settings.rate_hz = 10.0 * READINGS / 150.0;
+    settings.k = &k;
+    settings.seed = seed;
+    settings.mean_level_dbm = -90.0;
+    assert_int_equal(rfade_simulate_drive(&settings, &readings, &count), RFADE_OK);
+    for (size_t i = 0; i < count; i++)
+        below += readings[i].power_dbm < level_dbm;
+    free(readings);
+    return (double)below / (double)count;
 }
 
-/* GSL's generators draw the passes: which share does the interval leave on each side? A tail
- * of a count holds at most 0.025; what the distribution supposes beside is of first order. */
-static void prediction_interval_holds_drawn_fades(void **state)
+/* Simulated passes over a level track, nothing uncertain: which share does the interval leave
+ * on each side? A tail of a count holds at most 0.025; the variance behind it is good to a
+ * tenth. */
+static void prediction_interval_holds_simulated_passes(void **state)
 {
     (void)state;
-    const double thresholds_dbm[] = {-95.0, -100.0, -105.0};
-    gsl_rng *random = gsl_rng_alloc(gsl_rng_mt19937);
-    for (size_t i = 0; i < sizeof thresholds_dbm / sizeof thresholds_dbm[0]; i++) {
+    const double ks[] = {0.0, 1.0, 4.0};
+    const double thresholds_dbm[] = {-95.0, -100.0};
+    for (size_t i = 0; i < 6; i++) {
+        double k = ks[i / 2], threshold_dbm = thresholds_dbm[i % 2];
         struct rfade_stretch stretch = rayleigh_stretch(level_track, 1);
         struct rfade_stretch_outage outage;
+        stretch.model = rfade_model(RFADE_RICE);
+        stretch.parameter = stretch.parameter_low = stretch.parameter_high = k;
         stretch.level_uncertainty_db = 0.0;
         stretch.readings = READINGS;
-        assert_int_equal(rfade_stretch_outage(&stretch, thresholds_dbm[i], &outage), RFADE_OK);
-        double fades = outage.crossings_per_wavelength * stretch.length_wavelengths;
-        int below = 0, above = 0;
-        for (int j = 0; j < DRAWS; j++) {
-            double share = draw_share(random, outage.outage, READINGS * outage.outage / fades);
-            below += share < outage.next_low;
-            above += share > outage.next_high;
+        assert_int_equal(rfade_stretch_outage(&stretch, threshold_dbm, &outage), RFADE_OK);
+        int outside = 0;
+        for (uint64_t seed = 1; seed <= DRIVES; seed++) {
+            double share = drive_share(k, threshold_dbm, seed);
+            outside += share < outage.next_low || share > outage.next_high;
         }
-        assert_near((double)below / DRAWS, 0.022, 0.008);
-        assert_near((double)above / DRAWS, 0.022, 0.008);
+        assert_near((double)outside / DRIVES, 0.046, 0.02);
     }
-    gsl_rng_free(random);
 }
 
 /* The slow variation of a ray's scatter widens the prediction, and moves level and K at once.
@@ -193,6 +193,53 @@ static void slow_variation_widens_both_intervals(void **state)
     assert_near(with.outage, without.outage, 1e-15);
     assert_true(with.low < without.low && with.high > without.high);
     assert_true(with.next_high > without.next_high);
+}
+
+/* What passes differ by moves another pass, and not what is known of the stretch. */
+static void passes_that_differ_widen_the_prediction_alone(void **state)
+{
+    (void)state;
+    struct rfade_stretch stretch = rayleigh_stretch(level_track, 1);
+    struct rfade_stretch_outage without, with;
+    assert_int_equal(rfade_stretch_outage(&stretch, -100.0, &without), RFADE_OK);
+    stretch.pass_deviation_db = 3.0;
+    assert_int_equal(rfade_stretch_outage(&stretch, -100.0, &with), RFADE_OK);
+    assert_true(with.low == without.low && with.high == without.high);
+    /* At least as far as a pass that is weaker by 1.96 times 3 dB has on average. */
+    assert_true(with.next_high > exponential(-100, -90 - 5.88));
+    assert_true(with.next_low < exponential(-100, -90 + 5.88));
+    stretch.pass_deviation_db = -1.0;
+    assert_int_equal(rfade_stretch_outage(&stretch, -100.0, &with), RFADE_DOMAIN);
+}
+
+/* On a track of two levels far apart the outage is the share of the weak one, and its spread
+ * moves the level of both: ends are those of the moved tracks. */
+static void an_unsure_spread_moves_the_ends(void **state)
+{
+    (void)state;
+    struct rfade_stretch stretch = rayleigh_stretch(stepped_track, 2);
+    struct rfade_stretch_outage sure, unsure;
+    stretch.level_uncertainty_db = 0.0;
+    assert_int_equal(rfade_stretch_outage(&stretch, -110.0, &sure), RFADE_OK);
+    assert_near(sure.low, sure.high, 1e-15);
+    stretch.spread_below = 0.1;
+    stretch.spread_above = 0.2;
+    assert_int_equal(rfade_stretch_outage(&stretch, -110.0, &unsure), RFADE_OK);
+    struct rfade_local_mean moved[2];
+    double weights = stepped_track[0].weight + stepped_track[1].weight;
+    double mean_dbm = (stepped_track[0].weight * stepped_track[0].level_dbm +
+                       stepped_track[1].weight * stepped_track[1].level_dbm) /
+                      weights;
+    double expected = 0.0;
+    for (int i = 0; i < 2; i++) {
+        moved[i] = stepped_track[i];
+        moved[i].level_dbm = mean_dbm + 1.2 * (stepped_track[i].level_dbm - mean_dbm);
+        expected += moved[i].weight / weights * exponential(-110, moved[i].level_dbm);
+    }
+    assert_near(unsure.high, expected, 1e-12);
+    assert_true(unsure.low < sure.low);
+    stretch.spread_below = 1.1;
+    assert_int_equal(rfade_stretch_outage(&stretch, -110.0, &unsure), RFADE_DOMAIN);
 }
 
 /* A calibration is shared by the track; fading averages out over the part that matters. */
@@ -323,8 +370,10 @@ int main(void)
         cmocka_unit_test(stretch_averages_over_the_track),
         cmocka_unit_test(interval_follows_the_mean_level),
         cmocka_unit_test(nothing_uncertain_gives_no_width),
-        cmocka_unit_test(prediction_interval_holds_drawn_fades),
+        cmocka_unit_test(prediction_interval_holds_simulated_passes),
         cmocka_unit_test(slow_variation_widens_both_intervals),
+        cmocka_unit_test(passes_that_differ_widen_the_prediction_alone),
+        cmocka_unit_test(an_unsure_spread_moves_the_ends),
         cmocka_unit_test(a_deep_part_is_less_certain),
         cmocka_unit_test(models_are_mixed_by_weight),
         cmocka_unit_test(rare_fades_may_not_come),
