@@ -103,37 +103,6 @@ RFADE_API enum rfade_status rfade_error_rates(const struct rfade_link *link,
                                               const struct rfade_modulation *const *modulations,
                                               size_t count, struct rfade_error_rate *rates);
 
-/**
- * The bit error rates alone, in about half the time.
- * @param[out] bit_rates  [count]
- */
-RFADE_API enum rfade_status
-rfade_bit_error_rates(const struct rfade_link *link,
-                      const struct rfade_modulation *const *modulations, size_t count,
-                      double *bit_rates);
-
-/** A mean SNR of one branch, and how much of a stretch (travel) has it. */
-struct rfade_mean_snr {
-    double mean_snr_db;
-    double weight; /**< >= 0 */
-};
-
-/**
- * Error rates averaged over a track of local means as well; link->mean_snr_db is ignored. A
- * long track stands in as the few levels of the Gauss rule with its moments (G. H. Golub and J.
- * H. Welsch, Mathematics of Computation 23, 1969): three to twelve, the more the wider it
- * spreads.
- * @param track  [track_count], total weight > 0
- * @return RFADE_OK | RFADE_DOMAIN | RFADE_NO_DATA (no weight) | RFADE_NO_MEMORY
- * Accuracy: as rfade_error_rates() for up to two levels and for unfaded links; else, with
- * levels over up to 16 dB and rates above 1e-12, relative 1e-6 for K up to 5 or m up to 3 and
- * 1e-3 for K up to 30.
- */
-RFADE_API enum rfade_status
-rfade_error_rates_track(const struct rfade_link *link, const struct rfade_mean_snr *track,
-                        size_t track_count, const struct rfade_modulation *const *modulations,
-                        size_t count, struct rfade_error_rate *rates);
-
 /** The unfaded rates at the same mean SNR: steady, with the branches' SNRs added up. */
 RFADE_API enum rfade_status rfade_error_rate_unfaded(const struct rfade_link *link,
                                                      const struct rfade_modulation *modulation,

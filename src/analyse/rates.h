@@ -40,16 +40,17 @@ enum rfade_status rfade_results_rates(struct rfade_segment_results *results,
                                       struct rfade_error *error);
 
 /**
- * The same probabilities, unfaded, averaged over the SNR that was observed on each segment: no
- * model of the fading comes in. Logged SNR where there is one all along, else level; a reading
- * at the receiver's floor or ceiling counts there.
- * @param reference_dbm, targets  as above
- * @param[out] means  [rows][count]; NaN where nothing was observed
+ * Error rates averaged over the SNR that was observed on each segment: no model of the fading
+ * comes in. Logged SNR where there is one all along, else level; a reading at the receiver's
+ * floor or ceiling counts there.
+ * @param reference_dbm  as above
+ * @param modulations    [count]
+ * @param[out] rates     [rows][count]; NaN where nothing was observed
  */
-enum rfade_status rfade_results_rates_observed(struct rfade_segment_results *results,
-                                               const double *reference_dbm,
-                                               const struct rfade_target *targets, size_t count,
-                                               double *means, struct rfade_error *error);
+enum rfade_status
+rfade_results_rates_observed(struct rfade_segment_results *results, const double *reference_dbm,
+                             const struct rfade_modulation *const *modulations, size_t count,
+                             struct rfade_error_rate *rates, struct rfade_error *error);
 
 /** What a segment has to spare (or, negative, lacks), dB; NaN where nothing was fitted. */
 struct rfade_segment_margin {

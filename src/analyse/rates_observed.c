@@ -1,101 +1,71 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-#include <gsl/gsl_integration.h>
 #include <math.h>
 #include <stdlib.h>
 
 #include "analyse/rates.h"
-#include "routefade/rate_surface.h"
 
-/* A level lies anywhere within its step: three places of Gauss's rule stand for it. */
-enum { PLACES_A_BIN = 3 };
-
-/* Without fading an error rate of any modulation is next to 0 above, and at its limit below. */
-static const double SNR_LOW_DB = -40.0;
-static const double SNR_HIGH_DB = 50.0;
-
-/* Places in a bin from -1 to 1, and their weights, which sum to 2. */
-struct rule {
-    double place[PLACES_A_BIN];
-    double weight[PLACES_A_BIN];
-};
-
-static enum rfade_status make_rule(struct rule *rule)
-{
-    gsl_integration_glfixed_table *table = gsl_integration_glfixed_table_alloc(PLACES_A_BIN);
-    if (!table)
-        return RFADE_NO_MEMORY;
-    for (size_t i = 0; i < PLACES_A_BIN; i++)
-        (void)gsl_integration_glfixed_point(-1.0, 1.0, i, &rule->place[i], &rule->weight[i],
-                                            table);
-    gsl_integration_glfixed_table_free(table);
-    return RFADE_OK;
-}
-
-/* Adds the places of one cell of a tally; `offset_db` makes Es/N0 of its levels. */
-static size_t add_cell(const struct rule *rule, const struct rfade_tally_cell *cell,
-                       double offset_db, struct rfade_snr_place *way)
+/* A cell of a tally as Es/N0; `offset_db` makes that of its levels. A clipped one counts at its
+ * bound. */
+static struct rfade_snr_bin bin_of(const struct rfade_tally_cell *cell, double offset_db)
 {
     double centre_db = cell->key.centre_cdb / 100.0 + offset_db;
     double half_db = cell->key.kind == RFADE_INTERVAL ? cell->key.step_cdb / 200.0 : 0.0;
-    for (size_t i = 0; i < PLACES_A_BIN; i++)
-        way[i] = (struct rfade_snr_place){centre_db + half_db * rule->place[i],
-                                          0.5 * rule->weight[i] * (double)cell->weight};
-    return PLACES_A_BIN;
+    return (struct rfade_snr_bin){centre_db - half_db, centre_db + half_db,
+                                  (double)cell->weight};
 }
 
 static enum rfade_status observe_row(struct rfade_segment_result *row, double reference_dbm,
-                                     const struct rule *rule,
-                                     const struct rfade_rate_curve *curve, double *means)
+                                     const struct rfade_rate_table *table,
+                                     struct rfade_error_rate *rates)
 {
     const struct rfade_tally_cell *cells = NULL;
-    size_t cell_count = 0, places = 0;
+    size_t count = 0;
     bool logged = rfade_result_has_snr(row);
     /* Logged SNR is over the noise that was logged. */
     double offset_db = (logged ? row->noise_floor_dbm : 0.0) - reference_dbm;
     enum rfade_status status =
-        rfade_tally_cells(logged ? row->snr : row->level, &cells, &cell_count);
-    if (status != RFADE_OK || cell_count == 0 || isnan(offset_db))
-        return status;
-    struct rfade_snr_place *way = malloc(cell_count * PLACES_A_BIN * sizeof *way);
-    if (!way)
+        rfade_tally_cells(logged ? row->snr : row->level, &cells, &count);
+    if (status != RFADE_OK || isnan(offset_db))
+        return status == RFADE_OK ? RFADE_NO_DATA : status;
+    struct rfade_snr_bin *bins = malloc((count + 1) * sizeof *bins);
+    if (!bins)
         return RFADE_NO_MEMORY;
-    for (size_t i = 0; i < cell_count; i++)
-        places += add_cell(rule, &cells[i], offset_db, &way[places]);
-    status = rfade_rate_curve_mean(curve, way, places, 0.0, means);
-    free(way);
-    return status == RFADE_NO_DATA ? RFADE_OK : status;
-}
-
-static enum rfade_status make_curve(const struct rfade_target *targets, size_t count,
-                                    struct rfade_rate_curve **curve)
-{
-    const struct rfade_link steady = {.branches = 1};
-    const struct rfade_rate_domain domain = {SNR_LOW_DB, SNR_HIGH_DB, NAN, NAN};
-    struct rfade_rate_surface *surface = NULL;
-    enum rfade_status status =
-        rfade_rate_surface_create(&steady, targets, count, &domain, &surface);
-    if (status == RFADE_OK)
-        status = rfade_rate_surface_cut(surface, NAN, -INFINITY, INFINITY, curve);
-    rfade_rate_surface_destroy(surface);
+    for (size_t i = 0; i < count; i++)
+        bins[i] = bin_of(&cells[i], offset_db);
+    status = rfade_rate_table_mean(table, bins, count, rates);
+    free(bins);
     return status;
 }
 
-enum rfade_status rfade_results_rates_observed(struct rfade_segment_results *results,
-                                               const double *reference_dbm,
-                                               const struct rfade_target *targets, size_t count,
-                                               double *means, struct rfade_error *error)
+/* The step of most segments, as far as a table holds it: other steps are integrated one by
+ * one. */
+static double usual_step_db(struct rfade_segment_results *results)
 {
-    struct rfade_rate_curve *curve = NULL;
-    struct rule rule;
-    enum rfade_status status = make_rule(&rule);
-    for (size_t i = 0; i < results->count * count; i++)
-        means[i] = NAN;
-    if (status == RFADE_OK)
-        status = make_curve(targets, count, &curve);
-    for (size_t i = 0; i < results->count && status == RFADE_OK; i++)
-        status =
-            observe_row(&results->rows[i], reference_dbm[i], &rule, curve, &means[i * count]);
-    rfade_rate_curve_destroy(curve);
+    const struct rfade_tally_cell *cells = NULL;
+    size_t count = 0;
+    for (size_t i = 0; i < results->count; i++)
+        if (rfade_tally_cells(results->rows[i].level, &cells, &count) == RFADE_OK && count > 0)
+            return fmin(cells[count / 2].key.step_cdb / 100.0, 1.0);
+    return 1.0;
+}
+
+enum rfade_status
+rfade_results_rates_observed(struct rfade_segment_results *results, const double *reference_dbm,
+                             const struct rfade_modulation *const *modulations, size_t count,
+                             struct rfade_error_rate *rates, struct rfade_error *error)
+{
+    struct rfade_rate_table *table = NULL;
+    enum rfade_status status =
+        rfade_rate_table_create(modulations, count, usual_step_db(results), &table);
+    for (size_t i = 0; i < results->count && status == RFADE_OK; i++) {
+        status = observe_row(&results->rows[i], reference_dbm[i], table, &rates[i * count]);
+        if (status != RFADE_NO_DATA)
+            continue;
+        for (size_t j = 0; j < count; j++)
+            rates[i * count + j] = (struct rfade_error_rate){NAN, NAN, NAN, NAN};
+        status = RFADE_OK;
+    }
+    rfade_rate_table_destroy(table);
     if (status != RFADE_OK)
         return rfade_error_set(error, status, "",
                                "the observed error rate can't be computed: %s",

@@ -143,23 +143,15 @@ static enum rfade_status answer_observed(struct page *page,
                                          struct rfade_error *error)
 {
     size_t count = page->modulation_count;
-    struct rfade_target *targets = calloc(count, sizeof *targets);
-    double *means = calloc((results->count + 1) * count, sizeof *means);
-    enum rfade_status status = RFADE_NO_MEMORY;
-    if (!targets || !means) {
-        status = rfade_error_no_memory(error);
-        goto out;
-    }
-    for (size_t i = 0; i < count; i++)
-        targets[i] =
-            (struct rfade_target){.kind = RFADE_TARGET_BIT, .modulation = page->modulations[i]};
-    status = rfade_results_rates_observed(results, page->reference_dbm, targets, count, means,
-                                          error);
+    struct rfade_error_rate *rates = calloc((results->count + 1) * count, sizeof *rates);
+    if (!rates)
+        return rfade_error_no_memory(error);
+    enum rfade_status status = rfade_results_rates_observed(
+        results, page->reference_dbm, page->modulations, count, rates, error);
     for (size_t i = 0; i < results->count * count && status == RFADE_OK; i++)
-        page->answers[i].bit_observed = page->asked->reception.branches > 1 ? NAN : means[i];
-out:
-    free(targets);
-    free(means);
+        page->answers[i].bit_observed =
+            page->asked->reception.branches > 1 ? NAN : rates[i].bit;
+    free(rates);
     return status;
 }
 

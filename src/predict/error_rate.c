@@ -7,17 +7,18 @@
 #include "predict/average.h"
 #include "predict/branches.h"
 
-/* Modulations one after the other, with what they share. */
-static enum rfade_status average_each(const struct rfade_link *link,
-                                      const struct rfade_modulation *const *modulations,
-                                      size_t count, bool bits_only,
-                                      struct rfade_error_rate *rates, double *bit_rates)
+enum rfade_status rfade_error_rates(const struct rfade_link *link,
+                                    const struct rfade_modulation *const *modulations,
+                                    size_t count, struct rfade_error_rate *rates)
 {
     struct rfade_average average;
+    for (size_t i = 0; i < count; i++) {
+        rates[i] = rfade_error_rate_nan();
+    }
     if (count == 0) {
         return RFADE_DOMAIN;
     }
-    const struct rfade_averaged what = {modulations[0], bits_only, 0.0};
+    const struct rfade_averaged what = {modulations[0], false, 0.0};
     enum rfade_status status = rfade_average_init(&average, link, &what);
     for (size_t i = 0; i < count && status == RFADE_OK; i++) {
         struct rfade_error_rate rate;
@@ -25,34 +26,12 @@ static enum rfade_status average_each(const struct rfade_link *link,
         if (status == RFADE_OK) {
             status = rfade_average_at(&average, link->mean_snr_db, &rate);
         }
-        if (status == RFADE_OK && bits_only) {
-            bit_rates[i] = rate.bit;
-        } else if (status == RFADE_OK) {
+        if (status == RFADE_OK) {
             rates[i] = rate;
         }
     }
     rfade_average_clear(&average);
     return status;
-}
-
-enum rfade_status rfade_error_rates(const struct rfade_link *link,
-                                    const struct rfade_modulation *const *modulations,
-                                    size_t count, struct rfade_error_rate *rates)
-{
-    for (size_t i = 0; i < count; i++) {
-        rates[i] = rfade_error_rate_nan();
-    }
-    return average_each(link, modulations, count, false, rates, NULL);
-}
-
-enum rfade_status rfade_bit_error_rates(const struct rfade_link *link,
-                                        const struct rfade_modulation *const *modulations,
-                                        size_t count, double *bit_rates)
-{
-    for (size_t i = 0; i < count; i++) {
-        bit_rates[i] = NAN;
-    }
-    return average_each(link, modulations, count, true, NULL, bit_rates);
 }
 
 enum rfade_status rfade_error_rate_unfaded(const struct rfade_link *link,

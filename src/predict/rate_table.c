@@ -10,6 +10,7 @@
 #include <stdlib.h>
 
 #include "model/model.h"
+#include "predict/log_sum.h"
 #include "predict/modulation.h"
 #include "predict/observed_rate.h"
 #include "special/gauss_legendre.h"
@@ -88,26 +89,34 @@ static void fill_steady(const struct rfade_modulation *modulation, struct curves
     }
 }
 
-/* ln of the mean of exp(log_rate) over a bin about a point, from steady rates. */
+/* ln of a rate between points; NaN beyond the table. */
+static double log_rate_at(const double *log_rates, double snr_db)
+{
+    struct lagrange at;
+    double log_rate = 0.0;
+    if (!lagrange_at(snr_db, &at)) {
+        return NAN;
+    }
+    for (int j = 0; j < LAGRANGE; j++) {
+        log_rate += at.weight[j] * log_rates[at.first + (size_t)j];
+    }
+    return log_rate;
+}
+
+/* ln of the mean of exp(log_rate) over a bin about a point, from steady rates; NaN at the
+ * table's ends, which is never looked at again. */
 static double log_bin_mean(const double *log_rates, size_t point, double width_db)
 {
     const struct rfade_gauss_rule *rule = rfade_gauss_rule_for(width_variation, 0.0);
-    const double reference = log_rates[point];
-    double sum = 0.0;
+    struct rfade_log_sum sum = rfade_log_sum_empty();
     for (int i = 0; i < rule->half_count; i++) {
         for (int side = -1; side <= 1; side += 2) {
-            struct lagrange at;
-            if (!lagrange_at(point_db(point) + 0.5 * width_db * side * rule->node[i], &at)) {
-                return NAN; /* at the table's ends: never looked at again */
-            }
-            double log_rate = -reference;
-            for (int j = 0; j < LAGRANGE; j++) {
-                log_rate += at.weight[j] * log_rates[at.first + (size_t)j];
-            }
-            sum += 0.5 * rule->weight[i] * exp(log_rate);
+            const double off_db = 0.5 * width_db * side * rule->node[i];
+            const double log_rate = log_rate_at(log_rates, point_db(point) + off_db);
+            rfade_log_sum_add(&sum, log_rate + log(0.5 * rule->weight[i]));
         }
     }
-    return reference + log(sum);
+    return rfade_log_sum_log(&sum);
 }
 
 static void average_over_bins(const struct curves *steady, double width_db,

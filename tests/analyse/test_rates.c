@@ -98,18 +98,17 @@ static void observed_rates_need_no_model(void **state)
     (void)state;
     struct segment segment;
     struct rfade_error error;
-    double mean = NAN;
+    struct rfade_error_rate rate;
     const double reference_dbm = -117.0;
-    const struct rfade_target target = {.kind = RFADE_TARGET_BIT,
-                                        .modulation = rfade_modulation(RFADE_BPSK)};
+    const struct rfade_modulation *bpsk = rfade_modulation(RFADE_BPSK);
     make_segment(&segment, -117.0, -111.0);
     segment.row.fit_count = 0;
     struct rfade_segment_results results = {.rows = &segment.row, .count = 1};
     assert_int_equal(
-        rfade_results_rates_observed(&results, &reference_dbm, &target, 1, &mean, &error),
+        rfade_results_rates_observed(&results, &reference_dbm, &bpsk, 1, &rate, &error),
         RFADE_OK);
     double expected = 0.25 * (erfc(1.0) + erfc(sqrt(pow(10.0, 0.6))));
-    assert_true(fabs(mean / expected - 1.0) < 1e-3);
+    assert_true(fabs(rate.bit / expected - 1.0) < 1e-3);
 
     /* Where SNR was logged all along it is that: 3 dB more than the level would say. */
     segment.row.noise_source = RFADE_NOISE_LOGGED;
@@ -117,10 +116,10 @@ static void observed_rates_need_no_model(void **state)
     add_level(segment.row.snr, 3.0);
     add_level(segment.row.snr, 9.0);
     assert_int_equal(
-        rfade_results_rates_observed(&results, &reference_dbm, &target, 1, &mean, &error),
+        rfade_results_rates_observed(&results, &reference_dbm, &bpsk, 1, &rate, &error),
         RFADE_OK);
     expected = 0.25 * (erfc(sqrt(pow(10.0, 0.3))) + erfc(sqrt(pow(10.0, 0.9))));
-    assert_true(fabs(mean / expected - 1.0) < 1e-3);
+    assert_true(fabs(rate.bit / expected - 1.0) < 1e-3);
     clear_segment(&segment);
 }
 

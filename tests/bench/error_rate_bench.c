@@ -1,7 +1,7 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /**
  * @file error_rate_bench.c  Times the error rates of all modulations under each kind of fading,
- * with and without shadowing, packets, required SNR, and means over tables and tracks. Prints
+ * with and without shadowing, packets, required SNR, and means over tables. Prints
  * one line a measurement: what, processor time in microseconds (the best of several rounds).
  */
 #include <gsl/gsl_errno.h>
@@ -12,7 +12,7 @@
 
 #include "routefade/error_rate.h"
 
-enum { ROUNDS = 7, REPEATS = 50, BINS = 60, LEVELS = 40 };
+enum { ROUNDS = 7, REPEATS = 50, BINS = 60 };
 
 static const struct rfade_modulation *modulations[RFADE_MODULATION_COUNT];
 
@@ -34,15 +34,6 @@ static enum rfade_status all_rates(const struct rfade_link *link)
     const enum rfade_status status =
         rfade_error_rates(link, modulations, RFADE_MODULATION_COUNT, rates);
     sink += rates[0].bit;
-    return status;
-}
-
-static enum rfade_status all_bit_rates(const struct rfade_link *link)
-{
-    double rates[RFADE_MODULATION_COUNT];
-    const enum rfade_status status =
-        rfade_bit_error_rates(link, modulations, RFADE_MODULATION_COUNT, rates);
-    sink += rates[0];
     return status;
 }
 
@@ -70,19 +61,6 @@ static enum rfade_status outage(const struct rfade_link *link)
     struct rfade_tails tails;
     const enum rfade_status status = rfade_link_outage(link, 5.0, &tails);
     sink += tails.lower;
-    return status;
-}
-
-static enum rfade_status track(const struct rfade_link *link)
-{
-    struct rfade_mean_snr levels[LEVELS];
-    struct rfade_error_rate rates[RFADE_MODULATION_COUNT];
-    for (int i = 0; i < LEVELS; i++) {
-        levels[i] = (struct rfade_mean_snr){link->mean_snr_db + 0.25 * i, 1.0 + i % 5};
-    }
-    const enum rfade_status status = rfade_error_rates_track(link, levels, LEVELS, modulations,
-                                                             RFADE_MODULATION_COUNT, rates);
-    sink += rates[0].bit;
     return status;
 }
 
@@ -145,8 +123,6 @@ int main(void)
     measure("8 modulations, rayleigh", all_rates, &rayleigh);
     measure("8 modulations, rice", all_rates, &rice);
     measure("8 modulations, nakagami", all_rates, &nakagami);
-    measure("8 modulations, rice, bits alone", all_bit_rates, &rice);
-    measure("8 modulations, rice, track of 40 levels, 10 dB", track, &rice);
     measure("packet of 1000 bits, rice", packet, &rice);
     measure("required for a bit error rate, rice", required, &rice);
     rice.branches = 4;

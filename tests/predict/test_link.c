@@ -401,6 +401,7 @@ static void bad_distributions_are_refused(void **state)
 /* As exact as the table says. */
 static void check_quick(double quick, double exact)
 {
+    assert_true(quick >= 0.0); /* no NaN, however small */
     const double allowed = exact > 1e-12 ? 1e-10 : 1e-9;
     if (exact > 1e-60 && !(fabs(quick / exact - 1.0) <= allowed)) {
         fail_msg("%.17g, not %.17g", quick, exact);
@@ -460,91 +461,6 @@ static void table_gives_the_same_means(void **state)
     rfade_rate_table_destroy(table);
 }
 
-/* A track of many levels, against the same averages one by one. */
-static void track_is_averaged_over(void **state)
-{
-    (void)state;
-    enum { LEVELS = 60 };
-    const struct rfade_modulation *modulations[RFADE_MODULATION_COUNT];
-    struct rfade_error_rate rates[RFADE_MODULATION_COUNT];
-    struct rfade_error_rate one[RFADE_MODULATION_COUNT];
-    struct rfade_mean_snr track[LEVELS];
-    struct rfade_link link = {
-        .model = rfade_model(RFADE_RICE), .parameter = 5.0, .branches = 1};
-    for (int i = 0; i < RFADE_MODULATION_COUNT; i++) {
-        modulations[i] = rfade_modulation((enum rfade_modulation_id)i);
-    }
-    const double spreads_db[] = {0.0, 3.0, 9.0, 16.0};
-    const double allowed[] = {1e-13, 1e-6, 1e-6, 1e-6};
-    for (int s = 0; s < 4; s++) {
-        double expected[RFADE_MODULATION_COUNT] = {0.0};
-        double total = 0.0;
-        for (int i = 0; i < LEVELS; i++) {
-            track[i].mean_snr_db = 6.0 + spreads_db[s] * i / (LEVELS - 1);
-            track[i].weight = 1 + i * i % 7;
-            total += track[i].weight;
-            link.mean_snr_db = track[i].mean_snr_db;
-            assert_int_equal(rfade_error_rates(&link, modulations, RFADE_MODULATION_COUNT, one),
-                             RFADE_OK);
-            for (int j = 0; j < RFADE_MODULATION_COUNT; j++) {
-                expected[j] += track[i].weight * one[j].bit;
-            }
-        }
-        assert_int_equal(rfade_error_rates_track(&link, track, LEVELS, modulations,
-                                                 RFADE_MODULATION_COUNT, rates),
-                         RFADE_OK);
-        for (int j = 0; j < RFADE_MODULATION_COUNT; j++) {
-            const double error = rates[j].bit * total / expected[j] - 1.0;
-            if (!(fabs(error) < allowed[s])) {
-                fail_msg("%s over %g dB: off by %g", rfade_modulation_name(modulations[j]),
-                         spreads_db[s], error);
-            }
-        }
-    }
-    /* two levels, the second of no weight, and refusals */
-    struct rfade_mean_snr two[] = {{3.0, 2.0}, {9.0, 0.0}};
-    link.mean_snr_db = 3.0;
-    assert_int_equal(rfade_error_rates(&link, modulations, 1, one), RFADE_OK);
-    assert_int_equal(rfade_error_rates_track(&link, two, 2, modulations, 1, rates), RFADE_OK);
-    assert_true(fabs(rates[0].symbol / one[0].symbol - 1.0) < 1e-14);
-    two[0].weight = 0.0;
-    assert_int_equal(rfade_error_rates_track(&link, two, 2, modulations, 1, rates),
-                     RFADE_NO_DATA);
-    two[0].weight = -1.0;
-    assert_int_equal(rfade_error_rates_track(&link, two, 2, modulations, 1, rates),
-                     RFADE_DOMAIN);
-    two[0] = (struct rfade_mean_snr){NAN, 1.0};
-    assert_int_equal(rfade_error_rates_track(&link, two, 2, modulations, 1, rates),
-                     RFADE_DOMAIN);
-    assert_true(isnan(rates[0].bit));
-    assert_int_equal(rfade_error_rates_track(&link, track, LEVELS, modulations, 0, rates),
-                     RFADE_DOMAIN);
-}
-
-static void bits_alone_are_the_same(void **state)
-{
-    (void)state;
-    const struct rfade_modulation *modulations[] = {rfade_modulation(RFADE_8PSK),
-                                                    rfade_modulation(RFADE_64QAM), NULL};
-    struct rfade_link link = {.model = rfade_model(RFADE_NAKAGAMI),
-                              .parameter = 1.4,
-                              .shadowing_db = 5.0,
-                              .mean_snr_db = 14.0,
-                              .branches = 2,
-                              .combining = RFADE_SELECTION};
-    struct rfade_error_rate rates[2];
-    double bits[3];
-    assert_int_equal(rfade_error_rates(&link, modulations, 2, rates), RFADE_OK);
-    assert_int_equal(rfade_bit_error_rates(&link, modulations, 2, bits), RFADE_OK);
-    assert_true(fabs(bits[0] / rates[0].bit - 1.0) < 1e-14);
-    assert_true(fabs(bits[1] / rates[1].bit - 1.0) < 1e-14);
-    assert_int_equal(rfade_bit_error_rates(&link, modulations, 3, bits), RFADE_DOMAIN);
-    assert_true(isnan(bits[2]));
-    link.branches = 0;
-    assert_int_equal(rfade_bit_error_rates(&link, modulations, 1, bits), RFADE_DOMAIN);
-    assert_true(isnan(bits[0]));
-}
-
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -563,8 +479,6 @@ int main(void)
         cmocka_unit_test(wide_bins_are_integrated),
         cmocka_unit_test(bad_distributions_are_refused),
         cmocka_unit_test(table_gives_the_same_means),
-        cmocka_unit_test(track_is_averaged_over),
-        cmocka_unit_test(bits_alone_are_the_same),
     };
     gsl_set_error_handler_off();
     return cmocka_run_group_tests(tests, NULL, NULL);
