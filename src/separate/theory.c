@@ -117,13 +117,13 @@ enum rfade_status rfade_lag_means(double length_wavelengths, struct rfade_lag_me
         return RFADE_DOMAIN;
     }
     double until = fmin(length_wavelengths, followed_wavelengths);
-    double panels = ceil(until);
+    int panels = (int)ceil(until);
 
     if (!make_rule(until / panels, &rule)) {
         return RFADE_NO_MEMORY;
     }
     means->length_wavelengths = length_wavelengths;
-    for (double panel = 0.0; panel < panels; panel += 1.0) {
+    for (int panel = 0; panel < panels; panel++) {
         add_panel(&rule, panel * rule.width, means);
     }
     if (length_wavelengths > until) {
