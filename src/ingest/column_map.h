@@ -126,6 +126,8 @@
  *     snr_scale = 1            as for the level
  *     snr_offset = 0
  *     snr_no_reading = -99
+ *     noise_column = noise_a   in place of snr_column: noise in the bandwidth, dBm; SNR is the
+ *                              level less it. snr_scale, _offset and _no_reading are its
  *
  * JSON
  *

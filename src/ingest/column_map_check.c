@@ -184,11 +184,32 @@ static struct finding check_names(struct rfade_column_map *map)
     return found;
 }
 
+/* A noise column is read in the place of SNR, in the range of levels. */
+static struct finding check_noise(struct rfade_level_map *level)
+{
+    if (!rfade_column_given(&level->noise_column))
+        return fine;
+    if (rfade_column_given(&level->snr.column))
+        return (struct finding){level->line, "a level has both SNR and noise",
+                                "leave one of snr_column and noise_column out"};
+    if (!rfade_column_given(&level->level.column))
+        return (struct finding){level->line, "noise without a level tells no SNR",
+                                "add `column = ...`"};
+    level->snr.column = level->noise_column;
+    level->snr.low_cdb = RFADE_LOWEST_NOISE_CDB;
+    level->snr.high_cdb = level->level.high_cdb;
+    level->snr_is_noise = true;
+    return fine;
+}
+
 /* After check_position, which finds the position's form. */
 static struct finding check_levels(struct rfade_column_map *map)
 {
     for (size_t i = 0; i < map->level_count; i++) {
-        const struct rfade_level_map *level = &map->levels[i];
+        struct rfade_level_map *level = &map->levels[i];
+        struct finding noise = check_noise(level);
+        if (noise.what)
+            return noise;
         if (!rfade_column_given(&level->level.column) &&
             !rfade_column_given(&level->snr.column))
             return (struct finding){level->line, "a level section names no column",

@@ -58,10 +58,16 @@ struct rfade_quantity {
     int32_t high_cdb;
 };
 
+/** The lowest noise that is taken for one: that of 1 Hz lies at -174 dBm. */
+enum { RFADE_LOWEST_NOISE_CDB = -25000 };
+
 struct rfade_level_map {
     char channel[RFADE_NAME_SIZE]; /**< empty: [level] without a name */
     struct rfade_quantity level;
     struct rfade_quantity snr;
+    struct rfade_column
+        noise_column;  /**< given instead of an SNR column: then `snr` reads it */
+    bool snr_is_noise; /**< noise in dBm: SNR is the level less it */
     size_t line;
 };
 

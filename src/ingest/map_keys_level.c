@@ -59,6 +59,7 @@ static const struct rfade_map_key level_keys[] = {
     {"valid", set_valid, LEVEL(level),
      "the lowest and highest dBm from -200 to 60, such as -140 .. -20"},
     {"snr_column", rfade_map_set_column, LEVEL(snr.column), rfade_map_column_remedy},
+    {"noise_column", rfade_map_set_column, LEVEL(noise_column), rfade_map_column_remedy},
     {"snr_scale", set_scale, LEVEL(snr.scale), scale_remedy},
     {"snr_offset", set_offset, LEVEL(snr.offset), offset_remedy},
     {"snr_no_reading", rfade_map_set_sentinels, LEVEL(snr.sentinels),

@@ -210,6 +210,13 @@ static bool read_name(struct rfade_row_maker *maker, struct rfade_row *row, cons
     return !reason || rfade_row_refuse_value(row, what, value, reason);
 }
 
+/* SNR from the noise that was read in its place; without a level noise tells nothing. */
+static void take_noise(struct rfade_row_level *level)
+{
+    bool both = level->level_cdb != RFADE_NO_VALUE_CDB && level->snr_cdb != RFADE_NO_VALUE_CDB;
+    level->snr_cdb = both ? level->level_cdb - level->snr_cdb : RFADE_NO_VALUE_CDB;
+}
+
 /* One level and its SNR; false if one of them can't be used. */
 static bool read_level(const struct rfade_row_maker *maker, struct rfade_row *row, size_t index,
                        struct rfade_row_level *level)
@@ -226,7 +233,10 @@ static bool read_level(const struct rfade_row_maker *maker, struct rfade_row *ro
     value = field(maker, RFADE_ROLE_LEVELS + 2 * index + 1);
     reason =
         rfade_quantity_read(&map->snr, decimal_sign, value->text, value->size, &level->snr_cdb);
-    return !reason || rfade_row_refuse_value(row, "SNR", value, reason);
+    if (!reason && map->snr_is_noise)
+        take_noise(level);
+    return !reason ||
+           rfade_row_refuse_value(row, map->snr_is_noise ? "noise" : "SNR", value, reason);
 }
 
 /* A number that can't be right is refused alone; the reading stays, without one. */

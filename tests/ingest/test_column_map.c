@@ -217,6 +217,8 @@ static const struct {
     {TIME "[vehicle]\nname =\n" LEVEL, 4, "name"},
     {TIME "[level]\n", 3, "snr_column"},
     {TIME "[level]\ncolumn = a\nunit = dB\n", 5, "dbm"},
+    {TIME "[level]\ncolumn = a\nsnr_column = b\nnoise_column = c\n", 3, "noise_column out"},
+    {TIME "[level]\nnoise_column = c\n", 3, "column = ..."},
     {TIME "[level]\ncolumn = a\nscale = 0\n", 5, "other than 0"},
     {TIME "[level]\ncolumn = a\noffset = x\n", 5, "number"},
     {TIME "[level]\ncolumn = a\nvalid = -20 .. -140\n", 5, "lowest"},

@@ -85,6 +85,7 @@ static const struct quirk {
     {"hopped_frequencies", "hopped_frequencies.csv"},
     {"several_receivers", "several_receivers.csv"},
     {"lost_packets", "lost_packets.csv"},
+    {"noise_beside_level", "noise_beside_level.csv"},
     /* JSON */
     {"json_texts_for_numbers", "json_texts_for_numbers.json"},
     {"json_nested", "json_nested.json"},
