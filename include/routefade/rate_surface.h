@@ -55,14 +55,15 @@ RFADE_API void rfade_rate_surface_destroy(struct rfade_rate_surface *surface);
 struct rfade_rate_curve; /* opaque: a surface cut at one parameter */
 
 /**
- * Cuts a surface, over no more of the SNR than is asked for. A parameter beyond the domain is
- * taken at its end.
+ * Cuts a surface, over no more of the targets and of the SNR than is asked for. A parameter
+ * beyond the domain is taken at its end.
+ * @param targets  how many of the surface's targets, the first ones; at least 1
  * @param low_db, high_db  the SNR that the curve will be asked about; infinite: all
  * @param[out] curve  _destroy it; holds nothing of the surface
  */
 RFADE_API enum rfade_status rfade_rate_surface_cut(const struct rfade_rate_surface *surface,
-                                                   double parameter, double low_db,
-                                                   double high_db,
+                                                   double parameter, size_t targets,
+                                                   double low_db, double high_db,
                                                    struct rfade_rate_curve **curve);
 RFADE_API void rfade_rate_curve_destroy(struct rfade_rate_curve *curve);
 
@@ -70,7 +71,7 @@ RFADE_API void rfade_rate_curve_destroy(struct rfade_rate_curve *curve);
  * The probabilities averaged along a way, all of whose SNRs are moved by shift_db. SNR beyond
  * the curve is taken at its end.
  * @param way  [place_count], total weight > 0
- * @param[out] probabilities  [count of targets]
+ * @param[out] probabilities  [targets of the curve]
  * @return RFADE_OK | RFADE_NO_DATA (no weight)
  */
 RFADE_API enum rfade_status rfade_rate_curve_mean(const struct rfade_rate_curve *curve,

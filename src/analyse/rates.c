@@ -35,6 +35,7 @@ struct rates {
     const struct rfade_reception *reception;
     const struct rfade_target *targets;
     size_t target_count;
+    size_t interval_count; /* of the targets, the first ones */
     struct work *works;
     size_t count;
     struct rfade_rate_surface *surfaces[RFADE_MODEL_COUNT];
@@ -98,7 +99,11 @@ static enum rfade_status rates_create(struct rfade_segment_results *results,
                                       struct rates *rates)
 {
     double quantile = gsl_cdf_ugaussian_Pinv(0.5 + 0.5 * reception->confidence);
-    *rates = (struct rates){reception, targets, target_count, NULL, results->count, {NULL}};
+    *rates = (struct rates){.reception = reception,
+                            .targets = targets,
+                            .target_count = target_count,
+                            .interval_count = 1,
+                            .count = results->count};
     rates->works = calloc(results->count + 1, sizeof *rates->works);
     enum rfade_status status = rates->works ? RFADE_OK : RFADE_NO_MEMORY;
     for (size_t i = 0; i < results->count && status == RFADE_OK; i++)
@@ -191,12 +196,12 @@ static enum rfade_status make_surfaces(struct rates *rates, bool about_target)
 
 /* A row's surface cut at one parameter of its fit, as far as its SNR reaches either way. */
 static enum rfade_status cut_at(const struct rates *rates, const struct work *work,
-                                double parameter, double either_way_db,
+                                double parameter, size_t targets, double either_way_db,
                                 struct rfade_rate_curve **curve)
 {
     const struct rfade_model *model = work->fit->model;
     double held = model->parameter_name ? held_parameter(model, parameter) : NAN;
-    return rfade_rate_surface_cut(rates->surfaces[model->id], held,
+    return rfade_rate_surface_cut(rates->surfaces[model->id], held, targets,
                                   work->low_db - either_way_db, work->high_db + either_way_db,
                                   curve);
 }
@@ -211,7 +216,7 @@ struct distances {
 
 static void add_distances(const struct rates *rates, struct distances *distances)
 {
-    for (size_t i = 0; i < rates->target_count; i++) {
+    for (size_t i = 0; i < rates->interval_count; i++) {
         double distance = log(distances->moved[i]) - log(distances->centre[i]);
         if (distance > 0.0)
             distances->above[i] += distance * distance;
@@ -220,18 +225,32 @@ static void add_distances(const struct rates *rates, struct distances *distances
     }
 }
 
-/* The estimate, and how far the level's uncertainty moves it. */
+/* The estimates of all targets. */
+static enum rfade_status estimate(const struct rates *rates, const struct work *work,
+                                  struct distances *distances)
+{
+    struct rfade_rate_curve *curve = NULL;
+    enum rfade_status status =
+        cut_at(rates, work, work->fit->parameter, rates->target_count, 0.0, &curve);
+    if (status == RFADE_OK)
+        status =
+            rfade_rate_curve_mean(curve, work->way, work->place_count, 0.0, distances->centre);
+    rfade_rate_curve_destroy(curve);
+    return status;
+}
+
+/* How far the level's uncertainty moves them. */
 static enum rfade_status move_level(const struct rates *rates, const struct work *work,
                                     struct distances *distances)
 {
     struct rfade_rate_curve *curve = NULL;
-    enum rfade_status status =
-        cut_at(rates, work, work->fit->parameter, work->reach_db, &curve);
-    const double shifts_db[] = {0.0, work->reach_db, -work->reach_db};
-    for (size_t i = 0; i < 3 && status == RFADE_OK; i++) {
+    enum rfade_status status = cut_at(rates, work, work->fit->parameter, rates->interval_count,
+                                      work->reach_db, &curve);
+    const double shifts_db[] = {work->reach_db, -work->reach_db};
+    for (size_t i = 0; i < 2 && status == RFADE_OK; i++) {
         status = rfade_rate_curve_mean(curve, work->way, work->place_count, shifts_db[i],
-                                       i ? distances->moved : distances->centre);
-        if (status == RFADE_OK && i > 0)
+                                       distances->moved);
+        if (status == RFADE_OK)
             add_distances(rates, distances);
     }
     rfade_rate_curve_destroy(curve);
@@ -247,7 +266,7 @@ static enum rfade_status move_parameter(const struct rates *rates, const struct 
         struct rfade_rate_curve *curve = NULL;
         if (!work->fit->model->parameter_name || isnan(ends[i]))
             continue;
-        status = cut_at(rates, work, ends[i], 0.0, &curve);
+        status = cut_at(rates, work, ends[i], rates->interval_count, 0.0, &curve);
         if (status == RFADE_OK)
             status = rfade_rate_curve_mean(curve, work->way, work->place_count, 0.0,
                                            distances->moved);
@@ -269,13 +288,18 @@ static enum rfade_status rate_row(const struct rates *rates, const struct work *
     }
     if (!work->fit)
         return RFADE_OK;
-    enum rfade_status status = move_level(rates, work, &distances);
+    enum rfade_status status = estimate(rates, work, &distances);
+    if (status == RFADE_OK)
+        status = move_level(rates, work, &distances);
     if (status == RFADE_OK)
         status = move_parameter(rates, work, &distances);
     for (size_t i = 0; i < count && status == RFADE_OK; i++) {
         double value = distances.centre[i];
-        row[i] = (struct rfade_segment_rate){value, value * exp(-sqrt(distances.below[i])),
-                                             fmin(value * exp(sqrt(distances.above[i])), 1.0)};
+        row[i].value = value;
+        if (i >= rates->interval_count)
+            continue;
+        row[i].low = value * exp(-sqrt(distances.below[i]));
+        row[i].high = fmin(value * exp(sqrt(distances.above[i])), 1.0);
     }
     return status;
 }
@@ -288,17 +312,17 @@ static enum rfade_status failed(enum rfade_status status, struct rfade_error *er
                            rfade_status_text(status));
 }
 
-enum rfade_status rfade_results_rates(struct rfade_segment_results *results,
-                                      const struct rfade_reception *reception,
-                                      const double *reference_dbm,
-                                      const struct rfade_target *targets, size_t count,
-                                      struct rfade_segment_rate *segment_rates,
-                                      struct rfade_error *error)
+enum rfade_status
+rfade_results_rates(struct rfade_segment_results *results,
+                    const struct rfade_reception *reception, const double *reference_dbm,
+                    const struct rfade_target *targets, size_t count, size_t interval_count,
+                    struct rfade_segment_rate *segment_rates, struct rfade_error *error)
 {
     struct rates rates;
     double *room = malloc(4 * count * sizeof *room);
     enum rfade_status status =
         rates_create(results, reception, reference_dbm, targets, count, &rates);
+    rates.interval_count = interval_count;
     if (status == RFADE_OK && !room)
         status = RFADE_NO_MEMORY;
     if (status == RFADE_OK)
@@ -319,7 +343,7 @@ static enum rfade_status solve_shift(const struct rates *rates, const struct wor
 {
     struct rfade_rate_curve *curve = NULL;
     double low_db = -3.0 * RFADE_SNR_LIMIT_DB, high_db = 3.0 * RFADE_SNR_LIMIT_DB;
-    enum rfade_status status = cut_at(rates, work, parameter, INFINITY, &curve);
+    enum rfade_status status = cut_at(rates, work, parameter, 1, INFINITY, &curve);
     for (int i = 0; i < SOLVE_STEPS_MAX && status == RFADE_OK; i++) {
         double middle_db = 0.5 * (low_db + high_db), probability = NAN;
         if (high_db - low_db < MARGIN_ACCURACY_DB)

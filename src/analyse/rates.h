@@ -30,13 +30,14 @@ struct rfade_segment_rate {
  * @param reference_dbm  [rows] the level at which Es/N0 is 0 dB; NaN: unknown, the row's rates
  *                       are NaN
  * @param targets        [count]: which probabilities; their values are ignored
+ * @param interval_count how many of them, the first ones, get an interval; at least 1
  * @param[out] rates     [rows][count]
  */
 enum rfade_status rfade_results_rates(struct rfade_segment_results *results,
                                       const struct rfade_reception *reception,
                                       const double *reference_dbm,
                                       const struct rfade_target *targets, size_t count,
-                                      struct rfade_segment_rate *rates,
+                                      size_t interval_count, struct rfade_segment_rate *rates,
                                       struct rfade_error *error);
 
 /**

@@ -87,7 +87,7 @@ static enum rfade_status find_references(struct page *page,
     return status;
 }
 
-/* The fitted fading's rates, bit and symbol of each modulation in turn. */
+/* The fitted fading's rates: the bits of all modulations, then the symbols. */
 static enum rfade_status answer_faded(struct page *page, struct rfade_segment_results *results,
                                       struct rfade_error *error)
 {
@@ -102,13 +102,14 @@ static enum rfade_status answer_faded(struct page *page, struct rfade_segment_re
     }
     for (size_t i = 0; i < 2 * count; i++)
         targets[i] =
-            (struct rfade_target){.kind = i % 2 ? RFADE_TARGET_SYMBOL : RFADE_TARGET_BIT,
-                                  .modulation = page->modulations[i / 2]};
+            (struct rfade_target){.kind = i < count ? RFADE_TARGET_BIT : RFADE_TARGET_SYMBOL,
+                                  .modulation = page->modulations[i % count]};
     status = rfade_results_rates(results, &reception, page->reference_dbm, targets, 2 * count,
-                                 rates, error);
+                                 count, rates, error);
     for (size_t i = 0; i < results->count * count && status == RFADE_OK; i++) {
-        page->answers[i].bit = rates[2 * i];
-        page->answers[i].symbol = rates[2 * i + 1].value;
+        const struct rfade_segment_rate *row = &rates[i / count * 2 * count];
+        page->answers[i].bit = row[i % count];
+        page->answers[i].symbol = row[count + i % count].value;
     }
 out:
     free(targets);

@@ -8,15 +8,23 @@
 
 enum { MAX_DECIMALS = 12, FIRST_EXACT_DIGITS = 15, ALWAYS_EXACT_DIGITS = 17 };
 
-int rfade_number_exact_digits(double value)
+/* The text of fewest digits that reads back to the same double, and how many those are. */
+static int write_exact(double value, char text[RFADE_NUMBER_SIZE])
 {
-    for (int digits = FIRST_EXACT_DIGITS; digits < ALWAYS_EXACT_DIGITS; digits++) {
-        char text[RFADE_NUMBER_SIZE];
-        (void)snprintf(text, sizeof text, "%.*g", digits, value);
+    int digits = FIRST_EXACT_DIGITS;
+    for (; digits < ALWAYS_EXACT_DIGITS; digits++) {
+        (void)snprintf(text, RFADE_NUMBER_SIZE, "%.*g", digits, value);
         if (strtod(text, NULL) == value)
             return digits;
     }
-    return ALWAYS_EXACT_DIGITS;
+    (void)snprintf(text, RFADE_NUMBER_SIZE, "%.*g", digits, value);
+    return digits;
+}
+
+int rfade_number_exact_digits(double value)
+{
+    char text[RFADE_NUMBER_SIZE];
+    return write_exact(value, text);
 }
 
 /* Writes what is not a finite number. */
@@ -35,7 +43,7 @@ void rfade_number_exact(double value, char text[RFADE_NUMBER_SIZE])
 {
     if (write_special(value, "", text))
         return;
-    (void)snprintf(text, RFADE_NUMBER_SIZE, "%.*g", rfade_number_exact_digits(value), value);
+    (void)write_exact(value, text);
 }
 
 int rfade_number_place(double estimate, double low, double high, int fallback)

@@ -318,31 +318,37 @@ static struct snr_axis narrow(const struct snr_axis *snr, double low_db, double 
     return some;
 }
 
-/* The surface's values from a panel on, with the nodes of the parameter weighted. */
+/* The first targets' values from a panel on, with the nodes of the parameter weighted. */
 static void cut(const struct rfade_rate_surface *surface, const double *weights, size_t first,
-                size_t size, double *log_values)
+                const struct rfade_rate_curve *curve)
 {
-    size_t block = block_size(surface->target_count, &surface->snr);
-    size_t from = first * surface->target_count * PANEL_NODES;
-    for (size_t j = 0; j < size; j++)
-        log_values[j] = 0.0;
-    for (size_t i = 0; i < surface->spread.count; i++)
-        for (size_t j = 0; j < size && weights[i] != 0.0; j++)
-            log_values[j] += weights[i] * surface->log_values[i * block + from + j];
+    size_t panel_size = surface->target_count * PANEL_NODES;
+    size_t cut_size = curve->target_count * PANEL_NODES;
+    for (size_t panel = 0; panel < curve->snr.panels; panel++) {
+        double *to = &curve->log_values[panel * cut_size];
+        for (size_t j = 0; j < cut_size; j++)
+            to[j] = 0.0;
+        for (size_t i = 0; i < surface->spread.count; i++) {
+            size_t block = (i * surface->snr.panels + first + panel) * panel_size;
+            for (size_t j = 0; j < cut_size && weights[i] != 0.0; j++)
+                to[j] += weights[i] * surface->log_values[block + j];
+        }
+    }
 }
 
 enum rfade_status rfade_rate_surface_cut(const struct rfade_rate_surface *surface,
-                                         double parameter, double low_db, double high_db,
-                                         struct rfade_rate_curve **curve)
+                                         double parameter, size_t targets, double low_db,
+                                         double high_db, struct rfade_rate_curve **curve)
 {
     const struct spread_axis *spread = &surface->spread;
     size_t first = 0;
     struct snr_axis snr = narrow(&surface->snr, low_db, high_db, &first);
-    size_t size = block_size(surface->target_count, &snr);
     *curve = NULL;
+    if (targets < 1 || targets > surface->target_count)
+        return RFADE_DOMAIN;
     struct rfade_rate_curve *made = calloc(1, sizeof *made);
     double *weights = malloc(spread->count * sizeof *weights);
-    double *log_values = malloc(size * sizeof *log_values);
+    double *log_values = malloc(block_size(targets, &snr) * sizeof *log_values);
     if (!made || !weights || !log_values) {
         free(made);
         free(weights);
@@ -351,9 +357,9 @@ enum rfade_status rfade_rate_surface_cut(const struct rfade_rate_surface *surfac
     }
     double place = fmin(fmax(spread_of(surface->model, parameter), spread->low), spread->high);
     interpolate(spread->nodes, spread->count, place, weights);
-    cut(surface, weights, first, size, log_values);
+    *made = (struct rfade_rate_curve){snr, targets, log_values};
+    cut(surface, weights, first, made);
     free(weights);
-    *made = (struct rfade_rate_curve){snr, surface->target_count, log_values};
     *curve = made;
     return RFADE_OK;
 }

@@ -79,7 +79,7 @@ static void rates_are_averaged_along_the_local_mean(void **state)
     segment.row.level_uncertainty_db = 1.0;
     struct rfade_segment_results results = {.rows = &segment.row, .count = 1};
     assert_int_equal(
-        rfade_results_rates(&results, &alone, &reference_dbm, &target, 1, &rate, &error),
+        rfade_results_rates(&results, &alone, &reference_dbm, &target, 1, 1, &rate, &error),
         RFADE_OK);
     double expected = 0.5 * (bpsk_rayleigh(10.0) + bpsk_rayleigh(20.0));
     assert_true(fabs(rate.value / expected - 1.0) < 1e-6);
@@ -192,8 +192,9 @@ static void what_was_not_fitted_has_no_rate(void **state)
         .kind = RFADE_TARGET_BIT, .value = 0.01, .modulation = rfade_modulation(RFADE_BPSK)};
     make_segment(&segment, -100.0, -100.0);
     struct rfade_segment_results results = {.rows = &segment.row, .count = 1};
-    assert_int_equal(rfade_results_rates(&results, &alone, &unknown, &target, 1, &rate, &error),
-                     RFADE_OK);
+    assert_int_equal(
+        rfade_results_rates(&results, &alone, &unknown, &target, 1, 1, &rate, &error),
+        RFADE_OK);
     assert_true(isnan(rate.value) && isnan(rate.low));
     target.value = 0.6; /* no bit error rate is above one half */
     assert_int_equal(

@@ -71,10 +71,18 @@ static void check_surface(struct rfade_link link, const struct rfade_rate_domain
                 pow((domain->parameter_high + 0.5) / (domain->parameter_low + 0.5), v) -
             0.5;
         const struct rfade_snr_place here = {link.mean_snr_db - 3.0, 2.0};
-        assert_int_equal(rfade_rate_surface_cut(surface, link.parameter, link.mean_snr_db,
-                                                link.mean_snr_db, &curve),
+        assert_int_equal(rfade_rate_surface_cut(surface, link.parameter, TARGETS,
+                                                link.mean_snr_db, link.mean_snr_db, &curve),
                          RFADE_OK);
         assert_int_equal(rfade_rate_curve_mean(curve, &here, 1, 3.0, found), RFADE_OK);
+        rfade_rate_curve_destroy(curve);
+        /* The first targets alone are the same. */
+        double some[2];
+        assert_int_equal(rfade_rate_surface_cut(surface, link.parameter, 2, link.mean_snr_db,
+                                                link.mean_snr_db, &curve),
+                         RFADE_OK);
+        assert_int_equal(rfade_rate_curve_mean(curve, &here, 1, 3.0, some), RFADE_OK);
+        assert_true(some[0] == found[0] && some[1] == found[1]);
         rfade_rate_curve_destroy(curve);
         for (int i = 0; i < TARGETS; i++) {
             double expected = direct(&link, &targets[i]);
@@ -122,7 +130,7 @@ static void a_way_is_averaged(void **state)
     struct rfade_rate_curve *curve = NULL;
     double mean = NAN;
     assert_int_equal(rfade_rate_surface_create(&link, &target, 1, &domain, &surface), RFADE_OK);
-    assert_int_equal(rfade_rate_surface_cut(surface, NAN, -INFINITY, INFINITY, &curve),
+    assert_int_equal(rfade_rate_surface_cut(surface, NAN, 1, -INFINITY, INFINITY, &curve),
                      RFADE_OK);
     /* Over Rayleigh fading it is 1/(2 + SNR) [Proakis]. */
     assert_int_equal(rfade_rate_curve_mean(curve, way, 2, 0.0, &mean), RFADE_OK);
