@@ -13,8 +13,9 @@ static const double K_MAX = 1e3;
 static const double M_MIN = 0.5;
 static const double M_MAX = 500.0;
 
-/* A required level lies no further than this from that without a spread of the local mean. */
-static const double WAY_REACH_DB = 45.0;
+/* Along a way that spreads over so many dB the required mean lies no further from that without
+ * a spread than these, and this much beside. */
+static const double WAY_REACH_DB = 6.0;
 
 static const double MARGIN_ACCURACY_DB = 1e-9;
 enum { SOLVE_STEPS_MAX = 200 };
@@ -156,6 +157,18 @@ static struct rfade_link link_of(const struct rates *rates, enum rfade_model_id 
                                .combining = rates->reception->combining};
 }
 
+/* The widest way of a model's rows, from its lowest SNR to its highest. */
+static double widest_way_db(const struct rates *rates, enum rfade_model_id model)
+{
+    double widest_db = 0.0;
+    for (size_t i = 0; i < rates->count; i++) {
+        const struct work *work = &rates->works[i];
+        if (work->fit && work->fit->model->id == model)
+            widest_db = fmax(widest_db, work->high_db - work->low_db);
+    }
+    return widest_db;
+}
+
 /* Where the target is met without any spread of the local mean, at either end of the
  * parameter, and as far about that as a way reaches. */
 static enum rfade_status domain_about_target(const struct rates *rates,
@@ -163,6 +176,7 @@ static enum rfade_status domain_about_target(const struct rates *rates,
                                              struct rfade_rate_domain *domain)
 {
     const double ends[] = {domain->parameter_low, domain->parameter_high};
+    double reach_db = widest_way_db(rates, model) + WAY_REACH_DB;
     domain->snr_low_db = INFINITY;
     domain->snr_high_db = -INFINITY;
     for (size_t i = 0; i < 2; i++) {
@@ -171,8 +185,8 @@ static enum rfade_status domain_about_target(const struct rates *rates,
         enum rfade_status status = rfade_required_snr(&link, rates->targets, &required_db);
         if (status != RFADE_OK)
             return status;
-        domain->snr_low_db = fmin(domain->snr_low_db, required_db - WAY_REACH_DB);
-        domain->snr_high_db = fmax(domain->snr_high_db, required_db + WAY_REACH_DB);
+        domain->snr_low_db = fmin(domain->snr_low_db, required_db - reach_db);
+        domain->snr_high_db = fmax(domain->snr_high_db, required_db + reach_db);
     }
     return RFADE_OK;
 }
