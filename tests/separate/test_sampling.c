@@ -170,9 +170,8 @@ static void held_levels_are_held(void **state)
 static void tallies_of_a_held_pass_count_updates(void **state)
 {
     const struct rfade_separate_settings how = {wavelength_m, 40.0, 10.0};
-    const struct rfade_receiver receiver = {.step_cdb = 100,
-                                            .floor_cdb = RFADE_NO_FLOOR_CDB,
-                                            .ceiling_cdb = RFADE_NO_CEILING_CDB};
+    const struct rfade_receiver receiver = {
+        .step_cdb = 100, .floor_cdb = RFADE_NO_FLOOR_CDB, .ceiling_cdb = RFADE_NO_CEILING_CDB};
     struct rfade_drive_settings settings = road(0.15);
     struct rfade_separation result;
     struct track track;

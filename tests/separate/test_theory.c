@@ -119,9 +119,8 @@ static double weight_near(double angle_deg, uint64_t seed)
     struct rfade_drive_settings settings = plain_drive();
     struct rfade_drive_reading *readings;
     struct rfade_separation separation;
-    struct rfade_receiver receiver = {.step_cdb = 10,
-                                      .floor_cdb = RFADE_NO_FLOOR_CDB,
-                                      .ceiling_cdb = RFADE_NO_CEILING_CDB};
+    struct rfade_receiver receiver = {
+        .step_cdb = 10, .floor_cdb = RFADE_NO_FLOOR_CDB, .ceiling_cdb = RFADE_NO_CEILING_CDB};
     struct rfade_separate_settings how = {1.0, RFADE_DEFAULT_WINDOW_WAVELENGTHS,
                                           RFADE_DEFAULT_BLOCK_WAVELENGTHS};
     struct rfade_track_reading *track;
