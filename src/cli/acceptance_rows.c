@@ -46,8 +46,19 @@ static void own_values(const void *context, const struct rfade_segment_result *r
     own[14] = rfade_value_text(row->sampling);
 }
 
+static double badness_of(const void *context, const struct rfade_segment_result *row,
+                         size_t index, bool by_estimate)
+{
+    (void)row;
+    const struct ordered *ordered = context;
+    const struct rfade_outage_bounds *bounds =
+        &ordered->page->segments[ordered->places[index]].bounds;
+    double badness = by_estimate ? bounds->outage : end(bounds, -bounds->below);
+    return isnan(badness) ? bounds->observed.fraction : badness;
+}
+
 static enum rfade_status print(const struct rfade_run *run, const struct ordered *ordered,
-                               const struct rfade_segment_rank *ranks, size_t count,
+                               const struct rfade_segment_options *options,
                                struct rfade_error *error)
 {
     const struct rfade_column columns[] = {
@@ -67,9 +78,9 @@ static enum rfade_status print(const struct rfade_run *run, const struct ordered
         {"observed_high", RFADE_COLUMN_PROBABILITY, 3, false, false},
         {"sampling", RFADE_COLUMN_TEXT, 0, false, false},
     };
-    const struct rfade_segment_table table = {columns, sizeof columns / sizeof columns[0],
-                                              own_values, ordered, 1};
-    return rfade_segment_print(run, &table, ordered->page->results, ranks, count, error);
+    const struct rfade_segment_table table = {
+        columns, sizeof columns / sizeof columns[0], own_values, badness_of, ordered, 1};
+    return rfade_segment_print(run, &table, options, ordered->page->results, error);
 }
 
 enum rfade_status rfade_acceptance_rows(const struct rfade_run *run,
@@ -77,25 +88,12 @@ enum rfade_status rfade_acceptance_rows(const struct rfade_run *run,
                                         const struct rfade_segment_options *options,
                                         struct rfade_error *error)
 {
-    size_t count = page->results->count;
-    struct rfade_segment_rank *ranks = malloc((count + 1) * sizeof *ranks);
-    struct ordered ordered = {page, malloc((count + 1) * sizeof *ordered.places)};
-    enum rfade_status status = RFADE_NO_MEMORY;
-    if (!ranks || !ordered.places) {
-        status = rfade_error_no_memory(error);
-        goto out;
-    }
+    struct ordered ordered = {page,
+                              malloc((page->results->count + 1) * sizeof *ordered.places)};
+    if (!ordered.places)
+        return rfade_error_no_memory(error);
     find_places(page, ordered.places);
-    for (size_t i = 0; i < count; i++) {
-        const struct rfade_outage_bounds *bounds = &page->segments[ordered.places[i]].bounds;
-        double badness = options->by_estimate ? bounds->outage : end(bounds, -bounds->below);
-        ranks[i] = (struct rfade_segment_rank){i, isnan(badness) ? bounds->observed.fraction
-                                                                 : badness};
-    }
-    count = rfade_segment_order(options, ranks, count);
-    status = print(run, &ordered, ranks, count, error);
-out:
-    free(ranks);
+    enum rfade_status status = print(run, &ordered, options, error);
     free(ordered.places);
     return status;
 }

@@ -143,25 +143,28 @@ static enum rfade_status match_rows(struct rfade_segment_results *first,
 }
 
 static enum rfade_status evaluate_rows(const struct rfade_diversity_row *pairs, size_t count,
-                                       double threshold_db, bool by_estimate,
-                                       struct rfade_diversity *answers,
-                                       struct rfade_segment_rank *ranks,
+                                       double threshold_db, struct rfade_diversity *answers,
                                        struct rfade_error *error)
 {
     enum rfade_status status = RFADE_OK;
     double confidence = rfade_analysis_defaults().confidence;
-    for (size_t i = 0; i < count && status == RFADE_OK; i++) {
+    for (size_t i = 0; i < count && status == RFADE_OK; i++)
         status =
             rfade_diversity_evaluate(&pairs[i], threshold_db, confidence, &answers[i], error);
-        ranks[i] = (struct rfade_segment_rank){i, by_estimate ? answers[i].both_below
-                                                              : answers[i].both_below_low};
-    }
     return status;
 }
 
+static double badness_of(const void *context, const struct rfade_segment_result *row,
+                         size_t index, bool by_estimate)
+{
+    (void)row;
+    const struct rfade_diversity *answer = &((const struct shown *)context)->answers[index];
+    return by_estimate ? answer->both_below : answer->both_below_low;
+}
+
 static enum rfade_status print_rows(const struct rfade_run *run, const struct shown *shown,
-                                    const struct rfade_segment_results *first,
-                                    const struct rfade_segment_rank *ranks, size_t count,
+                                    const struct rfade_segment_options *order,
+                                    const struct rfade_segment_results *first, size_t count,
                                     struct rfade_error *error)
 {
     struct rfade_column columns[OWN_COLUMNS];
@@ -170,8 +173,10 @@ static enum rfade_status print_rows(const struct rfade_run *run, const struct sh
     const struct rfade_segment_table table = {.columns = columns,
                                               .column_count = OWN_COLUMNS,
                                               .values = own_values,
+                                              .badness = badness_of,
                                               .context = shown};
-    return rfade_segment_print(run, &table, first, ranks, count, error);
+    const struct rfade_segment_results paired = {.rows = first->rows, .count = count};
+    return rfade_segment_print(run, &table, order, &paired, error);
 }
 
 static void note_unpaired(const struct rfade_run *run, const struct rfade_diversity *answers,
@@ -196,13 +201,12 @@ static enum rfade_status show_diversity(const struct rfade_run *run,
 {
     struct rfade_diversity_row *pairs = calloc(first->count + 1, sizeof *pairs);
     struct rfade_diversity *answers = calloc(first->count + 1, sizeof *answers);
-    struct rfade_segment_rank *ranks = calloc(first->count + 1, sizeof *ranks);
     const char *const channels[2] = {asked->segments.channel, asked->with};
     const struct rfade_analysis_settings settings = rfade_analysis_defaults();
     struct rfade_survey *survey = NULL;
     size_t count = 0;
     enum rfade_status status = RFADE_NO_MEMORY;
-    if (pairs && answers && ranks)
+    if (pairs && answers)
         status = match_rows(first, second, threshold, pairs, &count, error);
     else
         (void)rfade_error_no_memory(error);
@@ -214,19 +218,16 @@ static enum rfade_status show_diversity(const struct rfade_run *run,
                                       error);
     rfade_survey_close(survey);
     if (status == RFADE_OK)
-        status = evaluate_rows(pairs, count, threshold->value, asked->segments.by_estimate,
-                               answers, ranks, error);
+        status = evaluate_rows(pairs, count, threshold->value, answers, error);
     const struct shown shown = {threshold, answers, pairs};
     if (status == RFADE_OK)
-        status = print_rows(run, &shown, first, ranks,
-                            rfade_segment_order(&asked->segments, ranks, count), error);
+        status = print_rows(run, &shown, &asked->segments, first, count, error);
     if (status == RFADE_OK)
         note_unpaired(run, answers, count);
     for (size_t i = 0; i < count; i++)
         rfade_paired_total_clear(&pairs[i].total);
     free(pairs);
     free(answers);
-    free(ranks);
     return status;
 }
 

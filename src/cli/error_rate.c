@@ -169,16 +169,15 @@ static enum rfade_status answer_rows(struct page *page, struct rfade_segment_res
     return status == RFADE_OK ? answer_observed(page, results, error) : status;
 }
 
-/* Ranked by the first modulation, by the interval's better end. */
-static void rank_rows(const struct page *page, size_t rows, struct rfade_segment_rank *ranks)
+/* By the first modulation; where nothing was predicted, what was observed speaks for itself. */
+static double badness_of(const void *context, const struct rfade_segment_result *row,
+                         size_t index, bool by_estimate)
 {
-    for (size_t i = 0; i < rows; i++) {
-        const struct answer *answer = &page->answers[i * page->modulation_count];
-        double badness =
-            page->asked->segments.by_estimate ? answer->bit.value : answer->bit.low;
-        ranks[i] =
-            (struct rfade_segment_rank){i, isnan(badness) ? answer->bit_observed : badness};
-    }
+    (void)row;
+    const struct page *page = context;
+    const struct answer *answer = &page->answers[index * page->modulation_count];
+    double badness = by_estimate ? answer->bit.value : answer->bit.low;
+    return isnan(badness) ? answer->bit_observed : badness;
 }
 
 static void own_values(const void *context, const struct rfade_segment_result *row,
@@ -208,16 +207,10 @@ static enum rfade_status show(const struct rfade_run *run, const struct page *pa
                                               .column_count =
                                                   sizeof columns / sizeof columns[0],
                                               .values = own_values,
+                                              .badness = badness_of,
                                               .context = page,
                                               .lines = page->modulation_count};
-    struct rfade_segment_rank *ranks = calloc(results->count + 1, sizeof *ranks);
-    if (!ranks)
-        return rfade_error_no_memory(error);
-    rank_rows(page, results->count, ranks);
-    size_t count = rfade_segment_order(&page->asked->segments, ranks, results->count);
-    enum rfade_status status = rfade_segment_print(run, &table, results, ranks, count, error);
-    free(ranks);
-    return status;
+    return rfade_segment_print(run, &table, &page->asked->segments, results, error);
 }
 
 static enum rfade_status run_error_rate(struct rfade_run *run, struct rfade_error *error)

@@ -109,19 +109,6 @@ static enum rfade_status answer_rows(struct rfade_survey *survey,
     return status;
 }
 
-/* By how often the first level asked for is crossed; where that wasn't visible, by what is
- * predicted. */
-static void rank_rows(const struct rfade_segment_results *results, const struct answer *answers,
-                      bool by_estimate, struct rfade_segment_rank *ranks)
-{
-    for (size_t i = 0; i < results->count; i++) {
-        const struct rfade_level_timing *first = &answers[i].levels[0];
-        bool predicted = by_estimate || first->visibility != RFADE_VISIBLE;
-        ranks[i] = (struct rfade_segment_rank){i, predicted ? first->predicted_per_m
-                                                            : first->observed_per_m};
-    }
-}
-
 /* What the rows are made of: row number `index` is a level of a segment. */
 struct shown {
     const struct answer *answers;
@@ -158,50 +145,27 @@ static void own_values(const void *context, const struct rfade_segment_result *r
     own[16] = rfade_value_number(timing->longest_fade_s);
 }
 
-/* Each segment in as many rows as there are levels; the copies borrow what the rows own. */
-static enum rfade_status print_rows(const struct rfade_run *run,
-                                    const struct rfade_segment_results *results,
-                                    const struct answer *answers, const struct levels *levels,
-                                    const struct rfade_segment_rank *ranks, size_t count,
-                                    struct rfade_error *error)
+/* By how often the first level asked for is crossed; where that wasn't visible, by what is
+ * predicted. */
+static double badness_of(const void *context, const struct rfade_segment_result *row,
+                         size_t index, bool by_estimate)
 {
-    const struct shown shown = {answers, levels};
-    const struct rfade_segment_table table = {
-        .columns = own_columns,
-        .column_count = sizeof own_columns / sizeof own_columns[0],
-        .values = own_values,
-        .context = &shown,
-    };
-    size_t rows = results->count * levels->count;
-    struct rfade_segment_results each = {.rows = calloc(rows + 1, sizeof *each.rows),
-                                         .count = rows};
-    struct rfade_segment_rank *order = calloc(rows + 1, sizeof *order);
-    enum rfade_status status = RFADE_NO_MEMORY;
-    if (!each.rows || !order) {
-        status = rfade_error_no_memory(error);
-        goto out;
-    }
-    for (size_t i = 0; i < rows; i++)
-        each.rows[i] = results->rows[i / levels->count];
-    for (size_t i = 0; i < count * levels->count; i++)
-        order[i].row = ranks[i / levels->count].row * levels->count + i % levels->count;
-    status = rfade_segment_print(run, &table, &each, order, count * levels->count, error);
-out:
-    free(each.rows);
-    free(order);
-    return status;
+    (void)row;
+    const struct shown *shown = context;
+    const struct rfade_level_timing *first = &shown->answers[index].levels[0];
+    bool predicted = by_estimate || first->visibility != RFADE_VISIBLE;
+    return predicted ? first->predicted_per_m : first->observed_per_m;
 }
 
 /* A ray with a Doppler shift of its own makes fades that the formula does not know. */
-static void note_ray(const struct rfade_run *run, const struct answer *answers,
-                     const struct rfade_segment_rank *ranks, size_t count,
+static void note_ray(const struct rfade_run *run, const struct answer *answers, size_t count,
                      const struct levels *levels)
 {
     static const double worth_a_note = 1.2;
     double greatest = 0.0;
     for (size_t i = 0; i < count; i++)
         for (size_t level = 0; level < levels->count; level++)
-            greatest = fmax(greatest, answers[ranks[i].row].levels[level].ray_factor);
+            greatest = fmax(greatest, answers[i].levels[level].ray_factor);
     if (greatest > worth_a_note && !run->common->quiet)
         (void)fprintf(run->notes,
                       "the direct ray's own Doppler shift makes fades up to %.1f times as "
@@ -216,23 +180,24 @@ static enum rfade_status show_timing(const struct rfade_run *run,
                                      struct rfade_error *error)
 {
     struct answer *answers = calloc(results->count + 1, sizeof *answers);
-    struct rfade_segment_rank *ranks = calloc(results->count + 1, sizeof *ranks);
-    enum rfade_status status = RFADE_NO_MEMORY;
-    if (!answers || !ranks) {
-        status = rfade_error_no_memory(error);
-        goto out;
-    }
-    status = answer_rows(survey, results, levels, asked->speed_kmh, answers, error);
-    if (status != RFADE_OK)
-        goto out;
-    rank_rows(results, answers, asked->segments.by_estimate, ranks);
-    size_t count = rfade_segment_order(&asked->segments, ranks, results->count);
-    status = print_rows(run, results, answers, levels, ranks, count, error);
+    if (!answers)
+        return rfade_error_no_memory(error);
+    const struct shown shown = {answers, levels};
+    const struct rfade_segment_table table = {
+        .columns = own_columns,
+        .column_count = sizeof own_columns / sizeof own_columns[0],
+        .values = own_values,
+        .badness = badness_of,
+        .context = &shown,
+        .lines = levels->count,
+    };
+    enum rfade_status status =
+        answer_rows(survey, results, levels, asked->speed_kmh, answers, error);
     if (status == RFADE_OK)
-        note_ray(run, answers, ranks, count, levels);
-out:
+        status = rfade_segment_print(run, &table, &asked->segments, results, error);
+    if (status == RFADE_OK)
+        note_ray(run, answers, results->count, levels);
     free(answers);
-    free(ranks);
     return status;
 }
 

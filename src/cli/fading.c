@@ -1,6 +1,5 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 #include <math.h>
-#include <stdlib.h>
 
 #include "cli/segment_rows.h"
 
@@ -64,22 +63,22 @@ static void own_values(const void *context, const struct rfade_segment_result *r
 }
 
 /* The deeper the fading the worse: a small K. */
-static void rank_rows(const struct rfade_segment_results *results, bool by_estimate,
-                      struct rfade_segment_rank *ranks)
+static double badness_of(const void *context, const struct rfade_segment_result *row,
+                         size_t index, bool by_estimate)
 {
-    for (size_t i = 0; i < results->count; i++) {
-        const struct rfade_segment_result *row = &results->rows[i];
-        const struct rfade_stored_fit *rice = rfade_result_fit(row, RFADE_RICE);
-        ranks[i] = (struct rfade_segment_rank){i, NAN};
-        if (rice && rfade_result_resolved(row))
-            ranks[i].badness = by_estimate ? -rice->parameter : -rice->parameter_high;
-    }
+    (void)context;
+    (void)index;
+    const struct rfade_stored_fit *rice = rfade_result_fit(row, RFADE_RICE);
+    if (!rice || !rfade_result_resolved(row))
+        return NAN;
+    return by_estimate ? -rice->parameter : -rice->parameter_high;
 }
 
 static const struct rfade_segment_table table = {
     .columns = own_columns,
     .column_count = sizeof own_columns / sizeof own_columns[0],
     .values = own_values,
+    .badness = badness_of,
 };
 
 static enum rfade_status run_fading(struct rfade_run *run, struct rfade_error *error)
@@ -88,17 +87,8 @@ static enum rfade_status run_fading(struct rfade_run *run, struct rfade_error *e
     struct rfade_segment_results results;
     enum rfade_status status =
         rfade_segment_read(run, &rfade_command_fading, &asked->segments, &results, error);
-    if (status != RFADE_OK)
-        return status;
-    struct rfade_segment_rank *ranks = malloc((results.count + 1) * sizeof *ranks);
-    if (ranks) {
-        rank_rows(&results, asked->segments.by_estimate, ranks);
-        size_t count = rfade_segment_order(&asked->segments, ranks, results.count);
-        status = rfade_segment_print(run, &table, &results, ranks, count, error);
-    } else {
-        status = rfade_error_no_memory(error);
-    }
-    free(ranks);
+    if (status == RFADE_OK)
+        status = rfade_segment_print(run, &table, &asked->segments, &results, error);
     rfade_results_clear(&results);
     return status;
 }

@@ -190,6 +190,14 @@ static void tell_metres(const struct rfade_run *run, const struct page *page,
     (void)fputs("\n", run->notes);
 }
 
+static double badness_of(const void *context, const struct rfade_segment_result *row,
+                         size_t index, bool by_estimate)
+{
+    (void)row;
+    const struct page *page = context;
+    return by_estimate ? -page->margins[index].margin_db : -page->margins[index].high_db;
+}
+
 static enum rfade_status show(const struct rfade_run *run, const struct page *page,
                               const struct rfade_segment_results *results,
                               struct rfade_error *error)
@@ -198,20 +206,12 @@ static enum rfade_status show(const struct rfade_run *run, const struct page *pa
                                               .column_count =
                                                   sizeof columns / sizeof columns[0],
                                               .values = own_values,
+                                              .badness = badness_of,
                                               .context = page};
     struct rfade_segment_options order = page->asked->segments;
-    struct rfade_segment_rank *ranks = calloc(results->count + 1, sizeof *ranks);
-    if (!ranks)
-        return rfade_error_no_memory(error);
-    for (size_t i = 0; i < results->count; i++)
-        ranks[i] = (struct rfade_segment_rank){
-            i, order.by_estimate ? -page->margins[i].margin_db : -page->margins[i].high_db};
     if (order.worst == 0) /* worst first, all of them */
         order.worst = (int64_t)results->count;
-    size_t count = rfade_segment_order(&order, ranks, results->count);
-    enum rfade_status status = rfade_segment_print(run, &table, results, ranks, count, error);
-    free(ranks);
-    return status;
+    return rfade_segment_print(run, &table, &order, results, error);
 }
 
 static enum rfade_status run_margin(struct rfade_run *run, struct rfade_error *error)

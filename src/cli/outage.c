@@ -44,21 +44,6 @@ static enum rfade_status answer_rows(struct rfade_segment_results *results,
     return RFADE_OK;
 }
 
-/* Ranked by the interval's better end, so that a bad guess from few readings is not first.
- * Where nothing was predicted, what was observed speaks for itself. */
-static void rank_rows(const struct rfade_segment_results *results, const struct answer *answers,
-                      bool by_estimate, struct rfade_segment_rank *ranks)
-{
-    for (size_t i = 0; i < results->count; i++) {
-        const struct rfade_stretch_outage *predicted = &answers[i].outage;
-        const struct rfade_observed *observed = &answers[i].observed;
-        double badness = by_estimate ? predicted->outage : predicted->low;
-        if (isnan(badness))
-            badness = by_estimate ? observed->fraction : observed->low;
-        ranks[i] = (struct rfade_segment_rank){i, badness};
-    }
-}
-
 /* What the rows are made from. */
 struct page {
     const struct rfade_threshold_asked *threshold;
@@ -84,11 +69,25 @@ static void own_values(const void *context, const struct rfade_segment_result *r
     own[11] = rfade_value_text(row->sampling);
 }
 
+/* By the interval's better end, so that a bad guess from few readings is not first. Where
+ * nothing was predicted, what was observed speaks for itself. */
+static double badness_of(const void *context, const struct rfade_segment_result *row,
+                         size_t index, bool by_estimate)
+{
+    (void)row;
+    const struct page *page = context;
+    const struct rfade_stretch_outage *predicted = &page->answers[index].outage;
+    const struct rfade_observed *observed = &page->answers[index].observed;
+    double badness = by_estimate ? predicted->outage : predicted->low;
+    if (!isnan(badness))
+        return badness;
+    return by_estimate ? observed->fraction : observed->low;
+}
+
 static enum rfade_status print_rows(const struct rfade_run *run,
+                                    const struct rfade_segment_options *order,
                                     const struct rfade_segment_results *results,
-                                    const struct page *page,
-                                    const struct rfade_segment_rank *ranks, size_t count,
-                                    struct rfade_error *error)
+                                    const struct page *page, struct rfade_error *error)
 {
     const struct rfade_column columns[] = {
         {page->threshold->column, RFADE_COLUMN_NUMBER, 1, false, true},
@@ -104,9 +103,9 @@ static enum rfade_status print_rows(const struct rfade_run *run,
         {"noise", RFADE_COLUMN_TEXT, 0, false, false},
         {"sampling", RFADE_COLUMN_TEXT, 0, false, false},
     };
-    const struct rfade_segment_table table = {columns, sizeof columns / sizeof columns[0],
-                                              own_values, page, 1};
-    return rfade_segment_print(run, &table, results, ranks, count, error);
+    const struct rfade_segment_table table = {
+        columns, sizeof columns / sizeof columns[0], own_values, badness_of, page, 1};
+    return rfade_segment_print(run, &table, order, results, error);
 }
 
 static enum rfade_status show_outage(const struct rfade_run *run,
@@ -116,23 +115,14 @@ static enum rfade_status show_outage(const struct rfade_run *run,
                                      struct rfade_error *error)
 {
     struct answer *answers = calloc(results->count + 1, sizeof *answers);
-    struct rfade_segment_rank *ranks = calloc(results->count + 1, sizeof *ranks);
-    enum rfade_status status = RFADE_NO_MEMORY;
-    if (!answers || !ranks) {
-        (void)rfade_error_set(error, status, "", "out of memory");
-        goto out;
-    }
-    status =
-        answer_rows(results, threshold, rfade_analysis_defaults().confidence, answers, error);
-    if (status != RFADE_OK)
-        goto out;
-    rank_rows(results, answers, asked->segments.by_estimate, ranks);
-    size_t count = rfade_segment_order(&asked->segments, ranks, results->count);
+    if (!answers)
+        return rfade_error_no_memory(error);
     const struct page page = {threshold, answers};
-    status = print_rows(run, results, &page, ranks, count, error);
-out:
+    enum rfade_status status =
+        answer_rows(results, threshold, rfade_analysis_defaults().confidence, answers, error);
+    if (status == RFADE_OK)
+        status = print_rows(run, &asked->segments, results, &page, error);
     free(answers);
-    free(ranks);
     return status;
 }
 

@@ -84,9 +84,15 @@ enum rfade_status rfade_segment_read(const struct rfade_run *run,
     return status;
 }
 
+/* A row's place in the output. */
+struct rank {
+    size_t row;
+    double badness;
+};
+
 static int compare_ranks(const void *left, const void *right)
 {
-    const struct rfade_segment_rank *a = left, *b = right;
+    const struct rank *a = left, *b = right;
     bool a_known = !isnan(a->badness), b_known = !isnan(b->badness);
     if (a_known != b_known)
         return a_known ? -1 : 1;
@@ -95,40 +101,61 @@ static int compare_ranks(const void *left, const void *right)
     return (a->row > b->row) - (a->row < b->row); /* ties stay along the route */
 }
 
-size_t rfade_segment_order(const struct rfade_segment_options *options,
-                           struct rfade_segment_rank *ranks, size_t count)
+/* Orders rows, if that was asked for; says how many of them to show. */
+static size_t order_rows(const struct rfade_segment_table *table,
+                         const struct rfade_segment_options *options,
+                         const struct rfade_segment_results *results, struct rank *ranks)
 {
-    if (options->worst == 0 || count == 0)
-        return count;
-    qsort(ranks, count, sizeof *ranks, compare_ranks);
-    return (uint64_t)options->worst < count ? (size_t)options->worst : count;
+    for (size_t i = 0; i < results->count; i++)
+        ranks[i] = (struct rank){i, NAN};
+    if (options->worst == 0 || results->count == 0)
+        return results->count;
+    for (size_t i = 0; i < results->count; i++)
+        ranks[i].badness =
+            table->badness(table->context, &results->rows[i], i, options->by_estimate);
+    qsort(ranks, results->count, sizeof *ranks, compare_ranks);
+    return (uint64_t)options->worst < results->count ? (size_t)options->worst : results->count;
+}
+
+static enum rfade_status print_lines(struct rfade_rows *rows,
+                                     const struct rfade_segment_table *table,
+                                     const struct rfade_segment_result *row, size_t place,
+                                     struct rfade_error *error)
+{
+    struct rfade_value values[FIRST_COLUMNS + RFADE_SEGMENT_OWN_COLUMNS];
+    size_t lines = table->lines ? table->lines : 1;
+    enum rfade_status status = RFADE_OK;
+    first_values(row, values);
+    for (size_t i = 0; i < lines && status == RFADE_OK; i++) {
+        table->values(table->context, row, place * lines + i, values + FIRST_COLUMNS);
+        status = rfade_rows_row(rows, values, error);
+    }
+    return status;
 }
 
 enum rfade_status rfade_segment_print(const struct rfade_run *run,
                                       const struct rfade_segment_table *table,
+                                      const struct rfade_segment_options *options,
                                       const struct rfade_segment_results *results,
-                                      const struct rfade_segment_rank *ranks, size_t count,
                                       struct rfade_error *error)
 {
     struct rfade_column columns[FIRST_COLUMNS + RFADE_SEGMENT_OWN_COLUMNS];
     memcpy(columns, first_columns, sizeof first_columns);
     memcpy(columns + FIRST_COLUMNS, table->columns,
            table->column_count * sizeof *table->columns);
+    struct rank *ranks = malloc((results->count + 1) * sizeof *ranks);
+    if (!ranks)
+        return rfade_error_no_memory(error);
+    size_t count = order_rows(table, options, results, ranks);
     struct rfade_rows *rows = NULL;
     enum rfade_status status =
         rfade_rows_begin(run->common->format, run->output, NULL, columns,
                          FIRST_COLUMNS + table->column_count, &rows, error);
-    size_t lines = table->lines ? table->lines : 1;
-    for (size_t i = 0; i < count * lines && status == RFADE_OK; i++) {
-        struct rfade_value values[FIRST_COLUMNS + RFADE_SEGMENT_OWN_COLUMNS];
-        size_t place = ranks[i / lines].row;
-        const struct rfade_segment_result *row = &results->rows[place];
-        first_values(row, values);
-        table->values(table->context, row, place * lines + i % lines, values + FIRST_COLUMNS);
-        status = rfade_rows_row(rows, values, error);
-    }
+    for (size_t i = 0; i < count && status == RFADE_OK; i++)
+        status = print_lines(rows, table, &results->rows[ranks[i].row], ranks[i].row, error);
     if (status == RFADE_OK)
         status = rfade_rows_end(rows, error);
     rfade_rows_destroy(rows);
+    free(ranks);
     return status;
 }

@@ -84,19 +84,6 @@ enum rfade_status rfade_segment_read(const struct rfade_run *run,
 /** A model's parameter; one at the end of the model's domain may well be larger. */
 struct rfade_value rfade_parameter_value(const struct rfade_model *model, double parameter);
 
-/** A row's place in the output: the larger, the worse; NaN goes last. */
-struct rfade_segment_rank {
-    size_t row;
-    double badness;
-};
-
-/**
- * Orders rows: with --worst worst first and cut to N, else as they are.
- * @return how many rows to show
- */
-size_t rfade_segment_order(const struct rfade_segment_options *options,
-                           struct rfade_segment_rank *ranks, size_t count);
-
 /** What a by-segment command adds to the first columns, which all of them share. */
 struct rfade_segment_table {
     const struct rfade_column *columns;
@@ -105,17 +92,24 @@ struct rfade_segment_table {
      * borrowed from them. */
     void (*values)(const void *context, const struct rfade_segment_result *row, size_t index,
                    struct rfade_value *values);
+    /** How bad row number `index` is, by the better end of its interval or by the estimate
+     * itself: the larger, the worse; rows of NaN go last. */
+    double (*badness)(const void *context, const struct rfade_segment_result *row, size_t index,
+                      bool by_estimate);
     const void *context;
     size_t lines; /**< that each row gives; 0: one */
 };
 
 enum { RFADE_SEGMENT_OWN_COLUMNS = 24 }; /**< room for a command's own */
 
-/** Prints the rows in the order of the ranks: route ... model, then the command's own. */
+/**
+ * Prints the rows: route ... model, then the command's own. With --worst worst first and cut
+ * to N, else as they are.
+ */
 enum rfade_status rfade_segment_print(const struct rfade_run *run,
                                       const struct rfade_segment_table *table,
+                                      const struct rfade_segment_options *options,
                                       const struct rfade_segment_results *results,
-                                      const struct rfade_segment_rank *ranks, size_t count,
                                       struct rfade_error *error);
 
 #endif
