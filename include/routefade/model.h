@@ -30,6 +30,9 @@ enum { RFADE_MODEL_COUNT = 4 };
 /** Levels about the mean that the functions take: beyond, powers leave the range of doubles. */
 #define RFADE_LEVEL_LIMIT_DB 3000.0
 
+/** dB of a power whose natural logarithm is 1: 10 / ln 10, to double's last place. */
+#define RFADE_DB_PER_NEPER_OF_POWER 4.342944819032518
+
 /** ln of a probability or density, with its derivatives. */
 struct rfade_log_gradient {
     double value;       /**< ln p */

@@ -117,7 +117,7 @@ static bool add_level(double k, double x_db, double weight, struct coefficients 
         !derivatives(a, b, by_power))
         return false;
     sum->probability += weight * tails.lower;
-    sum->density += weight * exp(density.value) * 10.0 / M_LN10;
+    sum->density += weight * exp(density.value) * RFADE_DB_PER_NEPER_OF_POWER;
     sum->crossings += weight * rate;
     for (int i = 0; i < PAIRS; i++)
         sum->pair[i] += weight * coefficient(a, by_power, DEGREES[i][0], DEGREES[i][1]);

@@ -1,14 +1,10 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
-#include <gsl/gsl_math.h>
 #include <math.h>
 #include <stdbool.h>
 #include <stdlib.h>
 
 #include "analyse/results.h"
 #include "routefade/separate.h"
-
-/* d(dB)/d(relative power) */
-static const double DB_PER_NEPER_OF_POWER = 10.0 / M_LN10;
 
 /* A model that is less likely than that moves no end of an interval. */
 static const double WEIGHT_MIN = 1e-3;
@@ -54,7 +50,8 @@ enum rfade_status rfade_result_track(struct rfade_segment_result *row,
     double mean_dbm = NAN, deviation_db = NAN;
     track_moments(cells, *count, &mean_dbm, &deviation_db);
     double scale = deviation_db > 0.0 ? row->local_sigma_db / deviation_db : 1.0;
-    double lift_db = 0.5 * row->window_noise_db * row->window_noise_db / DB_PER_NEPER_OF_POWER;
+    double lift_db =
+        0.5 * row->window_noise_db * row->window_noise_db / RFADE_DB_PER_NEPER_OF_POWER;
     for (size_t i = 0; i < *count; i++) {
         double about_db = cells[i].key.centre_cdb / 100.0 - mean_dbm;
         (*track)[i] = (struct rfade_local_mean){mean_dbm + lift_db + scale * about_db,
@@ -76,7 +73,8 @@ static double fading_variance(const struct rfade_segment_result *row)
 static double shared_db(const struct rfade_segment_result *row)
 {
     double total = row->level_uncertainty_db * row->level_uncertainty_db;
-    double fading = DB_PER_NEPER_OF_POWER * DB_PER_NEPER_OF_POWER * fading_variance(row);
+    double fading =
+        RFADE_DB_PER_NEPER_OF_POWER * RFADE_DB_PER_NEPER_OF_POWER * fading_variance(row);
     return sqrt(fmax(0.0, total - fading));
 }
 
@@ -189,6 +187,7 @@ enum rfade_status rfade_result_outage(struct rfade_segment_result *row,
                                       struct rfade_error *error)
 {
     *outage = (struct rfade_stretch_outage){NAN, NAN, NAN, NAN, NAN, NAN};
+    *observed = (struct rfade_observed){NAN, NAN, NAN};
     const struct rfade_stored_fit *fit = rfade_result_preferred(row);
     enum rfade_status status = RFADE_OK;
     if (fit && fit->model && fit->model->id == RFADE_LOGNORMAL)

@@ -3,7 +3,6 @@
 
 #include <gsl/gsl_cdf.h>
 #include <gsl/gsl_errno.h>
-#include <gsl/gsl_math.h>
 #include <gsl/gsl_sf_psi.h>
 #include <math.h>
 #include <stdlib.h>
@@ -13,9 +12,6 @@
 
 /* A pass without travel tells no mean. */
 static const double LEAST_WAVELENGTHS = 1e-3;
-
-/* d(dB)/d(relative power) */
-static const double DB_PER_NEPER_OF_POWER = 10.0 / M_LN10;
 
 /* Means over lags that a pool's variances are made of. */
 struct lags {
@@ -117,8 +113,8 @@ static double rounding_db(const struct rfade_sampling_sums *sums)
     if (sums->updates <= 0)
         return 0.0;
     double step_db2 = 1e-4 * (double)sums->step_square_cdb2 / (double)sums->updates;
-    double a = 0.5 / DB_PER_NEPER_OF_POWER;
-    return DB_PER_NEPER_OF_POWER * a * a * step_db2 / 6.0;
+    double a = 0.5 / RFADE_DB_PER_NEPER_OF_POWER;
+    return RFADE_DB_PER_NEPER_OF_POWER * a * a * step_db2 / 6.0;
 }
 
 /*
@@ -139,7 +135,7 @@ static void local_sigma(const struct rfade_pool *pool,
 {
     double noise_db2 = result->window_noise_db * result->window_noise_db;
     double within_db2 =
-        -2.0 * DB_PER_NEPER_OF_POWER * (offset_db + rounding_db(&pool->sampling));
+        -2.0 * RFADE_DB_PER_NEPER_OF_POWER * (offset_db + rounding_db(&pool->sampling));
     double track_db2 = fmax(0.0, variance_db2 - noise_db2 + within_db2);
     double windows = pool->travel_m / (settings->window_wavelengths * pool->wavelength_m);
     double error_db2 = sqrt((4.0 * track_db2 + 2.0 * noise_db2) * noise_db2 / windows +
@@ -170,14 +166,16 @@ static void judge_local_mean(struct rfade_pool *pool,
     struct rfade_ray ray = rfade_ray_from_lags(&pool->sampling, k);
     double pass_variance = rfade_lag_mean_variance(&lags->pass, k, &ray);
     struct rfade_pass_spread spread = rfade_find_pass_spread(
-        &pool->pass_levels, DB_PER_NEPER_OF_POWER * sqrt(pass_variance), settings->confidence);
+        &pool->pass_levels, RFADE_DB_PER_NEPER_OF_POWER * sqrt(pass_variance),
+        settings->confidence);
     double window_variance = rfade_lag_mean_variance(&lags->window, k, &ray);
-    result->window_noise_db = DB_PER_NEPER_OF_POWER * sqrt(window_variance);
+    result->window_noise_db = RFADE_DB_PER_NEPER_OF_POWER * sqrt(window_variance);
     /* The mean of dB of a noisy power lies below the dB of its mean, to first order by half
      * its relative variance. What the local mean does within its window, and beyond the
      * segment's ends, raises the window's mean power above the readings at its centre: that
      * is the mean of the fast fading. */
-    result->local_mean_dbm = track->mean_dbm + 0.5 * DB_PER_NEPER_OF_POWER * window_variance +
+    result->local_mean_dbm = track->mean_dbm +
+                             0.5 * RFADE_DB_PER_NEPER_OF_POWER * window_variance +
                              (rice ? rice->mean_power_db : 0.0);
     local_sigma(pool, settings, track->variance_db2, rice ? rice->mean_power_db : 0.0, result);
 
@@ -286,7 +284,8 @@ enum rfade_status rfade_pool_evaluate(struct rfade_pool *pool,
     struct lags lags;
     enum rfade_status status = find_lags(pool, settings, &lags);
     if (status != RFADE_OK)
-        return rfade_error_no_memory(error);
+        return rfade_error_set(error, status, "", "a segment's lags can't be averaged: %s",
+                               rfade_status_text(status));
     if (seen) {
         status = fit_fading(pool, settings, &lags, result);
         if (status != RFADE_OK && status != RFADE_NO_DATA)

@@ -17,9 +17,6 @@ extern const struct rfade_model rfade_model_lognormal;
 #define RFADE_LN_PER_DB 0.23025850929940456
 #define RFADE_LN_PER_DB_REST 1.1599128504932202e-17
 
-/** dB of a power whose natural logarithm is 1: 10 / ln 10, to double's last place. */
-#define RFADE_DB_PER_NEPER_OF_POWER 4.342944819032518
-
 /** Intervals up to here are tried by quadrature in dB; wider ones outgrow the longest rule. */
 #define RFADE_NARROW_DB 50.0
 
