@@ -65,19 +65,6 @@ static const struct rfade_channel *channel_of(const struct material *material,
     return NULL;
 }
 
-/* The latest calibration of a vehicle at or before a time; NULL if there is none. */
-static const struct rfade_calibration *calibration_of(const struct material *material,
-                                                      int64_t vehicle_id, int64_t time_us)
-{
-    const struct rfade_calibration *in_force = NULL;
-    for (size_t i = 0; i < material->calibration_count; i++) {
-        const struct rfade_calibration *one = &material->calibrations[i];
-        if (one->vehicle_id == vehicle_id && one->from_us <= time_us)
-            in_force = one;
-    }
-    return in_force;
-}
-
 /* All that has readings needs a carrier: without it there is no wavelength to measure by. */
 static enum rfade_status check_carriers(struct rfade_survey *survey,
                                         const struct material *material,
@@ -170,7 +157,9 @@ work_outing(struct rfade_survey *survey, const struct rfade_analysis_settings *s
             .outing = outing,
             .stream = &streams[i],
             .channel = channel_of(material, streams[i].channel_id),
-            .calibration = calibration_of(material, outing->vehicle_id, outing->start_us),
+            .calibration =
+                rfade_calibration_at(material->calibrations, material->calibration_count,
+                                     outing->vehicle_id, outing->start_us),
         };
         status = work_stream(&work, &lazy, summary, error);
     }

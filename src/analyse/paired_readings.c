@@ -129,18 +129,6 @@ static enum rfade_status pair_chunks(const struct pairing *work, const struct pl
                                  rfade_status_text(status));
 }
 
-static const struct rfade_calibration *calibration_of(const struct pairing *work,
-                                                      const struct rfade_outing *outing)
-{
-    const struct rfade_calibration *in_force = NULL;
-    for (size_t i = 0; i < work->calibration_count; i++) {
-        const struct rfade_calibration *one = &work->calibrations[i];
-        if (one->vehicle_id == outing->vehicle_id && one->from_us <= outing->start_us)
-            in_force = one;
-    }
-    return in_force;
-}
-
 static enum rfade_status locate(const struct pairing *work,
                                 const struct rfade_route_work *route,
                                 const struct rfade_outing *outing,
@@ -155,7 +143,8 @@ static enum rfade_status locate(const struct pairing *work,
         .outing = outing,
         .stream = &stream,
         .channel = &work->channels[branch],
-        .calibration = calibration_of(work, outing),
+        .calibration = rfade_calibration_at(work->calibrations, work->calibration_count,
+                                            outing->vehicle_id, outing->start_us),
     };
     const struct rfade_trace_listener listener = {keep, chunks};
     return rfade_trace_locate(&trace, drive, &listener, error);

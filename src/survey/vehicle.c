@@ -101,3 +101,14 @@ enum rfade_status rfade_survey_calibrations(struct rfade_survey *survey,
     *calibrations = rows;
     return status;
 }
+
+const struct rfade_calibration *
+rfade_calibration_at(const struct rfade_calibration *calibrations, size_t count,
+                     int64_t vehicle_id, int64_t time_us)
+{
+    const struct rfade_calibration *in_force = NULL; /* they stand in the order of time */
+    for (size_t i = 0; i < count; i++)
+        if (calibrations[i].vehicle_id == vehicle_id && calibrations[i].from_us <= time_us)
+            in_force = &calibrations[i];
+    return in_force;
+}

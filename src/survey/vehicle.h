@@ -44,4 +44,9 @@ enum rfade_status rfade_survey_calibrations(struct rfade_survey *survey,
                                             struct rfade_calibration **calibrations,
                                             size_t *count, struct rfade_error *error);
 
+/** The latest calibration of a vehicle at or before a time; NULL if there is none. */
+const struct rfade_calibration *
+rfade_calibration_at(const struct rfade_calibration *calibrations, size_t count,
+                     int64_t vehicle_id, int64_t time_us);
+
 #endif
