@@ -13,8 +13,7 @@ static const double WIDENING = 1.25;
 
 static double widened(double all, double calibration)
 {
-    double rest = WIDENING * sqrt(fmax(0.0, all * all - calibration * calibration));
-    return hypot(rest, calibration);
+    return hypot(WIDENING * rfade_own_distance(all, calibration), calibration);
 }
 
 void rfade_acceptance_widen(struct rfade_outage_bounds *bounds)

@@ -17,6 +17,11 @@ double rfade_from_log_odds(double log_odds)
     return log_odds > 0 ? 1.0 / (1.0 + exp(-log_odds)) : exp(log_odds) / (1.0 + exp(log_odds));
 }
 
+double rfade_own_distance(double all, double calibration)
+{
+    return sqrt(fmax(0.0, all * all - calibration * calibration));
+}
+
 /* Between two places on the scale of ln(odds), which may be the same infinity. */
 static double distance(double from, double to)
 {

@@ -11,12 +11,10 @@
 /** On the scale of ln(odds) of the outage; NaN where nothing was predicted. */
 struct rfade_outage_bounds {
     double outage;
-    double log_odds; /**< of the outage; infinite for 0 and 1 */
-    double below;    /**< >= 0: from it to the lower bound, all uncertainty together */
-    double above;    /**< and to the upper bound */
-    double
-        calibration_below; /**< >= 0: the same from the calibration alone; what travel makes
-                                smaller is the rest, as the root of a difference of squares */
+    double log_odds;          /**< of the outage; infinite for 0 and 1 */
+    double below;             /**< >= 0: from it to the lower bound, all uncertainty together */
+    double above;             /**< and to the upper bound */
+    double calibration_below; /**< >= 0: the same from the calibration alone */
     double calibration_above;
     double calibration_db; /**< standard uncertainty of the vehicles' calibration, dB */
     struct rfade_observed observed;
@@ -25,6 +23,9 @@ struct rfade_outage_bounds {
 /** ln(p / (1 - p)), and back. */
 double rfade_log_odds(double probability);
 double rfade_from_log_odds(double log_odds);
+
+/** What travel makes smaller of a distance: the root of the difference of the squares. */
+double rfade_own_distance(double all, double calibration);
 
 /**
  * Bounds of a row's outage: each end is exceeded, or undercut, with a probability of

@@ -20,7 +20,7 @@ static void settle(const struct rfade_outage_bounds *bounds, double d, double bo
                    double calibration, double travel_m, double passes,
                    struct rfade_judgement *judgement)
 {
-    double rest = sqrt(fmax(0.0, bound * bound - calibration * calibration));
+    double rest = rfade_own_distance(bound, calibration);
     double room = d * d - calibration * calibration;
     if (room > 0.0) {
         double more = fmax(0.0, rest * rest / room - 1.0);

@@ -28,19 +28,14 @@ static double length_of(const struct rfade_segment_result *row)
     return row->to_m - row->from_m;
 }
 
-static double own_distance(double all, double calibration)
-{
-    return sqrt(fmax(0.0, all * all - calibration * calibration));
-}
-
 static void add_segment(const struct rfade_segment_result *row,
                         const struct rfade_outage_bounds *bounds, struct sums *sums)
 {
     double length_m = length_of(row);
     double own_low = rfade_from_log_odds(
-        bounds->log_odds - own_distance(bounds->below, bounds->calibration_below));
+        bounds->log_odds - rfade_own_distance(bounds->below, bounds->calibration_below));
     double own_high = rfade_from_log_odds(
-        bounds->log_odds + own_distance(bounds->above, bounds->calibration_above));
+        bounds->log_odds + rfade_own_distance(bounds->above, bounds->calibration_above));
     sums->outage += length_m * bounds->outage;
     sums->below_square += pow(length_m * (bounds->outage - own_low), 2.0);
     sums->above_square += pow(length_m * (own_high - bounds->outage), 2.0);
