@@ -11,6 +11,8 @@
 #include <math.h>
 #include <stdlib.h>
 
+#include "analyse/bounds.h"
+
 const double rfade_diversity_outages[RFADE_DIVERSITY_GAINS] = {0.1, 0.01};
 
 enum { BLOCKS_MIN = 6, BISECTIONS = 32 };
@@ -97,7 +99,8 @@ static double correlation(const struct moments *m)
     for (int b = 0; b < 2; b++)
         variance[b] = m->square[b] * m->weight - m->sum[b] * m->sum[b];
     double covariance = m->product * m->weight - m->sum[0] * m->sum[1];
-    return covariance / sqrt(variance[0] * variance[1]);
+    double square = variance[0] * variance[1];
+    return square > 0.0 ? covariance / sqrt(square) : NAN; /* levels that stood still */
 }
 
 /* Student's t at the upper end of a two-sided interval. */
@@ -171,10 +174,10 @@ static void share_below(const struct rfade_paired_total *total, double wavelengt
     }
     double blocks = (double)total->block_count;
     double error = sqrt(blocks / (blocks - 1.0) * squares) / known;
-    double odds = log(share / (1.0 - share));
+    double odds = rfade_log_odds(share);
     double far = reach(confidence, total->block_count) * error / (share * (1.0 - share));
-    result->both_below_low = 1.0 / (1.0 + exp(far - odds));
-    result->both_below_high = 1.0 / (1.0 + exp(-far - odds));
+    result->both_below_low = rfade_from_log_odds(odds - far);
+    result->both_below_high = rfade_from_log_odds(odds + far);
 }
 
 /* Shares of a tally below a level: the least and the most that it may be. */

@@ -72,7 +72,8 @@ static enum rfade_status make_way(struct rfade_segment_result *row, double refer
         power += track[i].weight * pow(10.0, over_db / 10.0);
         weights += track[i].weight;
     }
-    work->mean_db = 10.0 * log10(power / weights);
+    if (weights > 0.0)
+        work->mean_db = 10.0 * log10(power / weights);
     free(track);
     return status;
 }

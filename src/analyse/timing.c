@@ -142,10 +142,10 @@ static enum rfade_visibility judge(const struct rfade_segment_result *row,
 {
     const struct rfade_crossings *all = &seen->crossings;
     const struct rfade_level_crossings *one = &all->level[level];
-    double spacing = 1e-3 * (double)all->square_mm2 / (double)all->travel_mm /
-                     row->wavelength_m * crossing_factor;
     if (!rfade_result_resolved(row) || all->travel_mm <= 0)
         return RFADE_HIDDEN_BY_SAMPLING;
+    double spacing = 1e-3 * (double)all->square_mm2 / (double)all->travel_mm /
+                     row->wavelength_m * crossing_factor;
     if ((double)one->hidden_mm > BIAS_MAX * (double)one->below_mm)
         return RFADE_HIDDEN_BY_CENSORING;
     if (!(fabs(step_factor - 1.0) <= BIAS_MAX))

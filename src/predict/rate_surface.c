@@ -91,20 +91,27 @@ static struct snr_axis make_snr_axis(double low_db, double high_db)
     return axis;
 }
 
+/* As many nodes as keep the error of interpolation; one where the parameter does not vary. */
+static size_t spread_nodes(double low, double high)
+{
+    if (!(high > low))
+        return 1;
+    double ratio = SPREAD_SINGULARITY / (0.5 * (high - low));
+    double rho = ratio + sqrt(1.0 + ratio * ratio);
+    return (size_t)ceil(-log(SPREAD_ERROR) / log(rho)) + SPREAD_NODES_EXTRA;
+}
+
 static enum rfade_status make_spread_axis(const struct rfade_model *model,
                                           const struct rfade_rate_domain *domain,
                                           struct spread_axis *axis)
 {
     double low = spread_of(model, domain->parameter_low);
     double high = spread_of(model, domain->parameter_high);
-    double ratio = SPREAD_SINGULARITY / (0.5 * (high - low));
-    double rho = ratio + sqrt(1.0 + ratio * ratio);
-    double count = ceil(-log(SPREAD_ERROR) / log(rho)) + SPREAD_NODES_EXTRA;
     *axis = (struct spread_axis){.parameter_low = domain->parameter_low,
                                  .parameter_high = domain->parameter_high,
                                  .low = low,
                                  .high = high,
-                                 .count = high > low ? (size_t)count : 1};
+                                 .count = spread_nodes(low, high)};
     axis->nodes = malloc(axis->count * sizeof *axis->nodes);
     for (size_t i = 0; axis->nodes && i < axis->count; i++)
         axis->nodes[i] = node_at(low, high, i, axis->count);
