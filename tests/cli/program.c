@@ -8,6 +8,7 @@
 #include <cmocka.h>
 #include <fcntl.h>
 #include <ftw.h>
+#include <math.h>
 #include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
@@ -106,6 +107,54 @@ void assert_input_refused(const char *input, int status, const char *part,
     assert_non_null(strstr(program.errors, part));
     assert_ptr_equal(strchr(program.errors, '\n'), program.errors + strlen(program.errors) - 1);
     program_clear(&program);
+}
+
+char *output_of(const char *const *arguments)
+{
+    struct program program = {0};
+    program_run(&program, arguments);
+    assert_string_equal(program.errors, "");
+    assert_int_equal(program.status, 0);
+    char *output = program.output;
+    program.output = NULL;
+    program_clear(&program);
+    return output;
+}
+
+void assert_done(const char *const *arguments)
+{
+    free(output_of(arguments));
+}
+
+json_t *json_of(const char *const *arguments)
+{
+    char *output = output_of(arguments);
+    json_t *value = json_loads(output, 0, NULL);
+    assert_non_null(value);
+    free(output);
+    return value;
+}
+
+double number_of(const json_t *object, const char *name)
+{
+    const json_t *value = json_object_get(object, name);
+    return json_is_number(value) ? json_number_value(value) : NAN;
+}
+
+double number_at(const json_t *rows, size_t row, const char *name)
+{
+    return number_of(json_array_get(rows, row), name);
+}
+
+const char *text_of(const json_t *object, const char *name)
+{
+    const char *text = json_string_value(json_object_get(object, name));
+    return text ? text : "";
+}
+
+const char *text_at(const json_t *rows, size_t row, const char *name)
+{
+    return text_of(json_array_get(rows, row), name);
 }
 
 void assert_refused(int status, const char *part, const char *const *arguments)

@@ -3,6 +3,7 @@
 #ifndef ROUTEFADE_TESTS_CLI_PROGRAM_H
 #define ROUTEFADE_TESTS_CLI_PROGRAM_H
 
+#include <jansson.h>
 #include <stddef.h>
 
 /** One run: zero it first, program_clear it afterwards. */
@@ -20,6 +21,27 @@ void program_run(struct program *program, const char *const *arguments);
 void program_clear(struct program *program);
 
 #define RUN(program, ...) program_run((program), (const char *const[]){__VA_ARGS__, NULL})
+
+/** The program does what these arguments say, without a word on standard error. */
+void assert_done(const char *const *arguments);
+
+/** The same, and what it prints; free() it. */
+char *output_of(const char *const *arguments);
+
+/** The same, read as JSON; json_decref it. */
+json_t *json_of(const char *const *arguments);
+
+#define DONE(...) assert_done((const char *const[]){__VA_ARGS__, NULL})
+#define OUTPUT_OF(...) output_of((const char *const[]){__VA_ARGS__, NULL})
+#define JSON_OF(...)                                                                           \
+    json_of((const char *const[]){__VA_ARGS__, "--quiet", "--format", "json", NULL})
+
+/** A member of an object, and of an object in an array: NaN if it is no number, "" if it is no
+ * text. */
+double number_of(const json_t *object, const char *name);
+double number_at(const json_t *rows, size_t row, const char *name);
+const char *text_of(const json_t *object, const char *name);
+const char *text_at(const json_t *rows, size_t row, const char *name);
 
 /**
  * The program refuses these arguments: this exit status, nothing on standard output, and

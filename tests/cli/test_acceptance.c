@@ -13,48 +13,8 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "fixture.h"
 #include "program.h"
-
-struct fixture {
-    char folder[64];
-    char survey[96];
-};
-
-/* What the program prints; free() it. */
-static char *text_of(const char *const *arguments)
-{
-    struct program program = {0};
-    program_run(&program, arguments);
-    assert_string_equal(program.errors, "");
-    assert_int_equal(program.status, 0);
-    char *text = strdup(program.output);
-    program_clear(&program);
-    return text;
-}
-
-#define TEXT_OF(...) text_of((const char *const[]){__VA_ARGS__, NULL})
-#define DONE(...) free(TEXT_OF(__VA_ARGS__))
-
-static json_t *parsed(char *text)
-{
-    json_t *value = json_loads(text, 0, NULL);
-    assert_non_null(value);
-    free(text);
-    return value;
-}
-
-#define JSON_OF(...) parsed(TEXT_OF(__VA_ARGS__, "--format", "json"))
-
-static double number_at(const json_t *rows, size_t row, const char *name)
-{
-    const json_t *value = json_object_get(json_array_get(rows, row), name);
-    return json_is_number(value) ? json_number_value(value) : NAN;
-}
-
-static const char *text_at(const json_t *rows, size_t row, const char *name)
-{
-    return json_string_value(json_object_get(json_array_get(rows, row), name));
-}
 
 /* Rayleigh fading on two segments of 100 m, K = 20 on two, and a rest of Rayleigh. */
 static void import_drive(const struct fixture *fixture, const char *channel,
@@ -72,22 +32,12 @@ static void import_drive(const struct fixture *fixture, const char *channel,
 
 static int setup(void **state)
 {
-    struct fixture *fixture = calloc(1, sizeof *fixture);
-    (void)snprintf(fixture->folder, sizeof fixture->folder, "%s", folder_create());
-    (void)snprintf(fixture->survey, sizeof fixture->survey, "%s/night.routefade",
-                   fixture->folder);
-    *state = fixture;
+    if (fixture_setup(state) != 0)
+        return -1;
+    const struct fixture *fixture = *state;
     import_drive(fixture, "telemetry", "100");
     DONE("route", "fen", "--from-vehicle", "plough-2", "--survey", fixture->survey);
     DONE("fit", "--quiet", "--survey", fixture->survey);
-    return 0;
-}
-
-static int teardown(void **state)
-{
-    struct fixture *fixture = *state;
-    folder_remove(fixture->folder);
-    free(fixture);
     return 0;
 }
 
@@ -148,8 +98,8 @@ static void confidence_only_takes_verdicts_away(void **state)
 static void sentences_say_the_same(void **state)
 {
     const struct fixture *fixture = *state;
-    char *text = TEXT_OF("acceptance", "--target-outage", "0.09", "--threshold-dbm", "-105",
-                         "--confidence", "0.999", "--survey", fixture->survey);
+    char *text = OUTPUT_OF("acceptance", "--target-outage", "0.09", "--threshold-dbm", "-105",
+                           "--confidence", "0.999", "--survey", fixture->survey);
     assert_non_null(strstr(text, "Route fen, channel telemetry, campaign "));
     assert_non_null(strstr(text, ": 38 % of the route meets the target (outage at most 0.09) "
                                  "with 99.9 % confidence; "));
@@ -181,8 +131,8 @@ static void calibration_sets_the_limit(void **state)
                     number_at(rows, i, "outage_low") <= number_at(rows, i - 1, "outage_low"));
     }
     json_decref(rows);
-    char *text = TEXT_OF("acceptance", "--target-outage", "0.09", "--threshold-dbm", "-105",
-                         "--survey", fixture->survey);
+    char *text = OUTPUT_OF("acceptance", "--target-outage", "0.09", "--threshold-dbm", "-105",
+                           "--survey", fixture->survey);
     assert_non_null(strstr(text, "no number of passes settles it while the calibration is "
                                  "uncertain by 10 dB; less than "));
     free(text);
@@ -200,8 +150,8 @@ static void undersampled_segments_are_not_judged(void **state)
                      length_m) < 1e-9);
     assert_true(number_at(rows, 0, "not_judged_m") >= 500.0);
     json_decref(rows);
-    char *text = TEXT_OF("acceptance", "--target-outage", "0.02", "--threshold-dbm", "-105",
-                         "--channel", "standby", "--survey", fixture->survey);
+    char *text = OUTPUT_OF("acceptance", "--target-outage", "0.02", "--threshold-dbm", "-105",
+                           "--channel", "standby", "--survey", fixture->survey);
     assert_non_null(strstr(text, " can't be judged from these logs"));
     assert_non_null(strstr(text, " is not judged (undersampled): below the threshold on "));
     free(text);
@@ -242,8 +192,8 @@ static void narrowing_narrows_the_route(void **state)
     assert_true(number_at(rows, 0, "length_m") == 200.0);
     assert_true(number_at(rows, 0, "meets_share") == 1.0);
     json_decref(rows);
-    char *text = TEXT_OF("acceptance", "--target-outage", "0.02", "--threshold-dbm", "-105",
-                         "--segment", "3", "--survey", fixture->survey);
+    char *text = OUTPUT_OF("acceptance", "--target-outage", "0.02", "--threshold-dbm", "-105",
+                           "--segment", "3", "--survey", fixture->survey);
     assert_non_null(strstr(text, ": 100 % of the route meets the target"));
     free(text);
 }
@@ -275,13 +225,13 @@ static void what_can_not_be_answered_is_refused(void **state)
 static void help_carries_the_caution(void **state)
 {
     (void)state;
-    char *text = TEXT_OF("acceptance", "--help");
+    char *text = OUTPUT_OF("acceptance", "--help");
     assert_non_null(strstr(text, "no safety case"));
     assert_non_null(strstr(text, "each segment's own\nverdict"));
     free(text);
 }
 
-#define FITTED(test) cmocka_unit_test_setup_teardown(test, setup, teardown)
+#define FITTED(test) cmocka_unit_test_setup_teardown(test, setup, fixture_teardown)
 
 int main(void)
 {

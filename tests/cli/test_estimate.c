@@ -30,12 +30,6 @@ static json_t *estimated(const char *input, const char *const *arguments)
 #define ESTIMATED(input, ...)                                                                  \
     estimated((input), (const char *const[]){"estimate", "--format", "json", __VA_ARGS__, NULL})
 
-static double number_of(const json_t *object, const char *name)
-{
-    const json_t *value = json_object_get(object, name);
-    return json_is_number(value) ? json_number_value(value) : NAN;
-}
-
 static const json_t *model_of(const json_t *document, const char *name)
 {
     size_t index;

@@ -13,85 +13,34 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "fixture.h"
 #include "program.h"
 
-struct fixture {
-    char folder[64];
-    char survey[96];
-};
-
-static void assert_runs(const char *const *arguments)
-{
-    struct program program = {0};
-    program_run(&program, arguments);
-    assert_string_equal(program.errors, "");
-    assert_int_equal(program.status, 0);
-    program_clear(&program);
-}
-
-#define RUNS(...) assert_runs((const char *const[]){__VA_ARGS__, NULL})
-
-static json_t *rows_of(const char *const *arguments)
-{
-    struct program program = {0};
-    program_run(&program, arguments);
-    assert_string_equal(program.errors, "");
-    assert_int_equal(program.status, 0);
-    json_t *rows = json_loads(program.output, 0, NULL);
-    assert_non_null(rows);
-    program_clear(&program);
-    return rows;
-}
-
-#define ROWS(...)                                                                              \
-    rows_of((const char *const[]){"fade-timing", "--quiet", "--format", "json", __VA_ARGS__,   \
-                                  NULL})
-
-static double number(const json_t *row, const char *name)
-{
-    const json_t *value = json_object_get(row, name);
-    return json_is_number(value) ? json_number_value(value) : NAN;
-}
-
-static const char *text(const json_t *row, const char *name)
-{
-    const char *value = json_string_value(json_object_get(row, name));
-    return value ? value : "";
-}
+#define ROWS(...) JSON_OF("fade-timing", __VA_ARGS__)
 
 /* Readings 0.05 wavelengths apart on the first channel, and 0.15 on a second drive's. */
 static int setup(void **state)
 {
-    struct fixture *fixture = calloc(1, sizeof *fixture);
+    if (fixture_setup(state) != 0)
+        return -1;
+    const struct fixture *fixture = *state;
     char log[128];
-    (void)snprintf(fixture->folder, sizeof fixture->folder, "%s", folder_create());
-    (void)snprintf(fixture->survey, sizeof fixture->survey, "%s/night.routefade",
-                   fixture->folder);
     (void)snprintf(log, sizeof log, "%s/fine.csv", fixture->folder);
-    RUNS("simulate", "--length-m", "2200", "--rate-hz", "305", "--speed-kmh", "36",
+    DONE("simulate", "--length-m", "2200", "--rate-hz", "305", "--speed-kmh", "36",
          "--carrier-hz", "457e6", "--decorrelation-m", "300", "--seed", "5", "--vehicle",
          "plough-2", "--channel", "fine", "--output", log);
-    RUNS("import", log, "--survey", fixture->survey);
+    DONE("import", log, "--survey", fixture->survey);
     (void)snprintf(log, sizeof log, "%s/coarse.csv", fixture->folder);
-    RUNS("simulate", "--length-m", "2200", "--rate-hz", "100", "--speed-kmh", "36",
+    DONE("simulate", "--length-m", "2200", "--rate-hz", "100", "--speed-kmh", "36",
          "--carrier-hz", "457e6", "--decorrelation-m", "300", "--seed", "6", "--k", "8",
          "--stretch-m", "5000", "--ray-angle-deg", "0", "--vehicle", "plough-2", "--channel",
          "coarse", "--start", "2027-01-13T20:00:00Z", "--output", log);
-    RUNS("import", log, "--survey", fixture->survey);
-    RUNS("channel", "fine", "--carrier-hz", "457e6", "--survey", fixture->survey);
-    RUNS("channel", "coarse", "--carrier-hz", "457e6", "--survey", fixture->survey);
-    RUNS("route", "fen", "--from-vehicle", "plough-2", "--segment-m", "110", "--survey",
+    DONE("import", log, "--survey", fixture->survey);
+    DONE("channel", "fine", "--carrier-hz", "457e6", "--survey", fixture->survey);
+    DONE("channel", "coarse", "--carrier-hz", "457e6", "--survey", fixture->survey);
+    DONE("route", "fen", "--from-vehicle", "plough-2", "--segment-m", "110", "--survey",
          fixture->survey);
-    RUNS("fit", "--survey", fixture->survey);
-    *state = fixture;
-    return 0;
-}
-
-static int teardown(void **state)
-{
-    struct fixture *fixture = *state;
-    folder_remove(fixture->folder);
-    free(fixture);
+    DONE("fit", "--survey", fixture->survey);
     return 0;
 }
 
@@ -111,14 +60,15 @@ static struct pooled pool(const json_t *rows, double below_db)
     const json_t *row = NULL;
     json_array_foreach(rows, index, row)
     {
-        const double crossings = number(row, "crossings");
-        if (number(row, "below_local_mean_db") != below_db)
+        const double crossings = number_of(row, "crossings");
+        if (number_of(row, "below_local_mean_db") != below_db)
             continue;
         sum.crossings += crossings;
-        sum.predicted += number(row, "predicted_per_m") *
-                         (crossings > 0.0 ? crossings / number(row, "observed_per_m") : 110.0);
-        sum.longest_m = fmax(sum.longest_m, number(row, "longest_fade_m"));
-        sum.visible += strcmp(text(row, "visible"), "yes") == 0;
+        sum.predicted +=
+            number_of(row, "predicted_per_m") *
+            (crossings > 0.0 ? crossings / number_of(row, "observed_per_m") : 110.0);
+        sum.longest_m = fmax(sum.longest_m, number_of(row, "longest_fade_m"));
+        sum.visible += strcmp(text_of(row, "visible"), "yes") == 0;
         sum.rows++;
     }
     return sum;
@@ -149,13 +99,13 @@ static void coarse_sampling_is_labelled(void **state)
                         "--below-local-mean-db", "20,10,20", "--segment", "3");
     assert_int_equal(json_array_size(rows), 2);
     const json_t *deep = json_array_get(rows, 0);
-    assert_true(number(deep, "below_local_mean_db") == 20.0);
-    assert_string_equal(text(deep, "visible"), "no");
-    assert_string_equal(text(deep, "hidden_by"), "spacing");
-    assert_string_equal(text(deep, "channel"), "coarse");
-    assert_string_equal(text(deep, "timing_model"), "rice");
+    assert_true(number_of(deep, "below_local_mean_db") == 20.0);
+    assert_string_equal(text_of(deep, "visible"), "no");
+    assert_string_equal(text_of(deep, "hidden_by"), "spacing");
+    assert_string_equal(text_of(deep, "channel"), "coarse");
+    assert_string_equal(text_of(deep, "timing_model"), "rice");
     /* the ray comes along the road */
-    assert_true(number(json_array_get(rows, 1), "ray_factor") > 1.5);
+    assert_true(number_at(rows, 1, "ray_factor") > 1.5);
     json_decref(rows);
     struct program program = {0};
     program_run(&program, (const char *const[]){"fade-timing", "--survey", fixture->survey,
@@ -173,16 +123,16 @@ static void seconds_follow_the_speed(void **state)
     json_t *fast = ROWS("--survey", fixture->survey, "--channel", "fine", "--segment", "2",
                         "--speed-kmh", "72");
     const json_t *a = json_array_get(driven, 0), *b = json_array_get(fast, 0);
-    assert_true(fabs(number(a, "speed_kmh") / 36.0 - 1.0) < 0.02);
-    assert_true(number(b, "speed_kmh") == 72.0);
-    assert_true(number(a, "predicted_per_m") == number(b, "predicted_per_m"));
-    assert_true(fabs(number(b, "predicted_per_s") / number(b, "predicted_per_m") - 20.0) <
+    assert_true(fabs(number_of(a, "speed_kmh") / 36.0 - 1.0) < 0.02);
+    assert_true(number_of(b, "speed_kmh") == 72.0);
+    assert_true(number_of(a, "predicted_per_m") == number_of(b, "predicted_per_m"));
+    assert_true(fabs(number_of(b, "predicted_per_s") / number_of(b, "predicted_per_m") - 20.0) <
                 1e-9);
-    assert_true(fabs(number(b, "observed_fade_m") / number(b, "observed_fade_s") - 20.0) <
+    assert_true(fabs(number_of(b, "observed_fade_m") / number_of(b, "observed_fade_s") - 20.0) <
                 1e-9);
-    assert_true(number(a, "longest_fade_s") == number(b, "longest_fade_s"));
-    assert_true(fabs(number(a, "longest_fade_s") * 10.0 / number(a, "longest_fade_m") - 1.0) <
-                0.1);
+    assert_true(number_of(a, "longest_fade_s") == number_of(b, "longest_fade_s"));
+    assert_true(fabs(number_of(a, "longest_fade_s") * 10.0 / number_of(a, "longest_fade_m") -
+                     1.0) < 0.1);
     json_decref(driven);
     json_decref(fast);
 }
@@ -194,33 +144,19 @@ static void worst_is_crossed_most_often(void **state)
                         "--below-local-mean-db", "5", "--worst", "4");
     assert_int_equal(json_array_size(rows), 4);
     for (size_t i = 1; i < 4; i++)
-        assert_true(number(json_array_get(rows, i - 1), "observed_per_m") >=
-                    number(json_array_get(rows, i), "observed_per_m"));
+        assert_true(number_at(rows, i - 1, "observed_per_m") >=
+                    number_at(rows, i, "observed_per_m"));
     json_decref(rows);
-}
-
-static void refuses(const char *const *arguments, int status, const char *word)
-{
-    struct program program = {0};
-    program_run(&program, arguments);
-    assert_int_equal(program.status, status);
-    assert_non_null(strstr(program.errors, word));
-    assert_string_equal(program.output, "");
-    program_clear(&program);
 }
 
 static void what_was_not_counted_is_refused(void **state)
 {
     const struct fixture *fixture = *state;
-    refuses((const char *const[]){"fade-timing", "--survey", fixture->survey,
-                                  "--below-local-mean-db", "7", NULL},
-            2, "7 dB below the local mean");
-    refuses((const char *const[]){"fade-timing", "--survey", fixture->survey, "--speed-kmh",
-                                  "0", NULL},
-            2, "--speed-kmh");
-    refuses((const char *const[]){"fade-timing", "--survey", fixture->survey, "--channel",
-                                  "absent", NULL},
-            1, "no channel 'absent'");
+    REFUSED(2, "7 dB below the local mean", "fade-timing", "--survey", fixture->survey,
+            "--below-local-mean-db", "7");
+    REFUSED(2, "--speed-kmh", "fade-timing", "--survey", fixture->survey, "--speed-kmh", "0");
+    REFUSED(1, "no channel 'absent'", "fade-timing", "--survey", fixture->survey, "--channel",
+            "absent");
 }
 
 int main(void)
@@ -232,5 +168,5 @@ int main(void)
         cmocka_unit_test(worst_is_crossed_most_often),
         cmocka_unit_test(what_was_not_counted_is_refused),
     };
-    return cmocka_run_group_tests(tests, setup, teardown);
+    return cmocka_run_group_tests(tests, setup, fixture_teardown);
 }

@@ -14,12 +14,8 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "fixture.h"
 #include "program.h"
-
-struct fixture {
-    char folder[64];
-    char survey[96];
-};
 
 static void assert_said(const char *errors, const char *const *arguments)
 {
@@ -37,77 +33,29 @@ static void import_drive(const struct fixture *fixture)
 {
     char log[128];
     (void)snprintf(log, sizeof log, "%s/drive.csv", fixture->folder);
-    SAID("", "simulate", "--length-m", "520", "--rate-hz", "100", "--speed-kmh", "36",
+    DONE("simulate", "--length-m", "520", "--rate-hz", "100", "--speed-kmh", "36",
          "--carrier-hz", "457e6", "--k", "0,6,0", "--stretch-m", "200", "--mean-level-dbm",
          "-95", "--shadowing-db", "0", "--step-db", "1", "--seed", "6", "--vehicle", "plough-2",
          "--channel", "telemetry", "--output", log);
-    SAID("", "import", log, "--survey", fixture->survey);
-}
-
-static int setup_empty(void **state)
-{
-    struct fixture *fixture = calloc(1, sizeof *fixture);
-    (void)snprintf(fixture->folder, sizeof fixture->folder, "%s", folder_create());
-    (void)snprintf(fixture->survey, sizeof fixture->survey, "%s/night.routefade",
-                   fixture->folder);
-    *state = fixture;
-    return 0;
+    DONE("import", log, "--survey", fixture->survey);
 }
 
 static int setup(void **state)
 {
-    (void)setup_empty(state);
+    (void)fixture_setup(state);
     const struct fixture *fixture = *state;
     import_drive(fixture);
-    SAID("", "channel", "telemetry", "--carrier-hz", "457e6", "--survey", fixture->survey);
-    SAID("", "route", "fen", "--from-vehicle", "plough-2", "--survey", fixture->survey);
-    SAID("", "fit", "--survey", fixture->survey);
+    DONE("channel", "telemetry", "--carrier-hz", "457e6", "--survey", fixture->survey);
+    DONE("route", "fen", "--from-vehicle", "plough-2", "--survey", fixture->survey);
+    DONE("fit", "--survey", fixture->survey);
     return 0;
-}
-
-static int teardown(void **state)
-{
-    struct fixture *fixture = *state;
-    folder_remove(fixture->folder);
-    free(fixture);
-    return 0;
-}
-
-/* What the program prints; free() it. */
-static char *text_of(const char *const *arguments)
-{
-    struct program program = {0};
-    program_run(&program, arguments);
-    assert_string_equal(program.errors, "");
-    assert_int_equal(program.status, 0);
-    char *text = strdup(program.output);
-    program_clear(&program);
-    return text;
-}
-
-#define TEXT_OF(...) text_of((const char *const[]){__VA_ARGS__, NULL})
-
-static json_t *parsed(char *text)
-{
-    json_t *value = json_loads(text, 0, NULL);
-    assert_non_null(value);
-    free(text);
-    return value;
-}
-
-#define JSON_OF(...) parsed(TEXT_OF(__VA_ARGS__, "--quiet", "--format", "json"))
-
-static double number_at(const json_t *rows, size_t row, const char *name)
-{
-    const json_t *value = json_object_get(json_array_get(rows, row), name);
-    return json_is_number(value) ? json_number_value(value) : NAN;
 }
 
 static void second_fit_has_nothing_to_do(void **state)
 {
     const struct fixture *fixture = *state;
     SAID("nothing new since the last fit\n", "fit", "--survey", fixture->survey);
-    SAID("", "fit", "--quiet", "--survey", fixture->survey);
+    DONE("fit", "--quiet", "--survey", fixture->survey);
     json_t *rows = JSON_OF("fit", "--survey", fixture->survey);
     assert_true(number_at(rows, 0, "streams_made") == 0);
     assert_true(number_at(rows, 0, "segments_fitted") == 0);
@@ -117,16 +65,16 @@ static void second_fit_has_nothing_to_do(void **state)
 static void fit_of_all_gives_the_same(void **state)
 {
     const struct fixture *fixture = *state;
-    char *fading = TEXT_OF("fading", "--format", "json", "--survey", fixture->survey);
-    char *outage = TEXT_OF("outage", "--threshold-dbm", "-105", "--format", "json", "--survey",
-                           fixture->survey);
+    char *fading = OUTPUT_OF("fading", "--format", "json", "--survey", fixture->survey);
+    char *outage = OUTPUT_OF("outage", "--threshold-dbm", "-105", "--format", "json",
+                             "--survey", fixture->survey);
     json_t *made = JSON_OF("fit", "--all", "--survey", fixture->survey);
     assert_true(number_at(made, 0, "streams_made") == 1);
     assert_true(number_at(made, 0, "segments_fitted") == 6);
     json_decref(made);
-    char *fading_again = TEXT_OF("fading", "--format", "json", "--survey", fixture->survey);
-    char *outage_again = TEXT_OF("outage", "--threshold-dbm", "-105", "--format", "json",
-                                 "--survey", fixture->survey);
+    char *fading_again = OUTPUT_OF("fading", "--format", "json", "--survey", fixture->survey);
+    char *outage_again = OUTPUT_OF("outage", "--threshold-dbm", "-105", "--format", "json",
+                                   "--survey", fixture->survey);
     assert_string_equal(fading, fading_again);
     assert_string_equal(outage, outage_again);
     free(fading);
@@ -154,7 +102,7 @@ static void assert_columns(const char *expected, char *csv, json_t *rows)
 }
 
 #define ASSERT_COLUMNS(expected, ...)                                                          \
-    assert_columns((expected), TEXT_OF(__VA_ARGS__, "--format", "csv"), JSON_OF(__VA_ARGS__))
+    assert_columns((expected), OUTPUT_OF(__VA_ARGS__, "--format", "csv"), JSON_OF(__VA_ARGS__))
 
 #define FIRST_COLUMNS                                                                          \
     "route,segment,from_m,to_m,channel,campaign,readings,effective_count,mean_power_dbm,"      \
@@ -166,9 +114,9 @@ static void assert_columns(const char *expected, char *csv, json_t *rows)
 static void columns_are_those_of_the_contract(void **state)
 {
     const struct fixture *fixture = *state;
-    SAID("", "channel", "telemetry", "--noise-floor-dbm", "-118", "--bandwidth-hz", "12500",
+    DONE("channel", "telemetry", "--noise-floor-dbm", "-118", "--bandwidth-hz", "12500",
          "--symbol-rate-hz", "4800", "--survey", fixture->survey);
-    SAID("", "fit", "--survey", fixture->survey);
+    DONE("fit", "--survey", fixture->survey);
     ASSERT_COLUMNS(FIRST_COLUMNS "sampling,passes,k,k_low,k_high,m,m_low,m_high,local_mean_dbm,"
                                  "local_sigma_db,local_sigma_low_db,local_sigma_high_db,weight,"
                                  "goodness_p",
@@ -218,11 +166,11 @@ static void assert_same_first_segment(const struct fixture *fixture, const char 
 static void thresholds_in_three_units_agree(void **state)
 {
     const struct fixture *fixture = *state;
-    SAID("", "channel", "telemetry", "--bandwidth-hz", "12500", "--symbol-rate-hz", "4800",
+    DONE("channel", "telemetry", "--bandwidth-hz", "12500", "--symbol-rate-hz", "4800",
          "--noise-figure-db", "6", "--survey", fixture->survey);
     assert_same_threshold(fixture, "--threshold-db", "20", "-107.006");
     assert_same_threshold(fixture, "--threshold-esn0-db", "20", "-111.163");
-    SAID("", "channel", "telemetry", "--noise-floor-dbm", "-118", "--survey", fixture->survey);
+    DONE("channel", "telemetry", "--noise-floor-dbm", "-118", "--survey", fixture->survey);
     assert_same_threshold(fixture, "--threshold-db", "10", "-108");
     assert_same_threshold(fixture, "--threshold-esn0-db", "10", "-112.157");
 }
@@ -234,21 +182,20 @@ static void logged_snr_tells_the_noise(void **state)
     const struct fixture *fixture = *state;
     char log[128];
     (void)snprintf(log, sizeof log, "%s/snr.csv", fixture->folder);
-    SAID("", "simulate", "--length-m", "520", "--k", "0,6,0", "--stretch-m", "200",
+    DONE("simulate", "--length-m", "520", "--k", "0,6,0", "--stretch-m", "200",
          "--mean-level-dbm", "-95", "--shadowing-db", "0", "--seed", "6", "--noise-dbm", "-112",
          "--vehicle", "plough-3", "--channel", "telemetry", "--output", log);
-    SAID("", "import", log, "--survey", fixture->survey);
-    SAID("", "channel", "telemetry", "--carrier-hz", "457e6", "--bandwidth-hz", "12500",
+    DONE("import", log, "--survey", fixture->survey);
+    DONE("channel", "telemetry", "--carrier-hz", "457e6", "--bandwidth-hz", "12500",
          "--noise-floor-dbm", "-118", "--survey", fixture->survey);
-    SAID("", "route", "valley", "--from-vehicle", "plough-3", "--survey", fixture->survey);
-    SAID("", "fit", "--survey", fixture->survey);
+    DONE("route", "valley", "--from-vehicle", "plough-3", "--survey", fixture->survey);
+    DONE("fit", "--survey", fixture->survey);
     json_t *rows = JSON_OF("outage", "--threshold-db", "7", "--survey", fixture->survey);
     json_t *levels = JSON_OF("outage", "--threshold-dbm", "-105", "--survey", fixture->survey);
     assert_true(json_array_size(rows) >= 5);
     for (size_t i = 0; i < json_array_size(rows); i++) {
         assert_true(fabs(number_at(rows, i, "noise_dbm") + 112.0) < 0.05);
-        assert_string_equal(
-            json_string_value(json_object_get(json_array_get(rows, i), "noise")), "logged");
+        assert_string_equal(text_at(rows, i, "noise"), "logged");
         assert_true(fabs(number_at(rows, i, "outage") - number_at(levels, i, "outage")) <
                     1e-2 * number_at(levels, i, "outage"));
         assert_true(fabs(number_at(rows, i, "observed") - number_at(levels, i, "observed")) <
@@ -265,12 +212,12 @@ static void logged_snr_tells_the_noise(void **state)
 static void listed_noise_beats_all_other(void **state)
 {
     const struct fixture *fixture = *state;
-    SAID("", "channel", "telemetry", "--noise-floor-dbm", "-118", "--survey", fixture->survey);
+    DONE("channel", "telemetry", "--noise-floor-dbm", "-118", "--survey", fixture->survey);
     const char *list = file_create(fixture->folder, "noise.csv",
                                    "# measured by night\nchannel,route,noise_dbm,from_m,to_m\n"
                                    "telemetry,fen,-110,0,120\ntelemetry,fen,-107,120,160\n"
                                    "telemetry,fen,-90,260,300\n");
-    SAID("", "noise", list, "--survey", fixture->survey);
+    DONE("noise", list, "--survey", fixture->survey);
     json_t *rows = JSON_OF("outage", "--threshold-db", "5", "--survey", fixture->survey);
     assert_true(fabs(number_at(rows, 0, "noise_dbm") + 110.0) < 1e-9);
     assert_true(fabs(number_at(rows, 1, "noise_dbm") + 107.79) < 5e-3);
@@ -321,18 +268,18 @@ static void undersampled_levels_have_a_lognormal_law(void **state)
     const struct fixture *fixture = *state;
     char log[128];
     (void)snprintf(log, sizeof log, "%s/sparse.csv", fixture->folder);
-    SAID("", "simulate", "--length-m", "20000", "--rate-hz", "1", "--speed-kmh", "80",
+    DONE("simulate", "--length-m", "20000", "--rate-hz", "1", "--speed-kmh", "80",
          "--mean-level-dbm", "-100", "--shadowing-db", "0", "--vehicle", "plough-2",
          "--channel", "telemetry", "--output", log);
-    SAID("", "import", log, "--survey", fixture->survey);
-    SAID("", "channel", "telemetry", "--carrier-hz", "457e6", "--survey", fixture->survey);
-    SAID("", "route", "fen", "--from-vehicle", "plough-2", "--segment-m", "20000", "--survey",
+    DONE("import", log, "--survey", fixture->survey);
+    DONE("channel", "telemetry", "--carrier-hz", "457e6", "--survey", fixture->survey);
+    DONE("route", "fen", "--from-vehicle", "plough-2", "--segment-m", "20000", "--survey",
          fixture->survey);
-    SAID("", "fit", "--survey", fixture->survey);
+    DONE("fit", "--survey", fixture->survey);
     json_t *rows = JSON_OF("outage", "--threshold-dbm", "-102.51", "--survey", fixture->survey);
     const json_t *row = json_array_get(rows, 0);
-    assert_string_equal(json_string_value(json_object_get(row, "model")), "lognormal");
-    assert_string_equal(json_string_value(json_object_get(row, "sampling")), "undersampled");
+    assert_string_equal(text_of(row, "model"), "lognormal");
+    assert_string_equal(text_of(row, "sampling"), "undersampled");
     assert_true(fabs(number_at(rows, 0, "outage") - 0.5) < 0.06);
     assert_true(isnan(number_at(rows, 0, "outage_low")));
     json_decref(rows);
@@ -444,7 +391,7 @@ static void before_a_fit_there_is_no_answer(void **state)
     const struct fixture *fixture = *state;
     const char *survey = fixture->survey;
     REFUSED(1, "there is no such survey", "fit", "--survey", survey);
-    SAID("", "channel", "telemetry", "--carrier-hz", "457e6", "--survey", survey);
+    DONE("channel", "telemetry", "--carrier-hz", "457e6", "--survey", survey);
     REFUSED(1, "the survey holds no readings", "fit", "--survey", survey);
     import_drive(fixture);
     REFUSED(1, "the survey holds no route", "fit", "--survey", survey);
@@ -458,7 +405,7 @@ static void a_channel_without_carrier_is_refused(void **state)
 {
     const struct fixture *fixture = *state;
     import_drive(fixture);
-    SAID("", "route", "fen", "--from-vehicle", "plough-2", "--survey", fixture->survey);
+    DONE("route", "fen", "--from-vehicle", "plough-2", "--survey", fixture->survey);
     REFUSED(1, "the carrier of channel 'telemetry' is not known", "fit", "--survey",
             fixture->survey);
 }
@@ -467,14 +414,14 @@ static void results_older_than_the_survey_are_told(void **state)
 {
     const struct fixture *fixture = *state;
     static const char note[] = "the survey changed since the last fit: run `routefade fit`\n";
-    SAID("", "fading", "--survey", fixture->survey);
-    SAID("", "vehicle", "plough-2", "--offset-db", "1.5", "--survey", fixture->survey);
+    DONE("fading", "--survey", fixture->survey);
+    DONE("vehicle", "plough-2", "--offset-db", "1.5", "--survey", fixture->survey);
     SAID(note, "fading", "--survey", fixture->survey);
     SAID(note, "outage", "--threshold-dbm", "-105", "--survey", fixture->survey);
-    SAID("", "fading", "--quiet", "--survey", fixture->survey);
+    DONE("fading", "--quiet", "--survey", fixture->survey);
     REFUSED(1, "no route 'moor'", "fading", "--route", "moor", "--survey", fixture->survey);
-    SAID("", "fit", "--survey", fixture->survey);
-    SAID("", "fading", "--survey", fixture->survey);
+    DONE("fit", "--survey", fixture->survey);
+    DONE("fading", "--survey", fixture->survey);
 }
 
 static void readings_of_snr_alone_are_told(void **state)
@@ -485,14 +432,14 @@ static void readings_of_snr_alone_are_told(void **state)
                                   "2027-01-13T20:00:00Z,60.5,-24.5,spreader-1,telemetry,21\n"
                                   "2027-01-13T20:00:01Z,60.5,-24.5,spreader-1,telemetry,20\n"
                                   "2027-01-13T20:00:02Z,60.5,-24.5,spreader-1,telemetry,22\n");
-    SAID("", "import", log, "--survey", fixture->survey);
-    SAID("", "fit", "--all", "--quiet", "--survey", fixture->survey);
+    DONE("import", log, "--survey", fixture->survey);
+    DONE("fit", "--all", "--quiet", "--survey", fixture->survey);
     SAID("3 readings carry SNR alone and were not used\n", "fit", "--all", "--survey",
          fixture->survey);
 }
 
-#define FITTED(test) cmocka_unit_test_setup_teardown(test, setup, teardown)
-#define EMPTY(test) cmocka_unit_test_setup_teardown(test, setup_empty, teardown)
+#define FITTED(test) cmocka_unit_test_setup_teardown(test, setup, fixture_teardown)
+#define EMPTY(test) cmocka_unit_test_setup_teardown(test, fixture_setup, fixture_teardown)
 
 int main(void)
 {

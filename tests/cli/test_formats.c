@@ -96,17 +96,6 @@ static int teardown(void **state)
     return 0;
 }
 
-static void run_well(const char *const *arguments)
-{
-    struct program program = {0};
-    program_run(&program, arguments);
-    if (program.status != 0)
-        fail_msg("%s: %s%s", arguments[0], program.errors, program.output);
-    program_clear(&program);
-}
-
-#define DONE(...) run_well((const char *const[]){__VA_ARGS__, NULL})
-
 /* What `fading` says after two files came in this order. free() it. */
 static char *fading_after(const char *survey, const char *first, const char *second)
 {

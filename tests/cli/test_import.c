@@ -58,11 +58,6 @@ static json_t *imported(const struct fixture *fixture, const char *path, int sta
     return rows;
 }
 
-static const char *text_of(const json_t *rows, size_t row, const char *name)
-{
-    return json_string_value(json_object_get(json_array_get(rows, row), name));
-}
-
 static json_int_t integer_of(const json_t *rows, size_t row, const char *name)
 {
     return json_integer_value(json_object_get(json_array_get(rows, row), name));
@@ -86,15 +81,15 @@ static void a_file_is_imported_once(void **state)
     const char *path = file_create(fixture->folder, "night.csv", good);
     json_t *rows = imported(fixture, path, 0, NULL);
     assert_int_equal(json_array_size(rows), 1);
-    assert_string_equal(text_of(rows, 0, "file"), path);
-    assert_string_equal(text_of(rows, 0, "state"), "imported");
+    assert_string_equal(text_at(rows, 0, "file"), path);
+    assert_string_equal(text_at(rows, 0, "state"), "imported");
     assert_int_equal(integer_of(rows, 0, "readings"), 3);
     assert_int_equal(integer_of(rows, 0, "fixes"), 2);
     assert_int_equal(integer_of(rows, 0, "refused"), 0);
     json_decref(rows);
     path = file_create(fixture->folder, "renamed.csv", good);
     rows = imported(fixture, path, 0, NULL);
-    assert_string_equal(text_of(rows, 0, "state"), "known");
+    assert_string_equal(text_at(rows, 0, "state"), "known");
     json_decref(rows);
     assert_int_equal(readings_held(fixture), 3);
 }
@@ -111,7 +106,7 @@ static void refused_lines_are_counted_and_the_first_is_shown(void **state)
     json_t *rows = imported(fixture, path, 0, NULL);
     assert_int_equal(integer_of(rows, 0, "readings"), 2);
     assert_int_equal(integer_of(rows, 0, "refused"), 2);
-    assert_int_equal(strncmp(text_of(rows, 0, "why"), "first: line 3: ", 15), 0);
+    assert_int_equal(strncmp(text_at(rows, 0, "why"), "first: line 3: ", 15), 0);
     json_decref(rows);
 }
 
@@ -124,11 +119,11 @@ static void refused_files_do_not_stop_the_rest(void **state)
     (void)file_create(fixture->folder, "c.txt", "Dear diary,\nit snowed.\n");
     json_t *rows = imported(fixture, fixture->folder, 3, "routefade: ");
     assert_int_equal(json_array_size(rows), 3);
-    assert_string_equal(text_of(rows, 0, "state"), "refused");
-    assert_string_equal(text_of(rows, 1, "state"), "imported");
-    assert_string_equal(text_of(rows, 2, "state"), "refused");
-    assert_non_null(text_of(rows, 0, "why"));
-    assert_non_null(text_of(rows, 2, "why"));
+    assert_string_equal(text_at(rows, 0, "state"), "refused");
+    assert_string_equal(text_at(rows, 1, "state"), "imported");
+    assert_string_equal(text_at(rows, 2, "state"), "refused");
+    assert_non_null(text_at(rows, 0, "why"));
+    assert_non_null(text_at(rows, 2, "why"));
     json_decref(rows);
     assert_int_equal(readings_held(fixture), 3);
 }
@@ -203,7 +198,7 @@ static void names_out_of_a_log_are_never_interpreted(void **state)
     json_t *rows = imported(fixture, path, 0, NULL);
     assert_int_equal(integer_of(rows, 0, "readings"), 2);
     assert_int_equal(integer_of(rows, 0, "refused"), 1);
-    assert_non_null(strstr(text_of(rows, 0, "why"), "?[31mred"));
+    assert_non_null(strstr(text_at(rows, 0, "why"), "?[31mred"));
     json_decref(rows);
     assert_int_equal(readings_held(fixture), 2);
     static const char *const formats[] = {"table", "csv", "json"};

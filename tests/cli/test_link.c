@@ -12,32 +12,16 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "fixture.h"
 #include "program.h"
-
-struct fixture {
-    char folder[64];
-    char survey[96];
-};
-
-static void run_quietly(const char *const *arguments)
-{
-    struct program program = {0};
-    program_run(&program, arguments);
-    assert_string_equal(program.errors, "");
-    assert_int_equal(program.status, 0);
-    program_clear(&program);
-}
-
-#define DONE(...) run_quietly((const char *const[]){__VA_ARGS__, NULL})
 
 /* Rayleigh fading, then a strong ray: noise at -118 dBm, twice the symbol rate as bandwidth. */
 static int setup(void **state)
 {
-    struct fixture *fixture = calloc(1, sizeof *fixture);
+    if (fixture_setup(state) != 0)
+        return -1;
+    const struct fixture *fixture = *state;
     char log[128];
-    (void)snprintf(fixture->folder, sizeof fixture->folder, "%s", folder_create());
-    (void)snprintf(fixture->survey, sizeof fixture->survey, "%s/night.routefade",
-                   fixture->folder);
     (void)snprintf(log, sizeof log, "%s/drive.csv", fixture->folder);
     DONE("simulate", "--length-m", "420", "--k", "0,6", "--stretch-m", "200",
          "--mean-level-dbm", "-95", "--shadowing-db", "2", "--seed", "6", "--vehicle",
@@ -47,40 +31,7 @@ static int setup(void **state)
          "--bandwidth-hz", "10000", "--symbol-rate-hz", "5000", "--survey", fixture->survey);
     DONE("route", "fen", "--from-vehicle", "plough-2", "--survey", fixture->survey);
     DONE("fit", "--survey", fixture->survey);
-    *state = fixture;
     return 0;
-}
-
-static int teardown(void **state)
-{
-    struct fixture *fixture = *state;
-    folder_remove(fixture->folder);
-    free(fixture);
-    return 0;
-}
-
-static json_t *json_of(const char *const *arguments)
-{
-    struct program program = {0};
-    program_run(&program, arguments);
-    assert_int_equal(program.status, 0);
-    json_t *rows = json_loads(program.output, 0, NULL);
-    assert_non_null(rows);
-    program_clear(&program);
-    return rows;
-}
-
-#define JSON_OF(...) json_of((const char *const[]){__VA_ARGS__, "--format", "json", NULL})
-
-static double number_at(const json_t *rows, size_t row, const char *name)
-{
-    const json_t *value = json_object_get(json_array_get(rows, row), name);
-    return json_is_number(value) ? json_number_value(value) : NAN;
-}
-
-static const char *text_at(const json_t *rows, size_t row, const char *name)
-{
-    return json_string_value(json_object_get(json_array_get(rows, row), name));
 }
 
 /* Es/N0 is level less noise, times bandwidth over symbol rate, here 3.0103 dB. */
@@ -198,7 +149,7 @@ static void what_makes_no_sense_is_refused(void **state)
     REFUSED(2, "needs --modulation", "margin", "--target-ber", "1e-3", "--survey", survey);
     REFUSED(2, "needs --packet-bits", "margin", "--target-per", "1e-3", "--modulation", "bpsk",
             "--survey", survey);
-    REFUSED(2, "", "margin", "--target-outage", "0.1", "--survey", survey);
+    REFUSED(2, "exactly one of", "margin", "--target-outage", "0.1", "--survey", survey);
     REFUSED(2, "combining", "error-rate", "--modulation", "bpsk", "--combining", "hope",
             "--survey", survey);
 }
@@ -220,17 +171,15 @@ static void a_channel_that_tells_too_little_is_refused(void **state)
             "--modulation", "bpsk", "--survey", survey);
 }
 
-#define TEST(test) cmocka_unit_test_setup_teardown(test, setup, teardown)
-
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        TEST(each_modulation_has_a_row_on_each_segment),
-        TEST(diversity_and_the_other_direction_help),
-        TEST(margin_is_what_the_level_can_fall_by),
-        TEST(metres_that_fall_short_are_told),
-        TEST(what_makes_no_sense_is_refused),
-        TEST(a_channel_that_tells_too_little_is_refused),
+        cmocka_unit_test(each_modulation_has_a_row_on_each_segment),
+        cmocka_unit_test(diversity_and_the_other_direction_help),
+        cmocka_unit_test(margin_is_what_the_level_can_fall_by),
+        cmocka_unit_test(metres_that_fall_short_are_told),
+        cmocka_unit_test(what_makes_no_sense_is_refused),
+        cmocka_unit_test(a_channel_that_tells_too_little_is_refused),
     };
-    return cmocka_run_group_tests(tests, NULL, NULL);
+    return cmocka_run_group_tests(tests, setup, fixture_teardown);
 }

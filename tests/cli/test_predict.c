@@ -136,19 +136,7 @@ static void shadowed_outage_matches_reference(void **state)
     check_block(&batch, &block);
 }
 
-static json_t *predicted(const char *const *arguments)
-{
-    struct program program = {0};
-    program_run(&program, arguments);
-    assert_int_equal(program.status, 0);
-    json_t *document = json_loads(program.output, 0, NULL);
-    assert_non_null(document);
-    program_clear(&program);
-    return document;
-}
-
-#define PREDICTED(...)                                                                         \
-    predicted((const char *const[]){"predict", "--format", "json", __VA_ARGS__, NULL})
+#define PREDICTED(...) JSON_OF("predict", __VA_ARGS__)
 
 static double outage_at(const json_t *document, size_t index)
 {

@@ -18,18 +18,6 @@
 
 enum { EVERY = 7 }; /* of the table's rows: each is a run of the program */
 
-static json_t *json_of(const char *const *arguments)
-{
-    struct program program = {0};
-    program_run(&program, arguments);
-    assert_string_equal(program.errors, "");
-    assert_int_equal(program.status, 0);
-    json_t *document = json_loads(program.output, 0, NULL);
-    assert_non_null(document);
-    program_clear(&program);
-    return document;
-}
-
 #define PREDICT(...)                                                                           \
     json_of((const char *const[]){"predict", "--format", "json", __VA_ARGS__, NULL})
 

@@ -15,55 +15,8 @@
 #include <sys/stat.h>
 #include <unistd.h>
 
+#include "fixture.h"
 #include "program.h"
-
-struct fixture {
-    char folder[64];
-    char survey[96];
-};
-
-static int setup(void **state)
-{
-    struct fixture *fixture = calloc(1, sizeof *fixture);
-    (void)snprintf(fixture->folder, sizeof fixture->folder, "%s", folder_create());
-    (void)snprintf(fixture->survey, sizeof fixture->survey, "%s/night.routefade",
-                   fixture->folder);
-    *state = fixture;
-    return 0;
-}
-
-static int teardown(void **state)
-{
-    struct fixture *fixture = *state;
-    folder_remove(fixture->folder);
-    free(fixture);
-    return 0;
-}
-
-/* The JSON that the program prints with these arguments; json_decref it. */
-static json_t *json_of(const char *const *arguments)
-{
-    struct program program = {0};
-    program_run(&program, arguments);
-    assert_int_equal(program.status, 0);
-    json_t *value = json_loads(program.output, 0, NULL);
-    assert_non_null(value);
-    program_clear(&program);
-    return value;
-}
-
-#define JSON_OF(...) json_of((const char *const[]){__VA_ARGS__, "--format", "json", NULL})
-
-static void assert_done(const char *const *arguments)
-{
-    struct program program = {0};
-    program_run(&program, arguments);
-    assert_string_equal(program.errors, "");
-    assert_int_equal(program.status, 0);
-    program_clear(&program);
-}
-
-#define DONE(...) assert_done((const char *const[]){__VA_ARGS__, NULL})
 
 static void channel_keeps_what_was_told(void **state)
 {
@@ -266,19 +219,27 @@ static void a_cut_survey_is_an_error(void **state)
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test_setup_teardown(channel_keeps_what_was_told, setup, teardown),
-        cmocka_unit_test_setup_teardown(channel_refuses_what_can_not_be, setup, teardown),
-        cmocka_unit_test_setup_teardown(vehicle_lists_its_calibrations, setup, teardown),
-        cmocka_unit_test_setup_teardown(route_is_added_and_listed, setup, teardown),
-        cmocka_unit_test_setup_teardown(route_refuses_what_can_not_be, setup, teardown),
-        cmocka_unit_test_setup_teardown(route_follows_a_vehicle, setup, teardown),
-        cmocka_unit_test_setup_teardown(status_counts, setup, teardown),
-        cmocka_unit_test_setup_teardown(files_that_are_no_survey_are_left_alone, setup,
-                                        teardown),
-        cmocka_unit_test_setup_teardown(a_survey_of_a_newer_version_is_left_alone, setup,
-                                        teardown),
-        cmocka_unit_test_setup_teardown(an_unreadable_survey_is_an_error, setup, teardown),
-        cmocka_unit_test_setup_teardown(a_cut_survey_is_an_error, setup, teardown),
+        cmocka_unit_test_setup_teardown(channel_keeps_what_was_told, fixture_setup,
+                                        fixture_teardown),
+        cmocka_unit_test_setup_teardown(channel_refuses_what_can_not_be, fixture_setup,
+                                        fixture_teardown),
+        cmocka_unit_test_setup_teardown(vehicle_lists_its_calibrations, fixture_setup,
+                                        fixture_teardown),
+        cmocka_unit_test_setup_teardown(route_is_added_and_listed, fixture_setup,
+                                        fixture_teardown),
+        cmocka_unit_test_setup_teardown(route_refuses_what_can_not_be, fixture_setup,
+                                        fixture_teardown),
+        cmocka_unit_test_setup_teardown(route_follows_a_vehicle, fixture_setup,
+                                        fixture_teardown),
+        cmocka_unit_test_setup_teardown(status_counts, fixture_setup, fixture_teardown),
+        cmocka_unit_test_setup_teardown(files_that_are_no_survey_are_left_alone, fixture_setup,
+                                        fixture_teardown),
+        cmocka_unit_test_setup_teardown(a_survey_of_a_newer_version_is_left_alone,
+                                        fixture_setup, fixture_teardown),
+        cmocka_unit_test_setup_teardown(an_unreadable_survey_is_an_error, fixture_setup,
+                                        fixture_teardown),
+        cmocka_unit_test_setup_teardown(a_cut_survey_is_an_error, fixture_setup,
+                                        fixture_teardown),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

@@ -22,17 +22,6 @@ struct fixture {
     char second[128];
 };
 
-static void assert_done(const char *const *arguments)
-{
-    struct program program = {0};
-    program_run(&program, arguments);
-    assert_string_equal(program.errors, "");
-    assert_int_equal(program.status, 0);
-    program_clear(&program);
-}
-
-#define DONE(...) assert_done((const char *const[]){__VA_ARGS__, NULL})
-
 /* Two drives that overlap in time by half: one by the same vehicle on a second channel, of
  * which nothing else knows. */
 static int setup(void **state)
