@@ -51,7 +51,7 @@ static double probability_of(double log_odds)
 
 static struct node make_node(double outage, double fade, double readings)
 {
-    double repeat = exp(-1.0 / (fade * readings));
+    double repeat = fade > 0.0 ? exp(-1.0 / (fade * readings)) : 0.0; /* of no outage */
     double fades = outage * readings * (1.0 - repeat);
     double variance = fades * (1.0 + repeat) / ((1.0 - repeat) * (1.0 - repeat));
     return (struct node){.fades = fades,

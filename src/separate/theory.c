@@ -151,11 +151,10 @@ static bool valid(double k)
 double rfade_lag_mean_variance(const struct rfade_lag_means *stretch, double k,
                                const struct rfade_ray *ray)
 {
-    double s = 1.0 / (1.0 + k);
-
     if (!valid(k)) {
         return NAN;
     }
+    double s = 1.0 / (1.0 + k);
     return 2.0 * k * s * s * directed(stretch->falling_ray, ray) +
            s * s * stretch->falling_scatter;
 }
@@ -180,6 +179,9 @@ struct rfade_narrowing rfade_lag_narrowing(const struct rfade_lag_means *window,
                                            const struct rfade_lag_means *half, double k,
                                            const struct rfade_ray *ray)
 {
+    if (!valid(k)) {
+        return (struct rfade_narrowing){NAN, NAN};
+    }
     double mean_variance = rfade_lag_mean_variance(window, k, ray);
     double s = 1.0 / (1.0 + k);
     double a = k * s;
