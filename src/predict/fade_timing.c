@@ -86,12 +86,12 @@ double rfade_doppler_hz(double speed_m_s, double carrier_hz)
 
 double rfade_fades_seen_share(double spacing, double mean_fade, double mean_gap)
 {
-    const double u = spacing / mean_fade;
-    const double v = spacing / mean_gap;
     gsl_sf_result i0, i1;
     if (!(spacing > 0.0 && mean_fade > 0.0 && mean_gap > 0.0) || isinf(spacing)) {
         return NAN;
     }
+    const double u = spacing / mean_fade;
+    const double v = spacing / mean_gap;
     const double s = fmin(2.0 / (M_PI * u * u), 1e15); /* the share is 1 from there on */
     const double gaps_seen = v > 0.0 ? fmin(1.0, erf(0.5 * sqrt(M_PI) * v) / v) : 1.0;
     if (gsl_sf_bessel_I0_scaled_e(s, &i0) != GSL_SUCCESS ||

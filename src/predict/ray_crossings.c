@@ -46,9 +46,9 @@ enum rfade_status rfade_ray_crossing_factor(double k, double ray_cosine, double 
     const double z = 2.0 * sqrt(k * (1.0 + k)) * exp(0.5 * rfade_log_ratio(x_db));
     const double turn = 2.0 * fabs(ray_cosine) * sqrt(k);
     /* 1 - cos(phi) = 2 sin^2(phi/2) */
-    const double reach = 0.5 * negligible_exponent / z;
-    const double end = reach < 1.0 ? 2.0 * asin(sqrt(reach)) : M_PI;
-    const double scale = fmin(1.0, 1.0 / fmax(turn, sqrt(z)));
+    const double reach = 0.5 * negligible_exponent;
+    const double end = reach < z ? 2.0 * asin(sqrt(reach / z)) : M_PI;
+    const double scale = 1.0 / fmax(1.0, fmax(turn, sqrt(z)));
     const int points = (int)ceil(end * points_per_scale / scale);
     double weights = 1.0;
     double sum = 1.0;
