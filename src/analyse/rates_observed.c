@@ -43,9 +43,12 @@ static double usual_step_db(struct rfade_segment_results *results)
 {
     const struct rfade_tally_cell *cells = NULL;
     size_t count = 0;
-    for (size_t i = 0; i < results->count; i++)
-        if (rfade_tally_cells(results->rows[i].level, &cells, &count) == RFADE_OK && count > 0)
-            return fmin(cells[count / 2].key.step_cdb / 100.0, 1.0);
+    for (size_t i = 0; i < results->count; i++) {
+        if (rfade_tally_cells(results->rows[i].level, &cells, &count) != RFADE_OK || count == 0)
+            continue;
+        const struct rfade_tally_cell *middle = &cells[count / 2];
+        return fmin(middle->key.step_cdb / 100.0, 1.0);
+    }
     return 1.0;
 }
 

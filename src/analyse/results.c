@@ -187,7 +187,7 @@ static void clear_row(struct rfade_segment_result *row)
 
 void rfade_results_clear(struct rfade_segment_results *results)
 {
-    for (size_t i = 0; i < results->count; i++)
+    for (size_t i = 0; results->rows && i < results->count; i++)
         clear_row(&results->rows[i]);
     free(results->rows);
     free(results->spans);

@@ -67,8 +67,10 @@ static enum rfade_status page_create(const struct error_rate_options *asked, siz
     page->modulations = calloc(count, sizeof *page->modulations);
     page->reference_dbm = calloc(rows + 1, sizeof *page->reference_dbm);
     page->answers = calloc((rows + 1) * count, sizeof *page->answers);
-    if (!page->modulations || !page->reference_dbm || !page->answers)
-        return rfade_error_no_memory(error);
+    if (!page->modulations || !page->reference_dbm || !page->answers) {
+        (void)rfade_error_no_memory(error);
+        return RFADE_NO_MEMORY;
+    }
     enum rfade_status status = RFADE_OK;
     for (size_t i = 0; i < count && status == RFADE_OK; i++)
         status = rfade_modulation_take(&rfade_command_error_rate, asked->modulations.items[i],
@@ -100,10 +102,12 @@ static enum rfade_status answer_faded(struct page *page, struct rfade_segment_re
         status = rfade_error_no_memory(error);
         goto out;
     }
-    for (size_t i = 0; i < 2 * count; i++)
-        targets[i] =
-            (struct rfade_target){.kind = i < count ? RFADE_TARGET_BIT : RFADE_TARGET_SYMBOL,
-                                  .modulation = page->modulations[i % count]};
+    for (size_t i = 0; i < count; i++) {
+        const struct rfade_modulation *modulation = page->modulations[i];
+        targets[i] = (struct rfade_target){.kind = RFADE_TARGET_BIT, .modulation = modulation};
+        targets[count + i] =
+            (struct rfade_target){.kind = RFADE_TARGET_SYMBOL, .modulation = modulation};
+    }
     status = rfade_results_rates(results, &reception, page->reference_dbm, targets, 2 * count,
                                  count, rates, error);
     for (size_t i = 0; i < results->count * count && status == RFADE_OK; i++) {

@@ -227,8 +227,10 @@ static enum rfade_status run_margin(struct rfade_run *run, struct rfade_error *e
         return status;
     struct page page = {asked, &goal, calloc(results.count + 1, sizeof *page.reference_dbm),
                         calloc(results.count + 1, sizeof *page.margins)};
-    if (!page.reference_dbm || !page.margins)
-        status = rfade_error_no_memory(error);
+    if (!page.reference_dbm || !page.margins) {
+        (void)rfade_error_no_memory(error);
+        status = RFADE_NO_MEMORY;
+    }
     if (status == RFADE_OK)
         status = answer_rows(&page, &results, error);
     if (status == RFADE_OK)

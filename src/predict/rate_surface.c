@@ -112,7 +112,7 @@ static enum rfade_status make_spread_axis(const struct rfade_model *model,
                                  .low = low,
                                  .high = high,
                                  .count = spread_nodes(low, high)};
-    axis->nodes = malloc(axis->count * sizeof *axis->nodes);
+    axis->nodes = calloc(axis->count, sizeof *axis->nodes);
     for (size_t i = 0; axis->nodes && i < axis->count; i++)
         axis->nodes[i] = node_at(low, high, i, axis->count);
     return axis->nodes ? RFADE_OK : RFADE_NO_MEMORY;
