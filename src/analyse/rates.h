@@ -40,10 +40,22 @@ enum rfade_status rfade_results_rates(struct rfade_segment_results *results,
                                       size_t interval_count, struct rfade_segment_rate *rates,
                                       struct rfade_error *error);
 
+/** A bit error rate without a model, and what readings beyond the receiver's ends leave open.
+ */
+struct rfade_observed_rate {
+    double bit; /**< NaN where the bounds lie apart by more than the ratio below */
+    double bit_low;
+    double bit_high;
+};
+
+/** As far as bounds may lie apart for one number to stand for both. */
+#define RFADE_OBSERVED_RATE_RATIO_MAX 1.1
+
 /**
- * Error rates averaged over the SNR that was observed on each segment: no model of the fading
- * comes in. Logged SNR where there is one all along, else level; a reading at the receiver's
- * floor or ceiling counts there.
+ * Bit error rates averaged over the SNR that was observed on each segment: no model of the
+ * fading comes in. Logged SNR where there is one all along, else level. A reading below the
+ * receiver's floor stands for any rate from that at the floor up to 1/2, one above its ceiling
+ * for any from that at the ceiling down to 0.
  * @param reference_dbm  as above
  * @param modulations    [count]
  * @param[out] rates     [rows][count]; NaN where nothing was observed
@@ -51,7 +63,7 @@ enum rfade_status rfade_results_rates(struct rfade_segment_results *results,
 enum rfade_status
 rfade_results_rates_observed(struct rfade_segment_results *results, const double *reference_dbm,
                              const struct rfade_modulation *const *modulations, size_t count,
-                             struct rfade_error_rate *rates, struct rfade_error *error);
+                             struct rfade_observed_rate *rates, struct rfade_error *error);
 
 /** What a segment has to spare (or, negative, lacks), dB; NaN where nothing was fitted. */
 struct rfade_segment_margin {

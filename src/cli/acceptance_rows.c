@@ -44,6 +44,8 @@ static void own_values(const void *context, const struct rfade_segment_result *r
     own[12] = rfade_value_number(bounds->observed.low);
     own[13] = rfade_value_number(bounds->observed.high);
     own[14] = rfade_value_text(row->sampling);
+    own[15] = rfade_value_integer(row->passes);
+    own[16] = rfade_value_number(ordered->page->target.confidence);
 }
 
 static double badness_of(const void *context, const struct rfade_segment_result *row,
@@ -77,6 +79,8 @@ static enum rfade_status print(const struct rfade_run *run, const struct ordered
         {"observed_low", RFADE_COLUMN_PROBABILITY, 3, false, false},
         {"observed_high", RFADE_COLUMN_PROBABILITY, 3, false, false},
         {"sampling", RFADE_COLUMN_TEXT, 0, false, false},
+        {"passes", RFADE_COLUMN_INTEGER, 0, false, false},
+        {"confidence", RFADE_COLUMN_PROBABILITY, 2, false, true},
     };
     const struct rfade_segment_table table = {
         columns, sizeof columns / sizeof columns[0], own_values, badness_of, ordered, 1};

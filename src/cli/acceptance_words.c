@@ -58,8 +58,28 @@ static void write_lengths(FILE *stream, const struct rfade_acceptance_page *page
     }
     (void)fputs(".\nThe confidence is that of each segment's own verdict; ", stream);
     write_share(stream, lengths->meets_together_m, length_m);
-    (void)fprintf(stream, " of the route meets the target with %g %% for all of it together.\n",
+    (void)fprintf(stream,
+                  " of the route meets the target with %g %% confidence for all of it "
+                  "together.\n",
                   100.0 * page->target.confidence);
+}
+
+/* One pass tells nothing of how passes differ: its verdicts hold for its conditions alone. */
+static void write_driven_once(FILE *stream, const struct rfade_acceptance_page *page,
+                              size_t index)
+{
+    const struct rfade_route_group *group = &page->groups->groups[index];
+    const struct rfade_segment_acceptance *segments = rfade_acceptance_segments(page, index);
+    double once_m = 0.0;
+    for (size_t i = 0; i < group->count; i++)
+        if (group->rows[i]->passes == 1 && segments[i].judgement.verdict != RFADE_NOT_JUDGED)
+            once_m += group->rows[i]->to_m - group->rows[i]->from_m;
+    if (once_m == 0.0)
+        return;
+    write_share(stream, once_m, page->lengths[index].length_m);
+    (void)fputs(" of the route was driven once: verdicts there hold for the conditions of that "
+                "pass alone.\n",
+                stream);
 }
 
 static void write_place(FILE *stream, const struct rfade_segment_result *row)
@@ -117,6 +137,7 @@ void rfade_acceptance_words(FILE *stream, const struct rfade_acceptance_page *pa
         write_name(stream, ", campaign", group->rows[0]->campaign);
         (void)fputs(": ", stream);
         write_lengths(stream, page, i);
+        write_driven_once(stream, page, i);
         if (page->lengths[i].undecided_m > 0.0)
             (void)fputs("If the estimates stayed where they are:\n", stream);
         for (size_t s = 0; s < group->count; s++)

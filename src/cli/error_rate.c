@@ -29,10 +29,16 @@ static const struct rfade_column columns[] = {
     {"symbol", RFADE_COLUMN_PROBABILITY, 3, false, false},
     {"bit_unfaded", RFADE_COLUMN_PROBABILITY, 3, false, false},
     {"bit_observed", RFADE_COLUMN_PROBABILITY, 3, false, false},
+    {"bit_observed_low", RFADE_COLUMN_PROBABILITY, 3, false, false},
+    {"bit_observed_high", RFADE_COLUMN_PROBABILITY, 3, false, false},
     {"mean_esn0_db", RFADE_COLUMN_NUMBER, 1, false, false},
     {"noise_dbm", RFADE_COLUMN_NUMBER, 1, false, false},
     {"noise", RFADE_COLUMN_TEXT, 0, false, false},
     {"sampling", RFADE_COLUMN_TEXT, 0, false, false},
+    {"passes", RFADE_COLUMN_INTEGER, 0, false, false},
+    {"branches", RFADE_COLUMN_INTEGER, 0, false, true},
+    {"combining", RFADE_COLUMN_TEXT, 0, false, true},
+    {"other_direction_db", RFADE_COLUMN_NUMBER, 1, false, true},
 };
 
 /* What one segment says of one modulation. */
@@ -40,7 +46,7 @@ struct answer {
     struct rfade_segment_rate bit;
     double symbol;
     double bit_unfaded;
-    double bit_observed;
+    struct rfade_observed_rate observed;
 };
 
 struct page {
@@ -148,14 +154,15 @@ static enum rfade_status answer_observed(struct page *page,
                                          struct rfade_error *error)
 {
     size_t count = page->modulation_count;
-    struct rfade_error_rate *rates = calloc((results->count + 1) * count, sizeof *rates);
+    struct rfade_observed_rate *rates = calloc((results->count + 1) * count, sizeof *rates);
     if (!rates)
         return rfade_error_no_memory(error);
     enum rfade_status status = rfade_results_rates_observed(
         results, page->reference_dbm, page->modulations, count, rates, error);
     for (size_t i = 0; i < results->count * count && status == RFADE_OK; i++)
-        page->answers[i].bit_observed =
-            page->asked->reception.branches > 1 ? NAN : rates[i].bit;
+        page->answers[i].observed = page->asked->reception.branches > 1
+                                        ? (struct rfade_observed_rate){NAN, NAN, NAN}
+                                        : rates[i];
     free(rates);
     return status;
 }
@@ -181,7 +188,7 @@ static double badness_of(const void *context, const struct rfade_segment_result 
     const struct page *page = context;
     const struct answer *answer = &page->answers[index * page->modulation_count];
     double badness = by_estimate ? answer->bit.value : answer->bit.low;
-    return isnan(badness) ? answer->bit_observed : badness;
+    return isnan(badness) ? answer->observed.bit_low : badness;
 }
 
 static void own_values(const void *context, const struct rfade_segment_result *row,
@@ -196,11 +203,15 @@ static void own_values(const void *context, const struct rfade_segment_result *r
     own[3] = rfade_value_number(answer->bit.high);
     own[4] = rfade_value_number(answer->symbol);
     own[5] = rfade_value_number(answer->bit_unfaded);
-    own[6] = rfade_value_number(answer->bit_observed);
-    own[7] = rfade_value_number(row->mean_power_dbm - page->reference_dbm[index / count]);
-    own[8] = rfade_value_number(row->noise_floor_dbm);
-    own[9] = rfade_value_text(rfade_noise_source_name(row->noise_source));
-    own[10] = rfade_value_text(row->sampling);
+    own[6] = rfade_value_number(answer->observed.bit);
+    own[7] = rfade_value_number(answer->observed.bit_low);
+    own[8] = rfade_value_number(answer->observed.bit_high);
+    own[9] = rfade_value_number(row->mean_power_dbm - page->reference_dbm[index / count]);
+    own[10] = rfade_value_number(row->noise_floor_dbm);
+    own[11] = rfade_value_text(rfade_noise_source_name(row->noise_source));
+    own[12] = rfade_value_text(row->sampling);
+    own[13] = rfade_value_integer(row->passes);
+    rfade_reception_values(&page->asked->reception, &own[14]);
 }
 
 static enum rfade_status show(const struct rfade_run *run, const struct page *page,
@@ -238,6 +249,8 @@ static enum rfade_status run_error_rate(struct rfade_run *run, struct rfade_erro
         status = answer_rows(&page, &results, error);
     if (status == RFADE_OK)
         status = show(run, &page, &results, error);
+    if (status == RFADE_OK)
+        rfade_segment_note_passes(run, &results);
     page_clear(&page);
     rfade_results_clear(&results);
     return status;
@@ -251,7 +264,10 @@ const struct rfade_command rfade_command_error_rate = {
         "along the segment, with the 95 % confidence interval that the fading's parameter and "
         "the level leave; symbol the mean symbol error rate; bit_unfaded that of a steady "
         "signal of the same mean SNR; bit_observed the mean over the readings themselves, "
-        "without any model: what the model adds lies between the two. mean_esn0_db is Es/N0 of "
+        "without any model: what the model adds lies between the two. Readings below the "
+        "receiver's floor may stand for any rate up to 1/2: where that matters (10 %), "
+        "bit_observed is left out, and bit_observed_low and bit_observed_high say what is "
+        "possible. mean_esn0_db is Es/N0 of "
         "the mean power: level less noise, times bandwidth over symbol rate; `noise` says "
         "where "
         "the noise comes from. Raw error rates of an ideal receiver: coding, synchronisation "

@@ -236,7 +236,9 @@ const struct rfade_command rfade_command_fade_timing = {
         "censored (floor or ceiling), step (rounding), spacing (fades pass between readings). "
         "One segment's rate may be off by more: by chance, as crossings are few, and by half a "
         "quantisation step of the level. The longest fade is the part of it in one segment, as "
-        "driven, standing left out; readings more than a wavelength apart end it.",
+        "driven, standing left out; readings more than a wavelength apart end it. --worst "
+        "ranks "
+        "by the rate of the first level: observed where that is visible, else predicted.",
     .options = options,
     .option_count = sizeof options / sizeof options[0],
     .defaults = &defaults,

@@ -12,6 +12,17 @@ static const char cautions[] =
     "  - A predicted outage is no safety case for an emergency, rail or life-critical link:\n"
     "    local rules and a licensed engineer decide.\n";
 
+/* Of the longest command, so that what they do stands in one column. */
+static int name_width(void)
+{
+    size_t width = 0;
+    for (size_t i = 0; rfade_command_at(i); i++) {
+        size_t length = strlen(rfade_command_at(i)->name);
+        width = length > width ? length : width;
+    }
+    return (int)width;
+}
+
 void rfade_program_help(FILE *stream)
 {
     (void)fputs("routefade: how a radio link fades along a route, how often it is below its\n"
@@ -20,7 +31,7 @@ void rfade_program_help(FILE *stream)
                 "Commands:\n",
                 stream);
     for (size_t i = 0; rfade_command_at(i); i++)
-        (void)fprintf(stream, "  %-10s %s\n", rfade_command_at(i)->name,
+        (void)fprintf(stream, "  %-*s %s\n", name_width(), rfade_command_at(i)->name,
                       rfade_command_at(i)->summary);
     (void)fputs("\n'routefade COMMAND --help' explains a command; 'routefade --version' names\n"
                 "the version. Exit status: 0 done; 1 failed, the survey is as before; 2 wrong\n"

@@ -49,16 +49,6 @@ static const struct rfade_option options[] = {
     RFADE_RECEPTION_OPTION_LINES(struct margin_options),
     RFADE_SEGMENT_OPTION_LINES(struct margin_options)};
 
-static const struct rfade_column columns[] = {
-    {"required_db", RFADE_COLUMN_NUMBER, 1, false, false},
-    {"margin_db", RFADE_COLUMN_NUMBER, 1, true, false},
-    {"margin_low_db", RFADE_COLUMN_NUMBER, 1, false, false},
-    {"margin_high_db", RFADE_COLUMN_NUMBER, 1, false, false},
-    {"noise_dbm", RFADE_COLUMN_NUMBER, 1, false, false},
-    {"noise", RFADE_COLUMN_TEXT, 0, false, false},
-    {"sampling", RFADE_COLUMN_TEXT, 0, false, false},
-};
-
 /* What is to be met; `threshold` of an outage. */
 struct goal {
     struct rfade_target target;
@@ -104,7 +94,8 @@ static enum rfade_status choose_kind(const struct margin_options *asked, struct 
 static enum rfade_status take_goal(const struct margin_options *asked, struct goal *goal,
                                    struct rfade_error *error)
 {
-    *goal = (struct goal){.target = {.packet_bits = asked->packet_bits}};
+    *goal =
+        (struct goal){.target = {.packet_bits = asked->packet_bits}, .threshold = {NULL, NAN}};
     enum rfade_status status = choose_kind(asked, goal, error);
     if (status != RFADE_OK)
         return status;
@@ -151,6 +142,27 @@ static enum rfade_status answer_rows(struct page *page, struct rfade_segment_res
     return status;
 }
 
+/* What a row is held against, so that it can be read without the command line. */
+static void goal_values(const struct goal *goal, struct rfade_value values[5])
+{
+    static const char *const names[] = {
+        [RFADE_TARGET_OUTAGE] = "outage",
+        [RFADE_TARGET_BIT] = "bit",
+        [RFADE_TARGET_SYMBOL] = "symbol",
+        [RFADE_TARGET_PACKET_INDEPENDENT] = "packet_independent",
+        [RFADE_TARGET_PACKET_BLOCK] = "packet_block",
+    };
+    const struct rfade_target *target = &goal->target;
+    bool packet = target->kind == RFADE_TARGET_PACKET_INDEPENDENT ||
+                  target->kind == RFADE_TARGET_PACKET_BLOCK;
+    values[0] = rfade_value_text(names[target->kind]);
+    values[1] = rfade_value_number(target->value);
+    values[2] =
+        rfade_value_text(target->modulation ? rfade_modulation_name(target->modulation) : NULL);
+    values[3] = rfade_value_number(packet ? target->packet_bits : NAN);
+    values[4] = rfade_value_number(goal->threshold.value);
+}
+
 static void own_values(const void *context, const struct rfade_segment_result *row,
                        size_t index, struct rfade_value *own)
 {
@@ -160,9 +172,11 @@ static void own_values(const void *context, const struct rfade_segment_result *r
     own[1] = rfade_value_number(margin->margin_db);
     own[2] = rfade_value_number(margin->low_db);
     own[3] = rfade_value_number(margin->high_db);
-    own[4] = rfade_value_number(row->noise_floor_dbm);
-    own[5] = rfade_value_text(rfade_noise_source_name(row->noise_source));
+    rfade_threshold_noise_values(&page->goal->threshold, row, &own[4]);
     own[6] = rfade_value_text(row->sampling);
+    own[7] = rfade_value_integer(row->passes);
+    goal_values(page->goal, &own[8]);
+    rfade_reception_values(&page->asked->reception, &own[13]);
 }
 
 /* Metres that fall short, and metres that may: whose interval holds both signs. */
@@ -202,6 +216,26 @@ static enum rfade_status show(const struct rfade_run *run, const struct page *pa
                               const struct rfade_segment_results *results,
                               struct rfade_error *error)
 {
+    /* Without a threshold its column is that of SNR, and empty. */
+    const char *threshold = page->goal->threshold.column;
+    const struct rfade_column columns[] = {
+        {"required_db", RFADE_COLUMN_NUMBER, 1, false, false},
+        {"margin_db", RFADE_COLUMN_NUMBER, 1, true, false},
+        {"margin_low_db", RFADE_COLUMN_NUMBER, 1, false, false},
+        {"margin_high_db", RFADE_COLUMN_NUMBER, 1, false, false},
+        {"noise_dbm", RFADE_COLUMN_NUMBER, 1, false, false},
+        {"noise", RFADE_COLUMN_TEXT, 0, false, false},
+        {"sampling", RFADE_COLUMN_TEXT, 0, false, false},
+        {"passes", RFADE_COLUMN_INTEGER, 0, false, false},
+        {"target", RFADE_COLUMN_TEXT, 0, false, true},
+        {"target_value", RFADE_COLUMN_PROBABILITY, 2, false, true},
+        {"modulation", RFADE_COLUMN_TEXT, 0, false, true},
+        {"packet_bits", RFADE_COLUMN_NUMBER, 0, false, true},
+        {threshold ? threshold : "threshold_db", RFADE_COLUMN_NUMBER, 1, false, true},
+        {"branches", RFADE_COLUMN_INTEGER, 0, false, true},
+        {"combining", RFADE_COLUMN_TEXT, 0, false, true},
+        {"other_direction_db", RFADE_COLUMN_NUMBER, 1, false, true},
+    };
     const struct rfade_segment_table table = {.columns = columns,
                                               .column_count =
                                                   sizeof columns / sizeof columns[0],
@@ -237,6 +271,8 @@ static enum rfade_status run_margin(struct rfade_run *run, struct rfade_error *e
         status = show(run, &page, &results, error);
     if (status == RFADE_OK)
         tell_metres(run, &page, &results);
+    if (status == RFADE_OK)
+        rfade_segment_note_passes(run, &results);
     free(page.reference_dbm);
     free(page.margins);
     rfade_results_clear(&results);

@@ -64,9 +64,9 @@ static void own_values(const void *context, const struct rfade_segment_result *r
     own[6] = rfade_value_number(answer->observed.fraction);
     own[7] = rfade_value_number(answer->observed.low);
     own[8] = rfade_value_number(answer->observed.high);
-    own[9] = rfade_value_number(row->noise_floor_dbm);
-    own[10] = rfade_value_text(rfade_noise_source_name(row->noise_source));
+    rfade_threshold_noise_values(page->threshold, row, &own[9]);
     own[11] = rfade_value_text(row->sampling);
+    own[12] = rfade_value_integer(row->passes);
 }
 
 /* By the interval's better end, so that a bad guess from few readings is not first. Where
@@ -102,6 +102,7 @@ static enum rfade_status print_rows(const struct rfade_run *run,
         {"noise_dbm", RFADE_COLUMN_NUMBER, 1, false, false},
         {"noise", RFADE_COLUMN_TEXT, 0, false, false},
         {"sampling", RFADE_COLUMN_TEXT, 0, false, false},
+        {"passes", RFADE_COLUMN_INTEGER, 0, false, false},
     };
     const struct rfade_segment_table table = {
         columns, sizeof columns / sizeof columns[0], own_values, badness_of, page, 1};
@@ -142,6 +143,8 @@ static enum rfade_status run_outage(struct rfade_run *run, struct rfade_error *e
     if (status == RFADE_OK)
         status = asked->whole_route ? rfade_outage_whole_route(run, &results, &threshold, error)
                                     : show_outage(run, asked, &threshold, &results, error);
+    if (status == RFADE_OK)
+        rfade_segment_note_passes(run, &results);
     rfade_results_clear(&results);
     return status;
 }

@@ -26,6 +26,14 @@ struct rfade_reception rfade_reception_take(const struct rfade_reception_options
                                     .confidence = rfade_analysis_defaults().confidence};
 }
 
+void rfade_reception_values(const struct rfade_reception_options *given,
+                            struct rfade_value values[3])
+{
+    values[0] = rfade_value_integer(given->branches);
+    values[1] = rfade_value_text(given->branches > 1 ? given->combining : "none");
+    values[2] = rfade_value_number(given->other_direction_db);
+}
+
 enum rfade_status rfade_modulation_take(const struct rfade_command *command, const char *name,
                                         const struct rfade_modulation **modulation,
                                         struct rfade_error *error)
@@ -59,7 +67,7 @@ enum rfade_status rfade_reception_reference(const struct rfade_segment_result *r
         return rfade_error_set(error, RFADE_INPUT,
                                "give them with `routefade channel NAME --bandwidth-hz B "
                                "--symbol-rate-hz R`",
-                               "channel %s has no bandwidth and symbol rate, so Es/N0 is "
+                               "channel %s lacks a bandwidth or a symbol rate, so Es/N0 is "
                                "unknown",
                                row->channel);
     return RFADE_OK;

@@ -51,6 +51,10 @@ enum rfade_combining rfade_combining_by_name(const char *name);
 
 struct rfade_reception rfade_reception_take(const struct rfade_reception_options *given);
 
+/** Values of columns branches, combining ("none" of one branch) and other_direction_db. */
+void rfade_reception_values(const struct rfade_reception_options *given,
+                            struct rfade_value values[3]);
+
 /**
  * The modulation of a name that was typed.
  * @return RFADE_OK | RFADE_USAGE, with the names that there are

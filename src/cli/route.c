@@ -192,7 +192,9 @@ const struct rfade_command rfade_command_route = {
     .name = "route",
     .arguments = "[NAME [FILE]]",
     .summary = "add a reference line cut into segments; without FILE, list routes",
-    .details = "FILE is a GeoJSON LineString, or text with a latitude and a longitude a line.",
+    .details =
+        "FILE is a GeoJSON LineString, a GPX track or route, or text with a latitude and a "
+        "longitude a line.",
     .arguments_max = 2,
     .options = options,
     .option_count = sizeof options / sizeof options[0],

@@ -84,6 +84,19 @@ enum rfade_status rfade_segment_read(const struct rfade_run *run,
     return status;
 }
 
+void rfade_segment_note_passes(const struct rfade_run *run,
+                               const struct rfade_segment_results *results)
+{
+    size_t once = 0;
+    for (size_t i = 0; i < results->count; i++)
+        once += results->rows[i].passes == 1;
+    if (once > 0 && !run->common->quiet)
+        (void)fprintf(run->notes,
+                      "%zu of %zu segments had one pass: intervals there hold for the "
+                      "conditions of that pass alone\n",
+                      once, results->count);
+}
+
 /* A row's place in the output. */
 struct rank {
     size_t row;

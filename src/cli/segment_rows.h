@@ -64,7 +64,8 @@ struct rfade_segment_options {
          1,                                                                                    \
          1e9,                                                                                  \
          NULL,                                                                                 \
-         "the N worst segments, worst first, ranked by the better end of the interval"},       \
+         "the N worst segments, worst first, ranked by the better end of the interval (where " \
+         "there is one)"},                                                                     \
     {                                                                                          \
         "by-estimate", NULL, RFADE_OPTION_FLAG, offsetof(type, segments.by_estimate), 0, 0,    \
             NULL, "with --worst: ranked by the estimate itself"                                \
@@ -80,6 +81,10 @@ enum rfade_status rfade_segment_read(const struct rfade_run *run,
                                      const struct rfade_segment_options *options,
                                      struct rfade_segment_results *results,
                                      struct rfade_error *error);
+
+/** Says in a note how many segments had one pass, which knows nothing of how passes differ. */
+void rfade_segment_note_passes(const struct rfade_run *run,
+                               const struct rfade_segment_results *results);
 
 /** A model's parameter; one at the end of the model's domain may well be larger. */
 struct rfade_value rfade_parameter_value(const struct rfade_model *model, double parameter);

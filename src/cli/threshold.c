@@ -31,7 +31,7 @@ enum rfade_status rfade_threshold_here(const struct rfade_segment_result *row,
                                        struct rfade_threshold *here, struct rfade_error *error)
 {
     *here = (struct rfade_threshold){asked->value, NAN};
-    if (strcmp(asked->column, "threshold_dbm") == 0)
+    if (rfade_threshold_is_level(asked))
         return RFADE_OK;
     here->snr_db = asked->value;
     if (strcmp(asked->column, "threshold_esn0_db") == 0) {
@@ -41,7 +41,7 @@ enum rfade_status rfade_threshold_here(const struct rfade_segment_result *row,
             return rfade_error_set(error, RFADE_INPUT,
                                    "give them with `routefade channel NAME --bandwidth-hz B "
                                    "--symbol-rate-hz R`, or use --threshold-dbm",
-                                   "channel %s has no bandwidth and symbol rate, so Es/N0 "
+                                   "channel %s lacks a bandwidth or a symbol rate, so Es/N0 "
                                    "is unknown",
                                    row->channel);
     }
@@ -53,4 +53,18 @@ enum rfade_status rfade_threshold_here(const struct rfade_segment_result *row,
                                "channel %s has no noise floor, so SNR is unknown",
                                row->channel);
     return RFADE_OK;
+}
+
+bool rfade_threshold_is_level(const struct rfade_threshold_asked *asked)
+{
+    return asked->column && strcmp(asked->column, "threshold_dbm") == 0;
+}
+
+void rfade_threshold_noise_values(const struct rfade_threshold_asked *asked,
+                                  const struct rfade_segment_result *row,
+                                  struct rfade_value values[2])
+{
+    bool counts = !rfade_threshold_is_level(asked);
+    values[0] = rfade_value_number(counts ? row->noise_floor_dbm : NAN);
+    values[1] = rfade_value_text(counts ? rfade_noise_source_name(row->noise_source) : NULL);
 }

@@ -61,4 +61,13 @@ enum rfade_status rfade_threshold_here(const struct rfade_segment_result *row,
                                        const struct rfade_threshold_asked *asked,
                                        struct rfade_threshold *here, struct rfade_error *error);
 
+/** Whether it is a received level, which no noise comes into. */
+bool rfade_threshold_is_level(const struct rfade_threshold_asked *asked);
+
+/** Values of columns noise_dbm and noise: missing where the threshold is a received level.
+ * Without a column there is no threshold, but SNR. */
+void rfade_threshold_noise_values(const struct rfade_threshold_asked *asked,
+                                  const struct rfade_segment_result *row,
+                                  struct rfade_value values[2]);
+
 #endif

@@ -110,7 +110,8 @@ static void write_shared(struct rfade_rows *rows)
         return;
     for (size_t i = 0; i < rows->column_count; i++) {
         table->stands_above[i] = rows->columns[i].shared_above && same_in_all_rows(rows, i);
-        if (!table->stands_above[i])
+        /* What is missing in every row need not be named. */
+        if (!table->stands_above[i] || strcmp(table->cells[i], "-") == 0)
             continue;
         (void)fprintf(rows->stream, "%s%s %s", any ? ", " : "", rows->columns[i].name,
                       table->cells[i]);

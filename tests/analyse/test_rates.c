@@ -98,7 +98,7 @@ static void observed_rates_need_no_model(void **state)
     (void)state;
     struct segment segment;
     struct rfade_error error;
-    struct rfade_error_rate rate;
+    struct rfade_observed_rate rate;
     const double reference_dbm = -117.0;
     const struct rfade_modulation *bpsk = rfade_modulation(RFADE_BPSK);
     make_segment(&segment, -117.0, -111.0);
@@ -109,6 +109,7 @@ static void observed_rates_need_no_model(void **state)
         RFADE_OK);
     double expected = 0.25 * (erfc(1.0) + erfc(sqrt(pow(10.0, 0.6))));
     assert_true(fabs(rate.bit / expected - 1.0) < 1e-3);
+    assert_true(rate.bit_low == rate.bit && rate.bit_high == rate.bit);
 
     /* Where SNR was logged all along it is that: 3 dB more than the level would say. */
     segment.row.noise_source = RFADE_NOISE_LOGGED;
@@ -120,6 +121,69 @@ static void observed_rates_need_no_model(void **state)
         RFADE_OK);
     expected = 0.25 * (erfc(sqrt(pow(10.0, 0.3))) + erfc(sqrt(pow(10.0, 0.9))));
     assert_true(fabs(rate.bit / expected - 1.0) < 1e-3);
+    clear_segment(&segment);
+}
+
+/* Of BPSK at 0 and 6 dB and as much travel once more beyond one of the receiver's ends. */
+static void observe_clipped(enum rfade_tally_kind kind, double end_dbm,
+                            struct rfade_observed_rate *rate)
+{
+    struct segment segment;
+    struct rfade_error error;
+    const double reference_dbm = -117.0;
+    const struct rfade_modulation *bpsk = rfade_modulation(RFADE_BPSK);
+    const struct rfade_tally_key key = {.kind = kind,
+                                        .centre_cdb = (int32_t)lround(100.0 * end_dbm)};
+    make_segment(&segment, -117.0, -111.0);
+    assert_int_equal(rfade_tally_add(segment.row.level, &key, 2000, 2), RFADE_OK);
+    struct rfade_segment_results results = {.rows = &segment.row, .count = 1};
+    assert_int_equal(
+        rfade_results_rates_observed(&results, &reference_dbm, &bpsk, 1, rate, &error),
+        RFADE_OK);
+    clear_segment(&segment);
+}
+
+/* A reading below the floor may stand for no signal at all, whose bits are wrong half the time;
+ * one above the ceiling for no error. */
+static void what_was_clipped_leaves_bounds(void **state)
+{
+    (void)state;
+    struct rfade_observed_rate rate;
+    double seen = 0.25 * (erfc(1.0) + erfc(sqrt(pow(10.0, 0.6))));
+    observe_clipped(RFADE_BELOW, -117.05, &rate);
+    double at_floor = 0.5 * erfc(sqrt(pow(10.0, -0.005)));
+    assert_true(isnan(rate.bit));
+    assert_true(fabs(rate.bit_low / (0.5 * (seen + at_floor)) - 1.0) < 1e-3);
+    assert_true(fabs(rate.bit_high / (0.5 * (seen + 0.5)) - 1.0) < 1e-3);
+
+    observe_clipped(RFADE_ABOVE, -110.0, &rate);
+    double at_ceiling = 0.5 * erfc(sqrt(pow(10.0, 0.7)));
+    assert_true(fabs(rate.bit_low / (0.5 * seen) - 1.0) < 1e-3);
+    assert_true(fabs(rate.bit_high / (0.5 * (seen + at_ceiling)) - 1.0) < 1e-3);
+    assert_true(fabs(rate.bit / rate.bit_high - 1.0) < 1e-12); /* 2 % apart: one number does */
+}
+
+/* Where every reading is at an end, nothing but the bounds is left. */
+static void nothing_but_clipped_readings(void **state)
+{
+    (void)state;
+    struct segment segment;
+    struct rfade_error error;
+    struct rfade_observed_rate rate;
+    const double reference_dbm = -117.0;
+    const struct rfade_modulation *bpsk = rfade_modulation(RFADE_BPSK);
+    const struct rfade_tally_key key = {.kind = RFADE_BELOW, .centre_cdb = -11700};
+    make_segment(&segment, -117.0, -117.0);
+    rfade_tally_destroy(segment.row.level);
+    assert_int_equal(rfade_tally_create(&segment.row.level), RFADE_OK);
+    assert_int_equal(rfade_tally_add(segment.row.level, &key, 1000, 1), RFADE_OK);
+    struct rfade_segment_results results = {.rows = &segment.row, .count = 1};
+    assert_int_equal(
+        rfade_results_rates_observed(&results, &reference_dbm, &bpsk, 1, &rate, &error),
+        RFADE_OK);
+    assert_true(isnan(rate.bit));
+    assert_true(fabs(rate.bit_low / (0.5 * erfc(1.0)) - 1.0) < 1e-6);
+    assert_true(fabs(rate.bit_high - 0.5) < 1e-12);
     clear_segment(&segment);
 }
 
@@ -214,6 +278,8 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(rates_are_averaged_along_the_local_mean),
         cmocka_unit_test(observed_rates_need_no_model),
+        cmocka_unit_test(what_was_clipped_leaves_bounds),
+        cmocka_unit_test(nothing_but_clipped_readings),
         cmocka_unit_test(margin_of_an_outage_by_hand),
         cmocka_unit_test(margin_carries_the_parameter),
         cmocka_unit_test(what_was_not_fitted_has_no_rate),

@@ -105,6 +105,9 @@ static void sentences_say_the_same(void **state)
                                  "with 99.9 % confidence; "));
     assert_non_null(
         strstr(text, "The confidence is that of each segment's own verdict; 38 % "));
+    assert_non_null(strstr(text, " with 99.9 % confidence for all of it together.\n"));
+    assert_non_null(strstr(text, " % of the route was driven once: verdicts there hold for the "
+                                 "conditions of that pass alone.\n"));
     assert_non_null(strstr(text, "If the estimates stayed where they are:\n  segment 1 (0 to "
                                  "100 m) is undecided, outage "));
     assert_non_null(strstr(text, " m of travel more, or "));

@@ -66,15 +66,15 @@ static void fit_of_all_gives_the_same(void **state)
 {
     const struct fixture *fixture = *state;
     char *fading = OUTPUT_OF("fading", "--format", "json", "--survey", fixture->survey);
-    char *outage = OUTPUT_OF("outage", "--threshold-dbm", "-105", "--format", "json",
+    char *outage = OUTPUT_OF("outage", "--threshold-dbm", "-105", "--quiet", "--format", "json",
                              "--survey", fixture->survey);
     json_t *made = JSON_OF("fit", "--all", "--survey", fixture->survey);
     assert_true(number_at(made, 0, "streams_made") == 1);
     assert_true(number_at(made, 0, "segments_fitted") == 6);
     json_decref(made);
     char *fading_again = OUTPUT_OF("fading", "--format", "json", "--survey", fixture->survey);
-    char *outage_again = OUTPUT_OF("outage", "--threshold-dbm", "-105", "--format", "json",
-                                   "--survey", fixture->survey);
+    char *outage_again = OUTPUT_OF("outage", "--threshold-dbm", "-105", "--quiet", "--format",
+                                   "json", "--survey", fixture->survey);
     assert_string_equal(fading, fading_again);
     assert_string_equal(outage, outage_again);
     free(fading);
@@ -102,14 +102,15 @@ static void assert_columns(const char *expected, char *csv, json_t *rows)
 }
 
 #define ASSERT_COLUMNS(expected, ...)                                                          \
-    assert_columns((expected), OUTPUT_OF(__VA_ARGS__, "--format", "csv"), JSON_OF(__VA_ARGS__))
+    assert_columns((expected), OUTPUT_OF(__VA_ARGS__, "--quiet", "--format", "csv"),           \
+                   JSON_OF(__VA_ARGS__))
 
 #define FIRST_COLUMNS                                                                          \
     "route,segment,from_m,to_m,channel,campaign,readings,effective_count,mean_power_dbm,"      \
     "model,"
 #define OUTAGE_COLUMNS                                                                         \
     ",outage,outage_low,outage_high,next_low,next_high,observed,observed_low,observed_high,"   \
-    "noise_dbm,noise,sampling"
+    "noise_dbm,noise,sampling,passes"
 
 static void columns_are_those_of_the_contract(void **state)
 {
@@ -371,7 +372,7 @@ static void what_can_not_be_answered_is_refused(void **state)
             "--threshold-dbm", "-105", "--survey", survey);
     REFUSED(1, "channel telemetry has no noise floor", "outage", "--threshold-db", "10",
             "--survey", survey);
-    REFUSED(1, "channel telemetry has no bandwidth and symbol rate", "outage",
+    REFUSED(1, "channel telemetry lacks a bandwidth or a symbol rate", "outage",
             "--threshold-esn0-db", "10", "--survey", survey);
     REFUSED(1, "no route 'moor'", "fading", "--route", "moor", "--survey", survey);
     REFUSED(1, "no channel 'voice'", "fading", "--channel", "voice", "--survey", survey);
@@ -417,7 +418,10 @@ static void results_older_than_the_survey_are_told(void **state)
     DONE("fading", "--survey", fixture->survey);
     DONE("vehicle", "plough-2", "--offset-db", "1.5", "--survey", fixture->survey);
     SAID(note, "fading", "--survey", fixture->survey);
-    SAID(note, "outage", "--threshold-dbm", "-105", "--survey", fixture->survey);
+    SAID("the survey changed since the last fit: run `routefade fit`\n"
+         "6 of 6 segments had one pass: intervals there hold for the conditions of that pass "
+         "alone\n",
+         "outage", "--threshold-dbm", "-105", "--survey", fixture->survey);
     DONE("fading", "--quiet", "--survey", fixture->survey);
     REFUSED(1, "no route 'moor'", "fading", "--route", "moor", "--survey", fixture->survey);
     DONE("fit", "--survey", fixture->survey);

@@ -111,6 +111,70 @@ static void margin_is_what_the_level_can_fall_by(void **state)
     json_decref(rows);
 }
 
+/* A row tells what it is held against; noise only where the target counts from it. */
+static void margin_rows_name_their_target(void **state)
+{
+    const struct fixture *fixture = *state;
+    json_t *level = JSON_OF("margin", "--target-outage", "0.02", "--threshold-dbm", "-110",
+                            "--survey", fixture->survey);
+    json_t *packet =
+        JSON_OF("margin", "--target-per", "0.1", "--packet-bits", "64", "--block-fading",
+                "--modulation", "dbpsk", "--branches", "2", "--combining", "selection",
+                "--other-direction-db", "-3", "--survey", fixture->survey);
+    assert_string_equal(text_at(level, 0, "target"), "outage");
+    assert_true(number_at(level, 0, "target_value") == 0.02);
+    assert_true(number_at(level, 0, "threshold_dbm") == -110.0);
+    assert_true(isnan(number_at(level, 0, "noise_dbm")));
+    assert_string_equal(text_at(level, 0, "noise"), "");
+    assert_string_equal(text_at(level, 0, "modulation"), "");
+    assert_string_equal(text_at(level, 0, "combining"), "none");
+    assert_true(number_at(level, 0, "passes") == 1.0);
+
+    assert_string_equal(text_at(packet, 0, "target"), "packet_block");
+    assert_true(number_at(packet, 0, "target_value") == 0.1);
+    assert_true(number_at(packet, 0, "packet_bits") == 64.0);
+    assert_string_equal(text_at(packet, 0, "modulation"), "dbpsk");
+    assert_true(number_at(packet, 0, "noise_dbm") == -118.0);
+    assert_string_equal(text_at(packet, 0, "noise"), "channel");
+    assert_true(number_at(packet, 0, "branches") == 2.0);
+    assert_string_equal(text_at(packet, 0, "combining"), "selection");
+    assert_true(number_at(packet, 0, "other_direction_db") == -3.0);
+    json_decref(level);
+    json_decref(packet);
+}
+
+/* Noise has no part in a received level. */
+static void outage_names_noise_where_it_counts(void **state)
+{
+    const struct fixture *fixture = *state;
+    json_t *level = JSON_OF("outage", "--threshold-dbm", "-110", "--survey", fixture->survey);
+    json_t *snr = JSON_OF("outage", "--threshold-db", "8", "--survey", fixture->survey);
+    assert_true(isnan(number_at(level, 0, "noise_dbm")));
+    assert_string_equal(text_at(level, 0, "noise"), "");
+    assert_true(number_at(snr, 0, "noise_dbm") == -118.0);
+    assert_true(number_at(snr, 0, "passes") == 1.0);
+    json_decref(level);
+    json_decref(snr);
+}
+
+/* One pass knows nothing of how passes differ: said unless --quiet. */
+static void one_pass_is_said(void **state)
+{
+    const struct fixture *fixture = *state;
+    const char *const commands[][6] = {
+        {"outage", "--threshold-dbm", "-110", "--survey", fixture->survey, NULL},
+        {"error-rate", "--modulation", "bpsk", "--survey", fixture->survey, NULL},
+    };
+    for (size_t i = 0; i < 2; i++) {
+        struct program program = {0};
+        program_run(&program, commands[i]);
+        assert_int_equal(program.status, 0);
+        assert_non_null(strstr(program.errors, " segments had one pass: "));
+        program_clear(&program);
+    }
+    DONE("outage", "--threshold-dbm", "-110", "--quiet", "--survey", fixture->survey);
+}
+
 /* Without --quiet a note says how many metres fall short: with a target that none meets, all.
  */
 static void metres_that_fall_short_are_told(void **state)
@@ -167,7 +231,7 @@ static void a_channel_that_tells_too_little_is_refused(void **state)
     REFUSED(1, "has no noise floor", "error-rate", "--modulation", "bpsk", "--survey", survey);
     DONE("channel", "telemetry", "--noise-floor-dbm", "-118", "--survey", survey);
     DONE("fit", "--survey", survey);
-    REFUSED(1, "has no bandwidth and symbol rate", "margin", "--target-ber", "1e-3",
+    REFUSED(1, "lacks a bandwidth or a symbol rate", "margin", "--target-ber", "1e-3",
             "--modulation", "bpsk", "--survey", survey);
 }
 
@@ -177,6 +241,9 @@ int main(void)
         cmocka_unit_test(each_modulation_has_a_row_on_each_segment),
         cmocka_unit_test(diversity_and_the_other_direction_help),
         cmocka_unit_test(margin_is_what_the_level_can_fall_by),
+        cmocka_unit_test(margin_rows_name_their_target),
+        cmocka_unit_test(outage_names_noise_where_it_counts),
+        cmocka_unit_test(one_pass_is_said),
         cmocka_unit_test(metres_that_fall_short_are_told),
         cmocka_unit_test(what_makes_no_sense_is_refused),
         cmocka_unit_test(a_channel_that_tells_too_little_is_refused),

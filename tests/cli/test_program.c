@@ -39,9 +39,16 @@ static void help_names_every_command_and_the_cautions(void **state)
     assert_int_equal(program.status, 0);
     assert_string_equal(program.errors, "");
     assert_cautions(program.output);
+    ptrdiff_t column = 0; /* what commands do stands in one column */
     for (size_t i = 0; rfade_command_at(i); i++) {
-        assert_non_null(strstr(program.output, rfade_command_at(i)->name));
-        assert_non_null(strstr(program.output, rfade_command_at(i)->summary));
+        char line[64];
+        (void)snprintf(line, sizeof line, "\n  %s ", rfade_command_at(i)->name);
+        const char *start = strstr(program.output, line);
+        const char *summary = strstr(program.output, rfade_command_at(i)->summary);
+        assert_non_null(start);
+        assert_non_null(summary);
+        column = column ? column : summary - start;
+        assert_int_equal(summary - start, column);
     }
     program_clear(&program);
 }
@@ -95,6 +102,18 @@ static void help_of_each_command_names_its_options_and_the_cautions(void **state
     program_clear(&program);
 }
 
+/* All that `route` reads is named where its user looks. */
+static void help_of_route_names_its_formats(void **state)
+{
+    (void)state;
+    static const char *const formats[] = {"GeoJSON", "GPX", "latitude"};
+    struct program program = {0};
+    RUN(&program, "route", "--help");
+    for (size_t i = 0; i < sizeof formats / sizeof formats[0]; i++)
+        assert_non_null(strstr(program.output, formats[i]));
+    program_clear(&program);
+}
+
 static void wrong_usage_is_two(void **state)
 {
     (void)state;
@@ -145,6 +164,7 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(version_is_one_line),
         cmocka_unit_test(help_names_every_command_and_the_cautions),
+        cmocka_unit_test(help_of_route_names_its_formats),
         cmocka_unit_test(help_of_each_command_names_its_options_and_the_cautions),
         cmocka_unit_test(wrong_usage_is_two),
         cmocka_unit_test(lost_output_is_an_error),

@@ -136,6 +136,7 @@ static void table_says_once_what_all_rows_share_and_breaks_long_names(void **sta
     (void)state;
     static const struct rfade_column shared[] = {
         {"route", RFADE_COLUMN_TEXT, 0, false, true},
+        {"modulation", RFADE_COLUMN_TEXT, 0, false, true}, /* missing: not named */
         {"passes", RFADE_COLUMN_INTEGER, 0, false, false},
         {"local_sigma_high_db", RFADE_COLUMN_NUMBER, 1, false, false},
         {"note", RFADE_COLUMN_TEXT, 0, false, false},
@@ -149,10 +150,10 @@ static void table_says_once_what_all_rows_share_and_breaks_long_names(void **sta
     struct rfade_error error;
     FILE *stream = open_memstream(&text, &size);
     assert_int_equal(
-        rfade_rows_begin(&rfade_rows_table, stream, NULL, shared, 4, &rows, &error), RFADE_OK);
+        rfade_rows_begin(&rfade_rows_table, stream, NULL, shared, 5, &rows, &error), RFADE_OK);
     for (int i = 0; i < 2; i++) {
         const struct rfade_value values[] = {
-            rfade_value_text("valley-road"), rfade_value_integer(3),
+            rfade_value_text("valley-road"), rfade_value_text(NULL), rfade_value_integer(3),
             rfade_value_number(4.0 + i), rfade_value_text(note)};
         assert_int_equal(rfade_rows_row(rows, values, &error), RFADE_OK);
     }
