@@ -132,7 +132,7 @@ static void observe_clipped(enum rfade_tally_kind kind, double end_dbm,
     struct rfade_error error;
     const double reference_dbm = -117.0;
     const struct rfade_modulation *bpsk = rfade_modulation(RFADE_BPSK);
-    const struct rfade_tally_key key = {.kind = kind,
+    const struct rfade_tally_key key = {.kind = (int32_t)kind,
                                         .centre_cdb = (int32_t)lround(100.0 * end_dbm)};
     make_segment(&segment, -117.0, -111.0);
     assert_int_equal(rfade_tally_add(segment.row.level, &key, 2000, 2), RFADE_OK);
