@@ -90,7 +90,7 @@ static enum rfade_status observe_row(struct rfade_segment_result *row, double re
         rfade_tally_cells(logged ? row->snr : row->level, &observed.cells, &observed.count);
     if (status != RFADE_OK || isnan(offset_db))
         return status == RFADE_OK ? RFADE_NO_DATA : status;
-    struct rfade_error_rate *scratch = calloc(modulations, sizeof *scratch);
+    struct rfade_error_rate *scratch = calloc(modulations + 1, sizeof *scratch);
     observed.bins = malloc((observed.count + 1) * sizeof *observed.bins);
     status = scratch && observed.bins ? RFADE_OK : RFADE_NO_MEMORY;
     for (size_t i = 0; i < observed.count && status == RFADE_OK; i++)
