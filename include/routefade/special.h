@@ -56,6 +56,13 @@ RFADE_API enum rfade_status rfade_gamma_tails(double shape, double x,
  */
 RFADE_API enum rfade_status rfade_normal_tails(double z, struct rfade_tails *tails);
 
+/**
+ * ln(p / (1 - p)) of a probability, and back; infinite at 0 and 1. NaN outside of [0, 1].
+ * Accuracy: 2e-16 of the larger of ln p and ln(1 - p), and 4e-16 relative.
+ */
+RFADE_API double rfade_log_odds(double probability);
+RFADE_API double rfade_from_log_odds(double log_odds);
+
 /** r(z) = I1(z)/I0(z). */
 struct rfade_bessel_ratio {
     double ratio;      /**< r */

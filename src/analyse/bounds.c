@@ -7,16 +7,6 @@
 /* The interval whose coverage the simulated drives are held to. */
 static const double TWO_SIDED = 0.95;
 
-double rfade_log_odds(double probability)
-{
-    return log(probability) - log1p(-probability);
-}
-
-double rfade_from_log_odds(double log_odds)
-{
-    return log_odds > 0 ? 1.0 / (1.0 + exp(-log_odds)) : exp(log_odds) / (1.0 + exp(log_odds));
-}
-
 double rfade_own_distance(double all, double calibration)
 {
     return sqrt(fmax(0.0, all * all - calibration * calibration));

@@ -7,6 +7,7 @@
 #define ROUTEFADE_ANALYSE_BOUNDS_H
 
 #include "analyse/results.h"
+#include "routefade/special.h"
 
 /** On the scale of ln(odds) of the outage; NaN where nothing was predicted. */
 struct rfade_outage_bounds {
@@ -19,10 +20,6 @@ struct rfade_outage_bounds {
     double calibration_db; /**< standard uncertainty of the vehicles' calibration, dB */
     struct rfade_observed observed;
 };
-
-/** ln(p / (1 - p)), and back. */
-double rfade_log_odds(double probability);
-double rfade_from_log_odds(double log_odds);
 
 /** What travel makes smaller of a distance: the root of the difference of the squares. */
 double rfade_own_distance(double all, double calibration);

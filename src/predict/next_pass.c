@@ -13,6 +13,8 @@
 #include <stdbool.h>
 #include <stddef.h>
 
+#include "routefade/special.h"
+
 /*
  * Uncertainty of the outage: places up to four deviations aside, so close that what the
  * numbers of readings spread by reaches from one to the next, but at least a quarter of a
@@ -43,11 +45,6 @@ struct node {
     double before;
     double below; /* P(number <= n) */
 };
-
-static double probability_of(double log_odds)
-{
-    return log_odds > 0 ? 1.0 / (1.0 + exp(-log_odds)) : exp(log_odds) / (1.0 + exp(log_odds));
-}
 
 static struct node make_node(double outage, double fade, double readings)
 {
@@ -84,7 +81,7 @@ static double next_below(struct node *node, double n)
 static void find_ends(const struct rfade_next_pass *next, double tail, double readings,
                       double *low, double *high)
 {
-    double centre = probability_of(next->log_odds);
+    double centre = rfade_from_log_odds(next->log_odds);
     double fade = 0.5 * next->variance / centre;
     struct node nodes[NODES_MAX];
     bool low_found = false;
@@ -96,7 +93,7 @@ static void find_ends(const struct rfade_next_pass *next, double tail, double re
     for (int i = 0; i < count; i++) {
         double place = step * (i - aside);
         double deviation = place < 0 ? next->deviation_below : next->deviation_above;
-        double outage = probability_of(next->log_odds + deviation * place);
+        double outage = rfade_from_log_odds(next->log_odds + deviation * place);
         /* Shallow fades are longer as they are more: both as the root of the outage. */
         nodes[i] = make_node(outage, fade * sqrt(outage / centre), readings);
         nodes[i].weight = exp(-0.5 * place * place);
@@ -127,7 +124,7 @@ void rfade_next_pass_interval(const struct rfade_next_pass *next, double confide
         rare.deviation_below = next->deviation_above;
         rare.deviation_above = next->deviation_below;
     }
-    double fade = 0.5 * next->variance / probability_of(rare.log_odds);
+    double fade = 0.5 * next->variance / rfade_from_log_odds(rare.log_odds);
     double enough = fmin(fmax(MANY_READINGS, ceil(READINGS_A_FADE / fade)), MOST_READINGS);
     double readings = next->readings > 0 ? fmin(round(next->readings), enough) : enough;
     double ends[2] = {0.0, 0.0};

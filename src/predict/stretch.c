@@ -14,6 +14,7 @@
 #include "predict/fluctuation.h"
 #include "predict/next_pass.h"
 #include "predict/response.h"
+#include "routefade/special.h"
 
 /* Of the ends of an interval, as log odds. */
 static const double END_ACCURACY = 1e-7;
@@ -129,11 +130,6 @@ static double level_error_db(const struct rfade_stretch *stretch,
 static double log_odds(const struct average *average)
 {
     return log(average->lower) - log(average->upper);
-}
-
-static double probability_of(double odds_log)
-{
-    return odds_log > 0 ? 1.0 / (1.0 + exp(-odds_log)) : exp(odds_log) / (1.0 + exp(odds_log));
 }
 
 /* Squared distances, below and above, that one source of uncertainty moves the log odds. */
@@ -342,8 +338,8 @@ enum rfade_status rfade_stretch_outage_mixed(const struct rfade_stretch *stretch
         return RFADE_OK;
     }
     mix(verdicts, weights, count, quantile, tail, &all);
-    result->low = probability_of(all.low);
-    result->high = probability_of(all.high);
+    result->low = rfade_from_log_odds(all.low);
+    result->high = rfade_from_log_odds(all.high);
     double below = all.centre - all.low, above = all.high - all.centre;
     enum rfade_status status =
         differ(&stretches[preferred], threshold_dbm, quantile, all.centre, &below, &above);

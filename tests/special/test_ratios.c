@@ -123,6 +123,20 @@ static void outside_the_domain_is_refused(void **state)
     }
 }
 
+/* ln 19 and ln(1/(10^20 - 1)), mpmath. */
+static void log_odds_by_hand(void **state)
+{
+    (void)state;
+    assert_true(fabs(rfade_log_odds(0.95) - 2.9444389791664403) < 1e-15);
+    assert_true(fabs(rfade_log_odds(1e-20) / -46.051701859880914 - 1.0) < 1e-15);
+    assert_true(rfade_log_odds(0.5) == 0.0 && rfade_from_log_odds(0.0) == 0.5);
+    assert_true(fabs(rfade_from_log_odds(2.9444389791664403) - 0.95) < 1e-15);
+    assert_true(fabs(rfade_from_log_odds(-46.051701859880914) / 1e-20 - 1.0) < 1e-14);
+    assert_true(rfade_from_log_odds(rfade_log_odds(0.0)) == 0.0);
+    assert_true(rfade_from_log_odds(rfade_log_odds(1.0)) == 1.0);
+    assert_true(isnan(rfade_log_odds(-0.1)) && isnan(rfade_log_odds(1.1)));
+}
+
 int main(void)
 {
     gsl_set_error_handler_off();
@@ -133,6 +147,7 @@ int main(void)
         cmocka_unit_test(log_minus_psi_matches_random_points),
         cmocka_unit_test(log_minus_psi_is_continuous_and_has_its_limits),
         cmocka_unit_test(outside_the_domain_is_refused),
+        cmocka_unit_test(log_odds_by_hand),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
