@@ -7,107 +7,68 @@
 #include <float.h>
 
 #include "model/model.h"
+#include "model/tail_search.h"
 
-static const double sum_tolerance = 1e-9;
-static const double forward_tolerance = 1e-11;
-enum { ITERATIONS_MAX = 200 };
-
-struct target {
+struct distribution {
     const struct rfade_model *model;
     double parameter;
-    double log_tail;
-    bool is_upper;
 };
 
-/* At x_db: ln of the tail over its target, and d ln tail / d x_db. */
-static enum rfade_status tail_error(const struct target *target, double x_db, double *error,
-                                    double *slope, double *log_tail)
+static enum rfade_status look_at(const struct rfade_tail_search *search, double x_db,
+                                 struct rfade_tail_place *place)
 {
+    const struct distribution *of = search->context;
     struct rfade_tails tails;
     struct rfade_log_gradient density;
-    enum rfade_status status = target->model->tails(target->parameter, x_db, &tails);
+    enum rfade_status status = of->model->tails(of->parameter, x_db, &tails);
     if (status == RFADE_OK) {
-        status = target->model->log_density(target->parameter, x_db, &density);
+        status = of->model->log_density(of->parameter, x_db, &density);
     }
     if (status != RFADE_OK) {
         return status;
     }
-    *log_tail = target->is_upper ? tails.log_upper : tails.log_lower;
-    *error = *log_tail - target->log_tail;
-    *slope = (target->is_upper ? -1.0 : 1.0) * exp(density.value - *log_tail);
+    place->log_tail = search->is_upper ? tails.log_upper : tails.log_lower;
+    place->slope = (search->is_upper ? -1.0 : 1.0) * exp(density.value - place->log_tail);
     return RFADE_OK;
 }
 
-static double newton_step(const struct target *target, double error, double slope,
-                          double log_tail)
+static double newton_step(const struct rfade_tail_search *search,
+                          const struct rfade_tail_place *place)
 {
-    if (!target->is_upper) {
-        return -error / slope;
+    if (!search->is_upper) {
+        return -(place->log_tail - search->log_tail) / place->slope;
     }
     /* d ln(-ln t)/dx = slope / ln t */
-    return -log(log_tail / target->log_tail) * log_tail / slope;
-}
-
-static enum rfade_status solve(const struct target *target, double *x_db)
-{
-    double low = -RFADE_LEVEL_LIMIT_DB;
-    double high = RFADE_LEVEL_LIMIT_DB;
-    double x = 0.0;
-    for (int i = 0; i < ITERATIONS_MAX; i++) {
-        double error = NAN;
-        double slope = NAN;
-        double log_tail = NAN;
-        const enum rfade_status status = tail_error(target, x, &error, &slope, &log_tail);
-        if (status != RFADE_OK) {
-            return status;
-        }
-        if ((error > 0.0) == target->is_upper) {
-            low = x;
-        } else {
-            high = x;
-        }
-        const double step = newton_step(target, error, slope, log_tail);
-        const double resolution = DBL_EPSILON * fabs(x);
-        if (fabs(error) <= DBL_EPSILON || fabs(step) <= 0.5 * resolution ||
-            high - low <= 2.0 * resolution) {
-            const double allowed = forward_tolerance + 2.0 * resolution * fabs(slope);
-            *x_db = x;
-            return fabs(error) <= allowed ? RFADE_OK : RFADE_NO_CONVERGENCE;
-        }
-        const double next = x + step;
-        x = next > low && next < high ? next : 0.5 * (low + high);
-    }
-    return RFADE_NO_CONVERGENCE;
+    return -log(place->log_tail / search->log_tail) * place->log_tail / place->slope;
 }
 
 enum rfade_status rfade_quantile_by_newton(const struct rfade_model *model, double parameter,
                                            double lower, double upper, double *x_db)
 {
     *x_db = NAN;
-    if (!(lower >= 0.0 && upper >= 0.0) || !(fabs(lower + upper - 1.0) <= sum_tolerance)) {
+    if (!(lower >= 0.0 && upper >= 0.0) ||
+        !(fabs(lower + upper - 1.0) <= RFADE_TAIL_SUM_TOLERANCE)) {
         return RFADE_DOMAIN;
     }
     const bool is_upper = upper < lower;
-    const struct target target = {model, parameter, log(is_upper ? upper : lower), is_upper};
-    double end_error = NAN;
-    double slope = NAN;
-    double log_tail = NAN;
-    const double end_db = is_upper ? RFADE_LEVEL_LIMIT_DB : -RFADE_LEVEL_LIMIT_DB;
-    enum rfade_status status = tail_error(&target, end_db, &end_error, &slope, &log_tail);
+    const struct distribution of = {model, parameter};
+    const struct rfade_tail_search search = {.look_at = look_at,
+                                             .step = newton_step,
+                                             .context = &of,
+                                             .log_tail = log(is_upper ? upper : lower),
+                                             .is_upper = is_upper,
+                                             .limit_db = RFADE_LEVEL_LIMIT_DB,
+                                             .good_enough = DBL_EPSILON,
+                                             .forward_tolerance = 1e-11};
+    struct rfade_tail_place end = {NAN, NAN};
+    enum rfade_status status =
+        look_at(&search, is_upper ? search.limit_db : -search.limit_db, &end);
     if (status != RFADE_OK) {
         return status;
     }
-    if (isinf(target.log_tail)) {
+    if (isinf(search.log_tail)) {
         *x_db = is_upper ? INFINITY : -INFINITY;
         return RFADE_OK;
     }
-    if (end_error > 0.0) {
-        return RFADE_DOMAIN;
-    }
-    double x = NAN;
-    status = solve(&target, &x);
-    if (status == RFADE_OK) {
-        *x_db = x;
-    }
-    return status;
+    return end.log_tail > search.log_tail ? RFADE_DOMAIN : rfade_tail_search(&search, x_db);
 }
