@@ -51,7 +51,7 @@ struct answer {
 
 struct page {
     const struct error_rate_options *asked;
-    const struct rfade_modulation **modulations;
+    const struct rfade_modulation *modulations[RFADE_MODULATION_COUNT];
     size_t modulation_count;
     double *reference_dbm;  /* [rows] */
     struct answer *answers; /* [rows][modulations] */
@@ -59,29 +59,20 @@ struct page {
 
 static void page_clear(struct page *page)
 {
-    free(page->modulations);
     free(page->reference_dbm);
     free(page->answers);
 }
 
-static enum rfade_status page_create(const struct error_rate_options *asked, size_t rows,
-                                     struct page *page, struct rfade_error *error)
+/* Room for the answers of so many rows. */
+static enum rfade_status page_make_room(struct page *page, size_t rows,
+                                        struct rfade_error *error)
 {
-    size_t count = asked->modulations.count;
-    *page = (struct page){.asked = asked, .modulation_count = count};
-    /* NOLINTNEXTLINE(bugprone-sizeof-expression): an array of pointers */
-    page->modulations = calloc(count, sizeof *page->modulations);
     page->reference_dbm = calloc(rows + 1, sizeof *page->reference_dbm);
-    page->answers = calloc((rows + 1) * count, sizeof *page->answers);
-    if (!page->modulations || !page->reference_dbm || !page->answers) {
-        (void)rfade_error_no_memory(error);
-        return RFADE_NO_MEMORY;
-    }
-    enum rfade_status status = RFADE_OK;
-    for (size_t i = 0; i < count && status == RFADE_OK; i++)
-        status = rfade_modulation_take(&rfade_command_error_rate, asked->modulations.items[i],
-                                       &page->modulations[i], error);
-    return status;
+    page->answers = calloc((rows + 1) * page->modulation_count, sizeof *page->answers);
+    if (page->reference_dbm && page->answers)
+        return RFADE_OK;
+    (void)rfade_error_no_memory(error);
+    return RFADE_NO_MEMORY;
 }
 
 static enum rfade_status find_references(struct page *page,
@@ -232,19 +223,18 @@ static enum rfade_status run_error_rate(struct rfade_run *run, struct rfade_erro
 {
     const struct error_rate_options *asked = run->options;
     struct rfade_segment_results results = {.rows = NULL};
-    struct page page = {.asked = asked};
+    struct page page = {.asked = asked, .modulation_count = asked->modulations.count};
     if (asked->modulations.count == 0 || asked->modulations.count > RFADE_MODULATION_COUNT)
         return rfade_usage(error, &rfade_command_error_rate,
                            "give 1 to %d modulations with --modulation",
                            RFADE_MODULATION_COUNT);
-    enum rfade_status status = page_create(asked, 0, &page, error); /* checks the names */
-    page_clear(&page);
+    enum rfade_status status = rfade_modulations_take(
+        &rfade_command_error_rate, &asked->modulations, page.modulations, error);
     if (status == RFADE_OK)
         status = rfade_segment_read(run, &rfade_command_error_rate, &asked->segments, &results,
                                     error);
-    if (status != RFADE_OK)
-        return status;
-    status = page_create(asked, results.count, &page, error);
+    if (status == RFADE_OK)
+        status = page_make_room(&page, results.count, error);
     if (status == RFADE_OK)
         status = answer_rows(&page, &results, error);
     if (status == RFADE_OK)

@@ -51,15 +51,7 @@ static enum rfade_status print_summary(const struct rfade_run *run,
                                                 rfade_value_integer(summary->streams_kept),
                                                 rfade_value_integer(summary->segments_fitted),
                                                 rfade_value_integer(summary->segments_kept)};
-    struct rfade_rows *rows = NULL;
-    enum rfade_status status = rfade_rows_begin(run->common->format, run->output, NULL, columns,
-                                                COLUMNS, &rows, error);
-    if (status == RFADE_OK)
-        status = rfade_rows_row(rows, values, error);
-    if (status == RFADE_OK)
-        status = rfade_rows_end(rows, error);
-    rfade_rows_destroy(rows);
-    return status;
+    return rfade_rows_single(run->common->format, run->output, columns, COLUMNS, values, error);
 }
 
 /* Counting goes through all readings: only after a run that made something. */

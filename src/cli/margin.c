@@ -145,17 +145,10 @@ static enum rfade_status answer_rows(struct page *page, struct rfade_segment_res
 /* What a row is held against, so that it can be read without the command line. */
 static void goal_values(const struct goal *goal, struct rfade_value values[5])
 {
-    static const char *const names[] = {
-        [RFADE_TARGET_OUTAGE] = "outage",
-        [RFADE_TARGET_BIT] = "bit",
-        [RFADE_TARGET_SYMBOL] = "symbol",
-        [RFADE_TARGET_PACKET_INDEPENDENT] = "packet_independent",
-        [RFADE_TARGET_PACKET_BLOCK] = "packet_block",
-    };
     const struct rfade_target *target = &goal->target;
     bool packet = target->kind == RFADE_TARGET_PACKET_INDEPENDENT ||
                   target->kind == RFADE_TARGET_PACKET_BLOCK;
-    values[0] = rfade_value_text(names[target->kind]);
+    values[0] = rfade_value_text(rfade_target_kind_name(target->kind));
     values[1] = rfade_value_number(target->value);
     values[2] =
         rfade_value_text(target->modulation ? rfade_modulation_name(target->modulation) : NULL);

@@ -27,20 +27,6 @@ static enum rfade_status take_fading(const struct rfade_predict_options *given,
     return RFADE_OK;
 }
 
-static enum rfade_status take_modulations(const struct rfade_predict_options *given,
-                                          struct rfade_predicted *predicted,
-                                          struct rfade_error *error)
-{
-    enum rfade_status status = RFADE_OK;
-    if (given->modulation.count > RFADE_MODULATION_COUNT)
-        return rfade_usage(error, &rfade_command_predict, "give each --modulation once");
-    for (size_t i = 0; i < given->modulation.count && status == RFADE_OK; i++)
-        status = rfade_modulation_take(&rfade_command_predict, given->modulation.items[i],
-                                       &predicted->modulations[i], error);
-    predicted->modulation_count = given->modulation.count;
-    return status;
-}
-
 /* dB from Eb/N0 to Es/N0, which must be one for all modulations. */
 static enum rfade_status symbol_over_bit_db(const struct rfade_predicted *predicted,
                                             double *over_db, struct rfade_error *error)
@@ -141,6 +127,8 @@ enum rfade_status rfade_predicted_take(const struct rfade_predict_options *given
     if (status == RFADE_OK)
         status = take_fading(given, &predicted->link, error);
     if (status == RFADE_OK)
-        status = take_modulations(given, predicted, error);
+        status = rfade_modulations_take(&rfade_command_predict, &given->modulation,
+                                        predicted->modulations, error);
+    predicted->modulation_count = given->modulation.count;
     return status == RFADE_OK ? take_snr(given, predicted, error) : status;
 }

@@ -3,20 +3,18 @@
 #include <math.h>
 
 #include "cli/predict.h"
+#include "cli/reception.h"
 
 /* The targets that can be given, each with what it is of. */
 static const struct kind {
-    const char *name;
     enum rfade_target_kind kind;
     size_t offset; /* of the value in the options */
 } kinds[] = {
-    {"outage", RFADE_TARGET_OUTAGE, offsetof(struct rfade_predict_options, target_outage)},
-    {"bit", RFADE_TARGET_BIT, offsetof(struct rfade_predict_options, target_ber)},
-    {"symbol", RFADE_TARGET_SYMBOL, offsetof(struct rfade_predict_options, target_ser)},
-    {"packet_independent", RFADE_TARGET_PACKET_INDEPENDENT,
-     offsetof(struct rfade_predict_options, target_per)},
-    {"packet_block", RFADE_TARGET_PACKET_BLOCK,
-     offsetof(struct rfade_predict_options, target_per)},
+    {RFADE_TARGET_OUTAGE, offsetof(struct rfade_predict_options, target_outage)},
+    {RFADE_TARGET_BIT, offsetof(struct rfade_predict_options, target_ber)},
+    {RFADE_TARGET_SYMBOL, offsetof(struct rfade_predict_options, target_ser)},
+    {RFADE_TARGET_PACKET_INDEPENDENT, offsetof(struct rfade_predict_options, target_per)},
+    {RFADE_TARGET_PACKET_BLOCK, offsetof(struct rfade_predict_options, target_per)},
 };
 enum { KINDS = sizeof kinds / sizeof kinds[0] };
 
@@ -73,7 +71,7 @@ static enum rfade_status entry(const struct rfade_predicted *predicted, size_t i
         return rfade_error_set(error, status, "give a target that the link can meet",
                                "no mean SNR for a target of %g: %s", target.value,
                                rfade_status_text(status));
-    values[0] = rfade_value_text(kind->name);
+    values[0] = rfade_value_text(rfade_target_kind_name(kind->kind));
     values[1] = rfade_value_text(outage ? NULL : rfade_modulation_name(target.modulation));
     values[2] = rfade_value_number(target.threshold_db);
     values[3] = rfade_value_number(target.value);

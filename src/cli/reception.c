@@ -50,6 +50,31 @@ enum rfade_status rfade_modulation_take(const struct rfade_command *command, con
     return rfade_usage(error, command, "there is no modulation '%s': one of %s", name, names);
 }
 
+enum rfade_status
+rfade_modulations_take(const struct rfade_command *command, const struct rfade_texts *names,
+                       const struct rfade_modulation *modulations[RFADE_MODULATION_COUNT],
+                       struct rfade_error *error)
+{
+    enum rfade_status status = RFADE_OK;
+    if (names->count > RFADE_MODULATION_COUNT)
+        return rfade_usage(error, command, "give each --modulation once");
+    for (size_t i = 0; i < names->count && status == RFADE_OK; i++)
+        status = rfade_modulation_take(command, names->items[i], &modulations[i], error);
+    return status;
+}
+
+const char *rfade_target_kind_name(enum rfade_target_kind kind)
+{
+    static const char *const names[] = {
+        [RFADE_TARGET_OUTAGE] = "outage",
+        [RFADE_TARGET_BIT] = "bit",
+        [RFADE_TARGET_SYMBOL] = "symbol",
+        [RFADE_TARGET_PACKET_INDEPENDENT] = "packet_independent",
+        [RFADE_TARGET_PACKET_BLOCK] = "packet_block",
+    };
+    return names[kind];
+}
+
 enum rfade_status rfade_reception_reference(const struct rfade_segment_result *row,
                                             const struct rfade_reception_options *given,
                                             double *reference_dbm, struct rfade_error *error)

@@ -63,6 +63,15 @@ enum rfade_status rfade_modulation_take(const struct rfade_command *command, con
                                         const struct rfade_modulation **modulation,
                                         struct rfade_error *error);
 
+/** The modulations of all names that were typed, at most RFADE_MODULATION_COUNT. */
+enum rfade_status
+rfade_modulations_take(const struct rfade_command *command, const struct rfade_texts *names,
+                       const struct rfade_modulation *modulations[RFADE_MODULATION_COUNT],
+                       struct rfade_error *error);
+
+/** The word in the output for what a target is of: "outage", "bit", ... */
+const char *rfade_target_kind_name(enum rfade_target_kind kind);
+
 /**
  * The level at which Es/N0 is 0 dB on a row's channel, in the direction that was asked for.
  * @return RFADE_OK | RFADE_INPUT (noise, bandwidth or symbol rate isn't known)

@@ -33,19 +33,11 @@ static enum rfade_status tell(const struct rfade_run *run,
                               const struct rfade_withdrawn *withdrawn,
                               struct rfade_error *error)
 {
-    struct rfade_rows *rows = NULL;
     const struct rfade_value values[COLUMNS] = {
         rfade_value_text(withdrawn->name), rfade_value_integer(withdrawn->readings),
         rfade_value_integer(withdrawn->fixes), rfade_value_integer(withdrawn->refused_lines),
         rfade_value_integer(withdrawn->traces)};
-    enum rfade_status status = rfade_rows_begin(run->common->format, run->output, NULL, columns,
-                                                COLUMNS, &rows, error);
-    if (status == RFADE_OK)
-        status = rfade_rows_row(rows, values, error);
-    if (status == RFADE_OK)
-        status = rfade_rows_end(rows, error);
-    rfade_rows_destroy(rows);
-    return status;
+    return rfade_rows_single(run->common->format, run->output, columns, COLUMNS, values, error);
 }
 
 static enum rfade_status run_withdraw(struct rfade_run *run, struct rfade_error *error)

@@ -162,3 +162,18 @@ void rfade_rows_destroy(struct rfade_rows *rows)
     free(rows->values);
     free(rows);
 }
+
+enum rfade_status rfade_rows_single(const struct rfade_rows_format *format, FILE *stream,
+                                    const struct rfade_column *columns, size_t column_count,
+                                    const struct rfade_value *values, struct rfade_error *error)
+{
+    struct rfade_rows *rows = NULL;
+    enum rfade_status status =
+        rfade_rows_begin(format, stream, NULL, columns, column_count, &rows, error);
+    if (status == RFADE_OK)
+        status = rfade_rows_row(rows, values, error);
+    if (status == RFADE_OK)
+        status = rfade_rows_end(rows, error);
+    rfade_rows_destroy(rows);
+    return status;
+}

@@ -120,6 +120,15 @@ enum rfade_status rfade_rows_end(struct rfade_rows *rows, struct rfade_error *er
 
 void rfade_rows_destroy(struct rfade_rows *rows); /* NULL is harmless */
 
+/**
+ * A table of one row to standard output or the like: all of the above.
+ * @param values  [column_count]
+ */
+enum rfade_status rfade_rows_single(const struct rfade_rows_format *format, FILE *stream,
+                                    const struct rfade_column *columns, size_t column_count,
+                                    const struct rfade_value *values,
+                                    struct rfade_error *error);
+
 /** Flushes a stream; RFADE_STORAGE if anything written to it was lost. */
 enum rfade_status rfade_stream_flush(FILE *stream, const char *stream_name,
                                      struct rfade_error *error);
