@@ -4,13 +4,12 @@
  * is in range, and every row is a reading, a position, or refused with a reason, or says
  * itself that there is nothing.
  */
-#include <string.h>
 
 #include "ingest/built_in_map.h"
 #include "ingest/delimited.h"
 #include "ingest/kind.h"
 
-#include "checked_sink.h"
+#include "checked_log.h"
 #include "fuzz.h"
 
 static void read_with(const struct rfade_column_map *map, const char *text, size_t size)
@@ -20,32 +19,20 @@ static void read_with(const struct rfade_column_map *map, const char *text, size
         FUZZ_REQUIRE(!layout);
         return;
     }
-    struct rfade_byte_memory bytes = {text, size};
-    struct rfade_byte_source source = {&bytes, rfade_byte_memory_read};
-    struct counts counts = {0};
-    struct rfade_sink sink = checked_sink(&counts);
-    struct rfade_ingest_names names = {.vehicle = "fuzz"};
-    struct rfade_ingest_summary summary = {0};
-    struct rfade_line_reader *lines = rfade_line_reader_create(&source);
-    if (!lines)
-        abort();
-    (void)rfade_delimited_read(lines, map, layout, &names, &sink, &summary, NULL);
-    FUZZ_REQUIRE(summary.readings == counts.readings && summary.fixes == counts.fixes);
-    FUZZ_REQUIRE(summary.refused == counts.refused && summary.rows <= summary.lines);
+    struct checked_log log;
+    checked_log_begin(&log, text, size);
+    (void)rfade_delimited_read(log.lines, map, layout, &log.names, &log.sink, &log.summary,
+                               NULL);
+    FUZZ_REQUIRE(log.summary.readings == log.counts.readings &&
+                 log.summary.fixes == log.counts.fixes);
+    FUZZ_REQUIRE(log.summary.refused == log.counts.refused &&
+                 log.summary.rows <= log.summary.lines);
     size_t levels = map->level_count;
     FUZZ_REQUIRE(levels == 0 ||
-                 summary.readings + summary.no_reading + summary.refused * levels >=
-                     summary.rows);
-    rfade_line_reader_destroy(lines);
+                 log.summary.readings + log.summary.no_reading + log.summary.refused * levels >=
+                     log.summary.rows);
+    checked_log_end(&log);
     free(layout);
-}
-
-static struct rfade_column_map *made(const char *text)
-{
-    struct rfade_column_map *map = NULL;
-    if (rfade_column_map_parse(text, strlen(text), "fuzz.ini", &map, NULL) != RFADE_OK)
-        abort();
-    return map;
 }
 
 int LLVMFuzzerTestOneInput(const uint8_t *data, size_t size)
@@ -66,7 +53,7 @@ int LLVMFuzzerTestOneInput(const uint8_t *data, size_t size)
     static struct rfade_column_map *maps[MAPS];
     for (size_t i = 0; i < MAPS; i++)
         if (!maps[i])
-            maps[i] = made(texts[i]);
+            maps[i] = map_of(texts[i]);
     const char *text = (const char *)data;
     (void)rfade_other_kind(text, size);
     for (size_t i = 0; i < MAPS; i++)

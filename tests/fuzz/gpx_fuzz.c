@@ -6,24 +6,18 @@
 #include "ingest/gpx_track.h"
 #include "route/read_line_text.h"
 
-#include "checked_sink.h"
+#include "checked_log.h"
 #include "fuzz.h"
 
 static void read_log(const struct rfade_column_map *map, const char *text, size_t size)
 {
-    struct rfade_byte_memory bytes = {text, size};
-    struct rfade_byte_source source = {&bytes, rfade_byte_memory_read};
-    struct counts counts = {0};
-    struct rfade_sink sink = checked_sink(&counts);
-    struct rfade_ingest_names names = {.vehicle = "fuzz"};
-    struct rfade_ingest_summary summary = {0};
-    struct rfade_line_reader *lines = rfade_line_reader_create(&source);
-    if (!lines)
-        abort();
-    enum rfade_status status = rfade_gpx_track_read(lines, map, &names, &sink, &summary, NULL);
+    struct checked_log log;
+    checked_log_begin(&log, text, size);
+    enum rfade_status status =
+        rfade_gpx_track_read(log.lines, map, &log.names, &log.sink, &log.summary, NULL);
     FUZZ_REQUIRE(status == RFADE_OK || status == RFADE_INPUT);
-    FUZZ_REQUIRE(status != RFADE_OK || summary.fixes == counts.fixes);
-    rfade_line_reader_destroy(lines);
+    FUZZ_REQUIRE(status != RFADE_OK || log.summary.fixes == log.counts.fixes);
+    checked_log_end(&log);
 }
 
 int LLVMFuzzerTestOneInput(const uint8_t *data, size_t size)

@@ -1,38 +1,23 @@
 /* SPDX-License-Identifier: GPL-3.0-or-later */
 /* A JSON log read by the built-in map and by three others; see delimited_fuzz.c. */
-#include <string.h>
 
 #include "ingest/json.h"
 
-#include "checked_sink.h"
+#include "checked_log.h"
 #include "fuzz.h"
 
 static void read_with(const struct rfade_column_map *map, const char *text, size_t size)
 {
     size_t columns = 0;
     (void)rfade_json_fit(map, text, size, &columns, NULL);
-    struct rfade_byte_memory bytes = {text, size};
-    struct rfade_byte_source source = {&bytes, rfade_byte_memory_read};
-    struct counts counts = {0};
-    struct rfade_sink sink = checked_sink(&counts);
-    struct rfade_ingest_names names = {.vehicle = "fuzz"};
-    struct rfade_ingest_summary summary = {0};
-    struct rfade_line_reader *lines = rfade_line_reader_create(&source);
-    if (!lines)
-        abort();
-    enum rfade_status status = rfade_json_read(lines, map, &names, &sink, &summary, NULL);
+    struct checked_log log;
+    checked_log_begin(&log, text, size);
+    enum rfade_status status =
+        rfade_json_read(log.lines, map, &log.names, &log.sink, &log.summary, NULL);
     FUZZ_REQUIRE(status == RFADE_OK || status == RFADE_INPUT);
-    FUZZ_REQUIRE(summary.readings == counts.readings);
-    FUZZ_REQUIRE(status != RFADE_OK || summary.refused == counts.refused);
-    rfade_line_reader_destroy(lines);
-}
-
-static struct rfade_column_map *made(const char *text)
-{
-    struct rfade_column_map *map = NULL;
-    if (rfade_column_map_parse(text, strlen(text), "fuzz.ini", &map, NULL) != RFADE_OK)
-        abort();
-    return map;
+    FUZZ_REQUIRE(log.summary.readings == log.counts.readings);
+    FUZZ_REQUIRE(status != RFADE_OK || log.summary.refused == log.counts.refused);
+    checked_log_end(&log);
 }
 
 int LLVMFuzzerTestOneInput(const uint8_t *data, size_t size)
@@ -48,7 +33,7 @@ int LLVMFuzzerTestOneInput(const uint8_t *data, size_t size)
     const char *text = (const char *)data;
     for (size_t i = 0; i < MAPS; i++) {
         if (!maps[i])
-            maps[i] = made(texts[i]);
+            maps[i] = map_of(texts[i]);
         read_with(maps[i], text, size);
     }
     struct rfade_column_map *built_in = NULL;

@@ -6,26 +6,21 @@
 #include "ingest/column_map_parts.h"
 #include "ingest/nmea.h"
 
-#include "checked_sink.h"
+#include "checked_log.h"
 #include "fuzz.h"
 
 static struct rfade_column_map *map;
 
 static void read_log(const char *text, size_t size)
 {
-    struct rfade_byte_memory bytes = {text, size};
-    struct rfade_byte_source source = {&bytes, rfade_byte_memory_read};
-    struct counts counts = {0};
-    struct rfade_sink sink = checked_sink(&counts);
-    struct rfade_ingest_names names = {.vehicle = "fuzz"};
-    struct rfade_ingest_summary summary = {0};
-    struct rfade_line_reader *lines = rfade_line_reader_create(&source);
-    if (!lines)
-        abort();
-    enum rfade_status status = rfade_nmea_read_log(lines, map, &names, &sink, &summary, NULL);
+    struct checked_log log;
+    checked_log_begin(&log, text, size);
+    enum rfade_status status =
+        rfade_nmea_read_log(log.lines, map, &log.names, &log.sink, &log.summary, NULL);
     FUZZ_REQUIRE(status == RFADE_OK || status == RFADE_INPUT);
-    FUZZ_REQUIRE(summary.fixes == counts.fixes && summary.refused == counts.refused);
-    rfade_line_reader_destroy(lines);
+    FUZZ_REQUIRE(log.summary.fixes == log.counts.fixes &&
+                 log.summary.refused == log.counts.refused);
+    checked_log_end(&log);
 }
 
 /* Replaces the two digits behind each star by the right ones. */
