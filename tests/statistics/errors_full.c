@@ -38,16 +38,10 @@ static bool print_share(const char *what, const struct share *share, bool judged
 
 static bool run_segments(int index, int64_t trials)
 {
-    const struct circumstances it = {.k = ks[index % 4],
-                                     .ray_angle_deg = angles_deg[index / 8],
-                                     .step_db = 1.0,
-                                     .spacing_wavelengths = spacings_wavelengths[index / 4 % 2],
-                                     .shadowing_db = 4.0,
-                                     .decorrelation_m = 60.0,
-                                     .shadowing = RFADE_SHADOWING_SMOOTH,
-                                     .segment_m = 100.0,
-                                     .margin_windows = 2.0,
-                                     .passes = 1};
+    struct circumstances it = usual_circumstances;
+    it.k = ks[index % 4];
+    it.ray_angle_deg = angles_deg[index / 8];
+    it.spacing_wavelengths = spacings_wavelengths[index / 4 % 2];
     struct count count;
     if (!count_segments(&it, trials, 1 + 10000000 * ((uint64_t)index + 1), &count)) {
         return false;

@@ -34,16 +34,8 @@ static void segments_are_refused_one_in_twenty(void **state)
     struct share goodness = {0, 0}, rice = {0, 0};
     static const double spacings_wavelengths[] = {0.05, 0.15};
     for (int i = 0; i < 2; i++) {
-        const struct circumstances it = {.k = 0.0,
-                                         .ray_angle_deg = 90.0,
-                                         .step_db = 1.0,
-                                         .spacing_wavelengths = spacings_wavelengths[i],
-                                         .shadowing_db = 4.0,
-                                         .decorrelation_m = 60.0,
-                                         .shadowing = RFADE_SHADOWING_SMOOTH,
-                                         .segment_m = 100.0,
-                                         .margin_windows = 2.0,
-                                         .passes = 1};
+        struct circumstances it = usual_circumstances;
+        it.spacing_wavelengths = spacings_wavelengths[i];
         struct count count;
         assert_true(count_segments(&it, SEGMENTS, 5001, &count));
         assert_int_equal(count.failed, 0);

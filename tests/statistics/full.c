@@ -22,17 +22,6 @@ static const char *const measure_names[MEASURE_COUNT] = {
     "K",       "m",        "local mean", "local sigma", "outage -5", "outage -10", "outage -15",
     "same -5", "same -10", "same -15",   "next -5",     "next -10",  "next -15"};
 
-static const struct circumstances base = {.k = 0.0,
-                                          .ray_angle_deg = 90.0,
-                                          .step_db = 1.0,
-                                          .spacing_wavelengths = 0.15,
-                                          .shadowing_db = 4.0,
-                                          .decorrelation_m = 60.0,
-                                          .shadowing = RFADE_SHADOWING_SMOOTH,
-                                          .segment_m = 100.0,
-                                          .margin_windows = 2.0,
-                                          .passes = 1};
-
 static const double ks[] = {0.0, 1.0, 4.0, 10.0};
 static const double angles_deg[] = {90.0, 0.0};
 static const int shifted_passes[] = {1, 2, 3, 6};
@@ -55,7 +44,7 @@ struct tally_of_cells {
     int failed;
 };
 
-/* One thing changed of the base. */
+/* One thing changed of the usual_circumstances. */
 static void vary(int variation, struct circumstances *it)
 {
     switch (variation) {
@@ -88,7 +77,7 @@ static void vary(int variation, struct circumstances *it)
 /* Each K and direction of the ray with the base and with one thing changed. */
 static struct circumstances cell(int index)
 {
-    struct circumstances it = base;
+    struct circumstances it = usual_circumstances;
     int exponential = index - SMOOTH_CELLS;
     int shifted = exponential - EXPONENTIAL_CELLS;
     if (shifted >= 0) {
@@ -111,28 +100,28 @@ static struct circumstances cell(int index)
 static void print_cell(int index, const struct circumstances *it)
 {
     printf("| %d | K %g, ray %g", index, it->k, it->ray_angle_deg);
-    if (it->step_db != base.step_db) {
+    if (it->step_db != usual_circumstances.step_db) {
         printf(", step %g", it->step_db);
     }
-    if (it->spacing_wavelengths != base.spacing_wavelengths) {
+    if (it->spacing_wavelengths != usual_circumstances.spacing_wavelengths) {
         printf(", spacing %g", it->spacing_wavelengths);
     }
     if (it->censored > 0.0) {
         printf(", censored %g", it->censored);
     }
-    if (it->decorrelation_m != base.decorrelation_m) {
+    if (it->decorrelation_m != usual_circumstances.decorrelation_m) {
         printf(", D %g", it->decorrelation_m);
     }
-    if (it->shadowing != base.shadowing) {
+    if (it->shadowing != usual_circumstances.shadowing) {
         printf(", exponential");
     }
-    if (it->passes != base.passes || it->pass_shift_db > 0.0) {
+    if (it->passes != usual_circumstances.passes || it->pass_shift_db > 0.0) {
         printf(", passes %d", it->passes);
     }
     if (it->pass_shift_db > 0.0) {
         printf(", differing %g dB", it->pass_shift_db);
     }
-    if (it->segment_m != base.segment_m) {
+    if (it->segment_m != usual_circumstances.segment_m) {
         printf(", %g m", it->segment_m);
     }
     printf(" | ");

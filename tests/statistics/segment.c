@@ -14,6 +14,17 @@
 
 const double threshold_db[THRESHOLDS] = {-5.0, -10.0, -15.0};
 
+const struct circumstances usual_circumstances = {.k = 0.0,
+                                                  .ray_angle_deg = 90.0,
+                                                  .step_db = 1.0,
+                                                  .spacing_wavelengths = 0.15,
+                                                  .shadowing_db = 4.0,
+                                                  .decorrelation_m = 60.0,
+                                                  .shadowing = RFADE_SHADOWING_SMOOTH,
+                                                  .segment_m = 100.0,
+                                                  .margin_windows = 2.0,
+                                                  .passes = 1};
+
 static const double carrier_hz = 457e6;
 static const double speed_of_light_m_s = 299792458.0;
 static const double speed_m_s = 10.0;

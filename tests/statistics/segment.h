@@ -30,6 +30,10 @@ struct circumstances {
     double standstill_s;  /**< at the middle of the segment; 0: none */
 };
 
+/** What the cells are variations of: Rayleigh, ray across the road, 1 dB steps, readings 0.15
+ * wavelengths apart, smooth shadowing of 4 dB decorrelated over 60 m, one pass of 100 m. */
+extern const struct circumstances usual_circumstances;
+
 enum { THRESHOLDS = 3 };
 
 /** Thresholds about the segment's true mean power, dB. */

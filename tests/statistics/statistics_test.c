@@ -16,17 +16,6 @@
 
 enum { SEGMENTS = 60 };
 
-static const struct circumstances base = {.k = 4.0,
-                                          .ray_angle_deg = 90.0,
-                                          .step_db = 1.0,
-                                          .spacing_wavelengths = 0.15,
-                                          .shadowing_db = 4.0,
-                                          .decorrelation_m = 60.0,
-                                          .shadowing = RFADE_SHADOWING_SMOOTH,
-                                          .segment_m = 100.0,
-                                          .margin_windows = 2.0,
-                                          .passes = 1};
-
 /* Four standard errors of a share of 95 % below it: with 60 segments, 84 %. */
 static void assert_held(const struct count *count, int measure)
 {
@@ -55,13 +44,16 @@ static void check_cell(const struct circumstances *circumstances)
 static void intervals_hold_with_the_ray_across_the_road(void **state)
 {
     (void)state;
-    check_cell(&base);
+    struct circumstances across = usual_circumstances;
+    across.k = 4.0;
+    check_cell(&across);
 }
 
 static void intervals_hold_with_the_ray_along_the_road(void **state)
 {
     (void)state;
-    struct circumstances along = base;
+    struct circumstances along = usual_circumstances;
+    along.k = 4.0;
     along.ray_angle_deg = 0.0;
     check_cell(&along);
 }
@@ -69,7 +61,7 @@ static void intervals_hold_with_the_ray_along_the_road(void **state)
 static void intervals_hold_without_a_ray(void **state)
 {
     (void)state;
-    struct circumstances rayleigh = base;
+    struct circumstances rayleigh = usual_circumstances;
     rayleigh.k = 0.0;
     check_cell(&rayleigh);
 }
@@ -78,7 +70,8 @@ static void intervals_hold_without_a_ray(void **state)
 static void a_standstill_changes_nothing(void **state)
 {
     (void)state;
-    struct circumstances standing = base;
+    struct circumstances standing = usual_circumstances;
+    standing.k = 4.0;
     standing.spacing_wavelengths = 10.0 / 100.0 / 0.656; /* 10 m/s, 100 readings a second */
     struct circumstances moving = standing;
     standing.standstill_s = 30.0;

@@ -16,16 +16,6 @@
 
 enum { SEGMENTS = 150 };
 
-static const struct circumstances base = {.ray_angle_deg = 90.0,
-                                          .step_db = 1.0,
-                                          .spacing_wavelengths = 0.15,
-                                          .shadowing_db = 4.0,
-                                          .decorrelation_m = 60.0,
-                                          .shadowing = RFADE_SHADOWING_SMOOTH,
-                                          .segment_m = 100.0,
-                                          .margin_windows = 2.0,
-                                          .passes = 1};
-
 /* A tenth, and three standard errors of it: 17 %. */
 static void assert_rare(const struct share *share)
 {
@@ -36,7 +26,7 @@ static void assert_rare(const struct share *share)
 
 static void check_cell(double k, int passes)
 {
-    struct circumstances it = base;
+    struct circumstances it = usual_circumstances;
     struct wrong wrong;
     it.k = k;
     it.passes = passes;
