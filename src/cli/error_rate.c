@@ -51,7 +51,7 @@ struct answer {
 
 struct page {
     const struct error_rate_options *asked;
-    const struct rfade_modulation *modulations[RFADE_MODULATION_COUNT];
+    const struct rfade_modulation *const *modulations; /* [modulation_count], borrowed */
     size_t modulation_count;
     double *reference_dbm;  /* [rows] */
     struct answer *answers; /* [rows][modulations] */
@@ -223,13 +223,16 @@ static enum rfade_status run_error_rate(struct rfade_run *run, struct rfade_erro
 {
     const struct error_rate_options *asked = run->options;
     struct rfade_segment_results results = {.rows = NULL};
-    struct page page = {.asked = asked, .modulation_count = asked->modulations.count};
+    const struct rfade_modulation *modulations[RFADE_MODULATION_COUNT] = {NULL};
+    struct page page = {.asked = asked,
+                        .modulations = modulations,
+                        .modulation_count = asked->modulations.count};
     if (asked->modulations.count == 0 || asked->modulations.count > RFADE_MODULATION_COUNT)
         return rfade_usage(error, &rfade_command_error_rate,
                            "give 1 to %d modulations with --modulation",
                            RFADE_MODULATION_COUNT);
-    enum rfade_status status = rfade_modulations_take(
-        &rfade_command_error_rate, &asked->modulations, page.modulations, error);
+    enum rfade_status status = rfade_modulations_take(&rfade_command_error_rate,
+                                                      &asked->modulations, modulations, error);
     if (status == RFADE_OK)
         status = rfade_segment_read(run, &rfade_command_error_rate, &asked->segments, &results,
                                     error);

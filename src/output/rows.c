@@ -170,8 +170,9 @@ enum rfade_status rfade_rows_single(const struct rfade_rows_format *format, FILE
     struct rfade_rows *rows = NULL;
     enum rfade_status status =
         rfade_rows_begin(format, stream, NULL, columns, column_count, &rows, error);
-    if (status == RFADE_OK)
-        status = rfade_rows_row(rows, values, error);
+    if (!rows)
+        return status;
+    status = rfade_rows_row(rows, values, error);
     if (status == RFADE_OK)
         status = rfade_rows_end(rows, error);
     rfade_rows_destroy(rows);
